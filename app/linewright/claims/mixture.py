@@ -1,0 +1,246 @@
+"""The self-calibrating mixture: which predicted line made which feature.
+
+Everything uncertain is learned from the spectrum itself by expectation-maximisation: how
+often lines show, how strong they look, how dense unlisted features are, how far each
+species is off its predicted strengths, and how good the positions are.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from .association import Marginals, associate
+from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_relation
+from .curves import first_relation, threshold_form
+from .entries import Groups, group
+from .offsets import best_offsets, detection_log_likelihood, strength_log_likelihood
+from .problem import Problem, find_pairs, inside
+from .unlisted import Null, learn_null
+
+ROUNDS = 12
+TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.05, 3.5, 0.03  # heavy tail of position errors
+STRENGTH_TAIL, STRENGTH_RANGE = 0.07, 8.0  # share and width (dex) of strengths gone wrong
+CENTRING = 0.03  # of the FWHM: asymmetries and blends limit any centroid
+
+
+@dataclass(frozen=True, eq=False)
+class State:
+    """What has been learned so far."""
+
+    detection: tuple[DetectionCurve, ...]
+    relation: tuple[StrengthRelation, ...]
+    null: Null
+    offsets: np.ndarray
+    offset_errors: np.ndarray
+    error_scale: float
+    velocity_shift: np.ndarray
+
+
+@dataclass(frozen=True, eq=False)
+class Solution:
+    """Marginals over the pairs with the learned state.
+
+    feature, entry: (p,) the pairs; probability: (p,); unlisted: (f,); missing: per entry;
+    offset_sigma: (p,) position offset in sigma; groups: shares per entry;
+    strength: (n,) predicted strengths with species offsets
+    """
+
+    problem: Problem
+    feature: np.ndarray
+    entry: np.ndarray
+    probability: np.ndarray
+    unlisted: np.ndarray
+    missing: np.ndarray
+    offset_sigma: np.ndarray
+    groups: Groups
+    strength: np.ndarray
+    state: State
+    log_likelihood: float
+
+
+def solve_mixture(problem: Problem, rounds: int = ROUNDS, progress=None) -> Solution:
+    """Run the engine; an empty problem gives an empty solution."""
+    state = _first_state(problem)
+    pairs = _Pairs(problem, state)
+    for turn in range(rounds):
+        if progress is not None:
+            progress.report("weighing claims", turn / rounds)
+        step = _expect(problem, pairs, state)
+        state = _learn(problem, pairs, step, state, turn)
+    return _finish(problem, pairs, _expect(problem, pairs, state), state)
+
+
+def _first_state(problem: Problem) -> State:
+    f = problem.features
+    curves = tuple(threshold_form(0.9, 0.0) for _ in range(problem.populations))
+    relations = tuple(first_relation(f.strength) for _ in range(problem.populations))
+    null = learn_null(f, np.full(len(f), 0.1), problem.length(), problem.complete)
+    zero = np.zeros(problem.species)
+    return State(curves, relations, null, zero, zero + 0.4, 1.0, np.zeros(0))
+
+
+class _Pairs:
+    """Pairs and everything about them that stays fixed over the rounds."""
+
+    def __init__(self, problem: Problem, state: State):
+        f, e = problem.features, problem.entries
+        self.base = np.hypot(f.error, CENTRING * np.nan_to_num(f.fwhm))
+        reach = 3.5 * np.maximum(TAIL_FACTOR * 1.5 * self.base, TAIL_FLOOR)
+        self.feature, self.entry = find_pairs(f, e, np.minimum(reach, 12 * self.base + 0.25))
+        self.covered = inside(e.wave, problem.coverage).astype(float)
+        self.m = f.strength[self.feature]
+
+
+@dataclass(frozen=True, eq=False)
+class _Step:
+    groups: Groups
+    strength: np.ndarray
+    marginals: Marginals
+    sigma: np.ndarray
+    offset: np.ndarray
+    log_likelihood: float
+
+
+def _expect(problem: Problem, pairs: _Pairs, state: State) -> _Step:
+    e, f = problem.entries, problem.features
+    strength = e.strength + state.offsets[e.species]
+    groups = group(e.wave, strength, e.sign, problem.group_half_width)
+    shows = _per_population(e.population, groups.total, state.detection) * groups.share
+    position, sigma, offset = _position(problem, pairs, state, groups)
+    strengths = _strength_likelihood(problem, pairs, state, groups)
+    density, p0 = state.null.at(f.sign, f.strength)
+    likelihood = shows[pairs.entry] * position * strengths
+    absent = 1.0 - shows[pairs.entry] * pairs.covered[pairs.entry] if problem.complete else 1.0
+    odds = likelihood / (absent * (density * p0)[pairs.feature])
+    marginals = associate(pairs.feature, pairs.entry, odds, (len(f), len(e)))
+    total = np.bincount(pairs.feature, likelihood, len(f)) + density * p0
+    value = float(np.sum(np.log(total))) - float(np.sum(shows * pairs.covered))
+    return _Step(groups, strength, marginals, sigma, offset, value)
+
+
+def _per_population(population, value, curves):
+    out = np.zeros(len(value))
+    for k, curve in enumerate(curves):
+        here = population == k
+        if np.any(here):
+            out[here] = curve(value[here])
+    return out
+
+
+def _position(problem, pairs, state, groups):
+    """Position likelihood per pair: the line's own place, or its blend's centroid."""
+    e, f = problem.entries, problem.features
+    sigma = np.hypot(pairs.base[pairs.feature] * state.error_scale, e.error[pairs.entry])
+    x = f.wave[pairs.feature]
+    own = x - e.wave[pairs.entry]
+    blend = x - groups.centroid[pairs.entry]
+    value = 0.5 * (_tailed(own, sigma) + _tailed(blend, sigma))
+    nearer = np.where(np.abs(blend) < np.abs(own), blend, own)
+    return value, sigma, nearer / sigma
+
+
+def _tailed(offset, sigma):
+    wide = np.maximum(TAIL_FACTOR * sigma, TAIL_FLOOR)
+    return (1 - TAIL_SHARE) * _normal(offset, sigma) + TAIL_SHARE * _normal(offset, wide)
+
+
+def _normal(x, s):
+    return np.exp(-0.5 * (x / s) ** 2) / (s * np.sqrt(2 * np.pi))
+
+
+def _strength_likelihood(problem, pairs, state, groups):
+    """Density of the measured strength given the line's group; 1 where not measured."""
+    e = problem.entries
+    total, value = groups.total[pairs.entry], np.ones(len(pairs.entry))
+    error = problem.features.strength_err[pairs.feature]
+    for k, relation in enumerate(state.relation):
+        here = (e.population[pairs.entry] == k) & np.isfinite(pairs.m)
+        s = np.hypot(relation.scatter, np.nan_to_num(error[here]))
+        z = pairs.m[here] - relation(total[here])
+        value[here] = (1 - STRENGTH_TAIL) * _normal(z, s) + STRENGTH_TAIL / STRENGTH_RANGE
+    return value
+
+
+def _learn(problem, pairs, step: _Step, state: State, turn: int) -> State:
+    e, f = problem.entries, problem.features
+    p = step.marginals.pair
+    seen = np.bincount(pairs.entry, p, len(e))
+    exposure = np.maximum(step.groups.share * pairs.covered, seen)
+    detection, relation = list(state.detection), list(state.relation)
+    total = step.groups.total
+    for k in range(problem.populations):
+        here = (e.population == k) & (pairs.covered > 0)
+        features = float(np.sum(seen[here]))
+        detection[k] = learn_detection(total[here], seen[here], exposure[here], features)
+        mine = e.population[pairs.entry] == k
+        relation[k] = learn_relation(
+            total[pairs.entry[mine]], pairs.m[mine], p[mine], relation[k]
+        )
+    state = replace(
+        state,
+        detection=tuple(detection),
+        relation=tuple(relation),
+        null=learn_null(f, step.marginals.unlisted, problem.length(), problem.complete),
+        error_scale=_error_scale(step, pairs, state.error_scale),
+    )
+    return _learn_offsets(problem, pairs, step, state) if turn >= 1 else state
+
+
+def _error_scale(step: _Step, pairs: _Pairs, previous: float) -> float:
+    """Robust scale of confident offsets, in units of their present sigma."""
+    sure = step.marginals.pair > 0.9
+    if np.sum(sure) < 15:
+        return previous
+    scale = 1.4826 * float(np.median(np.abs(step.offset[sure])))
+    return float(np.clip(previous * scale, 0.6, 4.0))
+
+
+def _learn_offsets(problem, pairs, step: _Step, state: State) -> State:
+    e = problem.entries
+    p = step.marginals.pair
+    seen = np.bincount(pairs.entry, p, len(e))
+    share = step.groups.share
+    exposure = share * pairs.covered if problem.complete else seen
+    table = np.zeros((problem.species, 1))
+    for k in range(problem.populations):
+        here = e.population == k
+        value = detection_log_likelihood(
+            e.strength[here],
+            (seen * share)[here],
+            (exposure * share)[here],
+            e.species[here],
+            problem.species,
+            state.detection[k],
+        )
+        mine = (e.population[pairs.entry] == k) & np.isfinite(pairs.m) & (p > 0.05)
+        who = pairs.entry[mine]
+        relation = state.relation[k]
+        value = value + strength_log_likelihood(
+            pairs.m[mine] - relation(e.strength[who]),
+            relation.slope(step.strength[who]),
+            max(relation.scatter, 0.2),
+            p[mine] * share[who],
+            e.species[who],
+            problem.species,
+        )
+        table = table + value
+    mean, error = best_offsets(table)
+    return replace(state, offsets=mean, offset_errors=error)
+
+
+def _finish(problem, pairs, step: _Step, state: State) -> Solution:
+    return Solution(
+        problem,
+        pairs.feature,
+        pairs.entry,
+        step.marginals.pair,
+        step.marginals.unlisted,
+        step.marginals.missing,
+        step.offset,
+        step.groups,
+        step.strength,
+        state,
+        step.log_likelihood,
+    )

@@ -1,0 +1,108 @@
+"""Predicted lines of each velocity component, on strength scales of their own.
+
+A population is a set of lines whose predicted strengths are comparable: the star's
+absorption lines, telluric lines, interstellar lines, a nebula's emission lines, the sky's.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..lines.catalogue import ORIGINS, LineCatalogue
+from ..spectra.medium import C_KM_S
+from .entries import ABSORPTION, EMISSION, Entries, join
+from .problem import inside
+
+STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY = range(5)
+POPULATIONS = ("stellar", "telluric", "interstellar", "nebular", "sky")
+SIGNS = (ABSORPTION, ABSORPTION, ABSORPTION, EMISSION, EMISSION)
+DEEPEST = 3.2  # dex below the weakest detectable line: beyond it a line cannot matter
+
+
+@dataclass(frozen=True)
+class Component:
+    """A velocity at which lines of one population stand; km/s; ``log_ratio`` is the flux
+    share of a second star in dex."""
+
+    population: int
+    velocity: float
+    error: float = 0.0
+    log_ratio: float = 0.0
+
+    @property
+    def origin(self) -> str:
+        return POPULATIONS[self.population]
+
+
+def strengths(catalogue: LineCatalogue, population: int, absorption):
+    """log10 strength of every catalogue row in ``population``; NaN where it has none.
+
+    absorption: Saha-Boltzmann strengths of the rows (lines.strengths).
+    """
+    origin = catalogue.origin
+    nothing = np.full(len(catalogue), np.nan)
+    if population == STELLAR:
+        return np.where(origin == ORIGINS.index("stellar"), absorption, nothing)
+    if population == TELLURIC:
+        return np.where(
+            origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref) + 2.0, nothing
+        )
+    if population == NEBULAR:
+        return np.where(origin == ORIGINS.index("nebular"), catalogue.emission, nothing)
+    if population == SKY:
+        here = origin == ORIGINS.index("sky")
+        return np.where(here, np.nan_to_num(catalogue.emission), nothing)
+    here = origin == ORIGINS.index("interstellar")
+    return np.where(here, np.nan_to_num(catalogue.loggf) - 0.5, nothing)
+
+
+def zero_point(strength, observed, coverage, features: int) -> float:
+    """The ``features``-th strongest line inside coverage: a first detection threshold."""
+    usable = strength[inside(observed, coverage) & np.isfinite(strength)]
+    if len(usable) == 0 or features == 0:
+        return 0.0
+    ranked = np.sort(usable)[::-1]
+    return float(ranked[min(max(features, 5), len(ranked)) - 1])
+
+
+def predict(catalogue, absorption, component: Component, index: int, context) -> Entries:
+    """Entries of one component.
+
+    context: (coverage (k, 2), features by sign, number of species names).
+    """
+    coverage, counts, species_count = context
+    strength = strengths(catalogue, component.population, absorption) + component.log_ratio
+    factor = 1.0 + component.velocity / C_KM_S
+    observed = catalogue.wave * factor
+    if component.population in (STELLAR, NEBULAR):
+        sign = SIGNS[component.population]
+        strength = strength - zero_point(strength, observed, coverage, counts[int(sign < 0)])
+    near = inside(observed, coverage + np.array([-2.0, 2.0]))
+    rows = np.nonzero(near & (strength > -DEEPEST))[0]
+    error = np.hypot(catalogue.wave_err[rows], observed[rows] * component.error / C_KM_S)
+    return Entries(
+        observed[rows],
+        error,
+        np.asarray(strength[rows], dtype=float),
+        np.full(len(rows), component.population),
+        np.full(len(rows), SIGNS[component.population]),
+        catalogue.species[rows] + component.population * species_count,
+        np.full(len(rows), index),
+        rows,
+    )
+
+
+def assemble(catalogue, absorption, components, coverage, counts) -> Entries:
+    """All entries of all components.
+
+    coverage: (k, 2) vacuum Angstrom in the spectrum's frame, merged and ascending;
+    counts: (absorption features, emission features).
+    """
+    context = (coverage, counts, len(catalogue.species_names))
+    parts = [
+        predict(catalogue, absorption, component, i, context)
+        for i, component in enumerate(components)
+    ]
+    return join(parts)
