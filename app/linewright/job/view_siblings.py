@@ -1,0 +1,123 @@
+"""The strongest other lines of a species, cut out of a spectrum in velocity space."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..lines.catalogue import LineCatalogue
+from ..session.model import Session
+from ..spectra.medium import C_KM_S, to_medium
+from ..spectra.spectrum import Spectrum
+
+
+@dataclass(frozen=True, eq=False)
+class SiblingStrip:
+    """wave: rest wavelength in the spectrum's own medium, Angstrom
+    velocity: km/s about the expected place, shape (n,); flux over continuum, shape (n,)
+    feature: number of the feature claimed there, or None; predicted depth 0-1
+    """
+
+    wave: float
+    velocity: np.ndarray
+    flux: np.ndarray
+    feature: int | None
+    predicted: float
+
+
+def sibling_strips(
+    spectrum: Spectrum,
+    session: Session,
+    catalogue: LineCatalogue,
+    depth: np.ndarray,
+    species: str,
+    velocity: float,
+    count: int = 6,
+) -> list[SiblingStrip]:
+    """Up to ``count`` strips, strongest predicted lines first chosen, shown by wavelength.
+
+    depth: predicted depth of every catalogue line, shape (len(catalogue),)
+    Lines outside the samples, or where most samples are masked, are passed over.
+    """
+    if species not in catalogue.species_names:
+        return []
+    code = catalogue.species_names.index(species)
+    rows = _within(spectrum, catalogue, np.nonzero(catalogue.species == code)[0], velocity)
+    strength = np.nan_to_num(np.asarray(depth)[rows], nan=0.0)
+    half = half_width(session, float(np.median(catalogue.wave[rows])) if len(rows) else 5000.0)
+    strips: list[tuple] = []
+    for row in rows[np.argsort(-strength, kind="stable")]:
+        wave = float(catalogue.wave[row])
+        if any(abs(wave - s[0]) / wave * C_KM_S < half / 2 for s in strips):
+            continue
+        cut = _cut(spectrum, session, wave, velocity, half)
+        if cut is not None:
+            strips.append((wave, *cut, float(depth[row])))
+        if len(strips) == count:
+            break
+    return [_finished(spectrum, session, s, velocity, species) for s in sorted(strips, key=_first)]
+
+
+def _within(spectrum: Spectrum, catalogue: LineCatalogue, rows, velocity: float):
+    """Rows whose lines fall inside the spectrum's whole range."""
+    low = min(s.wave[0] for s in spectrum.segments)
+    high = max(s.wave[-1] for s in spectrum.segments)
+    expected = catalogue.wave[rows] * (1.0 + velocity / C_KM_S)
+    return rows[(expected > low) & (expected < high)]
+
+
+def _first(strip) -> float:
+    return strip[0]
+
+
+def half_width(session: Session, wave: float) -> float:
+    """km/s shown on either side: five line widths, 60 to 600."""
+    fwhm = session.features.fwhm
+    known = fwhm[np.isfinite(fwhm)] if len(fwhm) else fwhm
+    if not len(known):
+        return 80.0
+    return float(np.clip(5.0 * np.median(known) / wave * C_KM_S, 60.0, 600.0))
+
+
+def _cut(spectrum, session, wave, velocity, half):
+    centre = wave * (1.0 + velocity / C_KM_S)
+    reach = centre * half / C_KM_S
+    for k, segment in enumerate(spectrum.segments):
+        first, last = np.searchsorted(segment.wave, [centre - reach, centre + reach])
+        if last - first < 5 or segment.wave[0] > centre or segment.wave[-1] < centre:
+            continue
+        good = ~segment.mask[first:last] & np.isfinite(segment.flux[first:last])
+        if good.mean() < 0.7:
+            continue
+        x = segment.wave[first:last]
+        flux = np.where(good, segment.flux[first:last], np.nan) / _level(session, k, x, segment)
+        return C_KM_S * (x / centre - 1.0), flux
+    return None
+
+
+def _level(session: Session, k: int, x: np.ndarray, segment) -> np.ndarray:
+    if k < len(session.continuum) and len(session.continuum[k].wave):
+        nodes = session.continuum[k]
+        return np.interp(x, nodes.wave, nodes.value)
+    first, last = np.searchsorted(segment.wave, [x[0], x[-1]])
+    level = np.nanpercentile(segment.flux[first : last + 1], 95)
+    return np.full(len(x), level if level > 0 else 1.0)
+
+
+def _finished(spectrum, session, strip, velocity, species) -> SiblingStrip:
+    wave, v, flux, predicted = strip
+    own = float(to_medium(wave, spectrum.medium))
+    number = _feature_there(session, wave * (1.0 + velocity / C_KM_S), species)
+    return SiblingStrip(own, v, flux, number, predicted)
+
+
+def _feature_there(session: Session, expected: float, species: str) -> int | None:
+    f = session.features
+    if not len(f):
+        return None
+    reach = np.fmax(np.nan_to_num(0.5 * f.fwhm), 0.03)
+    near = np.nonzero(np.abs(f.wave - expected) <= reach)[0]
+    claimed = [i for i in near if session.claims[i].species == species]
+    chosen = claimed or list(near)
+    return int(f.number[chosen[0]]) if chosen else None

@@ -1,0 +1,1 @@
+"""The window: shows what the core computes and passes a person's acts back to it."""

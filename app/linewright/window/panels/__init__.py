@@ -1,0 +1,1 @@
+"""The panels of the window; none knows another, all share the workbench."""

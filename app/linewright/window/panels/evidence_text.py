@@ -1,0 +1,73 @@
+"""The sentences of the Evidence panel."""
+
+from __future__ import annotations
+
+import math
+
+from ...job.view_reasons import Reasons
+from ...session.model import Candidate, Claim, Session
+from ...spectra.medium import to_medium
+from . import words
+
+EMPTY = (
+    "Evidence explains one feature: what made it, and why.\n\n"
+    "Click a feature in the spectrum or a row of the Ledger. A click on a bare trough or "
+    "peak measures it."
+)
+NO_CANDIDATES = "No catalogue line comes near this feature at the present velocity."
+HAND_PICKED = "Picked by hand. Press F5 to solve and weigh its candidates."
+
+
+def heading(session: Session, row: int) -> str:
+    f = session.features
+    wave = float(to_medium(f.wave[row], session.spectrum.medium))
+    depth = words.number(f.depth[row], 2)
+    ew = words.with_error(f.ew[row], f.ew_err[row], 1)
+    parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", f"EW {ew} mÅ" if ew else ""]
+    return "   ".join(p for p in parts if p)
+
+
+def verdict(claim: Claim) -> str:
+    """What is claimed, how firmly and by whom."""
+    said = claim.species or "no claim"
+    parts = [f"{words.standing(claim.standing)}: {said}", f"by {claim.by}"]
+    if claim.blend:
+        names = dict.fromkeys(f"{s} {share:.0%}" if math.isfinite(share) else s
+                              for s, _w, share in claim.blend)
+        parts.append("blended with " + ", ".join(names))
+    if claim.origin not in ("stellar", "unknown"):
+        parts.append(claim.origin)
+    if claim.locked:
+        parts.append("kept when solved again")
+    if claim.flags:
+        parts.append(f"flags: {claim.flags}")
+    return " · ".join(parts)
+
+
+def candidate_name(candidate: Candidate, medium: str) -> str:
+    return f"{candidate.species} {float(to_medium(candidate.wave, medium)):.3f}"
+
+
+def candidate_numbers(candidate: Candidate, depth: float) -> str:
+    offset = words.number(candidate.offset_sigma, 1, True)
+    seen = words.number(depth, 2)
+    predicted = words.number(candidate.depth_predicted, 2)
+    parts = [
+        f"offset {offset} σ" if offset else "",
+        f"depth {seen}, predicted {predicted}" if seen and predicted else "",
+        f"share {candidate.share:.2f}" if 0 <= candidate.share < 0.995 else "",
+    ]
+    return " · ".join(p for p in parts if p)
+
+
+def line_facts(candidate: Candidate) -> str:
+    low, gf = words.number(candidate.e_low, 2), words.number(candidate.loggf, 2, True)
+    parts = [f"E_low {low} eV" if low else "", f"log gf {gf}" if gf else "",
+             f"source {candidate.source}" if candidate.source else ""]
+    return " · ".join(p for p in parts if p)
+
+
+def why(reasons: Reasons) -> str:
+    """One line a reason; + speaks for the candidate, − against it."""
+    lines = [f"+ {r}" for r in reasons.for_it] + [f"− {r}" for r in reasons.against]
+    return "\n".join(lines)

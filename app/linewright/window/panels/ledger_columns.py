@@ -1,0 +1,62 @@
+"""The Ledger's columns as arrays and texts over one session."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ...session.model import STANDINGS, Session
+from ...spectra.medium import C_KM_S, to_medium
+from . import words
+from .column_model import Column
+
+
+class LedgerArrays:
+    """The numbers behind the Ledger, in the spectrum's own medium; length n of features."""
+
+    def __init__(self, session: Session):
+        f, claims = session.features, session.claims
+        self.features, self.claims = f, claims
+        self.wave = to_medium(f.wave, session.spectrum.medium)
+        lab = np.array([c.line.wave if c.line else np.nan for c in claims], dtype=float)
+        self.lab = to_medium(lab, session.spectrum.medium) if len(lab) else lab
+        self.velocity = C_KM_S * (f.wave / lab - 1.0) if len(lab) else lab
+        self.species = np.array([shown_species(c) for c in claims], dtype=object)
+        self.probability = np.array([c.probability for c in claims], dtype=float)
+        self.standing = np.array([STANDINGS.index(c.standing) for c in claims], dtype=int)
+        self.by = np.array([c.by for c in claims], dtype=object)
+        self.note = np.array([c.note for c in claims], dtype=object)
+
+
+def shown_species(claim) -> str:
+    """The claim in the trade's notation, with what it is blended with."""
+    others = [s for s, _wave, _share in claim.blend if s != claim.species]
+    return " + ".join([claim.species, *dict.fromkeys(others)]) if claim.species else ""
+
+
+def ledger_columns(a: LedgerArrays) -> list[Column]:
+    """wavelength, claim, laboratory, velocity, depth, EW, probability, standing, by, note"""
+    f = a.features
+    return [
+        Column("wavelength (Å)", "Fitted centre and its error, in the spectrum's own medium",
+               lambda i: words.with_error(a.wave[i], f.wave_err[i], 3), lambda: a.wave, True, 136),
+        Column("claim", "The species said to make this feature; after + what is blended in",
+               lambda i: a.species[i], lambda: a.species.astype(str), False, 112),
+        Column("laboratory (Å)", "Laboratory wavelength of the claimed line, same medium",
+               lambda i: words.number(a.lab[i], 3), lambda: a.lab, True, 102),
+        Column("velocity (km/s)", "c (λ/λ laboratory − 1) in vacuum, receding positive",
+               lambda i: words.number(a.velocity[i], 2, True), lambda: a.velocity, True, 104),
+        Column("depth", "(continuum − flux)/continuum at the centre; negative in emission",
+               lambda i: words.number(f.depth[i], 3), lambda: f.depth, True, 70),
+        Column("EW (mÅ)", "Equivalent width and its error; negative in emission",
+               lambda i: words.with_error(f.ew[i], f.ew_err[i], 1), lambda: f.ew, True, 120),
+        Column("probability", "That the claimed species is the main contributor",
+               lambda i: words.probability(a.probability[i]) if a.species[i] else "",
+               lambda: a.probability, True, 86),
+        Column("standing", "firm from 0.95, likely from 0.80, tentative from 0.50; "
+               "a person's act stands above the machine's",
+               lambda i: words.standing(STANDINGS[a.standing[i]]), lambda: a.standing, False, 104),
+        Column("by", "Who said it: machine or person",
+               lambda i: a.by[i], lambda: a.by.astype(str), False, 76),
+        Column("note", "Your note on this feature",
+               lambda i: a.note[i], lambda: a.note.astype(str), False, 160),
+    ]

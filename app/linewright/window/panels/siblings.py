@@ -1,0 +1,68 @@
+"""Siblings: the other lines that must be there too, each a strip in velocity space."""
+
+from __future__ import annotations
+
+from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+
+from ...job.view_siblings import sibling_strips
+from ..plot import SiblingStrips, Strip
+
+TIP = (
+    "If the candidate is right, its strongest other lines must be in the spectrum as well. "
+    "Each strip is centred on where one is expected; click it to go there."
+)
+
+
+class SiblingsBox(QWidget):
+    """Title and strips of the candidate under consideration."""
+
+    def __init__(self, workbench, parent=None):
+        super().__init__(parent)
+        self._workbench, self._found, self._shown = workbench, [], None
+        self.title, self.strips = QLabel("Siblings"), SiblingStrips()
+        self.title.setObjectName("heading")
+        self.title.setToolTip(TIP)
+        self.strips.setAccessibleName("Siblings strips")
+        self.strips.setMinimumHeight(90)
+        box = QVBoxLayout(self)
+        box.setContentsMargins(8, 2, 8, 4)
+        box.setSpacing(2)
+        box.addWidget(self.title)
+        box.addWidget(self.strips, 1)
+        self.strips.stripActivated.connect(self._go)
+
+    def clear(self) -> None:
+        self._found, self._shown = [], None
+        self.title.setText("Siblings")
+        self.strips.set_strips([], self._workbench.theme.accent)
+
+    def show_candidate(self, session, candidate) -> None:
+        bench = self._workbench
+        ready = candidate is not None and bench.catalogue is not None and bench.depth is not None
+        if not ready or bench.spectrum is None:
+            self.clear()
+            return
+        shown = (candidate.species, bench.view.now.velocity, id(session), id(bench.depth),
+                 bench.theme.name)
+        if shown == self._shown:
+            return
+        self._shown = shown
+        velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
+        self._found = sibling_strips(
+            bench.spectrum, session, bench.catalogue, bench.depth, candidate.species, velocity)
+        self.title.setText(
+            f"Siblings of {candidate.species}" if self._found else
+            f"No sibling of {candidate.species} falls inside this spectrum")
+        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s)) for s in self._found]
+        self.strips.set_strips(strips, bench.theme.colour(candidate.species, candidate.origin))
+
+    def _go(self, index: int) -> None:
+        strip = self._found[index]
+        if strip.feature is not None:
+            self._workbench.view.select(strip.feature)
+        else:
+            self._workbench.look_at(strip.wave)
+
+
+def _note(strip) -> str:
+    return "seen" if strip.feature is not None else "not seen"

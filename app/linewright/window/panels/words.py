@@ -1,0 +1,39 @@
+"""How numbers and standings are written everywhere in the window."""
+
+from __future__ import annotations
+
+import math
+
+GLYPHS = {
+    "firm": "●",
+    "likely": "◕",
+    "tentative": "◑",
+    "unclaimed": "○",
+    "set aside": "⊗",
+}
+
+
+def number(value: float, digits: int, signed: bool = False) -> str:
+    """A number with a true minus sign; an empty cell where it was not measured."""
+    if value is None or not math.isfinite(value):
+        return ""
+    text = f"{value:+.{digits}f}" if signed else f"{value:.{digits}f}"
+    return text.replace("-", "−")
+
+
+def with_error(value: float, error: float, digits: int) -> str:
+    text = number(value, digits)
+    return f"{text} ± {number(error, digits)}" if text and math.isfinite(error) else text
+
+
+def standing(name: str) -> str:
+    return f"{GLYPHS.get(name, '?')} {name}"
+
+
+def probability(value: float) -> str:
+    """Two digits; never 1.00 for what is not certain."""
+    if not math.isfinite(value):
+        return ""
+    if 0.995 <= value < 1.0:
+        return "> 0.99"
+    return "< 0.01" if 0.0 < value < 0.005 else f"{value:.2f}"
