@@ -1,0 +1,1 @@
+"""What is known about one spectrum: the session, its edits and its file."""
