@@ -1,0 +1,155 @@
+"""FITS files: which HDU holds the spectrum, and what its headers state."""
+
+from __future__ import annotations
+
+import re
+import warnings
+
+import numpy as np
+
+from ..errors import InputRefused
+from .columns import ColumnInfo
+from .fits_images import Image, from_companions, from_header, images_of
+from .opening import Opened, check_fits_header
+from .raw import Card, Raw, Wanted
+from .tables import TableView, raw_from_table
+
+def _cards(header) -> list[Card]:
+    return [Card(c.keyword, c.value, c.comment) for c in header.cards]
+
+
+def _statements(hdus, index: int) -> tuple[Card, ...]:
+    own = _cards(hdus[index].header) if index else []
+    stated = {c.key for c in own if c.key not in ("", "COMMENT", "HISTORY")}
+    return tuple([c for c in _cards(hdus[0].header) if c.key not in stated] + own)
+
+
+def _table_view(hdus, index: int) -> TableView:
+    hdu = hdus[index]
+    header, columns = hdu.header, hdu.columns
+    infos = []
+    for number, column in enumerate(columns, start=1):
+        dtype = hdu.data.dtype[number - 1] if hdu.data is not None else np.dtype("f8")
+        length = int(np.prod(dtype.shape, dtype=int)) if dtype.shape else 1
+        variable = str(column.format).lstrip("0123456789")[:1] in ("P", "Q")
+        infos.append(ColumnInfo(
+            column.name, str(column.unit or ""), str(header.get(f"TUCD{number}", "")),
+            str(header.get(f"TUTYP{number}", "")), str(header.comments[f"TTYPE{number}"]),
+            2 if variable else length, variable or dtype.base.kind in "biuf",
+        ))
+    name = f" '{hdu.name}'" if hdu.name else ""
+    model = str(header.get("VOCLASS", "") or hdus[0].header.get("VOCLASS", "")).upper()
+    return TableView(
+        f"FITS table, HDU {index}{name}", infos, len(hdu.data),
+        lambda i: hdu.data.field(i), _statements(hdus, index),
+        str(header.get("BUNIT", "") or hdus[0].header.get("BUNIT", "")),
+        iv_spectrum="SPECTRUM" in model or any(i.utype.lower().count("spectralaxis")
+                                               for i in infos),
+    )
+
+
+def _from_image(hdus, images: list[Image], index: int, wanted: Wanted, what) -> Raw | None:
+    image = next((i for i in images if i.index == index), None)
+    if image is None:
+        return None
+    asked = wanted.hdu is not None
+    if not asked and image.role not in ("flux", ""):
+        return None
+    return from_companions(image, images, wanted, what) or from_header(
+        image, images, hdus, wanted, what)
+
+
+def _candidate(hdus, images, index: int, wanted: Wanted, what) -> Raw | None:
+    hdu = hdus[index]
+    if getattr(hdu, "columns", None) is not None and not hdu.is_image:
+        return raw_from_table(_table_view(hdus, index), wanted, what)
+    raw = _from_image(hdus, images, index, wanted, what)
+    if raw is None:
+        return None
+    unit = re.sub(r"^[A-Za-z ]+\((.*)\)$", r"\1", str(hdu.header.get("BUNIT", "")).strip())
+    return Raw(raw.segments, raw.unit, raw.layout, unit, "", raw.axis_medium,
+               _statements(hdus, index), raw.warnings)
+
+
+def _first(hdus, wanted: Wanted, what) -> tuple[int, Raw]:
+    """(HDU index, Raw) of the first HDU that holds a spectrum, or of the one asked for."""
+    images, refusals = images_of(hdus), []
+    order = range(len(hdus)) if wanted.hdu is None else [wanted.hdu]
+    for index in order:
+        try:
+            raw = _candidate(hdus, images, index, wanted, what)
+        except InputRefused as refusal:
+            if wanted.hdu is not None:
+                raise
+            refusals.append(refusal)
+            continue
+        if raw is not None:
+            return index, raw
+    if refusals:
+        raise refusals[0]
+    where = "no HDU" if wanted.hdu is None else f"HDU {wanted.hdu}"
+    if len(hdus) == 1 and not hdus[0].shape:
+        raise InputRefused(what, "is a FITS header without data", "give the file with its data")
+    raise InputRefused(what, f"{where} holds a spectrum with a wavelength axis or column",
+                       "choose with --hdu or --columns, or save wavelength and flux as a table")
+
+
+def _others(hdus, chosen: int) -> int:
+    """Other table HDUs shaped like the chosen one (single exposures and the like)."""
+    names = getattr(hdus[chosen], "columns", None)
+    if names is None:
+        return 0
+    wave_like = set(names.names[:2])
+    return sum(1 for i, h in enumerate(hdus) if i != chosen and getattr(h, "columns", None)
+               is not None and not h.is_image and wave_like <= set(h.columns.names))
+
+
+def _check_complete(hdus, opened: Opened) -> None:
+    for index, hdu in enumerate(hdus):
+        info = hdu.fileinfo()
+        if not info:
+            continue
+        end = info["datLoc"] + (hdu.size or 0)
+        if end > opened.size:
+            raise InputRefused(
+                opened.path, f"is truncated or has a false size: HDU {index} needs {end} bytes, "
+                f"the file has {opened.size}", "fetch the file again")
+
+
+def _check_hdu(hdus, hdu: int | None, what) -> None:
+    if hdu is not None and not 0 <= hdu < len(hdus):
+        raise InputRefused(what, f"has no HDU {hdu} (HDUs 0 to {len(hdus) - 1})",
+                           "choose with --hdu")
+
+
+def read_fits(opened: Opened, wanted: Wanted) -> Raw:
+    """The spectrum of a FITS file (arrays copied, the file closed).
+
+    Raises InputRefused when no HDU holds one or the file is incomplete.
+    """
+    check_fits_header(opened)
+    from astropy.io import fits
+
+    source = opened.path if opened.data is None else opened.stream()
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        with fits.open(source, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
+            _check_complete(hdus, opened)
+            _check_hdu(hdus, wanted.hdu, opened.path)
+            index, raw = _first(hdus, wanted, opened.path)
+            others = _others(hdus, index)
+            layout = raw.layout + (f"; {others} more HDUs of this kind (choose with --hdu)"
+                                   if others and wanted.hdu is None else "")
+            name = str(hdus[index].header.get("OBJECT", "") or hdus[0].header.get("OBJECT", ""))
+            return Raw(tuple(_copied(s) for s in raw.segments), raw.unit, layout, raw.flux_unit,
+                       name, raw.axis_medium, raw.cards, raw.warnings, {"hdu": index})
+
+
+def _copied(segment):
+    """Native-endian arrays that outlive the file."""
+    def native(array):
+        return None if array is None else np.array(array, dtype=float)
+
+    mask = None if segment.mask is None else np.array(segment.mask, dtype=bool)
+    return type(segment)(native(segment.wave), native(segment.flux),
+                         native(segment.uncertainty), mask)
