@@ -1,0 +1,50 @@
+"""H I and He II by formula with fine structure, He I from levels.
+
+Usage: python linedata/builders/hydrogen_helium.py SOURCE_DIR [--out FOLDER]
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from common import ORIGIN_CODE, pack_lines, script_arguments, write_table
+from helium import line_pairs
+from hydrogenic import HELIUM_II, HYDROGEN, centroid
+
+NAMES = ["H I", "He I", "He II"]
+KEYS = ["Hydrogenic", "NIST_ASD"]
+SHORTEST, LONGEST = 1200.0, 25000.0
+HIGHEST = {"H I": 40, "He II": 30}
+
+
+def formula_lines(ion) -> list[dict[str, float]]:
+    """Lines of a one-electron ion: gf-weighted centroids, half the gap to the level average
+    entering the error."""
+    lines = []
+    for low in range(1, 10):
+        for up in range(low + 1, HIGHEST[ion.name] + 1):
+            gross = ion.rydberg * ion.charge**2 * (1 / low**2 - 1 / up**2)
+            if not SHORTEST < 1e8 / gross < LONGEST or (ion.name == "H I" and low > 5):
+                continue
+            line = centroid(ion, low, up)
+            apart = line["wave"] - line.pop("average")
+            line["wave_err"] = float(np.hypot(4e-7 * line["wave"], 0.5 * apart) + 0.002)
+            lines.append({**line, "loggf_err": 0.01})
+    return lines
+
+
+def main() -> None:
+    arguments = script_arguments(__doc__.splitlines()[0])
+    groups = [formula_lines(HYDROGEN), line_pairs(arguments.source_dir), formula_lines(HELIUM_II)]
+    rows = [row for group in groups for row in group]
+    lines = {key: np.array([row[key] for row in rows]) for key in rows[0]}
+    sizes = [len(group) for group in groups]
+    lines["species"] = np.repeat(np.arange(3), sizes)
+    lines["source"] = np.repeat([0, 1, 0], sizes)
+    lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
+    write_table("hydrogen_helium", pack_lines(lines, NAMES, KEYS), arguments.out)
+    print(dict(zip(NAMES, sizes, strict=True)))
+
+
+if __name__ == "__main__":
+    main()
