@@ -1,0 +1,1 @@
+"""Noise, pseudo-continuum, features and their profiles."""

@@ -1,0 +1,256 @@
+"""Measure a spectrum: noise, pseudo-continuum, line width, features and their profiles."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from ..errors import InputRefused
+from ..progress import Progress
+from .continuum import fit_continuum
+from .detect import find_extrema, run_filters
+from .features import FeatureTable
+from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA
+from .groups import Trace, fit_features, group_features
+from .guess import first_guess
+from .matched import expected_false, threshold_for
+from .noise import estimate_noise
+from .options import Measurement, MeasureOptions, SegmentMeasure
+from .stretches import stretches, usable
+from .width import extrema_widths, narrow_width, width_nodes
+
+
+@dataclass(frozen=True, eq=False)
+class Prepared:
+    """A segment with all that detection needs."""
+
+    trace: Trace
+    runs: list
+    nodes: SegmentMeasure
+    flux_level: np.ndarray
+    fwhm_pixels: np.ndarray
+
+
+def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progress=None):
+    """Measure every significant peak and trough: a Measurement.
+
+    spectrum: linewright Spectrum; options: MeasureOptions; progress: Progress or None.
+    Raises InputRefused when no segment holds enough usable samples, Cancelled on cancel.
+    """
+    progress = progress or Progress()
+    warnings: list[str] = []
+    prepared = []
+    for i, segment in enumerate(spectrum.segments):
+        progress.report("measuring noise and continuum", 0.5 * i / len(spectrum.segments))
+        prepared.append(prepare(segment, options, warnings))
+    if all(p is None for p in prepared):
+        raise InputRefused(
+            spectrum.name or "spectrum", "no stretch of 30 usable samples in it",
+            "check the mask, the flux column and the ranges asked for",
+        )
+    filtered = [_filter(p) for p in prepared]
+    pieces = [piece for runs in filtered for f in runs for piece in f.pieces]
+    threshold = options.threshold or threshold_for(pieces)
+    tables = []
+    for i, (ready, runs) in enumerate(zip(prepared, filtered)):
+        progress.report("finding and fitting features", 0.6 + 0.4 * i / len(prepared))
+        if ready is not None:
+            tables.append(_features(ready, runs, threshold, i))
+    progress.report("measured", 1.0)
+    return Measurement(
+        features=_join(tables),
+        segments=tuple(p.nodes if p is not None else None for p in prepared),
+        threshold=float(threshold),
+        trials=float(sum(2 * n for n, _ in pieces)),
+        expected_false=expected_false(threshold, pieces),
+        coverage=_coverage(prepared),
+        warnings=tuple(dict.fromkeys(warnings)),
+    )
+
+
+def _chosen(segment, ranges):
+    good = usable(segment)
+    if ranges:
+        inside = np.zeros(len(good), dtype=bool)
+        for low, high in ranges:
+            inside |= (segment.wave >= low) & (segment.wave <= high)
+        good &= inside
+    return good
+
+
+def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None:
+    """Noise, continuum and width of one segment; None when it holds too little."""
+    good = _chosen(segment, options.ranges)
+    runs = [r for r in stretches(segment.wave, good) if good[r].sum() >= 30]
+    if not runs:
+        return None
+    keep = np.zeros(len(good), dtype=bool)
+    for r in runs:
+        keep[r] = good[r]
+    good = keep
+    wave = segment.wave
+    flux = np.interp(np.arange(len(wave)), np.flatnonzero(good), segment.flux[good])
+    noise = estimate_noise(flux, good, runs)
+    width = _assumed_width(wave, noise.lag, options)
+    for round_ in range(3):
+        sigma = _sigma(segment, noise, warnings if round_ == 2 else [])
+        size = _node_distance(wave, good, width)
+        centre, level, error = fit_continuum(wave, flux, good, sigma, size)
+        run = np.interp(wave, centre, level)
+        y, relative = 1.0 - flux / run, sigma / run
+        width_w, width_f = _width(wave, y, relative, good, runs, noise, options)
+        width = np.interp(wave, width_w, width_f)
+        pixels = width / np.gradient(wave)
+        if round_ < 2:
+            quiet = _quiet(y, relative, good, runs, pixels, noise)
+            longest = max(1.0, float(np.median(pixels[good])) / 3.0)
+            noise = estimate_noise(flux, good, runs, quiet, longest)
+    trace = Trace(wave, y, relative, good, width, np.interp(wave, centre, error),
+                  noise.correlation)
+    nodes = _nodes(trace, centre, level, error, pixels)
+    return Prepared(trace, runs, nodes, run, pixels)
+
+
+def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
+    at = np.unique(np.linspace(0, len(trace.wave) - 1, 200).astype(int))
+    return SegmentMeasure(
+        node_wave=centre, node_flux=level, node_err=error,
+        noise_wave=trace.wave[at], noise=trace.noise[at], correlation=trace.correlation,
+        width_wave=trace.wave[at], width=trace.width[at], width_pixels=pixels[at],
+    )
+
+
+def _assumed_width(wave, lag, options):
+    if options.resolution:
+        return wave / options.resolution
+    return np.gradient(wave) * max(3.0, 3.0 * lag)
+
+
+def _node_distance(wave, good, width):
+    """150 line widths, but at least 12 nodes over the range and 300 samples a node."""
+    typical = float(np.median(width[good]))
+    step = float(np.median(np.gradient(wave)[good]))
+    span = float(wave[good][-1] - wave[good][0])
+    return max(min(150.0 * typical, span / 12.0), 25.0 * typical, min(300 * step, span / 6.0))
+
+
+def _sigma(segment, noise, warnings):
+    """Noise in flux units: the uncertainty array where it agrees with the pixels."""
+    if segment.uncertainty is None:
+        return noise.sigma
+    given = np.where(segment.uncertainty > 0, segment.uncertainty, np.nan)
+    ratio = noise.sigma / given
+    scale = float(np.nanmedian(ratio))
+    index = np.arange(len(given))
+    fine = np.isfinite(given)
+    given = np.interp(index, index[fine], given[fine])
+    if 0.8 < scale < 1.25:
+        return given
+    warnings.append(
+        f"the uncertainty array is off by a factor {scale:.2f} against the scatter of the "
+        "samples and was rescaled"
+    )
+    return given * scale
+
+
+def _width(wave, y, noise, good, runs, model, options):
+    if options.resolution:
+        ends = wave[[0, -1]]
+        return ends, ends / options.resolution
+    found = [
+        extrema_widths(wave[r], np.where(good[r], y[r], 0.0), noise[r], max(1, model.lag))
+        for r in runs
+    ]
+    found = np.concatenate(found)
+    ends, values = width_nodes(found, wave[0], wave[-1])
+    least = 2.0 * np.gradient(wave)[[0, -1]]
+    if not np.all(np.isfinite(values)):
+        return ends, 3.0 * model.lag * least / 2.0
+    return ends, np.maximum(values, least)
+
+
+def _quiet(y, noise, good, runs, pixels, model):
+    """True where neither filter sees a feature within 1.5 widths."""
+    quiet = good.copy()
+    for r in runs:
+        f = run_filters(y[r], noise[r], good[r], pixels[r], model.correlation)
+        busy = (np.abs(f.level) > 5.0) | (np.abs(f.curve) > 4.0)
+        reach = int(1.5 * np.median(pixels[r])) + 1
+        near = np.convolve(busy, np.ones(2 * reach + 1), mode="full")[reach : reach + len(busy)]
+        quiet[r] &= near < 0.5
+    return quiet
+
+
+def _filter(ready):
+    if ready is None:
+        return []
+    t = ready.trace
+    return [
+        run_filters(t.y[r], t.noise[r], t.good[r], ready.fwhm_pixels[r], t.correlation,
+                    t.level_err[r])
+        for r in ready.runs
+    ]
+
+
+def _features(ready, filtered, threshold, segment) -> FeatureTable:
+    t = ready.trace
+    index, sign, significance, limits = [], [], [], []
+    for r, f in zip(ready.runs, filtered):
+        i, s, strength = find_extrema(f, t.good[r], threshold)
+        index.append(i + r.start)
+        sign.append(s)
+        significance.append(strength)
+        limits.append(np.tile([r.start, r.stop], (len(i), 1)))
+    index, sign, significance = map(np.concatenate, (index, sign, significance))
+    limits = np.concatenate(limits).reshape(-1, 2)
+    smooth = max(1, int(round(0.3 * np.median(ready.fwhm_pixels))))
+    start = first_guess(t, index, sign, smooth)
+    group = group_features(start[:, 1], FWHM_PER_SIGMA * np.exp(start[:, 2]), limits[:, 0])
+    fitted = fit_features(t, start, limits, group)
+    return _table(ready, fitted, sign, significance, segment)
+
+
+def _table(ready, fitted, sign, significance, segment) -> FeatureTable:
+    p, e = fitted.params, fitted.errors
+    m = len(p)
+    fwhm = FWHM_PER_SIGMA * np.exp(p[:, 2])
+    counts = np.bincount(fitted.group, minlength=1) if m else np.zeros(1, dtype=int)
+    blend = counts[fitted.group] > 1 if m else np.zeros(0, dtype=bool)
+    first = np.r_[True, np.diff(fitted.group) != 0] if m else np.zeros(0, dtype=bool)
+    start = np.maximum.accumulate(np.where(first, np.arange(m), 0)) if m else np.zeros(0, int)
+    component = np.where(blend, np.arange(m) - start + 1, 0)
+    flags = [
+        " ".join(w for w, on in (("blend", b), ("fallback", f)) if on)
+        for b, f in zip(blend, fitted.trouble)
+    ]
+    return FeatureTable(
+        number=np.arange(1, m + 1), segment=np.full(m, segment), component=component,
+        sign=sign, wave=p[:, 1], wave_err=e[:, 1], significance=significance,
+        depth=p[:, 0], depth_err=e[:, 0], fwhm=fwhm, fwhm_err=e[:, 2],
+        ew=1e3 * GAUSSIAN_AREA * p[:, 0] * fwhm, ew_err=1e3 * e[:, 3],
+        continuum=np.interp(p[:, 1], ready.trace.wave, ready.flux_level), flags=tuple(flags),
+    )
+
+
+def _join(tables) -> FeatureTable:
+    names = [n for n in FeatureTable.__dataclass_fields__ if n != "flags"]
+    columns = {n: np.concatenate([getattr(t, n) for t in tables]) for n in names}
+    flags = tuple(f for t in tables for f in t.flags)
+    table = FeatureTable(**columns, flags=flags)
+    table = table.take(np.lexsort((table.wave, table.segment)))
+    return replace(table, number=np.arange(1, len(table) + 1))
+
+
+def _coverage(prepared):
+    ranges = sorted(
+        (float(p.trace.wave[r.start]), float(p.trace.wave[r.stop - 1]))
+        for p in prepared if p is not None for r in p.runs
+    )
+    merged: list[tuple[float, float]] = []
+    for low, high in ranges:
+        if merged and low <= merged[-1][1]:
+            merged[-1] = (merged[-1][0], max(high, merged[-1][1]))
+        else:
+            merged.append((low, high))
+    return tuple(merged)

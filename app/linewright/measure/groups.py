@@ -1,0 +1,224 @@
+"""Features fitted in groups: neighbours that overlap together, the others subtracted.
+
+Features closer than about one width and a third are fitted as one sum of Gaussians; the
+rest of the spectrum is held at its present model and subtracted from the window. Three
+sweeps let groups see one another.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, spread_noise
+
+REACH = 1.3  # widths on either side of a window's outer members
+CLOSE = 1.3  # features nearer than this many mean widths share a fit
+MOST = 5  # members of a group
+LONGEST = 1500  # samples of a window
+
+
+@dataclass(frozen=True, eq=False)
+class Trace:
+    """One segment ready for fitting: vacuum wave, y = 1 - flux/continuum, noise of y,
+    usable samples, line width in Angstrom and relative continuum error, each (n,), and
+    the noise's autocorrelation."""
+
+    wave: np.ndarray
+    y: np.ndarray
+    noise: np.ndarray
+    good: np.ndarray
+    width: np.ndarray
+    level_err: np.ndarray
+    correlation: np.ndarray
+
+
+@dataclass(frozen=True, eq=False)
+class Fitted:
+    """Per feature: params (m, 3) a, c, ln s; errors (m, 4) of a, c, FWHM (Angstrom),
+    area (Angstrom); group (m,) number; trouble (m,) True where the fit failed or sits on
+    a bound; misfit (m,) reduced chi-square of the window."""
+
+    params: np.ndarray
+    errors: np.ndarray
+    group: np.ndarray
+    trouble: np.ndarray
+    misfit: np.ndarray
+
+
+def group_features(centre, fwhm, run) -> np.ndarray:
+    """Group number of each feature (sorted by wavelength), shape (m,).
+
+    centre, fwhm: Angstrom; run: stretch index of each. Groups longer than MOST are cut
+    at their widest separations.
+    """
+    m = len(centre)
+    if m == 0:
+        return np.zeros(0, dtype=int)
+    apart = np.diff(centre) / (0.5 * (fwhm[1:] + fwhm[:-1]))
+    cut = (apart > CLOSE) | (np.diff(run) != 0)
+    edges = np.r_[0, np.flatnonzero(cut) + 1, m]
+    stack = [(a, b) for a, b in zip(edges[:-1], edges[1:])]
+    group, number = np.zeros(m, dtype=int), 0
+    while stack:
+        a, b = stack.pop()
+        if b - a > MOST:
+            middle = apart[a : b - 1] + 0.0
+            middle[0] *= 0.5
+            middle[-1] *= 0.5
+            split = a + 1 + int(np.argmax(middle))
+            stack += [(split, b), (a, split)]
+            continue
+        group[a:b] = number
+        number += 1
+    return group
+
+
+def _windows(trace: Trace, first, last, centre_lo, centre_hi, rest):
+    """Windows (padded) of the samples from ``first`` to ``last`` (exclusive), (g,)."""
+    p = int((last - first).max())
+    index = first[:, None] + np.arange(p)[None, :]
+    inside = index < last[:, None]
+    index = np.minimum(index, len(trace.wave) - 1)
+    inside &= trace.good[index]
+    weight = np.where(inside, 1.0 / trace.noise[index], 0.0)
+    y = np.where(inside, trace.y[index] - rest[index], 0.0)
+    return index, Windows(trace.wave[index], y, weight)
+
+
+def component_sum(wave, params, reach: float = 5.0) -> np.ndarray:
+    """Sum of all components on the samples ``wave`` (n,), each out to ``reach`` sigma."""
+    total = np.zeros(len(wave))
+    sigma = np.exp(params[:, 2])
+    first = np.searchsorted(wave, params[:, 1] - reach * sigma)
+    last = np.searchsorted(wave, params[:, 1] + reach * sigma)
+    size = np.maximum(last - first, 0)
+    for members in _buckets(size):
+        p = int(size[members].max(initial=0))
+        if p == 0:
+            continue
+        index = first[members, None] + np.arange(p)[None, :]
+        inside = index < last[members, None]
+        index = np.minimum(index, len(wave) - 1)
+        u = (wave[index] - params[members, 1:2]) / sigma[members, None]
+        part = np.where(inside, params[members, 0:1] * np.exp(-0.5 * u * u), 0.0)
+        total += np.bincount(index.ravel(), part.ravel(), minlength=len(wave))
+    return total
+
+
+def _buckets(size, most: int = 400_000):
+    """Indices of like sizes (within a factor 1.5), at most ``most`` samples each."""
+    order = np.argsort(size, kind="stable")
+    start = 0
+    while start < len(order):
+        limit = max(1.5 * size[order[start]], size[order[start]] + 8)
+        stop = start + int(np.searchsorted(size[order[start:]], limit, side="right"))
+        stop = min(stop, start + max(1, int(most // max(limit, 1))))
+        yield order[start:stop]
+        start = stop
+
+
+def fit_features(trace: Trace, start, run_limits, group, sweeps: int = 3) -> Fitted:
+    """Fit all features of a segment.
+
+    start: (m, 3) a, c, ln s sorted by c; run_limits: (m, 2) first and last+1 sample of
+    the stretch each lies in; group: (m,) from ``group_features``.
+    """
+    params = start.copy()
+    m = len(params)
+    errors, misfit = np.full((m, 4), np.nan), np.full(m, np.nan)
+    trouble = np.zeros(m, dtype=bool)
+    members_of = np.split(np.arange(m), np.flatnonzero(np.diff(group)) + 1)
+    sizes = np.array([len(x) for x in members_of])
+    for sweep in range(sweeps):
+        total = component_sum(trace.wave, params)
+        fresh = params.copy()
+        for n in np.unique(sizes):
+            rows = np.array([x for x in members_of if len(x) == n])
+            first, last = _reach(trace, params, rows, run_limits)
+            for part in _buckets(last - first):
+                one = _Batch(trace, rows[part], first[part], last[part], start)
+                fit, windows = one.fit(params, total)
+                fresh[rows[part]] = fit.params
+                if sweep == sweeps - 1:
+                    one.finish(fit, windows, errors, misfit, trouble)
+        params = fresh
+    return Fitted(params, errors, group, trouble, misfit)
+
+
+def _reach(trace, params, rows, limits):
+    """First and last+1 sample of each group's window."""
+    fwhm = FWHM_PER_SIGMA * np.exp(params[:, 2])
+    low = (params[:, 1] - REACH * fwhm)[rows].min(axis=1)
+    high = (params[:, 1] + REACH * fwhm)[rows].max(axis=1)
+    first = np.maximum(np.searchsorted(trace.wave, low), limits[rows[:, 0], 0])
+    last = np.minimum(np.searchsorted(trace.wave, high) + 1, limits[rows[:, 0], 1])
+    return first, np.clip(last, first + 4, first + LONGEST)
+
+
+@dataclass
+class _Batch:
+    """Groups of one size and like window lengths."""
+
+    trace: Trace
+    rows: np.ndarray
+    first: np.ndarray
+    last: np.ndarray
+    start: np.ndarray
+
+    def fit(self, params, total) -> tuple[Fit, Windows]:
+        index, windows = _windows(self.trace, self.first, self.last, None, None,
+                                  np.zeros_like(total))
+        own = params[self.rows]
+        from .gauss import profiles
+
+        mine, _ = profiles(windows.x, own)
+        y = np.where(windows.weight > 0, windows.y - total[index] + mine, 0.0)
+        windows = Windows(windows.x, y, windows.weight)
+        low, high = self.bounds()
+        return fit_windows(windows, own, low, high), windows
+
+    def bounds(self):
+        begin = self.start[self.rows]
+        width = np.exp(begin[..., 2]) * FWHM_PER_SIGMA
+        narrow = self.trace.width[np.searchsorted(self.trace.wave, begin[..., 1]) - 1]
+        low, high = begin.copy(), begin.copy()
+        sign = np.sign(begin[..., 0])
+        big = 3.0 * np.abs(begin[..., 0]) + 0.05
+        low[..., 0] = np.where(sign > 0, 0.0, -big)
+        high[..., 0] = np.where(sign > 0, big, 0.0)
+        low[..., 1] -= 0.5 * width
+        high[..., 1] += 0.5 * width
+        low[..., 2] = np.log(np.minimum(0.6 * narrow, 0.8 * width) / FWHM_PER_SIGMA)
+        high[..., 2] = np.log(np.maximum(2.5 * width, 2.0 * narrow) / FWHM_PER_SIGMA)
+        return low, high
+
+    def finish(self, fit, windows, errors, misfit, trouble):
+        at = np.minimum(np.searchsorted(self.trace.wave, fit.params[:, 0, 1]),
+                        len(self.trace.wave) - 1)
+        cov = spread_noise(windows, fit, self.trace.correlation)
+        with_level = spread_noise(windows, fit, self.trace.correlation,
+                                  self.trace.level_err[at])
+        extra = with_level - cov
+        scale, reduced = self.misfit_scale(fit, windows)
+        cov = cov * scale[:, None, None] + extra
+        low, high = self.bounds()
+        edge = (np.abs(fit.params - low) < 1e-9) | (np.abs(fit.params - high) < 1e-9)
+        for j in range(self.rows.shape[1]):
+            errors[self.rows[:, j]] = lone_sensitivity(cov, fit.params, j)
+            misfit[self.rows[:, j]] = reduced
+            trouble[self.rows[:, j]] = edge[:, j].any(axis=1) | ~fit.converged
+
+    def misfit_scale(self, fit, windows):
+        """Variance scale (1 where the model fits) and reduced chi-square, each (g,).
+
+        Errors grow only where chi-square says, beyond three of its own sigmas, that
+        the shape is not a sum of Gaussians.
+        """
+        used = (windows.weight > 0).sum(axis=1)
+        length = 1.0 + 2.0 * self.trace.correlation[1:].sum()
+        free = np.maximum(used / length - 3.0 * self.rows.shape[1], 1.0)
+        reduced = fit.chi2 / np.maximum(free * length, 1.0)
+        significant = reduced > 1.0 + 3.0 * np.sqrt(2.0 / free)
+        return np.where(significant, reduced, 1.0), reduced

@@ -1,0 +1,139 @@
+"""Noise of a sample, from the pixels, where neighbours may be correlated.
+
+Stoehr et al. 2008 (ASP Conf. 394, 505) estimate the noise from second differences of
+samples two apart (DER_SNR), which is right for independent samples. Here second
+differences are taken at several lags k. For stationary noise of autocorrelation r,
+
+    var(2 F_i - F_{i-k} - F_{i+k}) = sigma^2 (6 - 8 r_k + 2 r_2k),
+
+so their robust scatter D_k rises with k up to the lag where samples are independent and
+stays there: that plateau is sigma, and the rise gives r. Lines make D_k rise further,
+which is why only the quietest blocks decide about the shape.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+MAD = 1.482602
+LAGS = tuple(range(1, 17))
+PLATEAU = 0.9
+
+
+def der_snr(flux) -> tuple[float, float]:
+    """(signal-to-noise, noise) of Stoehr et al. 2008 for independent samples, lag 2."""
+    flux = np.asarray(flux, dtype=float)
+    noise = float(np.median(np.abs(second_difference(flux, 2)))) * MAD
+    return float(np.median(flux)) / noise, noise
+
+
+def second_difference(flux: np.ndarray, lag: int) -> np.ndarray:
+    """(2 F_i - F_{i-lag} - F_{i+lag}) / sqrt(6), shape (n - 2 lag,)."""
+    return (2.0 * flux[lag:-lag] - flux[: -2 * lag] - flux[2 * lag :]) / np.sqrt(6.0)
+
+
+@dataclass(frozen=True, eq=False)
+class Noise:
+    """sigma: one sigma per sample, shape (n,); correlation: r_0 = 1, r_1, ...; lag: plateau."""
+
+    sigma: np.ndarray
+    correlation: np.ndarray
+    lag: int
+
+
+def _differences(flux, good, runs, lag):
+    """|second differences| * MAD placed on their middle sample, NaN elsewhere."""
+    out = np.full(len(flux), np.nan)
+    for run in runs:
+        if run.stop - run.start <= 2 * lag:
+            continue
+        part, ok = flux[run], good[run]
+        value = np.abs(second_difference(part, lag)) * MAD
+        fine = ok[lag:-lag] & ok[: -2 * lag] & ok[2 * lag :]
+        out[run.start + lag : run.stop - lag] = np.where(fine, value, np.nan)
+    return out
+
+
+def block_medians(values: np.ndarray, size: int, least: int) -> tuple[np.ndarray, np.ndarray]:
+    """(centre indices, medians of the finite values) of blocks of ``size`` samples.
+
+    Blocks with fewer than ``least`` finite values give NaN.
+    """
+    edges = np.linspace(0, len(values), max(1, round(len(values) / size)) + 1).astype(int)
+    medians = np.full(len(edges) - 1, np.nan)
+    for i, (a, b) in enumerate(zip(edges[:-1], edges[1:])):
+        part = values[a:b]
+        part = part[np.isfinite(part)]
+        if len(part) >= least:
+            medians[i] = np.median(part)
+    return 0.5 * (edges[:-1] + edges[1:] - 1), medians
+
+
+def quiet_profile(flux, good, runs) -> np.ndarray:
+    """D_k at LAGS, the median over the quietest quarter of blocks, shape (len(LAGS),)."""
+    table = np.array([
+        block_medians(_differences(flux, good, runs, lag), 128, 40)[1] for lag in LAGS
+    ])
+    if not np.any(np.isfinite(table)):
+        return np.full(len(LAGS), np.nan)
+    rank = np.nanmedian(table[3:8], axis=0)
+    rank = np.where(np.isfinite(rank), rank, np.inf)
+    keep = np.argsort(rank)[: max(1, int(np.isfinite(rank).sum() // 4))]
+    # ratios, so that a quiet block of low flux does not rule the others
+    relative = table[:, keep] / rank[keep]
+    return np.nanmedian(relative, axis=1) * np.nanmedian(rank[keep])
+
+
+def plateau(profile: np.ndarray, longest: float) -> int:
+    """Smallest lag whose D_k no longer rises up to twice the lag; 1 when none is found."""
+    for i, lag in enumerate(LAGS):
+        if lag > longest:
+            break
+        later = [d for k, d in zip(LAGS, profile) if lag < k <= max(2 * lag, lag + 1)]
+        if later and profile[i] >= PLATEAU * np.nanmax(later):
+            return lag
+    return 1
+
+
+def correlation_from(profile: np.ndarray, lag: int) -> np.ndarray:
+    """Autocorrelation r_0..r_lag from D_k by r_k = (6 - 6 (D_k/D_lag)^2 + 2 r_2k) / 8."""
+    if lag == 1:
+        return np.array([1.0])
+    known = dict(zip(LAGS, profile))
+    r = np.zeros(2 * lag + 1)
+    r[0] = 1.0
+    for k in range(lag - 1, 0, -1):
+        r[k] = np.clip((6.0 - 6.0 * (known[k] / known[lag]) ** 2 + 2.0 * r[2 * k]) / 8.0, 0, 0.99)
+    return r[:lag]
+
+
+def estimate_noise(flux, good, runs, quiet=None, longest=16.0) -> Noise:
+    """Local noise of one segment.
+
+    flux: any unit, shape (n,); good: usable samples; runs: slices without gaps;
+    quiet: samples free of features (None at first: all); longest: largest lag allowed
+    in samples (a third of the line width: beyond, lines look like noise).
+    """
+    free = good if quiet is None else good & quiet
+    profile = quiet_profile(flux, free, runs)
+    if not np.all(np.isfinite(profile[:2])):
+        profile = quiet_profile(flux, good, runs)
+        free = good
+    lag = plateau(profile, longest)
+    correlation = correlation_from(profile, lag)
+    used = max(lag, 2) if lag > 1 or profile[0] >= PLATEAU * profile[1] else 1
+    values = _differences(flux, free, runs, used)
+    sigma = _local(values, max(1000, 400 * lag))
+    return Noise(sigma, correlation, lag)
+
+
+def _local(values: np.ndarray, size: int) -> np.ndarray:
+    centre, medians = block_medians(values, size, min(100, max(8, size // 10)))
+    fine = np.isfinite(medians)
+    if not fine.any():
+        finite = values[np.isfinite(values)]
+        level = np.median(finite) if len(finite) else np.nan
+        return np.full(len(values), level)
+    return np.interp(np.arange(len(values)), centre[fine], medians[fine])
