@@ -10,6 +10,8 @@ Rules, stated once:
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 
 from ..errors import InputRefused
@@ -49,7 +51,7 @@ def split_stretches(wave: np.ndarray) -> list[slice] | None:
     bounds = np.concatenate(([0], cuts, [len(wave)]))
     if np.diff(bounds).min() < LONG_STRETCH:
         return None
-    return [slice(int(a), int(b)) for a, b in zip(bounds[:-1], bounds[1:])]
+    return [slice(int(a), int(b)) for a, b in itertools.pairwise(bounds)]
 
 
 def merge_repeats(wave, flux, sigma, mask):

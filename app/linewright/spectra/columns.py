@@ -99,7 +99,7 @@ def _by_utype(info: ColumnInfo) -> str:
         return "err"
     if "fluxaxis.accuracy.qualitystatus" in utype:
         return "mask"
-    if ucd.startswith("em.wl") or ucd.startswith(("em.freq", "em.energy", "em.wavenumber")):
+    if ucd.startswith(("em.wl", "em.freq", "em.energy", "em.wavenumber")):
         return "wave"
     if ucd.startswith("stat.error") and "em." in ucd or ucd.startswith("stat.error;phot.flux"):
         return "err" if "em.wl" not in ucd.split(";")[:2] else ""

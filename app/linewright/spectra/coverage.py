@@ -6,6 +6,8 @@ MASK_RUN samples or more is left out too; shorter ones are bridged, since a line
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 
 from .clean import runs_of
@@ -54,7 +56,7 @@ def segment_coverage(segment: Segment) -> list[tuple[float, float]]:
         inside = cuts[(cuts > start) & (cuts < stop)]
         bounds = [start, *inside.tolist(), stop]
         ranges += [(float(segment.wave[a]), float(segment.wave[b - 1]))
-                   for a, b in zip(bounds[:-1], bounds[1:]) if b - a >= 2]
+                   for a, b in itertools.pairwise(bounds) if b - a >= 2]
     return ranges
 
 
@@ -73,4 +75,4 @@ def coverage(spectrum: Spectrum) -> tuple[tuple[float, float], ...]:
 def gaps(spectrum: Spectrum) -> tuple[tuple[float, float], ...]:
     """The ranges between stretches of coverage, vacuum Angstrom, ascending."""
     covered = coverage(spectrum)
-    return tuple((a[1], b[0]) for a, b in zip(covered[:-1], covered[1:]))
+    return tuple((a[1], b[0]) for a, b in itertools.pairwise(covered))

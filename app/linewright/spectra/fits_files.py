@@ -14,6 +14,7 @@ from .opening import Opened, check_fits_header
 from .raw import Card, Raw, Wanted
 from .tables import TableView, raw_from_table
 
+
 def _cards(header) -> list[Card]:
     return [Card(c.keyword, c.value, c.comment) for c in header.cards]
 

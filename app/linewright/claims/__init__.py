@@ -1,0 +1,1 @@
+"""Claims: velocity, candidates, mixture, origins, roll call."""

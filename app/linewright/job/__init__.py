@@ -1,0 +1,1 @@
+"""The job: measure and claim, from spectrum to session."""

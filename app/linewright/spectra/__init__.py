@@ -1,0 +1,1 @@
+"""Spectra: reading, medium, frame, velocity, coverage."""
