@@ -170,7 +170,18 @@ def named_session(lines, medium: str = "air", spread: float = 0.2, emission: boo
             origin="stellar",
             candidates=(
                 Candidate(
-                    species, "stellar", float(w), 0.001, 1.0, -1.0, 0.0, 0.99, 1.0, 0.0, 0.5, "t"
+                    species,
+                    "stellar",
+                    float(w),
+                    0.001,
+                    1.0,
+                    -1.0,
+                    0.0,
+                    0.99,
+                    1.0,
+                    0.0,
+                    0.5,
+                    "t",
                 ),
             ),
         )

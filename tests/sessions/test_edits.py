@@ -74,6 +74,12 @@ def test_a_species_without_candidates_has_no_line_of_another(made):
     assert np.isnan(claim.line.wave) and claim.by == "person"
 
 
+def test_a_species_may_be_typed_in_short(made):
+    assert _claim(edits.set_species(made, 1, "eu2"), 1).species == "Eu II"
+    with pytest.raises(InputRefused, match="not the name"):
+        edits.set_species(made, 1, "Xyz IX")
+
+
 def test_a_species_must_agree_with_its_line(made):
     number = _with_candidates(made)
     line = _claim(made, number).candidates[0]
@@ -234,8 +240,14 @@ def test_a_history_applied_again_gives_the_same_session(made):
         ({"edit": "lock", "feature": 1, "locked": 1}, "give true or false"),
         ({"edit": "set_note", "feature": 1, "note": 3}, "give text"),
         ({"edit": "set_velocity", "km_s": "fast"}, "give a number"),
-        ({"edit": "set_species", "feature": 1, "species": "Fe I", "line": {"a": 1}}, "understood"),
-        ({"edit": "add_feature", "row": {"wave": 5e3, "sign": 1}, "claim": 3}, "named fields"),
+        (
+            {"edit": "set_species", "feature": 1, "species": "Fe I", "line": {"a": 1}},
+            "understood",
+        ),
+        (
+            {"edit": "add_feature", "row": {"wave": 5e3, "sign": 1}, "claim": 3},
+            "named fields",
+        ),
     ],
 )
 def test_commands_that_make_no_sense_are_refused(made, command, cause):

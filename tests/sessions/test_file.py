@@ -29,7 +29,10 @@ def test_everything_comes_back(saved):
     made, path = saved
     back = file.load_session(path)
     for field in fields(FeatureTable):
-        expected, found = getattr(made.features, field.name), getattr(back.features, field.name)
+        expected, found = (
+            getattr(made.features, field.name),
+            getattr(back.features, field.name),
+        )
         if field.name == "flags":
             assert expected == found
         else:

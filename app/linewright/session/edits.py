@@ -12,6 +12,7 @@ import math
 from dataclasses import replace
 
 from ..errors import InputRefused
+from ..lines.species import normal_name
 from ..spectra.medium import C_KM_S
 from .model import (
     STANDINGS,
@@ -23,7 +24,15 @@ from .model import (
 )
 from .plain import candidate_from, contributors_from, plain
 
-MACHINE_FIELDS = ("species", "standing", "origin", "blend", "runner_up", "flags", "chosen")
+MACHINE_FIELDS = (
+    "species",
+    "standing",
+    "origin",
+    "blend",
+    "runner_up",
+    "flags",
+    "chosen",
+)
 
 
 def row_of(session: Session, number: int) -> int:
@@ -32,7 +41,9 @@ def row_of(session: Session, number: int) -> int:
         return session.index_of(number)
     except KeyError:
         raise InputRefused(
-            f"feature {number}", "no such feature in this session", "see the Ledger for the numbers"
+            f"feature {number}",
+            "no such feature in this session",
+            "see the Ledger for the numbers",
         ) from None
 
 
@@ -48,7 +59,10 @@ def _edit_claim(session: Session, action: str, detail: dict, **changes) -> Sessi
     new = replace(old, **changes)
     if old.by == "machine" and new.by == "person":
         # kept beside the act, so that `restore` finds what the machine had said
-        detail = {**detail, "machine": {name: getattr(old, name) for name in MACHINE_FIELDS}}
+        detail = {
+            **detail,
+            "machine": {name: getattr(old, name) for name in MACHINE_FIELDS},
+        }
     claims = (*session.claims[:row], new, *session.claims[row + 1 :])
     return noted(session, action, detail, claims=claims)
 
@@ -92,13 +106,17 @@ def set_species(
     """Claim a species by name; its best candidate is taken when no line is given.
 
     Where the feature has no candidate of that species and no line is given, the claim
-    names the species alone (its line is a Candidate of NaN numbers).
+    names the species alone (its line is a Candidate of NaN numbers). Spellings such as
+    'fe1' are understood; InputRefused for a name that is no species.
     """
     claim = _claim(session, number)
     species = species.strip()
-    if not species or (line is not None and line.species != species):
-        cause = "no species given" if not species else f"the line belongs to {line.species}"
-        raise InputRefused(f"feature {number}", cause, "name the species, such as Fe I")
+    if not species:
+        raise InputRefused(f"feature {number}", "no species given", "name it, such as Fe I")
+    if all(species != c.species for c in (*claim.candidates, *([line] if line else ()))):
+        species = normal_name(species)
+    if line is not None and line.species != species:
+        raise InputRefused(f"feature {number}", f"the line belongs to {line.species}")
     detail = {"feature": number, "species": species, "line": line}
     chosen = line or _best_of(claim, species) or _bare_line(species)
     return _edit_claim(session, "set_species", detail, **_name_line(claim, chosen))
@@ -185,7 +203,9 @@ def set_standing(session: Session, number: int, standing: str) -> Session:
     """Set the standing by hand: one of STANDINGS."""
     if standing not in STANDINGS:
         raise InputRefused(
-            f"feature {number}", f"no standing '{standing}'", f"use {', '.join(STANDINGS)}"
+            f"feature {number}",
+            f"no standing '{standing}'",
+            f"use {', '.join(STANDINGS)}",
         )
     detail = {"feature": number, "standing": standing}
     return _edit_claim(session, "set_standing", detail, standing=standing, by="person")
@@ -200,7 +220,10 @@ def set_note(session: Session, number: int, note: str) -> Session:
 def lock(session: Session, number: int, locked: bool = True) -> Session:
     """Keep (or release) this claim as it stands when the spectrum is solved again."""
     return _edit_claim(
-        session, "lock", {"feature": number, "locked": bool(locked)}, locked=bool(locked)
+        session,
+        "lock",
+        {"feature": number, "locked": bool(locked)},
+        locked=bool(locked),
     )
 
 
@@ -209,6 +232,10 @@ def set_velocity(session: Session, km_s: float) -> Session:
     if not (math.isfinite(km_s) and abs(km_s) < C_KM_S):
         raise InputRefused("velocity", f"{km_s} km/s is no velocity", "give km/s below light's")
     velocity = replace(
-        session.velocity, velocity=float(km_s), error=math.nan, declared=True, how="given"
+        session.velocity,
+        velocity=float(km_s),
+        error=math.nan,
+        declared=True,
+        how="given",
     )
     return noted(session, "set_velocity", {"km_s": float(km_s)}, velocity=velocity)

@@ -1,0 +1,1 @@
+"""Tables and figures made from a session."""

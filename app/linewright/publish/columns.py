@@ -1,0 +1,156 @@
+"""Names, units and descriptions of the published columns, in their order."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True)
+class Column:
+    """One published column: ``kind`` is 'int', 'float' or 'text'; ``print_format`` for rounded formats."""
+
+    name: str
+    kind: str
+    description: str
+    unit: str = ""
+    print_format: str = ""
+
+
+def _c(name, kind, description, unit="", print_format="") -> Column:
+    return Column(name, kind, description, unit, print_format)
+
+
+A, MA, KMS = "Angstrom", "mAngstrom", "km/s"
+
+LEDGER = (
+    _c("feature", "int", "permanent number of the feature"),
+    _c("segment", "int", "index of the spectrum's segment, from 0"),
+    _c("component", "int", "0 for a lone feature, 1.. inside a fitted blend"),
+    _c("kind", "text", "absorption or emission"),
+    _c(
+        "wave",
+        "float",
+        "measured wavelength in the spectrum's medium and frame",
+        A,
+        ".4f",
+    ),
+    _c("wave_err", "float", "one-sigma error of wave", A, ".4f"),
+    _c("significance", "float", "matched-filter signal-to-noise", "", ".1f"),
+    _c(
+        "depth",
+        "float",
+        "(continuum - flux)/continuum, negative in emission",
+        "",
+        ".4f",
+    ),
+    _c("depth_err", "float", "one-sigma error of depth", "", ".4f"),
+    _c("fwhm", "float", "full width at half depth", A, ".4f"),
+    _c("fwhm_err", "float", "one-sigma error of fwhm", A, ".4f"),
+    _c("ew", "float", "equivalent width, negative in emission", MA, ".2f"),
+    _c("ew_err", "float", "one-sigma error of ew", MA, ".2f"),
+    _c("species", "text", "species of the claim"),
+    _c(
+        "wave_lab",
+        "float",
+        "laboratory wavelength of the claimed line, same medium as wave",
+        A,
+        ".4f",
+    ),
+    _c("wave_lab_err", "float", "one-sigma error of wave_lab", A, ".4f"),
+    _c("e_low", "float", "energy of the lower level", "eV", ".4f"),
+    _c(
+        "loggf",
+        "float",
+        "log10 of statistical weight times oscillator strength",
+        "",
+        ".3f",
+    ),
+    _c(
+        "velocity",
+        "float",
+        "c (lambda_vac/lambda_vac,lab - 1), receding positive",
+        KMS,
+        ".3f",
+    ),
+    _c(
+        "velocity_err",
+        "float",
+        "one-sigma error of velocity, both wavelength errors",
+        KMS,
+        ".3f",
+    ),
+    _c(
+        "probability",
+        "float",
+        "that the species is the main contributor, by the machine",
+        "",
+        ".4f",
+    ),
+    _c(
+        "p_line",
+        "float",
+        "that the line is the main contributor, by the machine",
+        "",
+        ".4f",
+    ),
+    _c("p_unlisted", "float", "that no catalogue line is, by the machine", "", ".4f"),
+    _c("standing", "text", "firm, likely, tentative, unclaimed or set aside"),
+    _c("by", "text", "who set the standing: machine or person"),
+    _c("origin", "text", "where the line arises"),
+    _c("blend", "text", "other contributors: species wavelength share; ..."),
+    _c("runner_up", "text", "the best other species"),
+    _c("flags", "text", "short words on measurement and claim"),
+    _c("note", "text", "a person's note"),
+    _c("source", "text", "bibliographic key of the line"),
+)
+
+ROLL_CALL = (
+    _c("species", "text", "species"),
+    _c("expected", "int", "lines predicted above the detection limit"),
+    _c("seen", "int", "of these, lines with a feature"),
+    _c("missing", "int", "of these, lines without"),
+    _c("p_chance", "float", "probability of the coincidences by chance", "", ".2e"),
+    _c("offset_dex", "float", "strength offset from the prediction", "dex", ".3f"),
+    _c("offset_err", "float", "one-sigma error of offset_dex", "dex", ".3f"),
+    _c("verdict", "text", "present, possible, absent or not testable"),
+)
+
+ORPHANS = (
+    _c("feature", "int", "permanent number of the feature"),
+    _c("segment", "int", "index of the spectrum's segment, from 0"),
+    _c("kind", "text", "absorption or emission"),
+    _c(
+        "wave",
+        "float",
+        "measured wavelength in the spectrum's medium and frame",
+        A,
+        ".4f",
+    ),
+    _c("wave_err", "float", "one-sigma error of wave", A, ".4f"),
+    _c(
+        "wave_rest",
+        "float",
+        "wave at the session's velocity taken out, same medium",
+        A,
+        ".4f",
+    ),
+    _c("significance", "float", "matched-filter signal-to-noise", "", ".1f"),
+    _c(
+        "depth",
+        "float",
+        "(continuum - flux)/continuum, negative in emission",
+        "",
+        ".4f",
+    ),
+    _c("fwhm", "float", "full width at half depth", A, ".4f"),
+    _c("ew", "float", "equivalent width, negative in emission", MA, ".2f"),
+    _c(
+        "p_unlisted",
+        "float",
+        "that no catalogue line is the main contributor",
+        "",
+        ".4f",
+    ),
+    _c("nearest", "text", "the nearest line of the catalogue"),
+    _c("why", "text", "why that is not the explanation"),
+)
