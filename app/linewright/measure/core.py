@@ -18,7 +18,7 @@ from .matched import expected_false, threshold_for
 from .noise import estimate_noise
 from .options import Measurement, MeasureOptions, SegmentMeasure
 from .stretches import stretches, usable
-from .width import extrema_widths, narrow_width, width_nodes
+from .width import extrema_widths, width_nodes
 
 
 @dataclass(frozen=True, eq=False)
@@ -93,16 +93,16 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     flux = np.interp(np.arange(len(wave)), np.flatnonzero(good), segment.flux[good])
     noise = estimate_noise(flux, good, runs)
     width = _assumed_width(wave, noise.lag, options)
-    for round_ in range(3):
-        sigma = _sigma(segment, noise, warnings if round_ == 2 else [])
+    for round_ in range(2):
+        sigma = _sigma(segment, noise, warnings if round_ == 1 else [])
         size = _node_distance(wave, good, width)
-        centre, level, error = fit_continuum(wave, flux, good, sigma, size)
+        centre, level, error = fit_continuum(wave, flux, good, sigma, size, _length(noise))
         run = np.interp(wave, centre, level)
         y, relative = 1.0 - flux / run, sigma / run
         width_w, width_f = _width(wave, y, relative, good, runs, noise, options)
         width = np.interp(wave, width_w, width_f)
         pixels = width / np.gradient(wave)
-        if round_ < 2:
+        if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
             longest = max(1.0, float(np.median(pixels[good])) / 3.0)
             noise = estimate_noise(flux, good, runs, quiet, longest)
@@ -110,6 +110,10 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
                   noise.correlation)
     nodes = _nodes(trace, centre, level, error, pixels)
     return Prepared(trace, runs, nodes, run, pixels)
+
+
+def _length(noise) -> float:
+    return float(1.0 + 2.0 * noise.correlation[1:].sum())
 
 
 def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
