@@ -14,7 +14,7 @@ ELEMENTS = (
     "Dy Ho Er Tm Yb Lu Hf Ta W Re Os Ir Pt Au Hg Tl Pb Bi Po At Rn Fr Ra Ac Th Pa U"
 ).split()
 MOLECULES = (
-    "O2 H2O OH CH CH+ CN C2 CO MgH CaH FeH TiO VO NH SiO CO2 O3 H2 C3 SiH".split()
+    "O2 H2O OH CH CH+ CN C2 CO MgH CaH FeH TiO VO NH SiO CO2 O3 H2 C3 SiH CH4 N2O".split()
 )
 DIFFUSE_BAND = "DIB"
 ROMAN = (
