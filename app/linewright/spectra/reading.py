@@ -8,6 +8,9 @@ InputRefused with its cause and cure.
 from __future__ import annotations
 
 from dataclasses import replace
+from typing import TypedDict, Unpack
+
+import numpy as np
 
 from ..errors import InputRefused, LinewrightError
 from .clean import clean_segments
@@ -95,13 +98,6 @@ def _guarded(opened: Opened, wanted: Wanted) -> Raw:
                            "fetch the file again or save it as a plain table") from None
 
 
-def _checked_options(medium, frame) -> None:
-    if medium is not None and medium not in MEDIA[1:]:
-        raise InputRefused("--medium", f"'{medium}' is no medium", "use air or vacuum")
-    if frame is not None and frame not in FRAMES:
-        raise InputRefused("--frame", f"'{frame}' is no frame", f"use {', '.join(FRAMES[1:])}")
-
-
 def _decided(raw: Raw, medium, frame, highest: float) -> Known:
     known = known_of(raw)
     if medium is None and known.medium != "vacuum" and highest <= AIR_LIMIT:
@@ -118,8 +114,6 @@ def _decided(raw: Raw, medium, frame, highest: float) -> Known:
 
 
 def _highest(raw: Raw) -> float:
-    import numpy as np
-
     highest = 0.0
     for segment in raw.segments:
         with np.errstate(all="ignore"):
@@ -138,29 +132,60 @@ def _resolution(raw: Raw) -> float | None:
     return None
 
 
-def read_spectrum(path, *, medium=None, frame=None, hdu=None, row=None, columns=None,
-                  unit=None) -> Spectrum:
+class Choices(TypedDict, total=False):
+    """What a reader may be told; everything left out is taken from the file.
+
+    medium: 'air' or 'vacuum'; frame: one of FRAMES
+    hdu: FITS HDU from 0, VOTable table from 1; row: of an image or of vector cells, from 1
+    columns: mapping or 'wave=1,flux=2,err=3' of wave, flux, err, ivar, mask to numbers
+        from 1 or names
+    unit: of the wavelengths, as in a file
+    """
+
+    medium: str | None
+    frame: str | None
+    hdu: int | None
+    row: int | None
+    columns: str | dict | None
+    unit: str | None
+
+
+def _given(choices: dict) -> dict:
+    unknown = sorted(set(choices) - set(Choices.__annotations__))
+    if unknown:
+        raise TypeError(f"read_spectrum() has no choice '{unknown[0]}'")
+    given = {key: value for key, value in choices.items() if value is not None}
+    if "columns" in given:
+        given["columns"] = parse_columns(given["columns"])
+    if given.get("medium", "air") not in MEDIA[1:]:
+        raise InputRefused("--medium", f"'{given['medium']}' is no medium", "use air or vacuum")
+    if given.get("frame", "rest") not in FRAMES:
+        raise InputRefused("--frame", f"'{given['frame']}' is no frame",
+                           f"use {', '.join(FRAMES[1:])}")
+    return given
+
+
+def read_spectrum(path, **choices: Unpack[Choices]) -> Spectrum:
     """Read one spectrum from FITS (images, tables), VOTable, ECSV or text, plain or packed.
 
-    medium 'air' or 'vacuum', frame (see FRAMES), hdu (from 0; table number from 1 in a
-    VOTable), row (from 1), columns (mapping or 'wave=1,flux=2,err=3', numbers from 1 or
-    names) and unit (of the wavelengths) override what the file says; None takes it from
-    the file. Wavelengths become vacuum Angstrom. Raises InputRefused, in one line, for
-    whatever is no spectrum.
+    Keywords ``medium, frame, hdu, row, columns, unit`` (see Choices) override what the
+    file says. Wavelengths become vacuum Angstrom; ``read_options`` of the result keeps
+    what is needed to read the same again. Raises InputRefused, in one line, for whatever
+    is no spectrum.
     """
-    given = {"medium": medium, "frame": frame, "hdu": hdu, "row": row,
-             "columns": parse_columns(columns), "unit": unit}
-    _checked_options(medium, frame)
-    wanted = Wanted(hdu, row, given["columns"], None if unit is None else required_unit(unit))
+    given = _given(dict(choices))
+    unit = given.get("unit")
+    wanted = Wanted(given.get("hdu"), given.get("row"), given.get("columns"),
+                    None if unit is None else required_unit(unit))
     opened = open_checked(path)
     raw = _guarded(opened, wanted)
     check_unchanged(opened)
-    known = _decided(raw, medium, frame, _highest(raw))
+    known = _decided(raw, given.get("medium"), given.get("frame"), _highest(raw))
     segments, notes = clean_segments(raw.segments, raw.unit, known.medium, opened.path)
-    options = {k: v for k, v in {**raw.choices, **given}.items() if v is not None}
     return Spectrum(
         segments, known.medium, known.medium_from, known.frame, known.frame_from,
         raw.flux_unit, raw.name, str(opened.path), opened.sha256,
         raw.layout + (f" ({opened.packing})" if opened.packing else ""),
-        known.corrections, (*raw.warnings, *known.warnings, *notes), _resolution(raw), options,
+        known.corrections, (*raw.warnings, *known.warnings, *notes), _resolution(raw),
+        {**raw.choices, **given},
     )
