@@ -1,0 +1,40 @@
+"""Apply a script of edits (one JSON object a line) to a session.
+
+Each line is {"edit": NAME, ...}; features go by their permanent numbers, wavelengths are
+vacuum Angstrom. All edits are applied, or none.
+
+  {"edit": "accept_candidate", "feature": 12, "rank": 2}
+  {"edit": "set_species", "feature": 12, "species": "Fe I"}
+  {"edit": "mark_blend", "feature": 12, "contributors": [["Ti II", 5188.687, 0.3]]}
+  {"edit": "set_aside", "feature": 12, "reason": "cosmic ray"}
+  {"edit": "set_standing", "feature": 12, "standing": "tentative"}
+  {"edit": "set_note", "feature": 12, "note": "see the atlas"}
+  {"edit": "lock", "feature": 12, "locked": true}
+  {"edit": "restore", "feature": 12}
+  {"edit": "add_feature", "row": {"wave": 5188.7, "sign": 1, "depth": 0.2}}
+  {"edit": "replace_feature", "feature": 12, "row": {"wave": 5188.7, "sign": 1}}
+  {"edit": "remove_feature", "feature": 12}
+  {"edit": "set_velocity", "km_s": -33.2}
+"""
+
+from __future__ import annotations
+
+
+def configure(parser) -> None:
+    parser.add_argument("session", metavar="SESSION")
+    parser.add_argument("--script", required=True, metavar="EDITS.jsonl")
+    parser.add_argument("-o", "--output", required=True, metavar="OUT", help="session to write")
+    parser.add_argument("--force", action="store_true", help="overwrite an existing file")
+
+
+def run(options) -> int:
+    from ..session.atomic import check_writable
+    from ..session.file import load_session, save_session
+    from ..session.script import apply_script, read_script
+
+    check_writable(options.output, options.force)
+    session = load_session(options.session)
+    commands = read_script(options.script)
+    save_session(apply_script(session, commands, options.script), options.output, options.force)
+    print(f"{len(commands)} edits applied: {options.output}")
+    return 0
