@@ -1,0 +1,55 @@
+"""Peaks and troughs in view, so that the keyboard can reach what the mouse can click."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from .extremes import Columns
+from .spectrum_item import Reduced
+
+# A turning point counts when it stands out by this share of the flux range in view.
+PROMINENCE = 0.03
+
+
+def outline(reduced: list[Reduced]) -> tuple[np.ndarray, np.ndarray]:
+    """(pixel, flux) in order of pixel: the samples, or low and high of each column."""
+    parts = []
+    for part in reduced:
+        if part.columns is not None:
+            parts.append(_column_outline(part.columns))
+        parts.extend(part.runs)
+    if not parts:
+        return np.zeros(0), np.zeros(0)
+    pixel = np.concatenate([p[0] for p in parts])
+    flux = np.concatenate([p[1] for p in parts])
+    order = np.argsort(pixel, kind="stable")
+    return pixel[order], flux[order]
+
+
+def _column_outline(columns: Columns) -> tuple[np.ndarray, np.ndarray]:
+    good = np.isfinite(columns.low)
+    pixel = np.repeat(columns.column[good] + 0.5, 2)
+    flux = np.stack([columns.low[good], columns.high[good]], axis=1).ravel()
+    return pixel, flux
+
+
+def turning_points(pixel: np.ndarray, flux: np.ndarray) -> np.ndarray:
+    """Pixels of the peaks and troughs that stand out, ascending.
+
+    A zigzag pass: a turn is kept once the flux has come back by PROMINENCE of the range.
+    """
+    if len(flux) < 3:
+        return np.zeros(0)
+    needed = PROMINENCE * float(np.max(flux) - np.min(flux))
+    found, best, direction = [], 0, 0
+    for i in range(1, len(flux)):
+        change = float(flux[i] - flux[best])
+        if direction == 0:
+            if abs(change) > needed:
+                direction, best = (1 if change > 0 else -1), i
+        elif change * direction > 0:
+            best = i
+        elif -change * direction > needed:
+            found.append(pixel[best])
+            direction, best = -direction, i
+    return np.array(found)
