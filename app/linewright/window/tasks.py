@@ -53,6 +53,7 @@ class Tasks(QObject):
     """
 
     finished = Signal(object, object)
+    started = Signal()
 
     def __init__(self, parent: QObject | None = None):
         super().__init__(parent)
@@ -70,6 +71,8 @@ class Tasks(QObject):
         self._current[request.key] = run
         self._alive.add(run)
         self._pool.start(run)
+        if request.shown:
+            self.started.emit()
 
     def cancel(self, key: str) -> bool:
         run = self._current.pop(key, None)

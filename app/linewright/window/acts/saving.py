@@ -1,0 +1,100 @@
+"""Saving sessions and exporting tables and figures, beside the window."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from ...errors import LinewrightError
+from ..notices import Notice
+from ..tasks import Request
+
+SUFFIX = ".linewright.json"
+TABLES = ("ecsv", "csv", "tex", "vot", "mrt")
+FIGURES = ("pdf", "svg", "png")
+
+
+def suggested(bench, suffix: str) -> str:
+    """A path beside the session or the spectrum."""
+    desk = bench.desk
+    at = desk.path or Path(desk.document.session.spectrum.path or desk.name)
+    stem = at.name
+    for ending in (SUFFIX, ".gz", ".fits", ".fit", ".txt", ".csv", ".ecsv", ".dat"):
+        stem = stem.removesuffix(ending)
+    return str(at.parent / f"{stem}{suffix}")
+
+
+def save(bench, path: Path | None = None, then=lambda: None) -> None:
+    """Writes the session whole or not at all; ``then`` runs when it is on disk."""
+    desk = bench.desk
+    path = Path(path) if path is not None else desk.path
+    session = desk.document.session
+    bench.tasks.start(Request(
+        key=f"save {id(desk)}", title=f"Saving {path.name}",
+        work=lambda progress: _write(session, path),
+        done=lambda _none: _saved(bench, desk, session, path, then),
+        failed=lambda error: failed(bench, error),
+    ))
+
+
+def _write(session, path: Path) -> None:
+    from ...session.file import save_session
+
+    save_session(session, path, force=True)  # the file dialog asked, or it is our own file
+
+
+def _saved(bench, desk, session, path: Path, then) -> None:
+    desk.path = path
+    if desk.document.session is session:
+        desk.document.mark_saved()
+    bench.notify(Notice(f"Saved as {path.name}.", "note", seconds=4, topic="saved"))
+    bench.tell(bench.session, bench.session)
+    then()
+
+
+def export_table(bench, path: Path, what: str = "ledger") -> None:
+    session = bench.session
+    bench.tasks.start(Request(
+        key="table", title=f"Writing {path.name}",
+        work=lambda progress: _table(session, what, path),
+        done=lambda _none: _written(bench, path),
+        failed=lambda error: failed(bench, error),
+    ))
+
+
+def _table(session, what: str, path: Path) -> None:
+    from ...publish.ledger import session_table
+    from ...publish.writers import check_suffix, write_table
+
+    check_suffix(path)
+    write_table(session_table(session, what), path, force=True)
+
+
+def export_figure(bench, path: Path) -> None:
+    """The figure of what is in view, in the order of the annotated spectrum."""
+    session, spectrum, span = bench.session, bench.spectrum, bench.view.now.span
+    bench.tasks.start(Request(
+        key="figure", title=f"Drawing {path.name}",
+        work=lambda progress: _figure(session, spectrum, span, path),
+        done=lambda _none: _written(bench, path),
+        failed=lambda error: failed(bench, error),
+    ))
+
+
+def _figure(session, spectrum, span, path: Path) -> None:
+    from ...publish import figure
+
+    figure.write_figure(session, spectrum, path, span=span, force=True)
+
+
+def _written(bench, path: Path) -> None:
+    bench.notify(Notice(f"Written: {path}", "note", seconds=8, topic="written"))
+
+
+def failed(bench, error: Exception) -> None:
+    if isinstance(error, LinewrightError):
+        bench.refuse(error)
+    elif isinstance(error, OSError):
+        bench.refuse(LinewrightError(error.filename or "file", error.strerror or str(error),
+                                     "choose another folder"))
+    else:
+        bench.window.report_unexpected(error)

@@ -1,0 +1,69 @@
+"""Solving in a worker: a frozen request, progress, cancel, and one step of undo."""
+
+from __future__ import annotations
+
+from ...errors import LinewrightError
+from ...job.view_keep import keep_acts
+from ..notices import Notice
+from ..tasks import Request
+from . import opening
+
+
+def can_solve(bench) -> bool:
+    return bench.spectrum is not None and not bench.tasks.busy("solve")
+
+
+def solve(bench) -> None:
+    """Solves the shown spectrum as it stands now; editing goes on meanwhile."""
+    if bench.session.spectrum.medium not in ("air", "vacuum"):
+        opening.ask_medium(bench)
+        return
+    desk, spectrum, options = bench.desk, bench.spectrum, bench.desk.options
+    catalogue = bench.catalogue
+    bench.tasks.start(Request(
+        key="solve", title=f"Solving {desk.name}",
+        work=lambda progress: _solved(spectrum, catalogue, options, progress),
+        done=lambda session: _take(bench, desk, spectrum, session),
+        failed=lambda error: _failed(bench, error),
+    ))
+
+
+def _solved(spectrum, catalogue, options, progress):
+    from ...job.solve import solve as solve_spectrum
+
+    return solve_spectrum(spectrum, catalogue, options, progress)
+
+
+def _take(bench, desk, spectrum, session) -> None:
+    if desk not in bench.desks or desk.spectrum is not spectrum:
+        return  # closed, or read in another medium since
+    desk.document.replace(keep_acts(desk.document.session, session), "solve")
+    bench.notify(summary(session))
+
+
+def summary(session) -> Notice:
+    standings = [c.standing for c in session.claims]
+    count = len(standings)
+    firm = sum(s in ("firm", "likely") for s in standings)
+    v = session.velocity
+    if not count:
+        return Notice("No significant feature was found. Check the continuum and the units, or "
+                      "click a trough or peak to measure it.", "warning", topic="solved")
+    words = f"{count:,} features, {firm:,} firm or likely, {len(session.orphans):,} orphans."
+    if v.declared:
+        return Notice(f"{words} Velocity {v.velocity:+.2f} ± {v.error:.2f} km/s.", "note",
+                      seconds=12, topic="solved")
+    return Notice(f"{words} The velocity is not certain: see the other peaks in the Velocity "
+                  "track, slide there and solve again.", "warning", topic="solved")
+
+
+def stop(bench) -> None:
+    if bench.tasks.cancel("solve"):
+        bench.notify(Notice("Stopped. Nothing was changed.", "note", seconds=5, topic="solved"))
+
+
+def _failed(bench, error: Exception) -> None:
+    if isinstance(error, LinewrightError):
+        bench.refuse(error)
+    else:
+        bench.window.report_unexpected(error)

@@ -1,0 +1,84 @@
+"""The Roll call: which species are there, by lines expected, seen and missing."""
+
+from __future__ import annotations
+
+import numpy as np
+from PySide6.QtWidgets import QLabel
+
+from . import words
+from .column_model import Column, ColumnModel
+from .table_panel import TablePanel
+
+EMPTY = (
+    "The Roll call counts, species by species, the lines that ought to be seen, those that "
+    "are, and how likely chance alone would do as well.\nPress F5 to solve the spectrum."
+)
+VERDICTS = {"present": "● present", "possible": "◑ possible", "absent": "⊗ absent",
+            "not testable": "○ not testable"}
+_ORDER = tuple(VERDICTS)
+
+
+class RollCallPanel(TablePanel):
+    """Choosing a species puts it on the rake."""
+
+    def __init__(self, workbench, parent=None):
+        super().__init__("Roll call", ColumnModel(), EMPTY, parent)
+        self._workbench, self._rows = workbench, ()
+        self.text = self.add_text_filter(
+            "Filter: species or verdict", "Shows species or verdicts containing this text")
+        hint = QLabel("Choose a row to see the species on the rake")
+        hint.setObjectName("quiet")
+        self.filters.addWidget(hint)
+        self.filtered.connect(self.refresh)
+        self.acted.connect(lambda row: workbench.show_on_rake(self._rows[row].species))
+
+    def show_session(self, session) -> None:
+        rows = () if session is None else session.roll_call
+        if rows is self._rows and self.model.columns:
+            return
+        first, self._rows = not self._rows, rows
+        self.refresh()
+        if first and rows:
+            for i, column in enumerate(self.model.columns):
+                self.table.setColumnWidth(i, column.width)
+
+    def refresh(self) -> None:
+        text = self.text.text().strip().lower()
+        keep = [i for i, r in enumerate(self._rows)
+                if text in f"{r.species} {r.verdict}".lower()]
+        self.model.show_rows(_columns(self._rows), np.array(keep, dtype=int))
+        self.show_state("No species passes this filter." if self._rows else EMPTY)
+
+
+def _columns(rows) -> list[Column]:
+    def numbers(name):
+        return lambda: np.array([getattr(r, name) for r in rows], dtype=float)
+
+    def count(title, name, tip):
+        return Column(title, tip, lambda i: f"{getattr(rows[i], name)}", numbers(name), True, 84)
+
+    return [
+        Column("species", "Species on trial", lambda i: rows[i].species,
+               lambda: np.array([r.species for r in rows], dtype=str), False, 100),
+        Column("verdict", "present, possible, absent or not testable",
+               lambda i: VERDICTS.get(rows[i].verdict, rows[i].verdict),
+               lambda: np.array([_ORDER.index(r.verdict) if r.verdict in _ORDER else 9
+                                 for r in rows]), False, 118),
+        count("expected", "expected", "Lines predicted strong enough to be seen in the coverage"),
+        count("seen", "seen", "Expected lines found"),
+        count("missing", "missing", "Expected lines not found"),
+        Column("chance", "Probability that chance alone matches as many lines",
+               lambda i: _chance(rows[i].p_chance), numbers("p_chance"), True, 96),
+        Column("strength offset (dex)", "Learned strength of the species over the predicted one",
+               lambda i: _offset(rows[i]), numbers("offset_dex"), True, 150),
+    ]
+
+
+def _chance(p: float) -> str:
+    return f"{p:.1e}".replace("-", "−") if 0 <= p < 0.001 else words.number(p, 3)
+
+
+def _offset(row) -> str:
+    text = words.number(row.offset_dex, 2, True)
+    error = words.number(row.offset_err, 2)
+    return f"{text} ± {error}" if text and error else text

@@ -1,0 +1,118 @@
+"""Keeps the rake's species and teeth in step with view, selection and conditions."""
+
+from __future__ import annotations
+
+import numpy as np
+from PySide6.QtCore import QObject, QTimer
+
+from ..job.view_depths import conditions, predicted_depths
+from ..job.view_rake import most_claimed, rake_columns
+from ..spectra.medium import from_medium
+from .plot import RakeData
+from .tasks import Request
+
+UNSOLVED = ("Fe I", "Mg I", "Ca I", "Na I", "H I")
+MOST = 5
+MARGIN = 3000.0 / 299792.458  # teeth that a slide by 3000 km/s can bring in
+
+
+class RakeKeeper(QObject):
+    """Loads the catalogue, predicts depths and hands RakeData to the spectrum view."""
+
+    def __init__(self, bench, show, parent=None):
+        super().__init__(parent)
+        self._bench, self._show = bench, show
+        self.species: tuple[str, ...] = ()
+        self._drawn: tuple | None = None
+        self._known: tuple | None = None
+        self._later = QTimer(self)
+        self._later.setSingleShot(True)
+        self._later.setInterval(80)
+        self._later.timeout.connect(self.refresh)
+
+    def load_catalogue(self) -> None:
+        self._bench.tasks.start(Request(
+            key="catalogue", title="Reading the catalogue", work=_loaded,
+            done=self._take_catalogue, failed=self._bench.refuse, shown=False))
+
+    def _take_catalogue(self, catalogue) -> None:
+        self._bench.catalogue = catalogue
+        self.predict()
+        self._bench.window.catalogue_changed()
+
+    def predict(self) -> None:
+        """Depths of all lines under the session's conditions, when these changed."""
+        bench = self._bench
+        if bench.catalogue is None:
+            return
+        request = _Prediction(bench.catalogue, bench.session, bench.spectrum)
+        if request.key == self._known:
+            return
+        self._known = request.key
+        bench.tasks.start(Request(
+            key="depths", title="Predicting depths", work=lambda progress: request.run(),
+            done=self._take_depths, failed=bench.refuse, shown=False))
+
+    def _take_depths(self, depth) -> None:
+        self._bench.depth = depth
+        self.refresh()
+        self._bench.window.catalogue_changed()
+
+    def soon(self) -> None:
+        """After a change of view: when the view has come to rest."""
+        self._later.start()
+
+    def refresh(self) -> None:
+        bench = self._bench
+        if bench.catalogue is None or bench.depth is None or bench.spectrum is None:
+            self._put((), None)
+            return
+        species = self._wanted()
+        low, high = bench.spectrum.own_range()
+        drawn = (species, id(bench.depth), low, high, bench.medium)
+        if drawn == self._drawn:
+            return
+        ends = from_medium(np.array([low * (1 - MARGIN), high * (1 + MARGIN)]), bench.medium)
+        wave, depth, row = rake_columns(bench.catalogue, bench.depth, species, *ends)
+        self._put(species, RakeData(wave, depth, row, species))
+        self._drawn = drawn
+
+    def _put(self, species, data) -> None:
+        if data is None and not self.species:
+            return
+        self.species, self._drawn = species, None
+        self._show(data or RakeData.empty())
+
+    def _wanted(self) -> tuple[str, ...]:
+        bench = self._bench
+        chosen = bench.view.now.rake
+        if chosen is not None:
+            return chosen
+        low, high = bench.view.now.span or bench.spectrum.own_range()
+        names = most_claimed(bench.session, low, high, MOST)
+        if not names and not len(bench.session.features):
+            names = tuple(n for n in UNSOLVED if n in bench.catalogue.species_names)
+        candidate = bench.candidate()
+        if candidate is not None and candidate.species and candidate.species not in names:
+            names = (*names, candidate.species)
+        return names
+
+
+class _Prediction:
+    """A frozen request: what the depths depend on."""
+
+    def __init__(self, catalogue, session, spectrum):
+        self._catalogue = catalogue
+        self._conditions = conditions(session)
+        self._range = spectrum.own_range() if spectrum is not None else (4000.0, 7000.0)
+        self._count = len(session.features) if session is not None else 0
+        self.key = (id(catalogue), self._conditions, self._range, self._count // 50)
+
+    def run(self) -> np.ndarray:
+        return predicted_depths(self._catalogue, *self._conditions, *self._range, self._count)
+
+
+def _loaded(_progress):
+    from ..lines.loading import load_catalogue
+
+    return load_catalogue()

@@ -1,0 +1,139 @@
+"""Brings every widget of the work page in step with session and view: the one place."""
+
+from __future__ import annotations
+
+import numpy as np
+from PySide6.QtCore import QTimer
+
+from ..job.view_profile import profile_of
+from .acts import opening
+from .acts.picking import pick
+from .acts.viewing import slide
+from .rake import RakeKeeper
+
+
+class Refresher:
+    """Listens to session and view; passes the widgets' acts to the workbench."""
+
+    def __init__(self, bench, space):
+        self._bench, self._space = bench, space
+        self._spectrum = None
+        self._ours = False  # while the window itself moves the view
+        self.rake = RakeKeeper(bench, space.spectrum_view.set_rake, space)
+        self._calm = QTimer(space)
+        self._calm.setSingleShot(True)
+        self._calm.setInterval(60)
+        self._calm.timeout.connect(space.evidence.refresh)
+        view = space.spectrum_view
+        view.featureClicked.connect(lambda number: bench.view.select(number))
+        view.pickRequested.connect(lambda wave: pick(bench, wave))
+        view.viewChanged.connect(self._moved)
+        space.track.velocityChanged.connect(lambda v, final: slide(bench, v, final))
+        space.track.solveRequested.connect(lambda: bench.run("spectrum.solve"))
+
+    def _moved(self, low: float, high: float) -> None:
+        if not self._ours:
+            self._bench.view.change(span=(low, high))
+
+    def session_changed(self, old, new) -> None:
+        bench, space = self._bench, self._space
+        if new is None:
+            self._show_spectrum(None)
+            return
+        if not opening.spectrum_matches(bench.desk):
+            opening.follow_medium(bench.desk)
+        self._show_spectrum(bench.spectrum)
+        space.spectrum_view.set_session(new)
+        space.ledger.show_session(new)
+        space.roll_call.show_session(new)
+        space.orphans.show_session(new)
+        space.show_counts(len(new.features), len(new.roll_call),
+                          len(bench.catalogue or ()), len(new.orphans))
+        self._show_track(new)
+        self._show_selected()
+        self.rake.predict()
+        self.rake.refresh()
+
+    def _show_spectrum(self, spectrum) -> None:
+        if spectrum is self._spectrum:
+            return
+        self._spectrum = spectrum
+        self._space.spectrum_view.set_spectrum(spectrum)
+        if spectrum is not None:
+            self._bench.view.change(span=tuple(self._space.spectrum_view.view()))
+            self._space.catalogue.show_catalogue()
+
+    def _show_track(self, session) -> None:
+        track, result = self._space.track, session.velocity
+        if len(result.grid):
+            track.set_range(float(result.grid[0]), float(result.grid[-1]))
+        else:
+            track.set_range(*self._bench.desk.options.velocity_range)
+        track.set_curve(result.grid, result.score)
+        track.set_rivals(result.rivals)
+        self._show_velocity()
+
+    def _show_velocity(self) -> None:
+        bench = self._bench
+        velocity, result = bench.view.now.velocity, bench.session.velocity
+        error = result.error if velocity == result.velocity and np.isfinite(result.error) else None
+        self._space.track.set_velocity(velocity, error, bool(result.declared))
+        self._space.spectrum_view.set_velocity(velocity)
+
+    def _show_selected(self) -> None:
+        bench, view = self._bench, self._space.spectrum_view
+        number = bench.view.now.selected
+        view.select(number)
+        profile = None
+        if bench.selected_row() is not None:
+            profile = profile_of(bench.session, number)
+        view.show_profile(*(profile or (None, None)))
+        self._space.ledger.show_selection(number)
+        self._space.orphans.show_selection(number)
+        self._space.evidence.refresh()
+
+    def view_changed(self, old, new) -> None:
+        bench, space = self._bench, self._space
+        if bench.session is None:
+            return
+        if new.span != old.span and new.span is not None:
+            self._show_span(new.span)
+        if new.velocity != old.velocity:
+            self._show_velocity()
+            self._calm.start()
+        if (new.selected, new.candidate) != (old.selected, old.candidate):
+            self._show_selected()
+            self.rake.refresh()
+        if new.rake != old.rake:
+            self.rake.refresh()
+            space.catalogue.show_rake(new.rake)
+
+    def _show_span(self, span) -> None:
+        view = self._space.spectrum_view
+        low, high = view.view()
+        if abs(low - span[0]) + abs(high - span[1]) > 1e-9 * max(abs(high), 1.0):
+            self._ours = True
+            try:
+                view.set_view(*span)
+            finally:
+                self._ours = False
+            self._bench.view.change(span=tuple(view.view()))
+        self.rake.soon()
+        self._space.catalogue.follow_view()
+
+    def catalogue_changed(self) -> None:
+        bench, space = self._bench, self._space
+        names = sorted(bench.catalogue.species_names) if bench.catalogue is not None else []
+        space.evidence.show_species(names)
+        space.catalogue.show_catalogue()
+        if bench.session is not None:
+            s = bench.session
+            space.show_counts(len(s.features), len(s.roll_call), len(bench.catalogue or ()),
+                              len(s.orphans))
+            space.evidence.refresh()
+
+    def theme_changed(self) -> None:
+        for part in (self._space.spectrum_view, self._space.track,
+                     self._space.evidence.siblings.strips):
+            part.set_theme(self._bench.theme)
+        self._space.evidence.refresh()

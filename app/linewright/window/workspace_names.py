@@ -1,0 +1,3 @@
+"""Names of the tables in the order of their tabs."""
+
+TABLES = ("ledger", "rollcall", "catalogue", "orphans")
