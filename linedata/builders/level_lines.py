@@ -1,0 +1,118 @@
+"""Lines of ions the general list lacks (N I, O I, Mg II, Si II-IV, C II-IV, ...), from levels.
+
+Usage: python linedata/builders/level_lines.py SOURCE_DIR [--out FOLDER]
+Needs tables/atomic_lines.npz, so that no line is entered twice.
+"""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+
+from common import (
+    EV_PER_CM, ORIGIN_CODE, TABLES, air_to_vacuum, pack_lines, script_arguments, write_table,
+)
+from level_pairs import permitted_lines
+from level_physics import ionisation_energies
+from nist_levels import read_levels
+from published_strengths import PUBLISHED
+from symbols import ELEMENTS, ROMAN
+
+IONS = [
+    ("C", 2), ("C", 3), ("C", 4), ("N", 1), ("N", 2), ("N", 3), ("N", 4), ("N", 5), ("O", 1),
+    ("O", 2), ("O", 3), ("O", 4), ("O", 5), ("Ne", 2), ("Mg", 2), ("Al", 2), ("Al", 3),
+    ("Si", 2), ("Si", 3), ("Si", 4), ("P", 2), ("P", 3), ("S", 2), ("S", 3), ("Cl", 2),
+    ("Ar", 2), ("Ar", 3), ("Ca", 3), ("Ti", 3), ("Cr", 3), ("Mn", 3), ("Fe", 3), ("Ni", 3),
+]
+LEAST_LOGGF = -2.5
+# Published scatter of level-derived wavelengths (Angstrom at 5000 A) where the levels are poor.
+POOR_LEVELS = {("S", 3): 0.1, ("N", 3): 0.006, ("Fe", 3): 0.010, ("C", 4): 0.012}
+# Scatter of the Coulomb approximation against published log gf, dex.
+STRENGTH_ERROR = {("S", 2): 0.25, ("Fe", 3): 0.3, ("Ne", 2): 0.25, ("O", 2): 0.15, ("P", 2): 0.16}
+KEYS = ["NIST_ASD"]
+SAME_WAVE, SAME_ENERGY = 0.03, 0.01  # Angstrom at 5000 A, eV
+
+
+def ritz_of_published(source: Path, element: str, stage: int) -> list[dict]:
+    """Core-changing lines with a published log gf, their Ritz wavelengths found among levels."""
+    levels = read_levels(source, element, stage)
+    lines = []
+    for air, e_low, loggf in PUBLISHED.get((element, stage), ()):
+        vacuum = float(air_to_vacuum(air))
+        near = np.flatnonzero(np.abs(levels.energy * EV_PER_CM - e_low) < 0.01)
+        best = None
+        for low in near:
+            gap = 1e8 / np.maximum(levels.energy - levels.energy[low], 1.0)
+            for up in np.flatnonzero(np.abs(gap - vacuum) < 0.15):
+                if levels.odd[up] != levels.odd[low] and abs(levels.j[up] - levels.j[low]) <= 1:
+                    miss = abs(gap[up] - vacuum)
+                    if best is None or miss < best[0]:
+                        best = (miss, low, up, float(gap[up]))
+        if best is None:
+            raise ValueError(f"{element} {stage}: no levels for {air}")
+        _, low, up, wave = best
+        lines.append({
+            "wave": wave, "wave_err": float(np.hypot(0.002, 4e-7 * wave)),
+            "e_low": levels.energy[low] * EV_PER_CM, "j_low": levels.j[low],
+            "j_up": levels.j[up], "loggf": loggf, "loggf_err": 0.2,
+        })
+    return lines
+
+
+def _listed(name: str, table) -> tuple[np.ndarray, np.ndarray]:
+    names = [str(n) for n in table["species_names"]]
+    mine = table["species"] == names.index(name) if name in names else np.zeros(0, bool)
+    return (table["wave"][mine], table["e_low"][mine]) if name in names else (mine, mine)
+
+
+def _is_new(line: dict, waves: np.ndarray, energies: np.ndarray) -> bool:
+    reach = SAME_WAVE * line["wave"] / 5000.0
+    first, last = np.searchsorted(waves, [line["wave"] - reach, line["wave"] + reach])
+    return not np.any(np.abs(energies[first:last] - line["e_low"]) < SAME_ENERGY)
+
+
+def ion_lines(source: Path, element: str, stage: int, energies: np.ndarray) -> list[dict]:
+    """Lines of one ion stronger than LEAST_LOGGF, errors set."""
+    z = ELEMENTS.index(element)
+    lines = [
+        line | {"loggf_err": STRENGTH_ERROR.get((element, stage), 0.12)}
+        for line in permitted_lines(source, element, stage, energies[z, stage - 1])
+        if line["loggf"] > LEAST_LOGGF
+    ]
+    lines += ritz_of_published(source, element, stage)
+    poor = POOR_LEVELS.get((element, stage), 0.0)
+    for line in lines:
+        line["wave_err"] = float(np.hypot(line["wave_err"], poor * (line["wave"] / 5000.0)))
+    return lines
+
+
+def main() -> None:
+    arguments = script_arguments(__doc__.splitlines()[0])
+    source = arguments.source_dir
+    energies = ionisation_energies(source)
+    rows, names = [], []
+    with np.load((arguments.out or TABLES) / "atomic_lines.npz") as table:
+        listed = {key: table[key] for key in table.files}
+    for element, stage in IONS:
+        name = f"{element} {ROMAN[stage - 1]}"
+        waves, lows = _listed(name, listed)
+        found = [
+            line for line in ion_lines(source, element, stage, energies)
+            if _is_new(line, waves, lows)
+        ]
+        for line in found:
+            line["species"] = len(names)
+        rows += found
+        names.append(name)
+        print(name, len(found))
+    columns = ("wave", "wave_err", "e_low", "j_low", "j_up", "loggf", "loggf_err", "species")
+    lines = {key: np.array([row[key] for row in rows]) for key in columns}
+    lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
+    lines["source"] = np.zeros(len(rows))
+    write_table("level_lines", pack_lines(lines, names, KEYS), arguments.out)
+    print(len(rows), "lines")
+
+
+if __name__ == "__main__":
+    main()
