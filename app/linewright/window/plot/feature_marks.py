@@ -18,7 +18,8 @@ class FeatureMarks:
     """Features in order of wavelength, arrays of shape (n,).
 
     wave: own-medium Angstrom; number: permanent ids; standing: index into STANDINGS
-    species, origin: of the claim; text: label, empty where nothing is claimed
+    species, origin: of the claim; text: label, empty where nothing is claimed; short: the
+        label without its wavelength
     importance: orders labels that compete for room
     """
 
@@ -28,6 +29,7 @@ class FeatureMarks:
     species: tuple[str, ...]
     origin: tuple[str, ...]
     text: tuple[str, ...]
+    short: tuple[str, ...]
     importance: np.ndarray
 
     def __len__(self) -> int:
@@ -49,7 +51,7 @@ class FeatureMarks:
 def no_marks() -> FeatureMarks:
     nothing = np.zeros(0)
     whole = nothing.astype(int)
-    return FeatureMarks(nothing, whole, whole, (), (), (), nothing)
+    return FeatureMarks(nothing, whole, whole, (), (), (), (), nothing)
 
 
 def marks_of(session: Session | None, medium: str) -> FeatureMarks:
@@ -61,25 +63,27 @@ def marks_of(session: Session | None, medium: str) -> FeatureMarks:
     claims = [session.claims[i] for i in order]
     standing = np.array([STANDINGS.index(c.standing) for c in claims])
     significance = np.nan_to_num(np.abs(features.significance[order]), nan=1.0)
+    shown = _shown_waves(claims, features.wave[order], medium)
     return FeatureMarks(
         wave=to_medium(features.wave[order], medium),
         number=features.number[order],
         standing=standing,
         species=tuple(c.species for c in claims),
         origin=tuple(c.origin for c in claims),
-        text=_texts(claims, features.wave[order], medium),
+        text=tuple(_text(claim, wave) for claim, wave in zip(claims, shown)),
+        short=tuple(_text(claim, None) for claim in claims),
         importance=np.log10(np.maximum(significance, 1.0)) + _WEIGHT[standing],
     )
 
 
-def _texts(claims: list[Claim], wave: np.ndarray, medium: str) -> tuple[str, ...]:
+def _shown_waves(claims: list[Claim], wave: np.ndarray, medium: str) -> list[float]:
     line = [c.line.wave if c.line is not None else w for c, w in zip(claims, wave)]
-    shown = to_medium(np.array(line, dtype=float), medium)
-    return tuple(_text(claim, value) for claim, value in zip(claims, shown))
+    return to_medium(np.array(line, dtype=float), medium).tolist()
 
 
-def _text(claim: Claim, wave: float) -> str:
+def _text(claim: Claim, wave: float | None) -> str:
     if not claim.species or claim.standing in ("unclaimed", "set aside"):
         return ""
     doubt = " ?" if claim.standing == "tentative" else ""
-    return f"{claim.species} {wave:.2f}{doubt}"
+    number = "" if wave is None else f" {wave:.2f}"
+    return f"{claim.species}{number}{doubt}"

@@ -23,6 +23,7 @@ from .primitives import draw_lines
 _STANDING_FILL = {FIRM: FILL["firm"], LIKELY: FILL["likely"], TENTATIVE: FILL["tentative"]}
 _LEADER, _MARKER, _TICK, _GAP = 12, 9, 10, 5
 _CACHE = 2000
+_FULL_FROM, _SHORT_FROM = 250, 150
 
 
 @dataclass
@@ -41,10 +42,14 @@ class LabelLayer:
         self.font.setPointSizeF(max(7.0, font.pointSizeF() - 1.0))
         metrics = QFontMetricsF(self.font)
         self.line = float(np.ceil(metrics.height()))
-        self.text_height = float(np.ceil(metrics.horizontalAdvance("[Fe III] 00000.00 ?")))
+        self._lengths = {
+            "full": float(np.ceil(metrics.horizontalAdvance("[Fe III] 00000.00 ?"))),
+            "short": float(np.ceil(metrics.horizontalAdvance("[Fe III] ?"))),
+            "none": 0.0,
+        }
         self.marks = no_marks()
         self.selected: int | None = None
-        self.labelled = True
+        self.mode = "full"
         self.placed = Placed()
         self._pictures: OrderedDict[tuple, QPixmap] = OrderedDict()
         self._groups: tuple[Theme | None, np.ndarray, list[str]] = (None, np.zeros(0), [])
@@ -53,16 +58,19 @@ class LabelLayer:
         self.marks = marks
         self._groups = (None, np.zeros(0), [])
 
+    def fit(self, height: float) -> None:
+        """Choose how much text a lane of this height has room for."""
+        self.mode = "full" if height >= _FULL_FROM else "short" if height >= _SHORT_FROM else "none"
+
     @property
     def height(self) -> float:
         if len(self.marks) == 0:
             return 8.0
-        text = self.text_height if self.labelled else 0.0
-        return 4.0 + text + _LEADER + _MARKER + _TICK + _GAP
+        return self._label_foot + _LEADER + _MARKER + _TICK + _GAP
 
     @property
     def _label_foot(self) -> float:
-        return 4.0 + (self.text_height if self.labelled else 0.0)
+        return 4.0 + self._lengths[self.mode]
 
     def paint(self, painter: QPainter, scale: PixelScale, theme: Theme) -> None:
         """``scale`` in logical pixels of the widget; the painter likewise."""
@@ -73,7 +81,7 @@ class LabelLayer:
         rows = np.arange(first, last)
         x = np.floor(scale.pixels(self.marks.wave[rows])) + 0.5
         self._paint_ticks(painter, rows, x, theme)
-        if self.labelled:
+        if self.mode != "none":
             self._paint_labels(painter, (rows, x), scale, theme)
 
     def _colours(self, theme: Theme) -> tuple[np.ndarray, list[str]]:
@@ -146,7 +154,7 @@ class LabelLayer:
         colour = theme.accent_ink if chosen else theme.text_colour(species, origin)
         ground = theme.accent if chosen else ""
         ratio = painter.device().devicePixelRatioF()
-        picture = self._picture(marks.text[row], colour, ground, ratio)
+        picture = self._picture(self._text(row), colour, ground, ratio)
         rect = QRectF(
             centre - self.line / 2,
             self._label_foot - picture.height() / ratio,
@@ -160,6 +168,9 @@ class LabelLayer:
             theme.marker(species, origin), theme.colour(species, origin), fill, _MARKER, ratio
         )
         painter.drawPixmap(QPointF(x - _MARKER / 2, self._label_foot + _LEADER - 1), mark)
+
+    def _text(self, row: int) -> str:
+        return self.marks.short[row] if self.mode == "short" else self.marks.text[row]
 
     def _picture(self, text: str, colour: str, ground: str, ratio: float) -> QPixmap:
         key = (text, colour, ground, ratio)

@@ -8,7 +8,7 @@ from functools import lru_cache
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen, QPixmap, QPolygonF
 
-MARKERS = ("diamond", "triangle", "square", "circle", "cross", "bar", "star", "vee")
+MARKERS = ("diamond", "triangle", "square", "circle", "cross", "bar", "star", "vee", "hexagon")
 # Share of the marker filled, from the bottom: the standing without its colour.
 FILL = {"firm": 1.0, "likely": 0.5, "tentative": 0.0}
 
@@ -35,6 +35,7 @@ _SHAPES = {
     ],
     "bar": [(-1, -0.45), (1, -0.45), (1, 0.45), (-1, 0.45)],
     "star": _ring(10, _UP, (1.0, 0.45)),
+    "hexagon": _ring(6, 0.0, (1.0,)),
     "vee": _ring(3, math.pi / 2, (1.0,)),
 }
 

@@ -15,7 +15,6 @@ from .primitives import draw_lines, draw_polyline
 from .spectrum_item import Reduced, SpectrumItem
 
 _CLICK_REACH = 5.0
-_LABEL_MIN_HEIGHT = 240
 _FOOT = 6
 _HEADROOM = 0.06
 _CALM_SHARE = 0.6
@@ -52,7 +51,7 @@ class SpectrumPlot(NavigableLane):
         return self.item.reduce(self.scale()) if self.item else []
 
     def draw(self, painter: QPainter) -> None:
-        self.labels.labelled = self.height() >= _LABEL_MIN_HEIGHT
+        self.labels.fit(self.height())
         if self.item is None:
             self._draw_empty(painter)
             return
