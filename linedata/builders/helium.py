@@ -126,5 +126,6 @@ def line_pairs(source: Path) -> list[dict[str, float]]:
                     "wave": wave, "wave_err": float(np.hypot(uncertain, 4e-7 * wave)),
                     "e_low": low.energy / 8065.543937, "loggf": float(np.log10(gf)),
                     "loggf_err": error, "spread": 0.0,
+                    "weight": up.multiplicity / 4, "n_up": up.n, "l_up": up.ell,
                 })
     return lines

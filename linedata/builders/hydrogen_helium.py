@@ -14,6 +14,7 @@ from hydrogenic import HELIUM_II, HYDROGEN, centroid
 NAMES = ["H I", "He I", "He II"]
 KEYS = ["Hydrogenic", "NIST_ASD"]
 SHORTEST, LONGEST = 1200.0, 25000.0
+COLUMNS = ("wave", "wave_err", "e_low", "loggf", "loggf_err", "spread")
 HIGHEST = {"H I": 40, "He II": 30}
 
 
@@ -37,7 +38,7 @@ def main() -> None:
     arguments = script_arguments(__doc__.splitlines()[0])
     groups = [formula_lines(HYDROGEN), line_pairs(arguments.source_dir), formula_lines(HELIUM_II)]
     rows = [row for group in groups for row in group]
-    lines = {key: np.array([row[key] for row in rows]) for key in rows[0]}
+    lines = {key: np.array([row[key] for row in rows]) for key in COLUMNS}
     sizes = [len(group) for group in groups]
     lines["species"] = np.repeat(np.arange(3), sizes)
     lines["source"] = np.repeat([0, 1, 0], sizes)

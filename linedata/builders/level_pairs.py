@@ -46,7 +46,8 @@ class State:
     n_eff: float
 
 
-def _parent_term(core: str) -> str:
+def parent_term(core: str) -> str:
+    """The last parent term of a core configuration ('3P'), '' without one."""
     found = re.findall(r"\((\d[A-Z])\*?(?:<([\d/]+)>)?\)", core)
     return found[-1][0] if found else ""
 
@@ -104,7 +105,7 @@ def _series_limit(source: Path, element: str, stage: int, core: str, limit: floa
     """Energy (cm-1) at which the outer electron of this core is free."""
     bare = re.sub(r"\(.*?\)\.?", "", core).rstrip(".")
     energies = _parent_energies(source, element, stage)
-    term = _parent_term(core)
+    term = parent_term(core)
     if not term:
         same = [energy for (configuration, _), energy in energies.items() if configuration == bare]
         return limit + (min(same) if same else 0.0)
