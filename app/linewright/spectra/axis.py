@@ -129,7 +129,8 @@ def velocity_to_wave(kind: str, value, rest: float):
     return rest * np.sqrt((1.0 + beta) / (1.0 - beta))
 
 
-def _through_wcs(header, hdus, count: int, number: int, what: str) -> np.ndarray:
+def _through_wcs(header, hdus, count: int, number: int) -> tuple[np.ndarray, str]:
+    """(world coordinates, their unit); look-up tables keep their unit, others become SI."""
     from astropy.wcs import WCS, FITSFixedWarning
 
     with warnings.catch_warnings():
@@ -138,7 +139,8 @@ def _through_wcs(header, hdus, count: int, number: int, what: str) -> np.ndarray
         pixels = np.zeros((count, wcs.naxis))
         pixels[:] = wcs.wcs.crpix - 1.0
         pixels[:, number - 1] = np.arange(count)
-        return wcs.all_pix2world(pixels, 0)[:, number - 1]
+        values = wcs.all_pix2world(pixels, 0)[:, number - 1]
+        return values, str(wcs.wcs.cunit[number - 1])
 
 
 def _standard(header, hdus, count: int, number: int, what: str) -> Axis | None:
@@ -150,11 +152,11 @@ def _standard(header, hdus, count: int, number: int, what: str) -> Axis | None:
     if kind not in _DEFAULT_UNIT and rest is None:
         _refuse_velocity(header, number, what)
         raise InputRefused(what, f"axis {code} has no rest wavelength", "add RESTWAV or RESTFRQ")
-    values = _through_wcs(header, hdus, count, number, what)
+    values, stated = _through_wcs(header, hdus, count, number)
     if kind not in _DEFAULT_UNIT:
         unit, values = METRE, velocity_to_wave(kind, values, rest)
     else:
-        unit = wave_unit(_DEFAULT_UNIT[kind])
+        unit = wave_unit(stated) or wave_unit(_DEFAULT_UNIT[kind])
     return Axis(values, unit, "air" if kind == "AWAV" else "vacuum", f"{code} axis")
 
 

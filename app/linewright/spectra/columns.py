@@ -29,6 +29,7 @@ _ERR = re.compile(
     r"|err_reduced|flux_?(?:unc\w*|sigma|sig|std))$"
 )
 _IVAR = re.compile(r"^(?:ivar|inv_?var\w*|invvar|inverse_?var\w*|flux_?ivar|ivar_?flux)$")
+_UNIT_SUFFIX = re.compile(r"_(nm|um|angstroms?|ang|aa|a|microns?)$")
 _MASK = re.compile(r"^(?:mask|bad|dq|qual|quality|flag|flags|data_?qual|data_?quality|and_?mask)$")
 
 
@@ -113,6 +114,7 @@ def role_of(info: ColumnInfo) -> str:
     if not info.numeric:
         return ""
     name = re.sub(r"[\[(].*$", "", info.name).strip().lower().replace("-", "_").replace(" ", "_")
+    name = _UNIT_SUFFIX.sub("", name) if len(name) > 3 else name
     for role, pattern in (("ivar", _IVAR), ("err", _ERR), ("mask", _MASK), ("wave", _LOG_WAVE),
                           ("wave", _WAVE), ("flux", _FLUX)):
         if pattern.match(name):
@@ -134,7 +136,7 @@ def column_unit(info: ColumnInfo) -> WaveUnit | None:
     inside = re.search(r"[\[(]([^\])]+)[\])]", info.name)
     if inside:
         return wave_unit(inside.group(1))
-    suffix = re.search(r"_(nm|um|angstroms?|aa|a|micron)$", name)
+    suffix = _UNIT_SUFFIX.search(name)
     return wave_unit(suffix.group(1)) if suffix else None
 
 

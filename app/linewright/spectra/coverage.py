@@ -19,12 +19,18 @@ _BLOCK = 64
 
 
 def local_step(wave: np.ndarray) -> np.ndarray:
-    """Median step around each step, over blocks of 64; shape (n-1,)."""
+    """Median step around each step, shape (n-1,).
+
+    The largest median among a block of 64 and its neighbours, so that a change of
+    dispersion inside a block is no gap.
+    """
     steps = np.diff(wave)
     if len(steps) <= _BLOCK:
         return np.full(len(steps), np.median(steps)) if len(steps) else steps
     whole = len(steps) // _BLOCK
     medians = np.median(steps[: whole * _BLOCK].reshape(whole, _BLOCK), axis=1)
+    padded = np.pad(medians, 1, mode="edge")
+    medians = np.maximum(np.maximum(padded[:-2], padded[2:]), medians)
     return medians[np.minimum(np.arange(len(steps)) // _BLOCK, whole - 1)]
 
 

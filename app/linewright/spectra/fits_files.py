@@ -131,10 +131,9 @@ def read_fits(opened: Opened, wanted: Wanted) -> Raw:
     check_fits_header(opened)
     from astropy.io import fits
 
-    source = opened.path if opened.data is None else opened.stream()
-    with warnings.catch_warnings():
+    with warnings.catch_warnings(), opened.stream() as stream:
         warnings.simplefilter("ignore")
-        with fits.open(source, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
+        with fits.open(stream, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
             _check_complete(hdus, opened)
             _check_hdu(hdus, wanted.hdu, opened.path)
             index, raw = _first(hdus, wanted, opened.path)

@@ -8,7 +8,7 @@ import warnings
 import numpy as np
 
 from ..errors import InputRefused
-from .columns import ColumnInfo
+from .columns import ColumnInfo, role_of
 from .opening import Opened
 
 _COMMENTS = ("#", ";", "!", "%", "//", "\\", "|")
@@ -70,13 +70,18 @@ class Layout:
         self._name(header)
 
     def _name(self, header: str) -> None:
+        """A header line names the columns; a comment does when it names wave and flux."""
         for line in (header, *reversed(self.comments)):
             for delimiter in (self.delimiter, None, ",", "|"):
                 names = [n for n in _split(line, delimiter) if n]
                 wordy = all(re.match(r"^[A-Za-zÅλµμ]", n) for n in names)
-                if len(names) == self.width and wordy:
+                if len(names) == self.width and wordy and (line is header or _telling(names)):
                     self.names = names
                     return
+
+
+def _telling(names: list[str]) -> bool:
+    return {"wave", "flux"} <= {role_of(ColumnInfo(name)) for name in names}
 
 
 def _decoded(opened: Opened) -> str:
@@ -91,12 +96,13 @@ def _decoded(opened: Opened) -> str:
 
 
 def _fast(opened: Opened, layout: Layout) -> np.ndarray | None:
+    marks = [mark for mark in _COMMENTS[:4] if mark != layout.delimiter]
     try:
         with opened.stream() as handle, warnings.catch_warnings():
             warnings.simplefilter("ignore")
             return np.loadtxt(handle, skiprows=layout.skip, ndmin=2,
-                              delimiter=layout.delimiter, comments=list(_COMMENTS[:4]))
-    except (ValueError, IndexError, UnicodeDecodeError):
+                              delimiter=layout.delimiter, comments=marks)
+    except (ValueError, TypeError, IndexError, UnicodeDecodeError):
         return None
 
 

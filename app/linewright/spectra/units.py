@@ -7,6 +7,7 @@ quantities: lambda = c/nu = hc/E = 1/wavenumber (CODATA 2018 exact constants).
 from __future__ import annotations
 
 import re
+import warnings
 from collections.abc import Callable
 from dataclasses import dataclass
 
@@ -110,7 +111,9 @@ def _from_astropy(word: str) -> WaveUnit | None:
     from astropy import units as u
 
     try:
-        unit = u.Unit(word)
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")
+            unit = u.Unit(word)
         factor = float((1.0 * unit).to_value(u.AA, equivalencies=u.spectral()))
     except (ValueError, TypeError, u.UnitConversionError):
         return None
