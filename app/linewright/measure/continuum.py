@@ -40,12 +40,44 @@ def fit_continuum(wave, flux, good, sigma, size: float, length: float = 1.0, rou
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
     for _ in range(rounds):
         level = np.maximum(level, floor)
-        run = np.interp(wave, centre, level)
+        run = smooth_run(wave, centre, level)
         samples = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])
         noise = np.array([np.median(sigma[b] / run[b]) for b in blocks])
         ratio, error = block_levels(samples, noise, weight)
         level = bridge_dips(centre, np.maximum(level * ratio, floor))
-    return centre, level, error
+    return centre, level, np.hypot(error, 0.25 * np.abs(_apart(centre, level)))
+
+
+def smooth_run(wave, centre, level) -> np.ndarray:
+    """Monotone cubic through the nodes (Fritsch & Butland 1984), flat beyond the ends."""
+    if len(centre) < 3:
+        return np.interp(wave, centre, level)
+    h, d = np.diff(centre), np.diff(level) / np.diff(centre)
+    slope = np.r_[d[0], np.zeros(len(d) - 1), d[-1]]
+    same_sign = d[:-1] * d[1:] > 0
+    w1, w2 = 2 * h[1:] + h[:-1], h[1:] + 2 * h[:-1]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        mean = (w1 + w2) / (w1 / d[:-1] + w2 / d[1:])
+    slope[1:-1] = np.where(same_sign, mean, 0.0)
+    at = np.clip(wave, centre[0], centre[-1])
+    i = np.clip(np.searchsorted(centre, at) - 1, 0, len(h) - 1)
+    t = (at - centre[i]) / h[i]
+    ends = level[i] * (1 + 2 * t) * (1 - t) ** 2 + level[i + 1] * t * t * (3 - 2 * t)
+    return ends + h[i] * (slope[i] * t * (1 - t) ** 2 - slope[i + 1] * t * t * (1 - t))
+
+
+def _apart(centre, level, reach: int = 1) -> np.ndarray:
+    """Relative distance of each node from the line through its neighbours, (k,); ends 0."""
+    out = np.zeros(len(level))
+    if len(level) <= 2 * reach:
+        return out
+    left, right = level[: -2 * reach], level[2 * reach :]
+    share = (centre[reach:-reach] - centre[: -2 * reach]) / (
+        centre[2 * reach :] - centre[: -2 * reach]
+    )
+    middle = left + share * (right - left)
+    out[reach:-reach] = level[reach:-reach] / np.maximum(middle, 1e-300) - 1.0
+    return out
 
 
 def _smooth(values: np.ndarray) -> np.ndarray:
@@ -57,27 +89,19 @@ def _smooth(values: np.ndarray) -> np.ndarray:
 
 
 def bridge_dips(centre: np.ndarray, level: np.ndarray) -> np.ndarray:
-    """Nodes that stand apart from the line through their neighbours are drawn to it.
+    """Isolated dips of the nodes are drawn up to the line through their neighbours.
 
-    A broad line (H alpha wings, a band) wider than a block lowers one node or two; the
-    continuum does not follow it. Apart means more than four robust sigmas (and 0.3 %).
+    A broad line (H alpha wings) wider than a block lowers one node or two; the continuum
+    does not follow it. A dip stands lower than four robust sigmas of such distances (and
+    0.3 %) but no more than 8 %: deeper ones are the spectrum's own shape.
     """
-    if len(level) < 5:
-        return level
     out = level.copy()
     for reach in (1, 2):
-        left, right = out[: -2 * reach], out[2 * reach :]
-        share = (centre[reach:-reach] - centre[: -2 * reach]) / (
-            centre[2 * reach :] - centre[: -2 * reach]
-        )
-        middle = left + share * (right - left)
-        apart = out[reach:-reach] / np.maximum(middle, 1e-300) - 1.0
+        apart = _apart(centre, out, reach)
+        if len(apart) < 2 * reach + 7:
+            break
         scatter = max(1.4826 * float(np.median(np.abs(apart))), 7.5e-4)
-        bad = np.abs(apart) > 4.0 * scatter
-        # only the worst of neighbours: a bad node spoils its neighbours' comparison
-        worst = np.abs(apart) >= np.maximum(
-            np.r_[0.0, np.abs(apart[:-1])], np.r_[np.abs(apart[1:]), 0.0]
-        )
-        change = bad & worst
-        out[reach:-reach][change] = middle[change]
+        deepest = apart <= np.minimum(np.r_[0.0, apart[:-1]], np.r_[apart[1:], 0.0])
+        dip = (apart < -4.0 * scatter) & (apart > -0.08) & deepest
+        out[dip] /= 1.0 + apart[dip]
     return out

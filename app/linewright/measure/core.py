@@ -8,7 +8,7 @@ import numpy as np
 
 from ..errors import InputRefused
 from ..progress import Progress
-from .continuum import fit_continuum
+from .continuum import fit_continuum, smooth_run
 from .detect import find_extrema, run_filters
 from .features import FeatureTable
 from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA
@@ -17,8 +17,9 @@ from .guess import first_guess
 from .matched import expected_false, threshold_for
 from .noise import estimate_noise
 from .options import Measurement, MeasureOptions, SegmentMeasure
+from .veil import owners, veil
 from .stretches import stretches, usable
-from .width import extrema_widths, width_nodes
+from .width import measure_width
 
 
 @dataclass(frozen=True, eq=False)
@@ -97,19 +98,27 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
         sigma = _sigma(segment, noise, warnings if round_ == 1 else [])
         size = _node_distance(wave, good, width)
         centre, level, error = fit_continuum(wave, flux, good, sigma, size, _length(noise))
-        run = np.interp(wave, centre, level)
+        run = smooth_run(wave, centre, level)
         y, relative = 1.0 - flux / run, sigma / run
-        width_w, width_f = _width(wave, y, relative, good, runs, noise, options)
-        width = np.interp(wave, width_w, width_f)
+        width = _width(wave, y, relative, good, runs, noise, options)
         pixels = width / np.gradient(wave)
         if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
             longest = max(1.0, float(np.median(pixels[good])) / 3.0)
             noise = estimate_noise(flux, good, runs, quiet, longest)
+    under = _veil(y, relative, runs, pixels, _length(noise))
     trace = Trace(wave, y, relative, good, width, np.interp(wave, centre, error),
-                  noise.correlation)
+                  noise.correlation, under)
     nodes = _nodes(trace, centre, level, error, pixels)
     return Prepared(trace, runs, nodes, run, pixels)
+
+
+def _veil(y, noise, runs, pixels, length):
+    under = np.zeros(len(y))
+    for r in runs:
+        under[r] = veil(y[r], noise[r], pixels[r], length)
+        under[r] -= veil(-y[r], noise[r], pixels[r], length)
+    return under
 
 
 def _length(noise) -> float:
@@ -118,8 +127,11 @@ def _length(noise) -> float:
 
 def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
     at = np.unique(np.linspace(0, len(trace.wave) - 1, 200).astype(int))
+    count = 16 * max(len(centre) - 1, 1) + 1
+    dense = np.interp(np.linspace(0, len(centre) - 1, count), np.arange(len(centre)), centre)
     return SegmentMeasure(
-        node_wave=centre, node_flux=level, node_err=error,
+        node_wave=dense, node_flux=smooth_run(dense, centre, level),
+        node_err=np.interp(dense, centre, error),
         noise_wave=trace.wave[at], noise=trace.noise[at], correlation=trace.correlation,
         width_wave=trace.wave[at], width=trace.width[at], width_pixels=pixels[at],
     )
@@ -132,11 +144,11 @@ def _assumed_width(wave, lag, options):
 
 
 def _node_distance(wave, good, width):
-    """150 line widths, but at least 12 nodes over the range and 300 samples a node."""
+    """150 line widths, but at least 12 nodes over the range and 100 samples a node."""
     typical = float(np.median(width[good]))
     step = float(np.median(np.gradient(wave)[good]))
     span = float(wave[good][-1] - wave[good][0])
-    return max(min(150.0 * typical, span / 12.0), 25.0 * typical, min(300 * step, span / 6.0))
+    return max(min(150.0 * typical, span / 12.0), 25.0 * typical, min(100 * step, span / 12.0))
 
 
 def _sigma(segment, noise, warnings):
@@ -159,19 +171,11 @@ def _sigma(segment, noise, warnings):
 
 
 def _width(wave, y, noise, good, runs, model, options):
+    """Line width in Angstrom at every sample; three independent samples without lines."""
     if options.resolution:
-        ends = wave[[0, -1]]
-        return ends, ends / options.resolution
-    found = [
-        extrema_widths(wave[r], np.where(good[r], y[r], 0.0), noise[r], max(1, model.lag))
-        for r in runs
-    ]
-    found = np.concatenate(found)
-    ends, values = width_nodes(found, wave[0], wave[-1])
-    least = 2.0 * np.gradient(wave)[[0, -1]]
-    if not np.all(np.isfinite(values)):
-        return ends, 3.0 * model.lag * least / 2.0
-    return ends, np.maximum(values, least)
+        return wave / options.resolution
+    width = measure_width(wave, y, noise, good, runs, model.correlation)
+    return 3.0 * model.lag * np.gradient(wave) if width is None else width
 
 
 def _quiet(y, noise, good, runs, pixels, model):
@@ -209,15 +213,24 @@ def _features(ready, filtered, threshold, segment) -> FeatureTable:
     index, sign, significance = map(np.concatenate, (index, sign, significance))
     limits = np.concatenate(limits).reshape(-1, 2)
     smooth = max(1, int(round(0.3 * np.median(ready.fwhm_pixels))))
-    start = first_guess(t, index, sign, smooth)
+    own = np.zeros(len(index), dtype=bool)
+    for s in (1, -1):
+        which = sign == s
+        own[which] = owners(index[which], s * t.y[index[which]], np.maximum(s * t.veil, 0.0))
+    start = first_guess(t, index, sign, own, smooth)
     group = group_features(start[:, 1], FWHM_PER_SIGMA * np.exp(start[:, 2]), limits[:, 0])
-    fitted = fit_features(t, start, limits, group)
-    return _table(ready, fitted, sign, significance, segment)
+    fitted = fit_features(t, start, limits, group, own)
+    return _table(ready, fitted, own, sign, significance, segment)
 
 
-def _table(ready, fitted, sign, significance, segment) -> FeatureTable:
+def _table(ready, fitted, own, sign, significance, segment) -> FeatureTable:
     p, e = fitted.params, fitted.errors
     m = len(p)
+    base = np.interp(p[:, 1], ready.trace.wave, ready.trace.veil)
+    base = np.where(own, 0.0, np.minimum(base, 0.98))
+    p, e = p.copy(), e.copy()
+    p[:, 0] /= 1.0 - base
+    e[:, [0, 3]] /= (1.0 - base)[:, None]
     fwhm = FWHM_PER_SIGMA * np.exp(p[:, 2])
     counts = np.bincount(fitted.group, minlength=1) if m else np.zeros(1, dtype=int)
     blend = counts[fitted.group] > 1 if m else np.zeros(0, dtype=bool)
@@ -225,15 +238,16 @@ def _table(ready, fitted, sign, significance, segment) -> FeatureTable:
     start = np.maximum.accumulate(np.where(first, np.arange(m), 0)) if m else np.zeros(0, int)
     component = np.where(blend, np.arange(m) - start + 1, 0)
     flags = [
-        " ".join(w for w, on in (("blend", b), ("fallback", f)) if on)
-        for b, f in zip(blend, fitted.trouble)
+        " ".join(w for w, on in (("blend", b), ("fallback", f), ("wing", w)) if on)
+        for b, f, w in zip(blend, fitted.trouble, np.abs(base) > 0.02)
     ]
     return FeatureTable(
         number=np.arange(1, m + 1), segment=np.full(m, segment), component=component,
         sign=sign, wave=p[:, 1], wave_err=e[:, 1], significance=significance,
         depth=p[:, 0], depth_err=e[:, 0], fwhm=fwhm, fwhm_err=e[:, 2],
         ew=1e3 * GAUSSIAN_AREA * p[:, 0] * fwhm, ew_err=1e3 * e[:, 3],
-        continuum=np.interp(p[:, 1], ready.trace.wave, ready.flux_level), flags=tuple(flags),
+        continuum=np.interp(p[:, 1], ready.trace.wave, ready.flux_level) * (1.0 - base),
+        flags=tuple(flags),
     )
 
 

@@ -11,10 +11,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, spread_noise
+from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, profiles, spread_noise
 
 REACH = 1.3  # widths on either side of a window's outer members
 CLOSE = 1.3  # features nearer than this many mean widths share a fit
+BROAD = 2.5  # line widths beyond which only the core of a feature is fitted
+CORE = 0.65  # widths on either side of a core
 MOST = 5  # members of a group
 LONGEST = 1500  # samples of a window
 
@@ -22,8 +24,8 @@ LONGEST = 1500  # samples of a window
 @dataclass(frozen=True, eq=False)
 class Trace:
     """One segment ready for fitting: vacuum wave, y = 1 - flux/continuum, noise of y,
-    usable samples, line width in Angstrom and relative continuum error, each (n,), and
-    the noise's autocorrelation."""
+    usable samples, line width in Angstrom, relative continuum error and veil (broad
+    absorption, negative in emission), each (n,), and the noise's autocorrelation."""
 
     wave: np.ndarray
     y: np.ndarray
@@ -32,6 +34,7 @@ class Trace:
     width: np.ndarray
     level_err: np.ndarray
     correlation: np.ndarray
+    veil: np.ndarray
 
 
 @dataclass(frozen=True, eq=False)
@@ -75,8 +78,9 @@ def group_features(centre, fwhm, run) -> np.ndarray:
     return group
 
 
-def _windows(trace: Trace, first, last, centre_lo, centre_hi, rest):
-    """Windows (padded) of the samples from ``first`` to ``last`` (exclusive), (g,)."""
+def _windows(trace: Trace, first, last, rest):
+    """Windows (padded) of the samples from ``first`` to ``last`` (exclusive), (g,);
+    rest (n,) is subtracted."""
     p = int((last - first).max())
     index = first[:, None] + np.arange(p)[None, :]
     inside = index < last[:, None]
@@ -119,11 +123,12 @@ def _buckets(size, most: int = 400_000):
         start = stop
 
 
-def fit_features(trace: Trace, start, run_limits, group, sweeps: int = 3) -> Fitted:
+def fit_features(trace: Trace, start, run_limits, group, own, sweeps: int = 3) -> Fitted:
     """Fit all features of a segment.
 
     start: (m, 3) a, c, ln s sorted by c; run_limits: (m, 2) first and last+1 sample of
-    the stretch each lies in; group: (m,) from ``group_features``.
+    the stretch each lies in; group: (m,) from ``group_features``; own: (m,) True for the
+    source of a veil, measured against the bare continuum with the rest of its group.
     """
     params = start.copy()
     m = len(params)
@@ -132,14 +137,14 @@ def fit_features(trace: Trace, start, run_limits, group, sweeps: int = 3) -> Fit
     members_of = np.split(np.arange(m), np.flatnonzero(np.diff(group)) + 1)
     sizes = np.array([len(x) for x in members_of])
     for sweep in range(sweeps):
-        total = component_sum(trace.wave, params)
+        bare, base = backgrounds(trace, params, own)
         fresh = params.copy()
         for n in np.unique(sizes):
             rows = np.array([x for x in members_of if len(x) == n])
-            first, last = _reach(trace, params, rows, run_limits)
+            first, last = _reach(trace, params, rows, run_limits, own)
             for part in _buckets(last - first):
                 one = _Batch(trace, rows[part], first[part], last[part], start)
-                fit, windows = one.fit(params, total)
+                fit, windows = one.fit(params, bare, base, own[rows[part]].any(axis=1))
                 fresh[rows[part]] = fit.params
                 if sweep == sweeps - 1:
                     one.finish(fit, windows, errors, misfit, trouble)
@@ -147,11 +152,23 @@ def fit_features(trace: Trace, start, run_limits, group, sweeps: int = 3) -> Fit
     return Fitted(params, errors, group, trouble, misfit)
 
 
-def _reach(trace, params, rows, limits):
-    """First and last+1 sample of each group's window."""
+def backgrounds(trace, params, own):
+    """(all components, all components with the veil under the narrow ones), each (n,)."""
+    narrow = component_sum(trace.wave, params[~own])
+    source = component_sum(trace.wave, params[own])
+    veiled = np.where(trace.veil >= 0, np.maximum(trace.veil, source),
+                      np.minimum(trace.veil, source))
+    return narrow + source, narrow + veiled
+
+
+def _reach(trace, params, rows, limits, own):
+    """First and last+1 sample of each group's window; only the core of broad sources."""
     fwhm = FWHM_PER_SIGMA * np.exp(params[:, 2])
-    low = (params[:, 1] - REACH * fwhm)[rows].min(axis=1)
-    high = (params[:, 1] + REACH * fwhm)[rows].max(axis=1)
+    at = np.minimum(np.searchsorted(trace.wave, params[:, 1]), len(trace.wave) - 1)
+    broad = own & (fwhm > BROAD * trace.width[at])
+    half = np.where(broad, CORE, REACH) * fwhm
+    low = (params[:, 1] - half)[rows].min(axis=1)
+    high = (params[:, 1] + half)[rows].max(axis=1)
     first = np.maximum(np.searchsorted(trace.wave, low), limits[rows[:, 0], 0])
     last = np.minimum(np.searchsorted(trace.wave, high) + 1, limits[rows[:, 0], 1])
     return first, np.clip(last, first + 4, first + LONGEST)
@@ -167,15 +184,13 @@ class _Batch:
     last: np.ndarray
     start: np.ndarray
 
-    def fit(self, params, total) -> tuple[Fit, Windows]:
-        index, windows = _windows(self.trace, self.first, self.last, None, None,
-                                  np.zeros_like(total))
+    def fit(self, params, bare, base, with_source) -> tuple[Fit, Windows]:
+        index, plain = _windows(self.trace, self.first, self.last, bare)
+        _, veiled = _windows(self.trace, self.first, self.last, base)
         own = params[self.rows]
-        from .gauss import profiles
-
-        mine, _ = profiles(windows.x, own)
-        y = np.where(windows.weight > 0, windows.y - total[index] + mine, 0.0)
-        windows = Windows(windows.x, y, windows.weight)
+        mine, _ = profiles(plain.x, own)
+        y = np.where(with_source[:, None], plain.y, veiled.y) + mine
+        windows = Windows(plain.x, np.where(plain.weight > 0, y, 0.0), plain.weight)
         low, high = self.bounds()
         return fit_windows(windows, own, low, high), windows
 

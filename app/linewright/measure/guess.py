@@ -4,23 +4,28 @@ from __future__ import annotations
 
 import numpy as np
 
+from .veil import running_mean
 
-def first_guess(trace, index, sign, smooth: int):
+
+def first_guess(trace, index, sign, own, smooth: int):
     """(m, 3) a, c, ln s for features at sample ``index`` with ``sign`` (m,).
 
     The width is twice the shorter of the two distances to half height; flanks end at
-    the next feature's mid-way point. Never narrower than 0.8 of the line width.
+    the next rise. Sources of a veil (own) are seen from the continuum, the others from
+    the veil. Never narrower than 0.8 of the line width.
     """
-    kernel = np.ones(smooth) / smooth
-    y = np.convolve(trace.y, kernel, mode="same") if smooth > 1 else trace.y
-    height = np.abs(y[index])
+    tame = running_mean(trace.y, smooth + 1 - smooth % 2)
     step = np.gradient(trace.wave)[index]
-    half = np.stack([_flank(sign, y, index, height, d) for d in (-1, 1)])
-    fwhm = 2.0 * half.min(axis=0) * step
+    fwhm, height = np.empty(len(index)), np.empty(len(index))
+    for which, y in ((own, tame), (~own, tame - trace.veil)):
+        at, s = index[which], sign[which]
+        height[which] = np.maximum(s * y[at], 0.0)
+        half = np.stack([_flank(s, y, at, np.maximum(height[which], 1e-9), d) for d in (-1, 1)])
+        fwhm[which] = 2.0 * half.min(axis=0) * step[which]
     width = trace.width[index]
     fwhm = np.clip(fwhm, 0.8 * width, 60.0 * width)
     floor = 1.5 * trace.noise[index] / np.sqrt(smooth)
-    a = sign * np.maximum(np.where(sign * y[index] > 0, height, 0.0), floor)
+    a = sign * np.maximum(height, floor)
     return np.c_[a, trace.wave[index], np.log(fwhm / 2.3548200450309493)]
 
 

@@ -20,6 +20,7 @@ UP = (8.0, 40.0, 200.0, 1000.0)  # scales of emission, in sigmas
 PRIOR = np.array([0.5] + [0.4 / len(DOWN)] * len(DOWN) + [0.1 / len(UP)] * len(UP))
 PRIOR_SAMPLES = 10.0
 OUTLIER = 1e-6
+EMISSION_COST = 0.5  # log odds per independent sample against a spectrum all emission
 SAMPLES = 128  # quantiles that stand for a block
 ROUNDS = 8
 _STEP = 0.005
@@ -66,7 +67,9 @@ def score_levels(samples, levels, sigma, weight) -> np.ndarray:
         share = counts + prior
         share /= share.sum(axis=-1, keepdims=True)
     total = (density @ share[..., None])[..., 0]
-    return (np.log(total) * each).sum(axis=-1) + (np.log(share) * prior).sum(axis=-1)
+    lifted = share[..., -len(UP) :].sum(axis=-1) * weight[:, None] * samples.shape[1]
+    fit = (np.log(total) * each).sum(axis=-1) + (np.log(share) * prior).sum(axis=-1)
+    return fit - EMISSION_COST * lifted
 
 
 def block_levels(samples, sigma, weight):
