@@ -7,7 +7,7 @@ import numpy as np
 from .model import Candidate, Claim, standing_of
 from .entries import SHARE_EXPONENT
 from .mixture import Solution
-from .populations import POPULATIONS
+from .populations import SIGNS, UNGRADED
 
 KEPT = 6  # candidates kept per feature
 BLEND_SHARE = 0.2  # contributors of at least this share are listed
@@ -106,7 +106,7 @@ class _Builder:
     def _depth(self, entry: int) -> float:
         """Central depth the learned relation predicts for the entry's group."""
         population = int(self.s.problem.entries.population[entry])
-        if POPULATIONS[population] not in ("stellar", "telluric", "interstellar"):
+        if population in UNGRADED or SIGNS[population] < 0:
             return float("nan")
         if not np.any(np.isfinite(self.s.problem.features.strength)):
             return float("nan")
@@ -120,7 +120,7 @@ class _Builder:
         half = self.s.problem.group_half_width[best]
         low, high = np.searchsorted(e.wave, [e.wave[best] - half, e.wave[best] + half])
         near = np.arange(low, high)
-        near = near[(e.sign[near] == e.sign[best]) & (near != best)]
+        near = near[(e.population[near] == e.population[best]) & (near != best)]
         relative = 10.0 ** (SHARE_EXPONENT * (self.s.strength[near] - self.s.strength[best]))
         share = np.minimum(self.s.groups.share[best] * relative, 1.0)
         listed = np.nonzero(share >= BLEND_SHARE)[0]

@@ -11,6 +11,7 @@ BIN = 0.2  # dex
 LOW, HIGH = -4.0, 6.0
 CENTRES = np.arange(LOW + BIN / 2, HIGH, BIN)
 FLOOR, CEILING = 1e-5, 0.985  # lists have errors even for the strongest lines
+PRIOR_LINES = 0.4  # lines per bin that the usual form is worth before anything is seen
 SLOPE = 1.5  # per dex, of the two-parameter form used when features are few
 
 
@@ -44,7 +45,8 @@ def learn_detection(strength, seen, exposure, features: float) -> DetectionCurve
     index = bin_of(strength)
     hits = np.bincount(index, seen, len(CENTRES))
     tries = np.bincount(index, exposure, len(CENTRES))
-    form = _best_form(hits, tries)
+    usual = threshold_form(0.9, 0.0).value
+    form = _best_form(hits + PRIOR_LINES * usual, tries + PRIOR_LINES)
     if features < 300:
         return form
     from scipy.optimize import isotonic_regression

@@ -49,11 +49,10 @@ def join(parts: list[Entries]) -> Entries:
 
 @dataclass(frozen=True, eq=False)
 class Groups:
-    """What stands within one resolution element of each entry (same sign).
+    """What stands within one resolution element of each entry (same population).
 
     share: of the softened predicted strength, 0-1
     total: log10 of the summed strength; centroid: strength-weighted wavelength, Angstrom
-    first, last: the neighbours' slice in the sign-wise sorted order held in ``order``
     """
 
     share: np.ndarray
@@ -66,17 +65,16 @@ def group_half_width(fwhm):
     return np.maximum(MIN_RESOLUTION, RESOLUTION_SHARE * np.asarray(fwhm, dtype=float))
 
 
-def group(wave, strength, sign, half_width) -> Groups:
+def group(wave, strength, population, half_width) -> Groups:
     """Shares, totals and centroids of lines closer than ``half_width`` (Angstrom, per entry).
 
-    All arrays of shape (n,), ``wave`` ascending.
+    All arrays of shape (n,), ``wave`` ascending. Only lines of one population share: the
+    strengths of different ones stand on different scales, and they compete as rivals.
     """
     n = len(wave)
     share, total, centroid = np.ones(n), np.array(strength, dtype=float), np.array(wave, float)
-    for s in (ABSORPTION, EMISSION):
-        rows = np.nonzero(sign == s)[0]
-        if len(rows) == 0:
-            continue
+    for kind in np.unique(population):
+        rows = np.nonzero(population == kind)[0]
         w, top = wave[rows], float(np.max(strength[rows]))
         linear = 10.0 ** (strength[rows] - top)
         soft = linear**SHARE_EXPONENT

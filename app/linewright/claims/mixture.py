@@ -21,6 +21,7 @@ from .unlisted import Null, learn_null
 
 ROUNDS = 12
 TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.05, 3.5, 0.03  # heavy tail of position errors
+ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
 STRENGTH_TAIL, STRENGTH_RANGE = 0.07, 8.0  # share and width (dex) of strengths gone wrong
 CENTRING = 0.03  # of the FWHM: asymmetries and blends limit any centroid
 
@@ -43,7 +44,7 @@ class Solution:
     """Marginals over the pairs with the learned state.
 
     feature, entry: (p,) the pairs; probability: (p,); unlisted: (f,); missing: per entry;
-    offset_sigma: (p,) position offset in sigma; groups: shares per entry;
+    offset_sigma, sigma: (p,) position offset in sigma, and that sigma in Angstrom; groups: shares per entry;
     strength: (n,) predicted strengths with species offsets
     """
 
@@ -54,6 +55,7 @@ class Solution:
     unlisted: np.ndarray
     missing: np.ndarray
     offset_sigma: np.ndarray
+    sigma: np.ndarray
     groups: Groups
     strength: np.ndarray
     state: State
@@ -106,11 +108,11 @@ class _Step:
 def _expect(problem: Problem, pairs: _Pairs, state: State) -> _Step:
     e, f = problem.entries, problem.features
     strength = e.strength + state.offsets[e.species]
-    groups = group(e.wave, strength, e.sign, problem.group_half_width)
+    groups = group(e.wave, strength, e.population, problem.group_half_width)
     shows = _per_population(e.population, groups.total, state.detection) * groups.share
     position, sigma, offset = _position(problem, pairs, state, groups)
-    strengths = _strength_likelihood(problem, pairs, state, groups)
     density, p0 = state.null.at(f.sign, f.strength)
+    strengths = _strength_likelihood(problem, pairs, state, groups, p0)
     likelihood = shows[pairs.entry] * position * strengths
     absent = 1.0 - shows[pairs.entry] * pairs.covered[pairs.entry] if problem.complete else 1.0
     odds = likelihood / (absent * (density * p0)[pairs.feature])
@@ -150,12 +152,16 @@ def _normal(x, s):
     return np.exp(-0.5 * (x / s) ** 2) / (s * np.sqrt(2 * np.pi))
 
 
-def _strength_likelihood(problem, pairs, state, groups):
-    """Density of the measured strength given the line's group; 1 where not measured."""
+def _strength_likelihood(problem, pairs, state, groups, p0):
+    """Density of the measured strength given the line's group; flat where strengths are not
+    predicted, the null's own (no evidence) where none was measured."""
     e = problem.entries
-    total, value = groups.total[pairs.entry], np.ones(len(pairs.entry))
+    total, value = groups.total[pairs.entry], p0[pairs.feature].copy()
     error = problem.features.strength_err[pairs.feature]
     for k, relation in enumerate(state.relation):
+        if k in problem.ungraded:
+            value[(e.population[pairs.entry] == k) & np.isfinite(pairs.m)] = ANY_STRENGTH
+            continue
         here = (e.population[pairs.entry] == k) & np.isfinite(pairs.m)
         s = np.hypot(relation.scatter, np.nan_to_num(error[here]))
         z = pairs.m[here] - relation(total[here])
@@ -214,10 +220,13 @@ def _learn_offsets(problem, pairs, step: _Step, state: State) -> State:
             problem.species,
             state.detection[k],
         )
+        table = table + value
+        if k in problem.ungraded:
+            continue
         mine = (e.population[pairs.entry] == k) & np.isfinite(pairs.m) & (p > 0.05)
         who = pairs.entry[mine]
         relation = state.relation[k]
-        value = value + strength_log_likelihood(
+        table = table + strength_log_likelihood(
             pairs.m[mine] - relation(e.strength[who]),
             relation.slope(step.strength[who]),
             max(relation.scatter, 0.2),
@@ -225,7 +234,6 @@ def _learn_offsets(problem, pairs, step: _Step, state: State) -> State:
             e.species[who],
             problem.species,
         )
-        table = table + value
     mean, error = best_offsets(table)
     return replace(state, offsets=mean, offset_errors=error)
 
@@ -239,6 +247,7 @@ def _finish(problem, pairs, step: _Step, state: State) -> Solution:
         step.marginals.unlisted,
         step.marginals.missing,
         step.offset,
+        step.sigma,
         step.groups,
         step.strength,
         state,

@@ -15,9 +15,14 @@ from ..spectra.medium import C_KM_S
 from .entries import ABSORPTION, EMISSION, Entries, join
 from .problem import inside
 
-STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY = range(5)
-POPULATIONS = ("stellar", "telluric", "interstellar", "nebular", "sky")
-SIGNS = (ABSORPTION, ABSORPTION, ABSORPTION, EMISSION, EMISSION)
+STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY, HYDROGEN = range(6)
+POPULATIONS = ("stellar", "telluric", "interstellar", "nebular", "sky", "hydrogen")
+ORIGIN_OF = ("stellar", "telluric", "interstellar", "nebular", "sky", "stellar")
+SIGNS = (ABSORPTION, ABSORPTION, ABSORPTION, EMISSION, EMISSION, ABSORPTION)
+# Populations whose central depths the strengths do not predict: Stark-broadened hydrogen
+# and helium, clouds of unknown column, sky lines of unknown subtraction.
+UNGRADED = (INTERSTELLAR, SKY, HYDROGEN)
+BROAD_SPECIES = ("H I", "He I", "He II")
 DEEPEST = 3.2  # dex below the weakest detectable line: beyond it a line cannot matter
 
 
@@ -33,7 +38,7 @@ class Component:
 
     @property
     def origin(self) -> str:
-        return POPULATIONS[self.population]
+        return ORIGIN_OF[self.population]
 
 
 def strengths(catalogue: LineCatalogue, population: int, absorption):
@@ -43,8 +48,10 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     """
     origin = catalogue.origin
     nothing = np.full(len(catalogue), np.nan)
-    if population == STELLAR:
-        return np.where(origin == ORIGINS.index("stellar"), absorption, nothing)
+    if population in (STELLAR, HYDROGEN):
+        broad = np.isin(catalogue.species, _broad_indices(catalogue))
+        wanted = broad == (population == HYDROGEN)
+        return np.where((origin == ORIGINS.index("stellar")) & wanted, absorption, nothing)
     if population == TELLURIC:
         return np.where(
             origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref) + 2.0, nothing
@@ -56,6 +63,10 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
         return np.where(here, np.nan_to_num(catalogue.emission), nothing)
     here = origin == ORIGINS.index("interstellar")
     return np.where(here, np.nan_to_num(catalogue.loggf) - 0.5, nothing)
+
+
+def _broad_indices(catalogue) -> list[int]:
+    return [i for i, name in enumerate(catalogue.species_names) if name in BROAD_SPECIES]
 
 
 def zero_point(strength, observed, coverage, features: int) -> float:
@@ -76,9 +87,10 @@ def predict(catalogue, absorption, component: Component, index: int, context) ->
     strength = strengths(catalogue, component.population, absorption) + component.log_ratio
     factor = 1.0 + component.velocity / C_KM_S
     observed = catalogue.wave * factor
-    if component.population in (STELLAR, NEBULAR):
-        sign = SIGNS[component.population]
-        strength = strength - zero_point(strength, observed, coverage, counts[int(sign < 0)])
+    if component.population in (STELLAR, NEBULAR, HYDROGEN):
+        emission = component.population == NEBULAR
+        scale = strength if emission else absorption
+        strength = strength - zero_point(scale, observed, coverage, counts[int(emission)])
     near = inside(observed, coverage + np.array([-2.0, 2.0]))
     rows = np.nonzero(near & (strength > -DEEPEST))[0]
     error = np.hypot(catalogue.wave_err[rows], observed[rows] * component.error / C_KM_S)

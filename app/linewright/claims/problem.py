@@ -38,6 +38,7 @@ class Problem:
     every detectable feature inside it is in the list (else absence is no evidence)
     group_half_width: lines closer than this make one feature, Angstrom, per entry
     populations: number of strength populations; species: number of species indices
+    ungraded: populations whose depths are not predicted
     """
 
     features: FeatureData
@@ -47,6 +48,7 @@ class Problem:
     group_half_width: np.ndarray
     populations: int
     species: int
+    ungraded: tuple[int, ...] = ()
 
     def length(self) -> float:
         return float(np.sum(self.coverage[:, 1] - self.coverage[:, 0]))

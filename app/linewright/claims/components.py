@@ -1,0 +1,153 @@
+"""Which velocity components a spectrum shows, and the declared velocity."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from .interstellar import find_clouds
+from .model import VelocityResult
+from .populations import HYDROGEN, NEBULAR, SKY, STELLAR, TELLURIC, Component
+from .temperature import COARSE
+from .velocity import emission_vote, refine, stellar_vote, telluric_vote
+from .voting import DECLARE_MARGIN, Vote
+
+BROAD_ERROR = 2.0  # km/s: pressure shifts and asymmetric wings of hydrogen and helium
+
+
+@dataclass(frozen=True, eq=False)
+class Found:
+    """Components, the velocity with its margin, and the vote's best temperature (K)."""
+
+    components: tuple[Component, ...]
+    velocity: VelocityResult
+    temperature: float
+    has_star: bool
+    warnings: tuple[str, ...] = ()
+
+
+def find_components(setting, progress) -> Found:
+    """Votes for star, nebula and telluric lines; what was given is not searched."""
+    f, o = setting.features, setting.options
+    star, temperature = _star(setting, progress)
+    nebula = emission_vote(f, setting.catalogue, o.velocity_range)
+    main, how = _main(setting, star, nebula)
+    warnings = _doubts(main, how)
+    components = []
+    if np.any(f.sign > 0):
+        components.append(Component(STELLAR, main.velocity))
+        components.append(Component(HYDROGEN, main.velocity))
+    if np.any(f.sign < 0):
+        components.append(Component(NEBULAR, _emission_velocity(nebula, main)))
+        components.append(Component(SKY, 0.0, 0.5 if o.frame == "topocentric" else 15.0))
+    telluric = telluric_vote(f, setting.catalogue, o.frame, o.velocity_range)
+    if np.isfinite(telluric.velocity):
+        components.append(_telluric(telluric, o.frame))
+    has_star = bool(components) and components[0].population == STELLAR
+    return Found(tuple(components), main, temperature, has_star, warnings)
+
+
+def _star(setting, progress) -> tuple[Vote, float]:
+    """The best vote over temperatures and that temperature."""
+    o = setting.options
+    tried = COARSE if o.temperature is None else (o.temperature,)
+    best, best_t = None, tried[0]
+    for i, t in enumerate(tried):
+        progress.report("voting on the velocity", i / len(tried))
+        result = stellar_vote(
+            setting.features, setting.catalogue, setting.absorption(t), o.velocity_range
+        )
+        if best is None or result.score.max() > best.score.max() + 3.0:
+            best, best_t = result, t
+    return best, float(best_t)
+
+
+def _main(setting, star: Vote, nebula: Vote):
+    """The vote that speaks for the object: the clearer of absorption and emission."""
+    o = setting.options
+    if o.velocity is not None:
+        vote = star if star.margin >= nebula.margin else nebula
+        given = VelocityResult(
+            float(o.velocity), 0.0, vote.margin, True, vote.rivals, vote.grid, vote.score, "given"
+        )
+        return given, "given"
+    chosen, how = (star, "absorption") if star.margin >= nebula.margin else (nebula, "emission")
+    result = VelocityResult(
+        chosen.velocity,
+        chosen.error,
+        chosen.margin,
+        chosen.declared,
+        chosen.rivals,
+        chosen.grid,
+        chosen.score,
+        "voting",
+    )
+    return result, how
+
+
+def _emission_velocity(nebula: Vote, main: VelocityResult) -> float:
+    return nebula.velocity if nebula.declared else main.velocity
+
+
+def _telluric(vote: Vote, frame: str) -> Component:
+    """Where telluric lines stand; wide while the vote is not clear."""
+    if vote.declared:
+        return Component(TELLURIC, vote.velocity, vote.error)
+    if frame in ("topocentric", "geocentric"):
+        return Component(TELLURIC, 0.0, 0.5)
+    return Component(TELLURIC, vote.velocity, 3.0)
+
+
+def _doubts(main: VelocityResult, how: str) -> tuple[str, ...]:
+    if how == "given" or main.declared:
+        return ()
+    if not np.isfinite(main.velocity):
+        return ("too few features to find a velocity",)
+    return (
+        f"velocity {main.velocity:+.1f} km/s is not declared: its margin {main.margin:.1f} "
+        f"over the best rival is below {DECLARE_MARGIN:.0f}",
+    )
+
+
+def refined(setting, found: Found, solution) -> Found:
+    """Velocities corrected by confident claims; interstellar clouds looked for."""
+    components, velocity = [], found.velocity
+    for i, component in enumerate(found.components):
+        shift, error = refine(solution, i)
+        given = setting.options.velocity is not None
+        fixed = given and component.population in (STELLAR, NEBULAR)
+        if np.isfinite(error) and not fixed:
+            component = replace(component, velocity=component.velocity + shift, error=error)
+        components.append(component)
+    components = _tie_hydrogen(components)
+    main = _spokesman(found, solution)
+    if main is not None and found.velocity.how != "given":
+        chosen = components[main]
+        if chosen.error > 0:
+            velocity = replace(velocity, velocity=chosen.velocity, error=chosen.error)
+    components += find_clouds(setting, solution, velocity.velocity)
+    return replace(found, components=tuple(components), velocity=velocity)
+
+
+def _spokesman(found: Found, solution) -> int | None:
+    """The stellar or nebular component with most confident claims."""
+    sure = solution.probability > 0.8
+    owner = solution.problem.entries.component[solution.entry[sure]]
+    counts = np.bincount(owner, minlength=len(found.components))
+    usable = [i for i, c in enumerate(found.components) if c.population in (STELLAR, NEBULAR)]
+    best = max(usable, key=lambda i: counts[i], default=None)
+    return best if best is not None and counts[best] > 0 else None
+
+
+def _tie_hydrogen(components: list[Component]) -> list[Component]:
+    """Broad lines stand at the star's velocity, but their centroids are worse known."""
+    star = next((c for c in components if c.population == STELLAR), None)
+    if star is None:
+        return components
+    return [
+        replace(c, velocity=star.velocity, error=max(star.error, BROAD_ERROR))
+        if c.population == HYDROGEN
+        else c
+        for c in components
+    ]

@@ -1,0 +1,156 @@
+"""From a feature table to claims: velocity, temperature, mixture, Roll call, Orphans."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..lines.strengths import absorption_strength
+from ..progress import Progress
+from ..spectra.medium import C_KM_S
+from .build import build_claims
+from .components import Found, find_components, refined
+from .entries import group_half_width
+from .features_in import feature_data
+from .mixture import solve_mixture
+from .model import Claim, Orphan, RollRow, VelocityResult
+from .options import ClaimOptions
+from .orphans import rank_orphans
+from .populations import POPULATIONS, UNGRADED, Component, assemble
+from .problem import Problem
+from .roll_call import call_roll
+from .temperature import electron_pressure, neighbours, peak
+
+LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
+PROFILE_ROUNDS = 5
+
+
+@dataclass(frozen=True, eq=False)
+class Identification:
+    """What the engine says of one feature table."""
+
+    claims: tuple[Claim, ...]
+    velocity: VelocityResult
+    components: tuple[Component, ...]
+    temperature: float
+    log_pe: float
+    roll_call: tuple[RollRow, ...]
+    orphans: tuple[Orphan, ...]
+    warnings: tuple[str, ...]
+    solution: object
+
+
+class Setting:
+    """The fixed part of an identification: features, catalogue rows in reach, options."""
+
+    def __init__(self, features, catalogue, coverage, options: ClaimOptions):
+        self.features, self.options = features, options
+        self.data = feature_data(features)
+        self.coverage = np.asarray(coverage, dtype=float).reshape(-1, 2)
+        low, high = options.velocity_range
+        reach = max(abs(low), abs(high), abs(options.velocity or 0.0)) / C_KM_S + 1e-4
+        self.catalogue = _allowed(
+            catalogue.between(
+                self.coverage[0, 0] / (1 + reach) - 3, self.coverage[-1, 1] / (1 - reach) + 3
+            ),
+            options.species,
+        )
+        count = [int(np.sum(features.sign > 0)), int(np.sum(features.sign < 0))]
+        if not options.complete:
+            length = float(np.sum(self.coverage[:, 1] - self.coverage[:, 0]))
+            count[0] = max(count[0], int(LIKELY_DENSITY * length))
+        self.counts = tuple(count)
+
+    def absorption(self, temperature: float):
+        """Absorption strengths of the catalogue rows at a temperature in K."""
+        o = self.options
+        pe = electron_pressure(temperature) if o.log_pe is None else o.log_pe
+        return absorption_strength(
+            self.catalogue, temperature, pe, o.metallicity, dict(o.abundances)
+        )
+
+    def problem(self, components, temperature: float) -> Problem:
+        entries = assemble(
+            self.catalogue, self.absorption(temperature), components, self.coverage, self.counts
+        )
+        return Problem(
+            self.data,
+            entries,
+            self.coverage,
+            self.options.complete,
+            group_half_width(self._width_at(entries.wave)),
+            len(POPULATIONS),
+            len(POPULATIONS) * len(self.catalogue.species_names),
+            UNGRADED,
+        )
+
+    def _width_at(self, wave):
+        """Typical narrow FWHM (lower quartile of the features') scaled with wavelength."""
+        known = np.isfinite(self.features.fwhm)
+        if not np.any(known):
+            return np.zeros(len(wave))
+        relative = self.features.fwhm[known] / self.features.wave[known]
+        return np.percentile(relative, 25) * np.asarray(wave)
+
+
+def _allowed(catalogue, species):
+    if not species:
+        return catalogue
+    wanted = [i for i, name in enumerate(catalogue.species_names) if name in species]
+    return catalogue.take(np.isin(catalogue.species, wanted))
+
+
+def identify(features, coverage, catalogue, options=ClaimOptions(), progress=None):
+    """Weigh every feature against every predicted line in reach: an Identification.
+
+    features: FeatureTable; coverage: searched vacuum ranges [(low, high), ...] in the
+    spectrum's frame; catalogue: LineCatalogue; options: ClaimOptions.
+    """
+    progress = progress or Progress()
+    if len(features) == 0:
+        return _nothing(options)
+    setting = Setting(features, catalogue, coverage, options)
+    found = find_components(setting, progress.part(0.0, 0.3))
+    temperature = _temperature(setting, found, progress.part(0.3, 0.6))
+    solution = solve_mixture(
+        setting.problem(found.components, temperature), progress=progress.part(0.6, 0.75)
+    )
+    found = refined(setting, found, solution)
+    solution = solve_mixture(
+        setting.problem(found.components, temperature), progress=progress.part(0.75, 0.9)
+    )
+    claims = build_claims(solution, setting.catalogue, found.components)
+    progress.report("calling the roll", 0.95)
+    return Identification(
+        claims,
+        found.velocity,
+        found.components,
+        temperature,
+        electron_pressure(temperature) if options.log_pe is None else options.log_pe,
+        call_roll(solution, setting.catalogue),
+        rank_orphans(features, claims, solution, setting.catalogue),
+        found.warnings,
+        solution,
+    )
+
+
+def _nothing(options: ClaimOptions) -> Identification:
+    return Identification(
+        (), VelocityResult(), (), float("nan"), float("nan"), (), (), ("no features",), None
+    )
+
+
+def _temperature(setting: Setting, found: Found, progress) -> float:
+    """The given temperature, or the peak of the likelihood around the vote's best."""
+    if setting.options.temperature is not None:
+        return float(setting.options.temperature)
+    if not found.has_star:
+        return found.temperature
+    tried = [found.temperature, *neighbours(found.temperature)]
+    values = []
+    for i, t in enumerate(tried):
+        progress.report("excitation temperature", i / len(tried))
+        problem = setting.problem(found.components, t)
+        values.append(solve_mixture(problem, PROFILE_ROUNDS).log_likelihood)
+    return round(peak(tried, values))

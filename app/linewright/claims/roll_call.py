@@ -1,0 +1,146 @@
+"""Roll call: which species are there, by chance-coincidence statistics.
+
+Hartoog, Cowley & Cowley 1973, ApJ 182, 847: count a species' strongest predicted lines
+that coincide with features no other species explains; compare with the count expected
+when the list is shifted. The tail is exact (Poisson-binomial), corrected for the number
+of species called.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from .model import RollRow
+from .populations import POPULATIONS, STELLAR
+
+LISTED = 60  # strongest predicted lines of a species that are called
+SHIFTS = 40  # displaced lists per side that measure the chance rate
+EXPECTED = 0.5  # a line is expected where the learned curve gives at least this
+PRESENT, POSSIBLE = 0.002, 0.05
+
+
+def call_roll(solution, catalogue) -> tuple[RollRow, ...]:
+    """One row per species with a predicted line in coverage, most claims first."""
+    e = solution.problem.entries
+    names = catalogue.species[e.row]
+    seen = np.bincount(solution.entry, solution.probability, len(e))
+    shows = _shows(solution)
+    coincidence = _Coincidences(solution, names)
+    groups = {}
+    for name in np.unique(names):
+        rows = np.nonzero(names == name)[0]
+        if np.max(shows[rows], initial=0) > 0.02 or np.sum(seen[rows]) > 0.5:
+            groups[name] = rows
+    trials = max(len(groups), 1)
+    table = [
+        _row(catalogue.species_names[int(name)], rows, solution, seen, shows,
+             coincidence.tail(rows, shows), trials)
+        for name, rows in groups.items()
+    ]
+    return tuple(sorted(table, key=lambda r: (-r.seen, r.p_chance, r.species)))
+
+
+def _shows(solution):
+    """P(the entry makes a feature), from the learned curves without the species' offset."""
+    e = solution.problem.entries
+    out = np.zeros(len(e))
+    for k, curve in enumerate(solution.state.detection):
+        here = e.population == k
+        out[here] = curve(e.strength[here])
+    return out * solution.groups.share
+
+
+def _row(name, rows, solution, seen, shows, p_chance, trials) -> RollRow:
+    state, e = solution.state, solution.problem.entries
+    likely = rows[shows[rows] >= EXPECTED]
+    found = int(np.sum(seen[likely] > 0.5))
+    number = int(np.sum(seen[rows] > 0.5))
+    species = e.species[rows[0]]
+    offset = float(state.offsets[species])
+    error = float(state.offset_errors[species])
+    corrected = min(1.0, p_chance * trials)
+    return RollRow(
+        name,
+        len(likely),
+        number,
+        len(likely) - found,
+        corrected,
+        offset,
+        error,
+        _verdict(len(likely), number, corrected, np.sum(shows[rows])),
+    )
+
+
+def _verdict(expected: int, number: int, p_chance: float, hoped: float) -> str:
+    if p_chance < PRESENT and number >= 1:
+        return "present"
+    if number >= 1 or p_chance < POSSIBLE:
+        return "possible"
+    return "absent" if expected >= 3 or hoped >= 3.0 else "not testable"
+
+
+class _Coincidences:
+    """Hits of a species' lines on features that other species leave open."""
+
+    def __init__(self, solution, names):
+        self.s, self.names = solution, names
+        f = solution.problem.features
+        self.order = np.argsort(f.wave, kind="stable")
+        self.wave, self.sign = f.wave[self.order], f.sign[self.order]
+        self.sigma = np.hypot(f.error, 0.03 * np.nan_to_num(f.fwhm))[self.order]
+        total = np.bincount(solution.feature, solution.probability, len(f))
+        self.total = total
+
+    def tail(self, rows, shows) -> float:
+        """P(at least so many hits by chance) for the species of these entries."""
+        e = self.s.problem.entries
+        ranked = rows[np.argsort(-shows[rows], kind="stable")][:LISTED]
+        ranked = ranked[shows[ranked] > 0.01]
+        if len(ranked) == 0:
+            return 1.0
+        openness = self._open(rows)
+        hits = self._hits(e.wave[ranked], e.sign[ranked], e.error[ranked], openness)
+        rates = self._rates(ranked, openness)
+        observed = float(np.sum(hits))
+        return poisson_binomial_tail(np.clip(rates, 1e-4, 1.0), observed)
+
+    def _open(self, rows):
+        """P(no other species made the feature), in wavelength order."""
+        mine = np.isin(self.s.entry, rows)
+        own = np.bincount(self.s.feature[mine], self.s.probability[mine], len(self.total))
+        return np.clip(1.0 - (self.total - own), 0.0, 1.0)[self.order]
+
+    def _hits(self, wave, sign, error, openness):
+        index = np.clip(np.searchsorted(self.wave, wave), 1, max(len(self.wave) - 1, 1))
+        best = np.zeros(len(wave))
+        for i in (index - 1, np.minimum(index, len(self.wave) - 1)):
+            near = np.abs(self.wave[i] - wave) <= 2.5 * np.hypot(self.sigma[i], error)
+            best = np.maximum(best, near * openness[i] * (self.sign[i] == sign))
+        return best
+
+    def _rates(self, ranked, openness):
+        """Chance rate per line, from copies displaced by 0.3 to a few Angstrom."""
+        e = self.s.problem.entries
+        width = np.maximum(0.3, 8 * np.median(self.sigma))
+        shifts = width * (1.0 + 0.37 * np.arange(SHIFTS))
+        rate = np.zeros(len(ranked))
+        for shift in np.concatenate((-shifts, shifts)):
+            rate += self._hits(e.wave[ranked] + shift, e.sign[ranked], e.error[ranked], openness)
+        pooled = np.mean(rate) / (2 * SHIFTS)
+        return 0.5 * rate / (2 * SHIFTS) + 0.5 * pooled
+
+
+def poisson_binomial_tail(rates, observed: float) -> float:
+    """P(sum of independent Bernoulli(rates) >= observed), exact by convolution."""
+    need = int(np.ceil(observed - 1e-9))
+    if need <= 0:
+        return 1.0
+    distribution = np.zeros(len(rates) + 1)
+    distribution[0] = 1.0
+    for p in rates:
+        distribution[1:] = distribution[1:] * (1 - p) + distribution[:-1] * p
+        distribution[0] *= 1 - p
+    return float(np.clip(np.sum(distribution[need:]), 0.0, 1.0))
+
+
+__all__ = ["call_roll", "poisson_binomial_tail", "POPULATIONS", "STELLAR"]

@@ -1,0 +1,106 @@
+"""The velocities at which a spectrum's lines stand: star, nebula, air, interstellar gas."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..lines.catalogue import ORIGINS
+from ..spectra.medium import C_KM_S
+from .problem import inside
+from .voting import Vote, line_weights, vote
+
+VOTERS = 240  # strongest features that vote
+TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: required lists)
+    [
+        [5874.0, 6002.0],
+        [6276.0, 6323.0],
+        [6465.0, 6605.0],
+        [6865.0, 6965.0],
+        [7100.0, 7420.0],
+        [7590.0, 7715.0],
+        [8080.0, 8420.0],
+        [8850.0, 9950.0],
+        [10700.0, 11100.0],
+    ]
+)
+FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0, "barycentric": 33.0}
+
+
+def strongest(features, sign: int, count: int = VOTERS, where=None):
+    """Row indices of the ``count`` most significant features of one sign."""
+    rows = np.nonzero((features.sign == sign) if where is None else (features.sign == sign) & where)[0]
+    weight = np.abs(np.nan_to_num(features.ew[rows])) + 1e-3 * np.nan_to_num(
+        features.significance[rows]
+    )
+    return np.sort(rows[np.argsort(-weight, kind="stable")[:count]])
+
+
+def vote_sigma(features, rows):
+    """Errors for voting: centroid, a share of the width, and a list error of 5 mA."""
+    width = np.nan_to_num(features.fwhm[rows])
+    return np.sqrt(features.wave_err[rows] ** 2 + (0.03 * width) ** 2 + 0.005**2)
+
+
+def stellar_vote(features, catalogue, strength, velocity_range) -> Vote:
+    """Vote of the strongest absorption features outside telluric bands.
+
+    strength: (n,) absorption strength per catalogue row (NaN elsewhere).
+    """
+    outside = ~inside(features.wave, TELLURIC_RANGES)
+    rows = strongest(features, 1, where=outside)
+    if len(rows) < 3:
+        rows = strongest(features, 1)
+    return _vote(features, rows, catalogue, strength, velocity_range)
+
+
+def emission_vote(features, catalogue, velocity_range) -> Vote:
+    """Vote of the strongest emission features against the nebular list."""
+    rows = strongest(features, -1, 40)
+    strength = np.where(catalogue.origin == ORIGINS.index("nebular"), catalogue.emission, np.nan)
+    return _vote(features, rows, catalogue, strength, velocity_range)
+
+
+def telluric_vote(features, catalogue, frame: str, velocity_range) -> Vote:
+    """Vote of features in telluric bands against the telluric list."""
+    limit = FRAME_SHIFT.get(frame)
+    span = velocity_range if limit is None else (-limit, limit)
+    rows = strongest(features, 1, 400, where=inside(features.wave, TELLURIC_RANGES))
+    strength = np.where(
+        catalogue.origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref), np.nan
+    )
+    return _vote(features, rows, catalogue, strength, span)
+
+
+def _vote(features, rows, catalogue, strength, velocity_range) -> Vote:
+    usable = np.nonzero(np.isfinite(strength))[0]
+    if len(rows) == 0 or len(usable) == 0:
+        nothing = np.array([velocity_range[0], velocity_range[1]], dtype=float)
+        return Vote(float("nan"), float("nan"), 0.0, (), nothing, np.zeros(2))
+    low = features.wave[rows].min() / (1 + velocity_range[1] / C_KM_S) - 1.0
+    high = features.wave[rows].max() / (1 + velocity_range[0] / C_KM_S) + 1.0
+    usable = usable[(catalogue.wave[usable] >= low) & (catalogue.wave[usable] <= high)]
+    weight = line_weights(strength[usable], 1.5 * len(rows))
+    keep = weight > 0.01
+    return vote(
+        features.wave[rows],
+        vote_sigma(features, rows),
+        catalogue.wave[usable][keep],
+        weight[keep],
+        velocity_range,
+    )
+
+
+def refine(solution, component: int) -> tuple[float, float]:
+    """(shift, error) in km/s of a component from its confident pairs; (0, nan) if too few."""
+    entry_component = solution.problem.entries.component[solution.entry]
+    sure = (entry_component == component) & (solution.probability > 0.8)
+    sure &= np.abs(solution.offset_sigma) < 3.0
+    if np.sum(sure) < 3:
+        return 0.0, float("nan")
+    wave = solution.problem.features.wave[solution.feature[sure]]
+    sigma = C_KM_S * solution.sigma[sure] / wave
+    shift = solution.offset_sigma[sure] * sigma
+    weight = 1.0 / sigma**2
+    mean = float(np.sum(weight * shift) / np.sum(weight))
+    scatter = 1.4826 * float(np.median(np.abs(shift - mean) / sigma))
+    return mean, float(max(scatter, 1.0) / np.sqrt(np.sum(weight)))

@@ -1,0 +1,250 @@
+"""The whole job: a spectrum (or a feature table) in, a Session out.
+
+Reads nothing beyond a feature table's file and shows nothing.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+
+from ..claims.identify import Identification, identify
+from ..claims.options import ClaimOptions
+from ..errors import InputRefused, MediumUnknown
+from ..lines.loading import load_catalogue
+from ..measure.core import measure_spectrum
+from ..measure.features import FeatureTable
+from ..measure.options import Measurement, MeasureOptions
+from ..progress import Progress
+from ..session.model import ContinuumNodes, Session, SpectrumReference
+from ..spectra.medium import C_KM_S, from_medium
+from ..spectra.spectrum import Spectrum
+from .feature_file import read_feature_file
+from .options import SolveOptions
+
+VERSION = "0.1.0"
+DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
+
+
+def solve(
+    spectrum: Spectrum, catalogue=None, options: SolveOptions = SolveOptions(), progress=None
+) -> Session:
+    """Measure and identify a spectrum.
+
+    spectrum: with a known medium, else MediumUnknown is raised with the odds of both
+    readings; catalogue: LineCatalogue, the shipped one by default; progress: Progress.
+    Raises InputRefused on a spectrum with nothing to measure, Cancelled on cancel.
+    """
+    progress = progress or Progress()
+    catalogue = load_catalogue() if catalogue is None else catalogue
+    measurement = measure_spectrum(
+        spectrum, _measure_options(spectrum, options), progress.part(0.0, 0.5)
+    )
+    if spectrum.medium == "unknown":
+        raise _medium_unknown(spectrum, measurement, catalogue, options)
+    found = identify(
+        measurement.features,
+        measurement.coverage,
+        catalogue,
+        _claim_options(options, spectrum.frame, True),
+        progress.part(0.5, 1.0),
+    )
+    reference = _reference(spectrum, measurement)
+    session = _session(reference, measurement.features, found, options, catalogue)
+    progress.report("done", 1.0)
+    return replace(
+        session,
+        continuum=_continuum(measurement),
+        measurement=_measured(measurement),
+        warnings=_join(spectrum.warnings, measurement.warnings, found.warnings),
+    )
+
+
+def solve_features(
+    table,
+    catalogue=None,
+    options: SolveOptions = SolveOptions(),
+    medium: str = "air",
+    progress=None,
+) -> Session:
+    """Identify a table of measured features.
+
+    table: path of a feature file, or a FeatureTable (vacuum). Without ``options.coverage``
+    (own-medium ranges) absence is no evidence and the null is wider.
+    """
+    progress = progress or Progress()
+    catalogue = load_catalogue() if catalogue is None else catalogue
+    given = isinstance(table, FeatureTable)
+    features = table if given else read_feature_file(table, medium)
+    features, warnings = _with_errors(features, options.wave_err)
+    complete = len(options.coverage) > 0
+    coverage = _coverage(features, options, medium)
+    found = identify(
+        features, coverage, catalogue, _claim_options(options, "unknown", complete), progress
+    )
+    if not complete:
+        warnings += ("coverage not given: absent lines are no evidence and the null is wider",)
+    reference = SpectrumReference(
+        path="" if given else str(Path(table).resolve()),
+        name="features" if given else Path(table).name,
+        sha256="" if given else _sha256(table),
+        medium=medium,
+        medium_from="given",
+        frame="unknown",
+        frame_from="a feature table states none",
+        layout="feature table",
+        flux_unit="",
+        samples=0,
+        segments=int(features.segment.max(initial=-1)) + 1,
+        coverage=coverage if complete else (),
+        from_features=True,
+    )
+    session = _session(reference, features, found, options, catalogue)
+    return replace(session, warnings=_join(warnings, found.warnings))
+
+
+def _measure_options(spectrum: Spectrum, options: SolveOptions) -> MeasureOptions:
+    return MeasureOptions(
+        resolution=options.resolution or spectrum.resolution,
+        ranges=_to_vacuum(options.ranges, spectrum.medium),
+    )
+
+
+def _claim_options(options: SolveOptions, frame: str, complete: bool) -> ClaimOptions:
+    return ClaimOptions(
+        velocity=options.velocity,
+        velocity_range=options.velocity_range,
+        temperature=options.temperature,
+        log_pe=options.log_pe,
+        metallicity=options.metallicity,
+        abundances=options.abundances,
+        species=options.species,
+        frame=frame,
+        complete=complete,
+    )
+
+
+def _to_vacuum(ranges, medium: str) -> tuple[tuple[float, float], ...]:
+    return tuple(
+        (float(from_medium(low, medium)), float(from_medium(high, medium))) for low, high in ranges
+    )
+
+
+def _coverage(features, options: SolveOptions, medium: str):
+    """Given ranges in vacuum, merged; else the span of the features."""
+    if not options.coverage:
+        return ((float(features.wave.min()) - 0.5, float(features.wave.max()) + 0.5),)
+    merged: list[list[float]] = []
+    for low, high in sorted(_to_vacuum(options.coverage, medium)):
+        if merged and low <= merged[-1][1]:
+            merged[-1][1] = max(merged[-1][1], high)
+        else:
+            merged.append([low, high])
+    inside = np.zeros(len(features), dtype=bool)
+    for low, high in merged:
+        inside |= (features.wave >= low - 0.1) & (features.wave <= high + 0.1)
+    if not np.all(inside):
+        raise InputRefused(
+            "--coverage",
+            f"{int(np.sum(~inside))} of {len(features)} features lie outside it",
+            "give every range that was searched, or leave the option out",
+        )
+    return tuple((low, high) for low, high in merged)
+
+
+def _with_errors(features: FeatureTable, wave_err: float | None):
+    """Features with a position error each, and what had to be assumed."""
+    missing = ~np.isfinite(features.wave_err)
+    if not np.any(missing):
+        return features, ()
+    value = DEFAULT_WAVE_ERR if wave_err is None else wave_err
+    filled = replace(features, wave_err=np.where(missing, value, features.wave_err))
+    if wave_err is not None:
+        return filled, ()
+    return filled, (
+        f"{int(np.sum(missing))} features without wave_err: {value} Angstrom assumed "
+        "(say better with --wave-err)",
+    )
+
+
+def _sha256(path) -> str:
+    import hashlib
+
+    return hashlib.sha256(Path(path).read_bytes()).hexdigest()
+
+
+def _reference(spectrum: Spectrum, measurement: Measurement) -> SpectrumReference:
+    return SpectrumReference(
+        path=spectrum.path,
+        name=spectrum.name,
+        sha256=spectrum.sha256,
+        medium=spectrum.medium,
+        medium_from=spectrum.medium_from,
+        frame=spectrum.frame,
+        frame_from=spectrum.frame_from,
+        layout=spectrum.layout,
+        flux_unit=spectrum.flux_unit,
+        samples=spectrum.samples,
+        segments=len(spectrum.segments),
+        read_options=dict(spectrum.read_options),
+        coverage=measurement.coverage,
+    )
+
+
+def _session(reference, features, found: Identification, options, catalogue) -> Session:
+    return Session(
+        spectrum=reference,
+        features=features,
+        claims=found.claims,
+        velocity=found.velocity,
+        options=options.as_dict(),
+        components=tuple((c.origin, c.velocity, c.error) for c in found.components),
+        temperature_k=found.temperature,
+        log_pe=found.log_pe,
+        roll_call=found.roll_call,
+        orphans=found.orphans,
+        catalogue_id=catalogue.identity,
+        version=VERSION,
+        seed=options.seed,
+    )
+
+
+def _continuum(measurement: Measurement) -> tuple[ContinuumNodes, ...]:
+    nothing = np.zeros(0)
+    return tuple(
+        ContinuumNodes(nothing, nothing)
+        if s is None
+        else ContinuumNodes(np.asarray(s.node_wave), np.asarray(s.node_flux))
+        for s in measurement.segments
+    )
+
+
+def _measured(measurement: Measurement) -> dict:
+    """Figures of the measurement that the report prints."""
+    used = [s for s in measurement.segments if s is not None]
+    width = np.concatenate([s.width / s.width_wave for s in used])
+    return {
+        "threshold": float(measurement.threshold),
+        "trials": float(measurement.trials),
+        "expected_false": float(measurement.expected_false),
+        "noise": float(np.median(np.concatenate([s.noise for s in used]))),
+        "line_width_kms": float(np.median(width)) * C_KM_S,
+    }
+
+
+def _join(*groups) -> tuple[str, ...]:
+    return tuple(dict.fromkeys(w for group in groups for w in group))
+
+
+def _medium_unknown(spectrum, measurement, catalogue, options) -> MediumUnknown:
+    """The refusal, with the odds of both readings."""
+    from .medium_odds import medium_odds
+
+    odds = medium_odds(measurement.features, catalogue, options)
+    return MediumUnknown(
+        spectrum.path or spectrum.name,
+        f"the file does not say whether its wavelengths are air or vacuum ({odds.in_words()})",
+        "decide with --medium air or --medium vacuum",
+    )
