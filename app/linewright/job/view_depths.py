@@ -31,7 +31,7 @@ def predicted_depths(
     """Depth 0-1 of every line, shape (n,); 0 where nothing is predicted.
 
     S is the strength of ``lines.strengths``; its zero point is that of the line ranked
-    ``features`` (at least 200) between low and high, vacuum Angstrom. The depth follows
+    ``features`` (at least one in 1.5 Angstrom) between low and high, vacuum Angstrom. The depth follows
     0.9 / (1 + 10^(1.1 - 0.85 (S - S0))), the saturation curve through a few per cent at
     the zero point. Emission lines use their relative emissivity on the same footing.
     """
@@ -39,7 +39,8 @@ def predicted_depths(
 
     strength = absorption_strength(catalogue, temperature, log_pe)
     first, last = np.searchsorted(catalogue.wave, [low, high])
-    depth = _saturated(strength, strength[first:last], max(features, 200))
+    rank = max(features, int((high - low) / 1.5))
+    depth = _saturated(strength, strength[first:last], rank)
     telluric = np.isfinite(catalogue.depth_ref)
     depth[telluric] = 1.0 - np.exp(-np.clip(catalogue.depth_ref[telluric], 0.0, 50.0))
     only_emission = ~np.isfinite(strength) & np.isfinite(catalogue.emission)

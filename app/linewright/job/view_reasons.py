@@ -38,9 +38,9 @@ def reasons(
 def _position(c: Candidate, _depth: float, good: list, bad: list) -> None:
     off = abs(c.offset_sigma)
     if off <= NEAR:
-        good.append(f"stands where it should ({_signed(c.offset_sigma)} σ)")
+        good.append("stands where it should")
     elif off >= FAR:
-        bad.append(f"stands {_signed(c.offset_sigma)} σ from where it should")
+        bad.append("stands too far from its place")
 
 
 def _strength(c: Candidate, depth: float, good: list, bad: list) -> None:
@@ -53,7 +53,7 @@ def _strength(c: Candidate, depth: float, good: list, bad: list) -> None:
         return
     ratio = depth / predicted
     if 1 / SAME <= ratio <= SAME:
-        good.append(f"as deep as predicted ({depth:.2f}, predicted {predicted:.2f})")
+        good.append("as deep as predicted")
     elif ratio >= DIFFERENT:
         bad.append(f"seen {ratio:.0f} times deeper than predicted")
     elif ratio <= 1 / DIFFERENT:
@@ -72,7 +72,3 @@ def _siblings(roll: RollRow, good: list, bad: list) -> None:
         good.append(f"{roll.seen} of {roll.expected} expected {roll.species} lines are seen")
     elif roll.verdict == "absent":
         bad.append(f"{roll.missing} of {roll.expected} expected {roll.species} lines are missing")
-
-
-def _signed(value: float) -> str:
-    return f"{value:+.1f}".replace("-", "−")

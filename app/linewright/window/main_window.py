@@ -154,7 +154,9 @@ class MainWindow(Questions, Showing, QMainWindow):
         system = "dark" if scheme == scheme.Dark else "light"
         chosen = system if self.theme_choice == "system" else self.theme_choice
         theme = self.bench.theme = theme_named(chosen)
-        QApplication.instance().setStyleSheet(theme.style_sheet() + style_of(theme))
+        sheet, app = theme.style_sheet() + style_of(theme), QApplication.instance()
+        if app.styleSheet() != sheet:  # setting it styles every widget again
+            app.setStyleSheet(sheet)
         if self.refresher is not None:
             self.refresher.theme_changed()
         self.menus.refresh()

@@ -80,6 +80,7 @@ class NoticeBar(QFrame):
         self._timer.stop()
         for button in self._buttons:
             self._row.removeWidget(button)
+            button.hide()
             button.deleteLater()
         self._buttons = []
         notice = self.current

@@ -65,10 +65,11 @@ class Refresher:
 
     def _show_track(self, session) -> None:
         track, result = self._space.track, session.velocity
+        low, high = self._bench.desk.options.velocity_range
         if len(result.grid):
-            track.set_range(float(result.grid[0]), float(result.grid[-1]))
-        else:
-            track.set_range(*self._bench.desk.options.velocity_range)
+            low, high = float(result.grid[0]), float(result.grid[-1])
+        velocity = self._bench.view.now.velocity
+        track.set_range(min(low, velocity - 10.0), max(high, velocity + 10.0))
         track.set_curve(result.grid, result.score)
         track.set_rivals(result.rivals)
         self._show_velocity()
@@ -77,7 +78,8 @@ class Refresher:
         bench = self._bench
         velocity, result = bench.view.now.velocity, bench.session.velocity
         error = result.error if velocity == result.velocity and np.isfinite(result.error) else None
-        self._space.track.set_velocity(velocity, error, bool(result.declared))
+        declared = bool(result.declared) or result.how == "given" or velocity != result.velocity
+        self._space.track.set_velocity(velocity, error, declared)
         self._space.spectrum_view.set_velocity(velocity)
 
     def _show_selected(self) -> None:

@@ -29,6 +29,7 @@ class StatusLine(QStatusBar):
         super().__init__(parent)
         self._bench = bench
         self.setSizeGripEnabled(False)
+        self.setContentsMargins(8, 0, 8, 0)
         self.text, self.stage = QLabel(), QLabel()
         self.bar, self.stop = QProgressBar(), QPushButton("Stop")
         self.bar.setRange(0, 1000)

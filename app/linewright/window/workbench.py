@@ -33,7 +33,8 @@ class Desk:
 
     @property
     def name(self) -> str:
-        return self.document.session.spectrum.name or "spectrum"
+        reference = self.document.session.spectrum
+        return Path(reference.path).name or reference.name or "spectrum"
 
     @property
     def saved(self) -> bool:

@@ -31,7 +31,7 @@ class Workspace(QWidget):
         self.desks.setDocumentMode(True)
         self.tables = QTabWidget()
         self.tables.setAccessibleName("Tables")
-        self.tables.setDocumentMode(True)
+        self.tables.tabBar().setDrawBase(False)
         for panel in (self.ledger, self.roll_call, self.catalogue, self.orphans):
             self.tables.addTab(panel, panel.accessibleName())
         self._arrange()
@@ -50,7 +50,7 @@ class Workspace(QWidget):
         box.setSpacing(2)
         box.addWidget(self.desks)
         box.addWidget(self.down, 1)
-        self.evidence.setMinimumWidth(250)
+        self.evidence.setMinimumWidth(280)
         self.tables.setMinimumHeight(110)
         self.setTabOrder(self.spectrum_view, self.track)
         self.setTabOrder(self.track, self.evidence)

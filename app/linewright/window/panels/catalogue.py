@@ -21,8 +21,8 @@ class CataloguePanel(TablePanel):
         super().__init__("Catalogue", CatalogueModel(), LOADING, parent)
         self._workbench, self._seen, self._names = workbench, None, QStringListModel(self)
         self.species = self._field("species, such as Fe I, Ti II", "Only these species", 150)
-        self.range = self._field("range, such as 5160:5200 (empty: spectrum)",
-                                 "Wavelength range in the spectrum's own medium; "
+        self.range = self._field("range, such as 5160:5200",
+                                 "Wavelength range in the spectrum's own medium; empty means the spectrum's, "
                                  "'view' follows the view, 'all' shows every line", 200)
         self.depth = self._field("depth above", "Only lines predicted deeper than this at the "
                                  "present temperature, such as 0.05", 90)

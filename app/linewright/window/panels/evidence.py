@@ -67,8 +67,9 @@ class EvidencePanel(QWidget):
         splitter.setChildrenCollapsible(False)
         splitter.addWidget(self._upper())
         splitter.addWidget(self.siblings)
-        splitter.setStretchFactor(0, 3)
-        splitter.setStretchFactor(1, 2)
+        splitter.setSizes([500, 500])
+        splitter.setStretchFactor(0, 1)
+        splitter.setStretchFactor(1, 1)
         return splitter
 
     def _upper(self) -> QWidget:
@@ -189,10 +190,11 @@ class EvidencePanel(QWidget):
 
 def _act_button(command, workbench) -> QPushButton:
     button = QPushButton(command.short or command.title)
+    button.setObjectName("act")
     button.setToolTip(command.full_tip)
     button.setAccessibleName(command.title)
     button.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
-    button.setMinimumWidth(button.fontMetrics().horizontalAdvance(button.text()) + 14)
+    button.setMinimumWidth(button.fontMetrics().horizontalAdvance(button.text()) + 8)
     button.clicked.connect(lambda: workbench.run(command.id))
     return button
 

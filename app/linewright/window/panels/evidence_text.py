@@ -22,7 +22,8 @@ def heading(session: Session, row: int) -> str:
     f = session.features
     wave = float(to_medium(f.wave[row], session.spectrum.medium))
     depth = words.number(f.depth[row], 2)
-    ew = words.with_error(f.ew[row], f.ew_err[row], 1)
+    digits = 0 if abs(f.ew[row]) >= 30 else 1
+    ew = words.with_error(f.ew[row], f.ew_err[row], digits)
     parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", f"EW {ew} mÅ" if ew else ""]
     return "   ".join(p for p in parts if p)
 
@@ -55,7 +56,7 @@ def candidate_numbers(candidate: Candidate, depth: float) -> str:
     parts = [
         f"offset {offset} σ" if offset else "",
         f"depth {seen}, predicted {predicted}" if seen and predicted else "",
-        f"share {candidate.share:.2f}" if 0 <= candidate.share < 0.995 else "",
+        f"share {candidate.share:.2f}" if 0 <= candidate.share < 0.7 else "",
     ]
     return " · ".join(p for p in parts if p)
 

@@ -23,7 +23,7 @@ class SiblingsBox(QWidget):
         self.title.setObjectName("heading")
         self.title.setToolTip(TIP)
         self.strips.setAccessibleName("Siblings strips")
-        self.strips.setMinimumHeight(90)
+        self.strips.setMinimumHeight(150)
         box = QVBoxLayout(self)
         box.setContentsMargins(8, 2, 8, 4)
         box.setSpacing(2)

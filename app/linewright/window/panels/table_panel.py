@@ -71,6 +71,9 @@ class TablePanel(QWidget):
         """The table when it has rows, otherwise the sentence."""
         if empty_text:
             self.empty.setText(empty_text)
+        columns = self.model.columns
+        last_is_text = bool(columns) and not columns[-1].numeric
+        self.table.horizontalHeader().setStretchLastSection(last_is_text)
         self._stack.setCurrentIndex(0 if self.model.rowCount() else 1)
 
     def follow(self, source: int | None) -> None:
