@@ -11,7 +11,7 @@ os.environ.setdefault("MPLBACKEND", "Agg")
 for _name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS"):
     os.environ.setdefault(_name, "1")
 
-import pytest
+import pytest  # noqa: E402
 
 ROOT = Path(__file__).resolve().parents[1]
 SHARED = ROOT.parent / "shared"

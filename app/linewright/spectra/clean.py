@@ -34,8 +34,11 @@ def runs_of(flags: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
 
 def zero_filled(flux: np.ndarray) -> np.ndarray:
     """True in runs of at least ZERO_RUN exact zeros, shape (n,)."""
+    zeros = flux == 0
     out = np.zeros(len(flux), dtype=bool)
-    for start, stop in zip(*runs_of(flux == 0)):
+    if np.count_nonzero(zeros) < ZERO_RUN:
+        return out
+    for start, stop in zip(*runs_of(zeros)):
         if stop - start >= ZERO_RUN:
             out[start:stop] = True
     return out
@@ -43,9 +46,9 @@ def zero_filled(flux: np.ndarray) -> np.ndarray:
 
 def split_stretches(wave: np.ndarray) -> list[slice] | None:
     """Stretches of one direction when the wavelength falls back; None when it must be sorted."""
-    steps = np.diff(wave)
-    if len(steps) == 0 or (steps >= 0).all() or (steps <= 0).all():
+    if (wave[1:] >= wave[:-1]).all() or (wave[1:] <= wave[:-1]).all():
         return [slice(0, len(wave))]
+    steps = np.diff(wave)
     sign = 1.0 if np.median(steps) >= 0 else -1.0
     cuts = np.flatnonzero(steps * sign < 0) + 1
     bounds = np.concatenate(([0], cuts, [len(wave)]))
@@ -59,7 +62,8 @@ def merge_repeats(wave, flux, sigma, mask):
 
     Equal weights without errors, 1/sigma^2 with them (then sigma = 1/sqrt(sum)).
     """
-    first = np.concatenate(([True], np.diff(wave) > 0))
+    first = np.ones(len(wave), dtype=bool)
+    np.greater(wave[1:], wave[:-1], out=first[1:])
     if first.all():
         return wave, flux, sigma, mask, 0
     index = np.cumsum(first) - 1
@@ -109,10 +113,9 @@ def _masked(flux, sigma, mask, notes):
 
 def _ordered(wave, columns, notes):
     """Ascending wave and columns."""
-    steps = np.diff(wave)
-    if (steps >= 0).all():
+    if (wave[1:] >= wave[:-1]).all():
         return wave, columns
-    if (steps <= 0).all():
+    if (wave[1:] <= wave[:-1]).all():
         notes.append("descending wavelengths turned round")
         order = slice(None, None, -1)
     else:

@@ -98,9 +98,9 @@ def _guarded(opened: Opened, wanted: Wanted) -> Raw:
                            "fetch the file again or save it as a plain table") from None
 
 
-def _decided(raw: Raw, medium, frame, highest: float) -> Known:
+def _decided(raw: Raw, medium, frame) -> Known:
     known = known_of(raw)
-    if medium is None and known.medium != "vacuum" and highest <= AIR_LIMIT:
+    if medium is None and known.medium != "vacuum" and _highest(raw) <= AIR_LIMIT:
         known = replace(known, medium="vacuum", medium_from="below 2000 A vacuum by convention")
     notes = list(known.warnings)
     for asked, stated, name in ((medium, known.medium, "medium"), (frame, known.frame, "frame")):
@@ -180,7 +180,7 @@ def read_spectrum(path, **choices: Unpack[Choices]) -> Spectrum:
     opened = open_checked(path)
     raw = _guarded(opened, wanted)
     check_unchanged(opened)
-    known = _decided(raw, given.get("medium"), given.get("frame"), _highest(raw))
+    known = _decided(raw, given.get("medium"), given.get("frame"))
     segments, notes = clean_segments(raw.segments, raw.unit, known.medium, opened.path)
     return Spectrum(
         segments, known.medium, known.medium_from, known.frame, known.frame_from,

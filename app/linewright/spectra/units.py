@@ -44,7 +44,7 @@ def _inverse(name: str, constant: float) -> WaveUnit:
     return WaveUnit(name, convert, vacuum=True)
 
 
-ANGSTROM = _scaled("Angstrom", 1.0)
+ANGSTROM = WaveUnit("Angstrom", lambda x: np.asarray(x, dtype=float))
 METRE = _scaled("m", 1e10)
 LOG10_ANGSTROM = WaveUnit("log10(Angstrom)", lambda x: 10.0 ** np.asarray(x, dtype=float))
 LN_ANGSTROM = WaveUnit("ln(Angstrom)", lambda x: np.exp(np.asarray(x, dtype=float)))
