@@ -20,9 +20,9 @@ from symbols import ELEMENTS, ROMAN
 KEYS = ["Placco2021", "NIST_ASD"]
 LIST_AIR_LIMIT = 2000.0
 LONGEST = 25000.0
-# Hydrogen is remade from level energies; the seven rows of the list include deuterium.
-# Li I 6708 carries isotopic components of unclear weights and is remade too.
-LEFT_OUT = {(1, 1), (3, 1)}
+# Hydrogen is remade from level energies; the rows of the list include deuterium. Isotopic
+# components (codes such as 3.0007) are left out: their elements have whole lines besides.
+LEFT_OUT = {(1, 1)}
 # Scatter (Angstrom at 5000 A) of lines without a level match, where too few matches tell.
 DEFAULT_SCATTER = 0.010
 LEAST_SCATTER = 0.004
@@ -39,7 +39,8 @@ def read_list(source: Path) -> dict[str, np.ndarray]:
     z = np.floor(code + 1e-6).astype(int)
     stage = np.floor((code - z) * 10 + 1e-3).astype(int) + 1
     vacuum = np.where(wave > LIST_AIR_LIMIT, air_to_vacuum(wave), wave)
-    keep = (vacuum <= LONGEST) & (vacuum >= 1200.0)
+    isotopic = np.abs(code * 10 - np.round(code * 10)) > 1e-3
+    keep = (vacuum <= LONGEST) & (vacuum >= 1200.0) & ~isotopic
     for element, ion in LEFT_OUT:
         keep &= ~((z == element) & (stage == ion))
     data = {"wave": vacuum, "z": z, "stage": stage, "e_low": e_low, "loggf": loggf}

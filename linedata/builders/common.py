@@ -18,6 +18,8 @@ sys.path.insert(0, str(LINEDATA.parent / "app"))
 
 from linewright.spectra.medium import air_to_vacuum, vacuum_to_air  # noqa: E402
 
+from merging import merge  # noqa: E402
+
 __all__ = ["air_to_vacuum", "vacuum_to_air"]
 
 ORIGIN_CODE = {"stellar": 0, "nebular": 1, "telluric": 2, "interstellar": 3, "sky": 4, "lamp": 5}
@@ -60,11 +62,12 @@ def _enter(path: Path) -> None:
 
 
 def pack_lines(lines: dict[str, np.ndarray], names: list[str], keys: list[str]) -> dict:
-    """Compact columns of a line table, sorted by wavelength, ties by species and E_low.
+    """Compact columns of a line table, repeats merged, sorted by wavelength.
 
     ``lines`` holds wave, wave_err, species, origin, source and any of e_low, loggf,
     loggf_err, emission, depth_ref, j_low, j_up, spread, grade (NaN or missing: unknown).
     """
+    lines = lines if "depth_ref" in lines else merge(lines)
     n = len(lines["wave"])
     blank = np.full(n, np.nan)
     order = np.lexsort((lines.get("e_low", blank), lines["species"], lines["wave"]))

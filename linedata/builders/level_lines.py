@@ -20,7 +20,7 @@ from published_strengths import PUBLISHED
 from symbols import ELEMENTS, ROMAN
 
 IONS = [
-    ("C", 2), ("C", 3), ("C", 4), ("N", 1), ("N", 2), ("N", 3), ("N", 4), ("N", 5), ("O", 1),
+    ("Li", 1), ("C", 2), ("C", 3), ("C", 4), ("N", 1), ("N", 2), ("N", 3), ("N", 4), ("N", 5), ("O", 1),
     ("O", 2), ("O", 3), ("O", 4), ("O", 5), ("Ne", 2), ("Mg", 2), ("Al", 2), ("Al", 3),
     ("Si", 2), ("Si", 3), ("Si", 4), ("P", 2), ("P", 3), ("S", 2), ("S", 3), ("Cl", 2),
     ("Ar", 2), ("Ar", 3), ("Ca", 3), ("Ti", 3), ("Cr", 3), ("Mn", 3), ("Fe", 3), ("Ni", 3),
@@ -80,7 +80,10 @@ def ion_lines(source: Path, element: str, stage: int, energies: np.ndarray) -> l
         for line in permitted_lines(source, element, stage, energies[z, stage - 1])
         if line["loggf"] > LEAST_LOGGF
     ]
-    lines += ritz_of_published(source, element, stage)
+    published = ritz_of_published(source, element, stage)
+    taken = np.array([line["wave"] for line in published])
+    lines = [line for line in lines if not np.any(np.abs(taken - line["wave"]) < 0.003)]
+    lines += published
     poor = POOR_LEVELS.get((element, stage), 0.0)
     for line in lines:
         line["wave_err"] = float(np.hypot(line["wave_err"], poor * (line["wave"] / 5000.0)))

@@ -1,7 +1,7 @@
-"""Published log gf of core-changing lines that no one-electron model gives.
+"""Published log gf of lines: core-changing ones that no one-electron model gives, and Li I 6708.
 
 (air wavelength, E_low in eV, log gf); Fe III: Ekberg 1993 A&AS 101, 1 and Kurucz 2010;
-Al II, C II: NIST ASD (Kelleher & Podobedova 2008; Wiese & Fuhr 2007), recalled to 0.01 dex.
+Al II: NIST ASD (Kelleher & Podobedova 2008); Li I: Yan & Drake 1995, PRA 52, R4316.
 """
 
 PUBLISHED = {
@@ -10,5 +10,6 @@ PUBLISHED = {
         (5073.903, 8.655, -2.557), (5086.701, 8.659, -2.590), (5127.387, 8.659, -2.218),
         (5156.111, 8.641, -2.018),
     ],
+    ("Li", 1): [(6707.756, 0.0, -0.002), (6707.909, 0.0, -0.303)],
     ("Al", 2): [(4663.056, 10.598, -0.284)],
 }
