@@ -69,14 +69,9 @@ def spectrum_of(session: Session, path: Path) -> Spectrum | None:
     """The spectrum of a session, read the same way again; None for a feature table."""
     if session.spectrum.from_features:
         return None
-    from ...session.file import locate_spectrum
-    from ...spectra.reading import read_spectrum
+    from ...session.reopen import reopen_spectrum
 
-    place = locate_spectrum(session, [path.parent])
-    spectrum = read_spectrum(place, **session.spectrum.read_options)
-    if session.spectrum.medium in ("air", "vacuum"):
-        spectrum = spectrum.with_medium(session.spectrum.medium, session.spectrum.medium_from)
-    return spectrum
+    return reopen_spectrum(session, [path.parent])
 
 
 def _show(bench, opened: Opened) -> None:

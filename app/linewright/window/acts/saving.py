@@ -75,19 +75,25 @@ def export_figure(bench, path: Path) -> None:
     bench.tasks.start(Request(
         key="figure", title=f"Drawing {path.name}",
         work=lambda progress: _figure(session, spectrum, span, path),
-        done=lambda _none: _written(bench, path),
+        done=lambda report: _written(bench, path, _left_out(report)),
         failed=lambda error: failed(bench, error),
     ))
 
 
-def _figure(session, spectrum, span, path: Path) -> None:
+def _figure(session, spectrum, span, path: Path):
     from ...publish import figure
 
-    figure.write_figure(session, spectrum, path, span=span, force=True)
+    return figure.write_figure(session, spectrum, path, force=True, range=span)
 
 
-def _written(bench, path: Path) -> None:
-    bench.notify(Notice(f"Written: {path}", "note", seconds=8, topic="written"))
+def _left_out(report) -> str:
+    if not report.left_out:
+        return ""
+    return f" {report.left_out} labels found no room: show a narrower range to have them all."
+
+
+def _written(bench, path: Path, more: str = "") -> None:
+    bench.notify(Notice(f"Written: {path}.{more}", "note", seconds=8, topic="written"))
 
 
 def failed(bench, error: Exception) -> None:
