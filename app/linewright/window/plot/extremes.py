@@ -14,6 +14,7 @@ import numpy as np
 BLOCK = 16
 PYRAMID_ABOVE = 600_000
 GAP_FACTOR = 4.0
+_TOP_LEVEL = 60_000
 
 
 @dataclass(frozen=True)
@@ -99,7 +100,7 @@ class Pyramid:
     def __init__(self, y: np.ndarray):
         self._levels = [(y, y)]
         low = high = y
-        while len(low) > BLOCK * BLOCK:
+        while len(low) > _TOP_LEVEL:
             low = self._coarser(low, np.fmin)
             high = self._coarser(high, np.fmax)
             self._levels.append((low, high))
@@ -121,8 +122,9 @@ class Pyramid:
         index = np.concatenate(
             [np.minimum(start + reach, stop - 1), np.maximum(stop - 1 - reach, start)]
         )
-        low = np.fmin.reduce(low_values[index], axis=0)
-        high = np.fmax.reduce(high_values[index], axis=0)
+        lows = low_values.take(index)
+        low = np.fmin.reduce(lows, axis=0)
+        high = np.fmax.reduce(lows if high_values is low_values else high_values.take(index), axis=0)
         inner_start, inner_stop = -(-start // BLOCK), stop // BLOCK
         has = np.nonzero(inner_stop > inner_start)[0]
         if len(has):

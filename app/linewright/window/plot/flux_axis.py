@@ -8,6 +8,7 @@ from PySide6.QtGui import QColor, QPainter, QPen
 
 from .geometry import LEFT, nice_ticks
 from .primitives import draw_lines
+from .text_pictures import TextPictures
 
 _SUPERSCRIPT = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
@@ -42,12 +43,11 @@ def draw_flux_axis(painter: QPainter, rect, span: tuple[float, float], plot) -> 
         y = np.floor(bottom + (ticks - low) * (top - bottom) / (high - low)) + 0.5
         draw_lines(painter, np.stack([np.full(len(y), LEFT - length), y,
                                       np.full(len(y), float(LEFT)), y], axis=1))
-    painter.setPen(QColor(theme.ink))
-    flags = int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
-    for value in major:
+    texts = TextPictures(painter, theme.ink)
+    for value in major.tolist():
         y = bottom + (value - low) * (top - bottom) / (high - low)
-        box = QRectF(16, y - metrics.height() / 2, LEFT - 26, metrics.height())
-        painter.drawText(box, flags, f"{value + 0.0:.{decimals}f}")
+        texts.draw(f"{value + 0.0:.{decimals}f}", LEFT - 9, y - metrics.height() / 2, 1.0)
+    painter.setPen(QColor(theme.ink))
     _draw_title(painter, rect, span, flux_title(power, plot.flux_unit))
 
 

@@ -24,14 +24,16 @@ class Lane(QWidget):
         super().__init__(parent)
         self.state = state
         self.paints = 0
+        self.exposed = self.rect()
         self._failed = ""
         state.changed.connect(self.update)
 
-    def paintEvent(self, _event) -> None:
+    def paintEvent(self, event) -> None:
         self.paints += 1
+        self.exposed = event.rect()
         painter = QPainter(self)
         try:
-            painter.fillRect(self.rect(), QColor(self.state.theme.base))
+            painter.fillRect(self.exposed, QColor(self.state.theme.base))
             self.draw(painter)
             if self.hasFocus():
                 painter.setPen(QPen(QColor(self.state.theme.accent), 2))

@@ -16,22 +16,20 @@ def spread(wanted, width: float) -> np.ndarray:
     Least squares by pooling: labels that collide form a group about their common mean, so
     order is kept and leaders never cross.
     """
-    groups: list[list[float]] = []  # (sum of wanted - own offset, count)
-    for position in wanted:
-        total, count = float(position), 1
-        while groups and _start(groups[-1], width) + groups[-1][1] * width > (
-            total / count - (count - 1) * width / 2
-        ):
-            previous_total, previous_count = groups.pop()
-            total, count = previous_total + total, previous_count + count
-        groups.append([total, count])
-    places = [_start(g, width) + width * np.arange(g[1]) for g in groups]
-    return np.concatenate(places) if places else np.zeros(0)
-
-
-def _start(group, width: float) -> float:
-    total, count = group
-    return total / count - (count - 1) * width / 2
+    starts: list[float] = []  # centre of the first label of each group
+    counts: list[int] = []
+    for position in np.asarray(wanted, dtype=float).tolist():
+        start, count = position, 1
+        while starts and starts[-1] + counts[-1] * width > start:
+            before, members = starts.pop(), counts.pop()
+            # Least squares: mean of (wanted - own offset) over the joined group.
+            start = (before * members + (start - members * width) * count) / (members + count)
+            count += members
+        starts.append(start)
+        counts.append(count)
+    sizes = np.array(counts, dtype=int)
+    offset = np.arange(int(sizes.sum())) - np.repeat(np.cumsum(sizes) - sizes, sizes)
+    return np.repeat(np.array(starts), sizes) + width * offset
 
 
 def ration(anchor, importance, width: float) -> np.ndarray:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import shiboken6
-from PySide6.QtCore import QLineF, QRectF
+from PySide6.QtCore import QLineF
 from PySide6.QtGui import QPainter, QPolygonF
 
 # Beyond this many pixels the raster engine's fixed-point coordinates overflow.
@@ -16,13 +16,6 @@ def draw_lines(painter: QPainter, lines: np.ndarray) -> None:
     lines = np.ascontiguousarray(lines, dtype=np.float64)
     if len(lines):
         painter.drawLines(shiboken6.Shiboken.wrapInstance(lines.ctypes.data, QLineF), len(lines))
-
-
-def draw_rects(painter: QPainter, rects: np.ndarray) -> None:
-    """Draw rows (x, y, width, height), shape (n, 4), with the painter's pen and brush."""
-    rects = np.ascontiguousarray(rects, dtype=np.float64)
-    if len(rects):
-        painter.drawRects(shiboken6.Shiboken.wrapInstance(rects.ctypes.data, QRectF), len(rects))
 
 
 def polygon(x, y) -> QPolygonF:

@@ -4,12 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QColor, QPainter, QPen
+from PySide6.QtGui import QColor, QImage, QPainter, QPen
 
 from .geometry import LEFT, RIGHT, to_device
 from .marks import marker_pixmap
 from .navigation import NavigableLane
-from .primitives import draw_lines, draw_rects
 from .rake_data import RakeData
 from .rake_teeth import RakeTeeth
 
@@ -57,12 +56,16 @@ class RakeLane(NavigableLane):
         if self.shown_rows == 0:
             self._draw_empty(painter)
             return
-        self._draw_rows(painter)
+        if self.exposed.left() < LEFT:
+            self._draw_names(painter)
         painter.setClipRect(QRectF(LEFT, 0, self.width() - LEFT - RIGHT, self.height()))
         x, y, ratio = to_device(painter)
         scale = self.scale((x, ratio))
-        for row in range(self.shown_rows):
-            self._draw_teeth(painter, row, scale, (y, ratio))
+        pixels = self._comb(scale, ratio)
+        tall, wide = pixels.shape
+        picture = QImage(pixels.data, wide, tall, 4 * wide, QImage.Format.Format_RGB32)
+        painter.drawImage(QPointF(scale.first_column(), y), picture)
+        self._draw_missing(painter, scale, (y, ratio))
 
     def _draw_empty(self, painter: QPainter) -> None:
         painter.setPen(QColor(self.state.theme.muted))
@@ -72,7 +75,11 @@ class RakeLane(NavigableLane):
             "Rake: choose species in the Catalogue and their predicted lines hang here",
         )
 
-    def _draw_rows(self, painter: QPainter) -> None:
+    def slide(self) -> None:
+        """Repaint the teeth only: what a change of velocity moves."""
+        self.update(LEFT, 0, self.width() - LEFT, self.height())
+
+    def _draw_names(self, painter: QPainter) -> None:
         theme, height = self.state.theme, self.row_height
         ratio = painter.device().devicePixelRatioF()
         font = painter.font()
@@ -80,8 +87,6 @@ class RakeLane(NavigableLane):
         painter.setFont(font)
         for row, name in enumerate(self.teeth.names[: self.shown_rows]):
             top = _HEAD + row * height
-            painter.setPen(QPen(QColor(theme.edge), 0))
-            painter.drawLine(LEFT, top, self.width() - RIGHT, top)
             mark = marker_pixmap(theme.marker(name), theme.colour(name), 1.0, 9, ratio)
             painter.drawPixmap(QPointF(5, top + height / 2 - 4), mark)
             painter.setPen(QColor(theme.text_colour(name)))
@@ -89,38 +94,52 @@ class RakeLane(NavigableLane):
             flags = Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter
             painter.drawText(box, int(flags), name)
 
-    def _draw_teeth(self, painter: QPainter, row: int, scale, place) -> None:
+    def _comb(self, scale, ratio: float) -> np.ndarray:
+        """The lane as pixels 0xffRRGGBB, shape (device height, columns): bars and teeth."""
+        state, theme, pitch = self.state, self.state.theme, self.row_height
+        depth = self.teeth.columns(self.shown_rows, scale, state.medium, state.velocity)
+        lengths = _widened(_lengths(depth, pitch, ratio), ratio)
+        size = (round(self.height() * ratio), depth.shape[1])
+        pixels = np.full(size, _rgb(theme.base), np.uint32)
+        steps = np.arange(round(pitch * ratio), dtype=np.int16)[:, None]
+        for row, length in enumerate(lengths):
+            top = round((_HEAD + row * pitch) * ratio)
+            pixels[top] = _rgb(theme.edge)
+            band = pixels[top + 1 : top + 1 + int(length.max(initial=0))]
+            colour = np.uint32(_rgb(theme.colour(self.teeth.names[row])))
+            np.copyto(band, colour, where=steps[: len(band)] < length)
+        return pixels
+
+    def _draw_missing(self, painter: QPainter, scale, place) -> None:
         offset, ratio = place
-        state = self.state
-        at, depth = self.teeth.teeth(row, scale, state.medium, state.velocity)
-        top = offset + (_HEAD + row * self.row_height + 1) * ratio
-        length = self._length(depth, ratio)
-        colour = QColor(state.theme.colour(self.teeth.names[row]))
-        self._draw_combs(painter, (at, top, length), colour, ratio)
-        gone, depth = self.teeth.missing(row, scale, state.medium, state.velocity)
-        if len(gone):
-            self._draw_missing(painter, (gone, top + self._length(depth, ratio)), colour, ratio)
-
-    def _length(self, depth, ratio: float) -> np.ndarray:
-        return np.round(np.maximum(depth * (self.row_height - 4), 2.0) * ratio)
-
-    def _draw_combs(self, painter: QPainter, comb, colour: QColor, ratio: float) -> None:
-        at, top, length = comb
-        inner = (self.width() - LEFT - RIGHT) * ratio
-        if len(at) * _WIDE_SPACING * ratio < inner:
-            painter.setPen(Qt.PenStyle.NoPen)
-            painter.setBrush(colour)
-            wide = np.full(len(at), round(2 * ratio))
-            draw_rects(painter, np.stack([at - 0.5, np.full(len(at), top), wide, length], axis=1))
-        else:
-            painter.setPen(QPen(colour, 0))
-            head = np.full(len(at), top)
-            draw_lines(painter, np.stack([at, head, at, top + length], axis=1))
-
-    def _draw_missing(self, painter: QPainter, ends, colour: QColor, ratio: float) -> None:
+        state, pitch = self.state, self.row_height
+        rows, x, depth = self.teeth.missing(scale, state.medium, state.velocity)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
-        painter.setPen(QPen(colour, 1.3 * ratio))
-        painter.setBrush(Qt.BrushStyle.NoBrush)
-        for x, y in zip(*ends):
-            painter.drawEllipse(QPointF(x, y), 3 * ratio, 3 * ratio)
+        painter.setBrush(QColor(state.theme.base))
+        y = offset + (_HEAD + rows * pitch + 1) * ratio + _lengths(depth, pitch, ratio)
+        for row, at, foot in zip(rows.tolist(), x.tolist(), y.tolist()):
+            if row < self.shown_rows:
+                colour = QColor(state.theme.colour(self.teeth.names[row]))
+                painter.setPen(QPen(colour, 1.3 * ratio))
+                painter.drawEllipse(QPointF(at, foot), 3 * ratio, 3 * ratio)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+
+
+def _lengths(depth: np.ndarray, pitch: int, ratio: float) -> np.ndarray:
+    """Device pixels of tooth for a depth; 0 where there is none (NaN)."""
+    length = np.maximum(depth * (pitch - 5), 2.0) * ratio
+    return np.where(np.isfinite(depth), length, 0.0).astype(np.int16)
+
+
+def _widened(lengths: np.ndarray, ratio: float) -> np.ndarray:
+    """Teeth two logical pixels wide where few, one where many."""
+    few = np.count_nonzero(lengths, axis=1) * _WIDE_SPACING * ratio < lengths.shape[1]
+    wide = np.where(few, round(2 * ratio), round(ratio))
+    for extra in range(1, int(wide.max(initial=1))):
+        rows = wide > extra
+        lengths[rows, 1:] = np.maximum(lengths[rows, 1:], lengths[rows, :-1])
+    return lengths
+
+
+def _rgb(colour: str) -> int:
+    return 0xFF000000 | int(colour[1:], 16)

@@ -8,69 +8,51 @@ from ...spectra.medium import C_KM_S, from_medium, to_medium
 from .extremes import PixelScale
 from .rake_data import RakeData
 
-# Up to this many teeth of a row are placed one by one, above by pixel column.
-DIRECT = 1200
-
-
-class RakeRow:
-    """Teeth of one species, sorted by vacuum wavelength."""
-
-    def __init__(self, wave: np.ndarray, depth: np.ndarray, missing: np.ndarray | None):
-        self.wave = np.ascontiguousarray(wave, dtype=float)
-        self.depth = np.clip(np.nan_to_num(depth), 0.0, 1.0)
-        self.missing = missing
-
-    def visible(self, low: float, high: float) -> slice:
-        """Teeth at rest between low and high, vacuum Angstrom."""
-        first, last = np.searchsorted(self.wave, [low, high])
-        return slice(int(first), int(last))
+# Rows stand one behind the other on one ascending axis, this far apart (Angstrom).
+_ROW_STRIDE = 1e7
 
 
 class RakeTeeth:
-    """Rows of a RakeData; ``teeth`` gives positions for one view and velocity.
+    """Teeth of all rows in one sorted array; ``columns`` reduces them to device pixels.
 
-    The view is divided by (1 + v/c) and looked up in the sorted rest wavelengths, so a
-    change of velocity moves no array. Column edges go to vacuum once per view.
+    The view is divided by (1 + v/c) and looked up among the rest wavelengths, so a change
+    of velocity moves no array. Column edges go to vacuum once per view.
     """
 
     def __init__(self, data: RakeData):
         self.names = data.row_names
-        self.rows = [self._row(data, index) for index in range(len(data.row_names))]
+        order = np.argsort(data.row, kind="stable")
+        row = np.asarray(data.row)[order]
+        self.wave = np.asarray(data.wave, dtype=float)[order]
+        self._key = self.wave + _ROW_STRIDE * row
+        depth = np.clip(np.nan_to_num(np.asarray(data.depth, dtype=float)[order]), 0.0, 1.0)
+        self._depth = np.append(depth, 0.0)
+        gone = None if data.missing is None else np.asarray(data.missing, dtype=bool)[order]
+        self._gone = np.zeros(0, dtype=int) if gone is None else np.nonzero(gone)[0]
+        self._row = row
         self._edges: tuple = (None, None, np.zeros(0))
 
-    @staticmethod
-    def _row(data: RakeData, index: int) -> RakeRow:
-        mine = np.asarray(data.row) == index
-        missing = None if data.missing is None else np.asarray(data.missing)[mine]
-        return RakeRow(np.asarray(data.wave)[mine], np.asarray(data.depth)[mine], missing)
+    def columns(self, rows: int, scale: PixelScale, medium: str, velocity: float) -> np.ndarray:
+        """Depth of the strongest tooth per row and device-pixel column, NaN without one.
 
-    def teeth(self, row: int, scale: PixelScale, medium: str, velocity: float):
-        """(pixel x, depth) of the strongest tooth per device-pixel column of one row."""
-        factor = 1.0 + velocity / C_KM_S
-        edges = self._vacuum_edges(scale, medium)
-        teeth = self.rows[row]
-        inside = teeth.visible(edges[0] / factor, edges[-1] / factor)
-        if inside.stop - inside.start <= DIRECT:
-            at = scale.pixels(to_medium(teeth.wave[inside] * factor, medium))
-            return np.floor(at) + 0.5, teeth.depth[inside]
-        bounds = np.searchsorted(teeth.wave, edges / factor)
-        filled = np.nonzero(bounds[1:] > bounds[:-1])[0]
-        deepest = np.maximum.reduceat(
-            teeth.depth[: bounds[-1]], bounds[filled]
-        )
-        return filled + scale.first_column() + 0.5, deepest
+        Shape (rows, columns touched by the view), first column ``scale.first_column()``.
+        """
+        edges = self._vacuum_edges(scale, medium) / (1.0 + velocity / C_KM_S)
+        keys = edges + _ROW_STRIDE * np.arange(rows)[:, None]
+        bounds = np.searchsorted(self._key, keys)
+        filled = np.ones(bounds.shape, dtype=bool)  # the end of each row closes its last column
+        filled[:, :-1] = bounds[:, 1:] > bounds[:, :-1]
+        deepest = np.full(bounds.shape, np.nan)
+        deepest[filled] = np.maximum.reduceat(self._depth, bounds[filled])
+        return deepest[:, :-1]
 
-    def missing(self, row: int, scale: PixelScale, medium: str, velocity: float):
-        """(pixel x, depth) of teeth marked as missing from the spectrum."""
-        teeth = self.rows[row]
-        if teeth.missing is None:
-            return np.zeros(0), np.zeros(0)
-        factor = 1.0 + velocity / C_KM_S
-        edges = self._vacuum_edges(scale, medium)
-        inside = teeth.visible(edges[0] / factor, edges[-1] / factor)
-        gone = teeth.missing[inside]
-        at = scale.pixels(to_medium(teeth.wave[inside][gone] * factor, medium))
-        return np.floor(at) + 0.5, teeth.depth[inside][gone]
+    def missing(self, scale: PixelScale, medium: str, velocity: float):
+        """(row, pixel x, depth) of teeth marked as missing from the spectrum."""
+        shifted = to_medium(self.wave[self._gone] * (1.0 + velocity / C_KM_S), medium)
+        inside = (shifted >= scale.low) & (shifted <= scale.high)
+        which = self._gone[inside]
+        at = np.floor(scale.pixels(shifted[inside])) + 0.5
+        return self._row[which], at, self._depth[which]
 
     def _vacuum_edges(self, scale: PixelScale, medium: str) -> np.ndarray:
         if self._edges[:2] != (scale, medium):

@@ -18,6 +18,7 @@ from .spectrum_item import column_lines, draw_run, reduce_part
 _COLUMNS = 2
 _PAD = 10
 _PREFERRED_ROW = 104
+_RAW = 40
 
 
 @dataclass(frozen=True, eq=False)
@@ -145,7 +146,7 @@ class SiblingStrips(QWidget):
             low = 0.6
         frame = Frame(scale, body.top(), body.bottom(), low, high, 1.0)
         painter.setPen(QPen(QColor(self._theme.ink), 0))
-        reduced = reduce_part(part, scale)
+        reduced = reduce_part(part, scale, raw=_RAW)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, reduced.smooth)
         if reduced.columns is not None:
             draw_lines(painter, column_lines(reduced.columns, frame))

@@ -15,7 +15,6 @@ from .primitives import draw_lines, draw_polyline
 
 # Up to this many samples per pixel the samples themselves are drawn.
 RAW_PER_PIXEL = 4
-SMOOTH_PER_PIXEL = 4
 # A visible extreme farther than this many bulk ranges from the bulk does not set the scale.
 OUTLIER_RANGES = 40.0
 
@@ -26,7 +25,11 @@ class Reduced:
 
     columns: Columns | None
     runs: tuple[tuple[np.ndarray, np.ndarray], ...]
-    smooth: bool
+
+    @property
+    def smooth(self) -> bool:
+        """Few samples are drawn antialiased; columns are on the pixels already."""
+        return self.columns is None
 
     def extremes(self) -> tuple[np.ndarray, np.ndarray]:
         """(lows, highs) in flux units, NaN-free."""
@@ -71,7 +74,9 @@ class SpectrumItem:
         highs = np.concatenate([pair[1] for pair in pairs])
         if len(lows) == 0:
             return None
-        bottom, middle, top = np.percentile(np.concatenate([lows, highs]), [2, 50, 98])
+        values = np.concatenate([lows, highs])
+        order = [int(share * (len(values) - 1)) for share in (0.02, 0.5, 0.98)]
+        bottom, middle, top = np.partition(values, order)[order].tolist()
         reach = OUTLIER_RANGES * max(top - bottom, 1e-300)
         return max(float(lows.min()), middle - reach), min(float(highs.max()), middle + reach)
 
@@ -108,18 +113,19 @@ class SpectrumItem:
         return self._bands
 
 
-def reduce_part(part: Extremes, scale: PixelScale) -> Reduced:
+def reduce_part(part: Extremes, scale: PixelScale, raw: float = RAW_PER_PIXEL) -> Reduced:
+    """Samples themselves up to ``raw`` per pixel, else columns."""
     start, stop = part.visible(scale.low, scale.high)
     count = stop - start
-    if count > RAW_PER_PIXEL * scale.width:
-        return Reduced(part.columns(scale), (), False)
+    if count > raw * scale.width:
+        return Reduced(part.columns(scale), ())
     pixels = np.clip(scale.pixels(part.x[start:stop]), -3e4, 3e4)
     flux = part.y[start:stop]
     runs = tuple(
         (pixels[a - start : b - start], flux[a - start : b - start])
         for a, b in part.runs(start, stop)
     )
-    return Reduced(None, runs, count <= SMOOTH_PER_PIXEL * scale.width)
+    return Reduced(None, runs)
 
 
 def column_lines(columns: Columns, frame: Frame) -> np.ndarray:

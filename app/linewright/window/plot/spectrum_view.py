@@ -86,7 +86,7 @@ class SpectrumView(QWidget):
     def set_velocity(self, km_s: float) -> None:
         """Slide the rake as one to a velocity in km/s (receding positive)."""
         self.state.velocity = float(km_s)
-        self.rake.update()
+        self.rake.slide()
 
     def select(self, number: int | None) -> None:
         """Highlight a feature and bring it into view when it is outside; None clears."""

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import numpy as np
-from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen
 
 from .geometry import LEFT, RIGHT, nice_ticks
 from .navigation import NavigableLane
 from .primitives import draw_lines
+from .text_pictures import TextPictures
 
 _TICK_WIDTH = 110
 TITLES = {
@@ -39,17 +39,13 @@ class WavelengthAxis(NavigableLane):
             top = np.zeros(len(x))
             draw_lines(painter, np.stack([x, top, x, top + length], axis=1))
         self._draw_numbers(painter, major, scale.pixels(major), decimals)
-        painter.setPen(QColor(theme.ink))
-        line = self.fontMetrics().height()
-        box = QRectF(LEFT, 9 + line, self.width() - LEFT - RIGHT, line)
-        painter.drawText(box, int(Qt.AlignmentFlag.AlignCenter), self.title())
+        middle = 0.5 * (LEFT + self.width() - RIGHT)
+        texts = TextPictures(painter, theme.ink)
+        texts.draw(self.title(), middle, 9 + self.fontMetrics().height(), 0.5)
 
     def _draw_numbers(self, painter: QPainter, values, x, decimals: int) -> None:
-        painter.setPen(QColor(self.state.theme.ink))
-        line = self.fontMetrics().height()
-        for value, at in zip(values, x):
-            left = min(max(at - 55, 0.0), self.width() - 110.0)
-            flags = Qt.AlignmentFlag.AlignHCenter
-            if left != at - 55:
-                flags = Qt.AlignmentFlag.AlignRight if at > left + 55 else flags
-            painter.drawText(QRectF(left, 8, 110, line), int(flags), f"{value:.{decimals}f}")
+        texts = TextPictures(painter, self.state.theme.ink)
+        half = 0.5 * self.fontMetrics().horizontalAdvance(f"{self.state.high:.{decimals}f}") + 2
+        for value, at in zip(values.tolist(), x.tolist()):
+            at = min(max(at, half), self.width() - half)
+            texts.draw(f"{value:.{decimals}f}", at, 8, 0.5)
