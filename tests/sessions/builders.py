@@ -29,22 +29,23 @@ def feature_table(count: int, rng, segments: int = 1, low=5000.0, high=5400.0) -
     segment = np.sort(rng.integers(0, segments, count))
     wave = rng.uniform(low, high, count)
     order = np.lexsort((wave, segment))
-    depth = rng.uniform(0.02, 0.9, count)
+    sign = np.where(rng.random(count) < 0.1, -1, 1)
+    depth = sign * rng.uniform(0.02, 0.9, count)
     fwhm = np.where(rng.random(count) < 0.1, np.nan, rng.uniform(0.08, 0.3, count))
     return FeatureTable(
         number=np.arange(1, count + 1),
         segment=segment,
         component=np.zeros(count, dtype=int),
-        sign=np.where(rng.random(count) < 0.1, -1, 1),
+        sign=sign,
         wave=wave[order],
         wave_err=rng.uniform(0.001, 0.01, count),
         significance=rng.uniform(5, 300, count),
         depth=depth,
-        depth_err=depth * 0.02,
+        depth_err=np.abs(depth) * 0.02,
         fwhm=fwhm,
         fwhm_err=fwhm * 0.03,
         ew=depth * fwhm * 1064.0,
-        ew_err=depth * fwhm * 30.0,
+        ew_err=np.abs(depth) * fwhm * 30.0,
         continuum=np.ones(count),
         flags=tuple("blend" if rng.random() < 0.2 else "" for _ in range(count)),
     )
@@ -139,10 +140,8 @@ def spectrum_of(made: Session, step: float = 0.02) -> Spectrum:
     flux = np.ones_like(wave)
     features = made.features
     width = np.nan_to_num(features.fwhm, nan=0.15) / 2.3548
-    for centre, depth, sign, sigma in zip(
-        features.wave, features.depth, features.sign, width, strict=True
-    ):
-        flux -= sign * depth * np.exp(-0.5 * ((wave - centre) / sigma) ** 2)
+    for centre, depth, sigma in zip(features.wave, features.depth, width, strict=True):
+        flux -= depth * np.exp(-0.5 * ((wave - centre) / sigma) ** 2)
     segment = Segment(wave, flux, None, np.zeros(len(wave), dtype=bool))
     return Spectrum((segment,), medium="air", frame="barycentric", name="invented")
 
@@ -156,7 +155,7 @@ def named_session(lines, medium: str = "air", spread: float = 0.2, emission: boo
     features = replace(
         made.features,
         wave=vacuum,
-        depth=np.array([depth for _, _, depth in lines]),
+        depth=np.array([-depth if emission else depth for _, _, depth in lines]),
         sign=np.full(count, -1 if emission else 1),
         fwhm=np.full(count, spread),
     )
