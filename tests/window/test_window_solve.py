@@ -20,7 +20,7 @@ class Engine:
         self.answer, self.go, self.calls = answer, threading.Event(), []
         self.threads = []
 
-    def __call__(self, spectrum, catalogue, options, progress):
+    def __call__(self, _process, spectrum, options, progress):
         self.calls.append((spectrum, options))
         self.threads.append(QThread.currentThread())
         for k in range(1000):

@@ -187,6 +187,7 @@ class MainWindow(Questions, Showing, QMainWindow):
         if self.space is not None:
             self.space.remember()
         self.tasks.close()
+        self.bench.engine.close()
         event.accept()
 
     def _ask_leave(self, unsaved) -> None:

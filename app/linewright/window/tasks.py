@@ -16,6 +16,7 @@ class Request:
     """A job: ``work(progress)`` runs beside the window, the rest in its thread.
 
     key: requests of one key replace one another; title: shown with the progress
+    stop: ends work that goes on elsewhere, called when the request is cancelled
     """
 
     key: str
@@ -24,6 +25,7 @@ class Request:
     done: Callable[[object], None]
     failed: Callable[[Exception], None]
     shown: bool = True
+    stop: Callable[[], None] | None = None
 
 
 class _Run(QRunnable):
@@ -78,6 +80,8 @@ class Tasks(QObject):
         run = self._current.pop(key, None)
         if run is not None:
             run.progress.cancel()
+            if run.request.stop is not None:
+                run.request.stop()
         return run is not None
 
     def cancel_all(self) -> None:

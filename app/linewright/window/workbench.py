@@ -13,6 +13,7 @@ from ..job.options import SolveOptions
 from ..session.document import Document
 from ..session.model import Candidate, Session
 from ..spectra.spectrum import Spectrum
+from .engine import Engine
 from .notices import Notice
 from .tasks import Tasks
 from .theme import LIGHT
@@ -48,6 +49,7 @@ class Workbench:
     """What panels and commands share. ``listen`` gets (old session, new session)."""
 
     def __init__(self, tasks: Tasks):
+        self.engine = Engine()
         self.tasks, self.view, self.theme = tasks, ViewState(), LIGHT
         self.desks: list[Desk] = []
         self.desk: Desk | None = None

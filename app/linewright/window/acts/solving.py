@@ -19,19 +19,18 @@ def solve(bench) -> None:
         opening.ask_medium(bench)
         return
     desk, spectrum, options = bench.desk, bench.spectrum, bench.desk.options
-    catalogue = bench.catalogue
+    engine = bench.engine
     bench.tasks.start(Request(
         key="solve", title=f"Solving {desk.name}",
-        work=lambda progress: _solved(spectrum, catalogue, options, progress),
+        work=lambda progress: _solved(engine, spectrum, options, progress),
         done=lambda session: _take(bench, desk, spectrum, session),
         failed=lambda error: _failed(bench, error),
+        stop=engine.stop,
     ))
 
 
-def _solved(spectrum, catalogue, options, progress):
-    from ...job.solve import solve as solve_spectrum
-
-    return solve_spectrum(spectrum, catalogue, options, progress)
+def _solved(engine, spectrum, options, progress):
+    return engine.call("job.solve:solve", spectrum, None, options, progress=progress)
 
 
 def _take(bench, desk, spectrum, session) -> None:

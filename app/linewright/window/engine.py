@@ -1,0 +1,106 @@
+"""Long work in a process of its own: frames keep their rate, and stopping is immediate."""
+
+from __future__ import annotations
+
+import os
+import pickle
+import subprocess
+import sys
+import threading
+from pathlib import Path
+
+from ..errors import Cancelled, LinewrightError
+from ..progress import Progress
+
+_PACKAGE_PARENT = str(Path(__file__).resolve().parents[2])
+_START = "from linewright.window.engine_child import serve; serve()"
+
+
+class EngineLost(LinewrightError):
+    """The process ended by itself, such as for want of memory."""
+
+
+class Engine:
+    """One child process, started when first needed and again after a stop."""
+
+    def __init__(self):
+        self._child: subprocess.Popen | None = None
+        self._turn = threading.Lock()  # one call at a time
+        self._stopped = False
+
+    def _alive(self) -> subprocess.Popen:
+        if self._child is not None and self._child.poll() is not None:
+            self._reap(self._child)
+        if self._child is None:
+            paths = [_PACKAGE_PARENT, *filter(None, [os.environ.get("PYTHONPATH", "")])]
+            self._child = subprocess.Popen(
+                [sys.executable, "-c", _START],
+                stdin=subprocess.PIPE, stdout=subprocess.PIPE, stderr=subprocess.DEVNULL,
+                env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},
+            )
+        return self._child
+
+    def call(self, target: str, *arguments, progress: Progress | None = None, **keywords):
+        """Result of the core function 'module:name'; call it from a worker thread.
+
+        Raises what the function raises, Cancelled after ``stop``, EngineLost when the
+        process died.
+        """
+        with self._turn:
+            self._stopped = False
+            if progress is not None:
+                progress.report("starting", 0.0)
+                keywords["report"] = True
+            child = self._alive()
+            try:
+                pickle.dump((target, arguments, keywords), child.stdin,
+                            protocol=pickle.HIGHEST_PROTOCOL)
+                child.stdin.flush()
+                return self._await(child, progress)
+            except (EOFError, OSError, pickle.UnpicklingError) as broken:
+                self._reap(child)
+                raise self._ending() from broken
+
+    def _await(self, child, progress: Progress | None):
+        while True:
+            kind, *content = pickle.load(child.stdout)
+            if kind == "done":
+                return content[0]
+            if kind == "refused":
+                refusal, *words = content[0]
+                raise refusal(*words)
+            if kind == "failed":
+                raise content[0]
+            if progress is not None:
+                progress.report(*content)
+
+    def _ending(self) -> Exception:
+        if self._stopped:
+            return Cancelled("stopped")
+        return EngineLost("the engine", "its process ended by itself", "try again, or solve a "
+                          "part of the spectrum if memory is short")
+
+    def _reap(self, child) -> None:
+        child.kill()
+        child.wait()
+        for pipe in (child.stdin, child.stdout):
+            try:
+                pipe.close()
+            except OSError:
+                pass
+        if self._child is child:
+            self._child = None
+
+    def stop(self) -> None:
+        """Ends the call under way at once; the next call starts a new process."""
+        self._stopped = True
+        child = self._child
+        if child is not None and self._turn.locked():
+            child.kill()
+
+    def close(self) -> None:
+        """Ends the process; called when the window closes."""
+        self.stop()
+        with self._turn:
+            if self._child is not None:
+                self._reap(self._child)
