@@ -11,33 +11,37 @@ import json
 import numpy as np
 
 
+_STRICT = json.JSONEncoder(allow_nan=False, sort_keys=True, separators=(",", ":"))
+_LOOSE = json.JSONEncoder(allow_nan=True, separators=(",", ":"))
+
+
 def column(values) -> str:
     """A JSON array of a whole column (array, numbers or strings), quickly."""
     items = values.tolist() if isinstance(values, np.ndarray) else list(values)
     if items and isinstance(items[0], float):
-        return "[" + ",".join(map(_float, items)) + "]"
+        # a column of floats holds no text that the replacements could touch
+        return _LOOSE.encode(items).replace("NaN", "null").replace("Infinity", "1e999")
     return compact(items)
-
-
-def _float(value: float) -> str:
-    text = repr(value)
-    return {"nan": "null", "inf": "1e999", "-inf": "-1e999"}.get(text, text)
 
 
 def compact(value) -> str:
     """JSON of plain data on one line, keys sorted."""
+    try:
+        return _STRICT.encode(value)
+    except ValueError:
+        return _with_infinities(value)
+
+
+def _with_infinities(value) -> str:
     if isinstance(value, float):
-        return _float(float(value))
+        text = repr(float(value))
+        return {"nan": "null", "inf": "1e999", "-inf": "-1e999"}.get(text, text)
     if isinstance(value, dict):
-        items = (f"{_text(key)}:{compact(value[key])}" for key in sorted(value))
-        return "{" + ",".join(items) + "}"
+        pairs = (f"{compact(key)}:{_with_infinities(value[key])}" for key in sorted(value))
+        return "{" + ",".join(pairs) + "}"
     if isinstance(value, (list, tuple)):
-        return "[" + ",".join(map(compact, value)) + "]"
-    return _text(value)
-
-
-def _text(value) -> str:
-    return json.dumps(value, ensure_ascii=True, allow_nan=False)
+        return "[" + ",".join(map(_with_infinities, value)) + "]"
+    return compact(value)
 
 
 class Columns(dict):
@@ -50,13 +54,13 @@ class Rows(list):
 
 def document(parts: dict) -> str:
     """The whole file: one part a line, tables one column a line, Rows one item a line."""
-    lines = [f"{_text(key)}: {_part(parts[key])}" for key in sorted(parts)]
+    lines = [f"{compact(key)}: {_part(parts[key])}" for key in sorted(parts)]
     return "{\n" + ",\n".join(lines) + "\n}\n"
 
 
 def _part(value) -> str:
     if isinstance(value, Columns):
-        return "{\n" + ",\n".join(f" {_text(k)}: {value[k]}" for k in sorted(value)) + "\n}"
+        return "{\n" + ",\n".join(f" {compact(k)}: {value[k]}" for k in sorted(value)) + "\n}"
     if isinstance(value, Rows):
         return "[\n" + ",\n".join(f" {compact(item)}" for item in value) + "\n]" if value else "[]"
     return compact(value)
