@@ -4,6 +4,7 @@ strength shows, and how strong it then looks."""
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
@@ -57,17 +58,21 @@ def learn_detection(strength, seen, exposure, features: float) -> DetectionCurve
     return DetectionCurve(np.clip(fitted, FLOOR, CEILING))
 
 
+@lru_cache(maxsize=1)
+def _forms():
+    """Every ceiling and zero point tried: (log p, log(1 - p)), each (forms, bins)."""
+    ceilings = (0.002, 0.005, 0.01, 0.02, 0.05, 0.1, 0.2, 0.35, 0.5, 0.65, 0.8, 0.9, 0.95)
+    value = np.array(
+        [threshold_form(c, z).value for c in ceilings for z in np.arange(-2.5, 2.51, 0.25)]
+    )
+    return np.log(value), np.log1p(-value)
+
+
 def _best_form(hits, tries) -> DetectionCurve:
     """Maximum Bernoulli likelihood over ceiling and zero point."""
-    misses = np.maximum(tries - hits, 0.0)
-    best, best_value = threshold_form(0.9, 0.0), -np.inf
-    for ceiling in (0.002, 0.005, 0.01, 0.02, 0.05, 0.1, 0.2, 0.35, 0.5, 0.65, 0.8, 0.9, 0.95):
-        for zero in np.arange(-2.5, 2.51, 0.25):
-            curve = threshold_form(ceiling, zero)
-            value = float(hits @ np.log(curve.value) + misses @ np.log1p(-curve.value))
-            if value > best_value:
-                best, best_value = curve, value
-    return best
+    shown, missed = _forms()
+    best = int(np.argmax(shown @ hits + missed @ np.maximum(tries - hits, 0.0)))
+    return DetectionCurve(np.exp(shown[best]))
 
 
 @dataclass(frozen=True, eq=False)

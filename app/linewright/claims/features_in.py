@@ -7,6 +7,9 @@ import numpy as np
 from .problem import FeatureData
 
 SHALLOWEST, DEEPEST = 0.002, 0.98
+MIN_FOR_WIDTHS = 40
+BROAD = 1.25  # a feature this much broader than its like is a blend
+EXCESS_SHARE = 0.25  # of the surplus width: how far its centroid may be off any one line
 LN10 = np.log(10.0)
 
 
@@ -31,4 +34,31 @@ def feature_data(features) -> FeatureData:
         features.sign,
         strength,
         np.clip(np.nan_to_num(strength_err, nan=0.0), 0.0, 2.0),
+        excess_error(features.wave, features.fwhm, strength, features.sign),
     )
+
+
+def excess_error(wave, fwhm, strength, sign):
+    """Position error (Angstrom) of features too broad for their strength; 0 for the rest.
+
+    The width expected at a strength is the running median over features of like strength.
+    """
+    out = np.zeros(len(wave))
+    for s in (1, -1):
+        rows = np.nonzero((sign == s) & np.isfinite(fwhm) & np.isfinite(strength) & (fwhm > 0))[0]
+        if len(rows) < MIN_FOR_WIDTHS:
+            continue
+        order = rows[np.argsort(strength[rows], kind="stable")]
+        relative = fwhm[order] / wave[order]
+        expected = _running_median(relative) * wave[order]
+        surplus = np.maximum(fwhm[order] ** 2 - (BROAD * expected) ** 2, 0.0)
+        out[order] = EXCESS_SHARE * np.sqrt(surplus)
+    return out
+
+
+def _running_median(values):
+    """Median in overlapping windows of about a tenth of the sample, interpolated."""
+    size = max(len(values) // 10, 15)
+    centres = np.arange(size // 2, len(values), max(size // 2, 1))
+    levels = [np.median(values[max(c - size // 2, 0) : c + size // 2 + 1]) for c in centres]
+    return np.interp(np.arange(len(values)), centres, levels)

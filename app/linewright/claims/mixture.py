@@ -20,9 +20,12 @@ from .problem import Problem, find_pairs, inside
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
-TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.05, 3.5, 0.03  # heavy tail of position errors
+TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.04, 3.5, 0.02  # heavy tail of position errors
 ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
-STRENGTH_TAIL, STRENGTH_RANGE = 0.07, 8.0  # share and width (dex) of strengths gone wrong
+STRENGTH_TAIL, STRENGTH_RANGE = 0.04, 8.0  # share and width (dex) of strengths gone wrong
+OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid
+LIST_SCATTER = 0.002  # Angstrom: position scatter of a species' lines before it is learned
+SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom
 CENTRING = 0.03  # of the FWHM: asymmetries and blends limit any centroid
 
 
@@ -36,7 +39,7 @@ class State:
     offsets: np.ndarray
     offset_errors: np.ndarray
     error_scale: float
-    velocity_shift: np.ndarray
+    scatter: np.ndarray
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,7 +83,7 @@ def _first_state(problem: Problem) -> State:
     relations = tuple(first_relation(f.strength) for _ in range(problem.populations))
     null = learn_null(f, np.full(len(f), 0.1), problem.length(), problem.complete)
     zero = np.zeros(problem.species)
-    return State(curves, relations, null, zero, zero + 0.4, 1.0, np.zeros(0))
+    return State(curves, relations, null, zero, zero + 0.4, 1.0, zero + LIST_SCATTER)
 
 
 class _Pairs:
@@ -88,7 +91,9 @@ class _Pairs:
 
     def __init__(self, problem: Problem, state: State):
         f, e = problem.features, problem.entries
-        self.base = np.hypot(f.error, CENTRING * np.nan_to_num(f.fwhm))
+        self.base = np.sqrt(
+            f.error**2 + (CENTRING * np.nan_to_num(f.fwhm)) ** 2 + f.excess**2
+        )
         reach = 3.5 * np.maximum(TAIL_FACTOR * 1.5 * self.base, TAIL_FLOOR)
         self.feature, self.entry = find_pairs(f, e, np.minimum(reach, 12 * self.base + 0.25))
         self.covered = inside(e.wave, problem.coverage).astype(float)
@@ -134,11 +139,13 @@ def _per_population(population, value, curves):
 def _position(problem, pairs, state, groups):
     """Position likelihood per pair: the line's own place, or its blend's centroid."""
     e, f = problem.entries, problem.features
-    sigma = np.hypot(pairs.base[pairs.feature] * state.error_scale, e.error[pairs.entry])
+    list_error = np.hypot(e.error, state.scatter[e.species])
+    sigma = np.hypot(pairs.base[pairs.feature] * state.error_scale, list_error[pairs.entry])
     x = f.wave[pairs.feature]
     own = x - e.wave[pairs.entry]
     blend = x - groups.centroid[pairs.entry]
-    value = 0.5 * (_tailed(own, sigma) + _tailed(blend, sigma))
+    weight = np.maximum(groups.share[pairs.entry], OWN_PLACE)
+    value = weight * _tailed(own, sigma) + (1 - weight) * _tailed(blend, sigma)
     nearer = np.where(np.abs(blend) < np.abs(own), blend, own)
     return value, sigma, nearer / sigma
 
@@ -190,6 +197,7 @@ def _learn(problem, pairs, step: _Step, state: State, turn: int) -> State:
         relation=tuple(relation),
         null=learn_null(f, step.marginals.unlisted, problem.length(), problem.complete),
         error_scale=_error_scale(step, pairs, state.error_scale),
+        scatter=_species_scatter(problem, pairs, step),
     )
     return _learn_offsets(problem, pairs, step, state) if turn >= 1 else state
 
@@ -201,6 +209,23 @@ def _error_scale(step: _Step, pairs: _Pairs, previous: float) -> float:
         return previous
     scale = 1.4826 * float(np.median(np.abs(step.offset[sure])))
     return float(np.clip(previous * scale, 0.6, 4.0))
+
+
+def _species_scatter(problem, pairs, step: _Step):
+    """Position scatter (Angstrom) of each species' lines beyond that of the features.
+
+    Hyperfine structure and poor lists scatter some species more than others.
+    """
+    e = problem.entries
+    offset = step.offset * step.sigma
+    mine = (step.marginals.pair > 0.5) & (np.abs(offset) < SCATTER_REACH)
+    feature = pairs.base[pairs.feature[mine]] * 0.8
+    excess = offset[mine] ** 2 - feature**2 - e.error[pairs.entry[mine]] ** 2
+    species, weight = e.species[pairs.entry[mine]], step.marginals.pair[mine]
+    total = np.bincount(species, weight * excess, problem.species)
+    count = np.bincount(species, weight, problem.species)
+    variance = (SCATTER_WEIGHT * LIST_SCATTER**2 + total) / (SCATTER_WEIGHT + count)
+    return np.sqrt(np.clip(variance, 0.0005**2, 0.03**2))
 
 
 def _learn_offsets(problem, pairs, step: _Step, state: State) -> State:

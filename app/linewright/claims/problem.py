@@ -16,7 +16,8 @@ class FeatureData:
     wave, error: vacuum Angstrom and centroid error; fwhm: Angstrom (NaN unknown);
     sign: +1 absorption, -1 emission; strength: measured strength m, dex (NaN unknown):
     log10(d/(1-d)) of the central depth in absorption, log10 of line flux in emission;
-    strength_err: dex
+    strength_err: dex; excess: position error (Angstrom) of features broader than others of
+    their strength, which are unresolved blends
     """
 
     wave: np.ndarray
@@ -25,6 +26,7 @@ class FeatureData:
     sign: np.ndarray
     strength: np.ndarray
     strength_err: np.ndarray
+    excess: np.ndarray
 
     def __len__(self) -> int:
         return len(self.wave)
