@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shutil
 import subprocess
 from pathlib import Path
 
@@ -32,6 +33,8 @@ def strangers(tracked: list[str]) -> list[str]:
 
 
 def _tracked() -> list[str]:
+    if shutil.which("git") is None:
+        pytest.skip("git is not installed")
     done = subprocess.run(["git", "ls-files"], cwd=ROOT, capture_output=True, text=True)
     if done.returncode != 0:
         pytest.skip("not a git checkout")

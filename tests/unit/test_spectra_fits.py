@@ -240,3 +240,10 @@ def test_a_stated_resolving_power_is_kept(tmp_path):
 def test_an_unknown_choice_is_a_programming_error(tmp_path):
     with pytest.raises(TypeError, match="colour"):
         read_spectrum(tmp_path / "x", colour="red")
+
+
+def test_a_damaged_card_of_no_concern_stops_nothing(tmp_path):
+    path = _image(tmp_path, _linear(CTYPE1="WAVE", CUNIT1="Angstrom", NIGHT="2020-01-01"))
+    data = path.read_bytes().replace(b"NIGHT   = '2020-01-01'", b"NIGHT   = 20'20-01-01'")
+    path.write_bytes(data)
+    _check(read_spectrum(path))

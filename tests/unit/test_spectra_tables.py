@@ -15,6 +15,9 @@ WAVE = np.linspace(5000.0, 5080.0, 300)
 FLUX = 1.0 - 0.5 * np.exp(-0.5 * ((WAVE - 5040.0) / 0.3) ** 2)
 
 
+pytestmark = pytest.mark.filterwarnings("ignore::astropy.units.UnitsWarning")
+
+
 def _table(unit=u.nm):
     table = Table({"flux": FLUX, "wavelength": (WAVE * u.AA).to(unit), "ivar": np.full(300, 1e4)})
     table["flux"].unit = "erg / (s cm2 Angstrom)"

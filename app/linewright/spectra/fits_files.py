@@ -16,7 +16,16 @@ from .tables import TableView, raw_from_table
 
 
 def _cards(header) -> list[Card]:
-    return [Card(c.keyword, c.value, c.comment) for c in header.cards]
+    """Every statement that can be parsed; a damaged card of no concern stops nothing."""
+    from astropy.io.fits import VerifyError
+
+    cards = []
+    for card in header.cards:
+        try:
+            cards.append(Card(card.keyword, card.value, card.comment))
+        except (VerifyError, ValueError):
+            continue
+    return cards
 
 
 def _statements(hdus, index: int) -> tuple[Card, ...]:
@@ -89,7 +98,7 @@ def _first(hdus, wanted: Wanted, what) -> tuple[int, Raw]:
     if refusals:
         raise refusals[0]
     where = "no HDU" if wanted.hdu is None else f"HDU {wanted.hdu}"
-    if len(hdus) == 1 and not hdus[0].shape:
+    if len(hdus) == 1 and not getattr(hdus[0], "shape", ()):
         raise InputRefused(what, "is a FITS header without data", "give the file with its data")
     raise InputRefused(what, f"{where} holds a spectrum with a wavelength axis or column",
                        "choose with --hdu or --columns, or save wavelength and flux as a table")

@@ -54,7 +54,7 @@ def images_of(hdus) -> list[Image]:
     """Image HDUs with data, with the role each name states."""
     found = []
     for index, hdu in enumerate(hdus):
-        if not getattr(hdu, "is_image", False) or not hdu.shape:
+        if not getattr(hdu, "is_image", False) or not getattr(hdu, "shape", ()):
             continue
         shape = tuple(int(n) for n in hdu.shape)
         while len(shape) > 1 and shape[0] == 1:
@@ -67,8 +67,8 @@ def images_of(hdus) -> list[Image]:
 
 def _row_names(header, count: int) -> list[str]:
     """What the header calls each row of a two-dimensional image, '' where it does not."""
-    for card in header.cards:
-        parts = [p.strip() for p in str(card.value).split(",")]
+    for key in ("EXTEN0", "ROWS", "PLANES", "CONTENTS"):
+        parts = [p.strip() for p in str(header.get(key, "")).split(",")]
         if len(parts) == count > 1 and role_of_words(parts[0]) == "flux":
             return parts
     for stem in ("ARRAY", "ROW", "BANDID", "NAME", "APID"):
