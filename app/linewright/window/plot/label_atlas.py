@@ -1,94 +1,122 @@
-"""Rendered labels and markers side by side in one picture, blitted in one call.
+"""Rendered labels and markers side by side in two pictures, each blitted in one call.
 
-Text drawn under a rotation costs far more than its pixels: each label is rendered once
-into an upright slot of the atlas, its family marker under it, and then only copied.
+Text drawn under a rotation costs far more than its pixels, and blending costs three times
+copying: each label is rendered once on the plot's ground into an opaque slot and then only
+copied. Markers may touch one another, so theirs is a picture with an alpha channel.
 """
 
 from __future__ import annotations
+
+from dataclasses import dataclass
 
 import numpy as np
 import shiboken6
 from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QColor, QFont, QPainter, QPixmap
 
-SLOTS = 640
+_COLUMNS, _ROWS = 128, 5
+MARKER_KINDS = 64
+
+
+@dataclass(frozen=True)
+class LabelContent:
+    """What a label slot shows."""
+
+    text: str
+    colour: str
+    ground: str
 
 
 class LabelAtlas:
-    """Slots of ``size`` (width, text height, marker size) logical pixels at one ratio."""
+    """Slots for labels (width x height) and markers, sizes in logical pixels.
 
-    def __init__(self, font: QFont, size: tuple[float, float, float], ratio: float):
-        self._font, self.ratio = font, ratio
-        self.width, self.height, self.marker = (int(round(s * ratio)) for s in size)
-        self._columns = 128
-        rows = -(-SLOTS // self._columns)
-        self._slot_height = self.height + self.marker
-        self._picture = QPixmap(self._columns * self.width, rows * self._slot_height)
-        self._picture.fill(Qt.GlobalColor.transparent)
-        self._used: dict[tuple, int] = {}
+    ``used`` counts the label slots taken; setting it to 0 empties the atlas. The slot
+    after the last is kept for the selected label.
+    """
 
-    def slot(self, key: tuple, make) -> int:
-        """Slot of ``key``; ``make()`` gives (text, colour, ground, marker picture) if new."""
-        slot = self._used.get(key)
-        if slot is None:
-            if len(self._used) >= SLOTS:
-                self._used.clear()
-            slot = self._used[key] = len(self._used)
-            self._render(slot, *make())
+    slots = _COLUMNS * _ROWS - 1
+
+    def __init__(self, font: QFont, sizes: tuple[float, float, float], look: tuple[float, str]):
+        """sizes: label width and height, marker; look: (device ratio, ground colour)."""
+        self._font, (self._ratio, self._ground) = QFont(font), look
+        self._font.setStyleStrategy(QFont.StyleStrategy.NoSubpixelAntialias)
+        self.width, self.height, self.marker = (round(s * self._ratio) for s in sizes)
+        self._labels = QPixmap(_COLUMNS * self.width, _ROWS * self.height)
+        self._labels.fill(QColor(self._ground))
+        self._markers = QPixmap(MARKER_KINDS * self.marker, self.marker)
+        self._markers.fill(Qt.GlobalColor.transparent)
+        self._kinds: dict[tuple, int] = {}
+        self.used = 0
+        self._chosen: int | None = None
+
+    def add(self, content: LabelContent) -> int:
+        """Render into the next free slot and return it."""
+        slot = self.used
+        self.used += 1
+        self._render(slot, content)
         return slot
 
-    def room_for(self, keys) -> bool:
-        """Whether all keys fit beside what is there (else the atlas must be emptied)."""
-        return len(self._used) + sum(key not in self._used for key in keys) <= SLOTS
+    def set_chosen(self, row: int, content: LabelContent) -> int:
+        """Slot of the selected label, rendered when the selection changed."""
+        if row != self._chosen:
+            self._render(self.slots, content)
+            self._chosen = row
+        return self.slots
 
-    def clear(self) -> None:
-        self._used.clear()
+    def marker_kind(self, key: tuple, make) -> int:
+        """Place of a marker; ``make()`` gives its picture when it is new."""
+        if key not in self._kinds:
+            place = self._kinds[key] = len(self._kinds) % MARKER_KINDS
+            painter = QPainter(self._markers)
+            box = QRectF(place * self.marker, 0, self.marker, self.marker)
+            picture = make()
+            painter.drawPixmap(box, picture, QRectF(picture.rect()))
+            painter.end()
+        return self._kinds[key]
 
     def _corner(self, slot):
-        return (slot % self._columns) * self.width, (slot // self._columns) * self._slot_height
+        return (slot % _COLUMNS) * self.width, (slot // _COLUMNS) * self.height
 
-    def _render(self, slot: int, text: str, colour: str, ground: str, marker: QPixmap) -> None:
+    def _render(self, slot: int, content: LabelContent) -> None:
         left, top = self._corner(slot)
-        painter = QPainter(self._picture)
-        painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)
-        box = QRectF(left, top, self.width, self._slot_height)
-        painter.fillRect(box, Qt.GlobalColor.transparent)
-        painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_SourceOver)
+        painter = QPainter(self._labels)
+        box = QRectF(left, top, self.width, self.height)
         painter.setClipRect(box)
-        marker_left = left + (self.width - self.marker) // 2
-        painter.drawPixmap(
-            QRectF(marker_left, top + self.height, self.marker, self.marker),
-            marker,
-            QRectF(0, 0, marker.width(), marker.height()),
-        )
+        painter.fillRect(box, QColor(self._ground))
         painter.setFont(self._font)
-        painter.setPen(QColor(colour))
         painter.translate(left, top + self.height)
         painter.rotate(-90)
-        painter.scale(self.ratio, self.ratio)
-        line, room = self.width / self.ratio, self.height / self.ratio
-        if ground:
-            length = painter.fontMetrics().horizontalAdvance(text) + 4
-            painter.fillRect(QRectF(0, 0, length, line), QColor(ground))
+        painter.scale(self._ratio, self._ratio)
+        line, room = self.width / self._ratio, self.height / self._ratio
+        if content.ground:
+            length = painter.fontMetrics().horizontalAdvance(content.text) + 4
+            painter.fillRect(QRectF(0, 0, length, line), QColor(content.ground))
+        painter.setPen(QColor(content.colour))
         flags = int(Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignLeft)
-        painter.drawText(QRectF(2, 0, room, line), flags, text)
+        painter.drawText(QRectF(2, 0, room, line), flags, content.text)
         painter.end()
 
-    def blit(self, painter: QPainter, slots: np.ndarray, label_at, marker_at) -> None:
-        """Copy slots with labels and markers centred at (x, y) arrays, device pixels."""
-        left, top = self._corner(slots)
-        width, tall, small = self.width, self.height, self.marker
-        size = np.ones(len(slots))
-        labels = _fragments(label_at, (left, top), (width * size, tall * size))
-        inset = (width - small) // 2
-        markers = _fragments(marker_at, (left + inset, top + tall), (small * size, small * size))
-        both = np.ascontiguousarray(np.concatenate([markers, labels]))
-        if len(both):
-            first = shiboken6.Shiboken.wrapInstance(both.ctypes.data, QPainter.PixmapFragment)
-            painter.drawPixmapFragments(first, len(both), self._picture)
+    def blit_labels(self, painter: QPainter, slots: np.ndarray, column, top: int) -> None:
+        """Copy label slots about device-pixel columns, from device row ``top`` down."""
+        rows = np.ones((len(slots), 10))
+        rows[:, 0] = column + 0.5 * (self.width % 2)
+        rows[:, 1] = top + 0.5 * self.height
+        rows[:, 2], rows[:, 3] = self._corner(slots)
+        rows[:, 4], rows[:, 5], rows[:, 8] = self.width, self.height, 0.0
+        _draw(painter, rows, self._labels)
+
+    def blit_markers(self, painter: QPainter, kinds: np.ndarray, column, top: int) -> None:
+        """Copy markers about device-pixel columns, from device row ``top`` down."""
+        rows = np.ones((len(kinds), 10))
+        rows[:, 0] = column + 0.5 * (self.marker % 2)
+        rows[:, 1] = top + 0.5 * self.marker
+        rows[:, 2], rows[:, 3] = kinds * self.marker, 0.0
+        rows[:, 4], rows[:, 5], rows[:, 8] = self.marker, self.marker, 0.0
+        _draw(painter, rows, self._markers)
 
 
-def _fragments(centre, corner, size) -> np.ndarray:
-    """Rows of QPainter.PixmapFragment: centre, source rectangle, scales, rotation, opacity."""
-    one, zero = np.ones(len(size[0])), np.zeros(len(size[0]))
-    return np.stack([*centre, *corner, *size, one, one, zero, one], axis=1).astype(float)
+def _draw(painter: QPainter, rows: np.ndarray, picture: QPixmap) -> None:
+    """Rows of centre, source rectangle, scales, rotation, opacity."""
+    if len(rows):
+        first = shiboken6.Shiboken.wrapInstance(rows.ctypes.data, QPainter.PixmapFragment)
+        painter.drawPixmapFragments(first, len(rows), picture)

@@ -15,7 +15,7 @@ from ..theme import Theme
 from .extremes import PixelScale
 from .feature_marks import FIRM, LIKELY, TENTATIVE, FeatureMarks, no_marks
 from .geometry import to_device
-from .label_atlas import LabelAtlas
+from .label_atlas import LabelAtlas, LabelContent
 from .marks import FILL, marker_pixmap
 from .placement import place, ration
 from .primitives import draw_lines
@@ -63,6 +63,7 @@ class LabelLayer:
         self.mode = "full"
         self.placed = Placed()
         self._atlas: tuple[tuple, LabelAtlas | None] = ((), None)
+        self._slot_of = self._kind_of = np.zeros(0, dtype=int)
         self._ticks: TickStrokes | None = None
 
     def set_marks(self, marks: FeatureMarks) -> None:
@@ -110,10 +111,10 @@ class LabelLayer:
         kept, places = place(x, self.line, ends)
         if len(kept) == 0:
             return
-        rows, x, places = rows[kept], x[kept], np.round(places)
+        rows, x, places = rows[kept], x[kept], np.floor(places) + 0.5
         foot = self._label_foot
         self.placed = Placed(rows, places, 4.0, foot, self.line)
-        painter.setPen(QPen(QColor(theme.faint), 0))
+        painter.setPen(QPen(QColor(theme.muted), 0))
         draw_lines(painter, leader_lines(x, places, foot))
         self._blit(painter, (rows, x, places), theme)
 
@@ -130,39 +131,53 @@ class LabelLayer:
     def _blit(self, painter: QPainter, found, theme: Theme) -> None:
         rows, x, places = found
         atlas = self._atlas_for(theme, painter.device().devicePixelRatioF())
-        chosen = self.marks.row_of(self.selected)
-        keys = [(row, row == chosen) for row in rows.tolist()]
-        if not atlas.room_for(keys):
-            atlas.clear()
-        slots = np.array([atlas.slot(key, lambda k=key: self._content(k, theme)) for key in keys])
+        slots = self._slots(atlas, rows, theme)
         painter.save()
         left, top, ratio = to_device(painter)
-        shift = 0.5 * (atlas.width % 2)
-        centre = np.floor(left + places * ratio) + shift
-        label_y = np.full(len(rows), np.round(top + self._label_foot * ratio) - atlas.height / 2)
-        marker_x = np.floor(left + x * ratio) + 0.5 * (atlas.marker % 2)
-        middle = top + (self._label_foot + _LEADER + _MARKER / 2 - 1) * ratio
-        marker_y = np.full(len(rows), np.floor(middle) + 0.5 * (atlas.marker % 2))
-        atlas.blit(painter, slots, (centre, label_y), (marker_x, marker_y))
+        atlas.blit_labels(painter, slots, np.floor(left + places * ratio), round(top + 4 * ratio))
+        under = round(top + (self._label_foot + _LEADER - 1) * ratio)
+        atlas.blit_markers(painter, self._kind_of[rows], np.floor(left + x * ratio), under)
         painter.restore()
+
+    def _slots(self, atlas: LabelAtlas, rows: np.ndarray, theme: Theme) -> np.ndarray:
+        """Slot of each row, rendered where it is new; the selected row has one of its own."""
+        slots = self._slot_of[rows]
+        new = np.count_nonzero(slots < 0)
+        if atlas.used + new + 1 > atlas.slots:
+            atlas.used = 0
+            self._slot_of[:] = -1
+            slots = self._slot_of[rows]
+        for index in np.nonzero(slots < 0)[0].tolist():
+            row = int(rows[index])
+            slots[index] = self._slot_of[row] = atlas.add(self._content(row, theme, False))
+            self._kind_of[row] = self._marker_kind(atlas, row, theme)
+        chosen = self.marks.row_of(self.selected)
+        where = np.nonzero(rows == chosen)[0] if chosen is not None else ()
+        if len(where):
+            slots[where] = atlas.set_chosen(chosen, self._content(chosen, theme, True))
+        return slots
 
     def _atlas_for(self, theme: Theme, ratio: float) -> LabelAtlas:
         key = (theme, ratio, self.mode)
         if self._atlas[0] != key:
-            size = (self.line, self._lengths[self.mode], _MARKER)
-            self._atlas = (key, LabelAtlas(self.font, size, ratio))
+            sizes = (self.line, self._lengths[self.mode], _MARKER)
+            self._atlas = (key, LabelAtlas(self.font, sizes, (ratio, theme.base)))
+            self._slot_of = np.full(len(self.marks), -1)
+            self._kind_of = np.zeros(len(self.marks), dtype=int)
         return self._atlas[1]
 
-    def _content(self, key: tuple[int, bool], theme: Theme) -> tuple:
-        row, chosen = key
+    def _content(self, row: int, theme: Theme, chosen: bool) -> LabelContent:
         marks = self.marks
-        species, origin = marks.species[row], marks.origin[row]
-        colour = theme.accent_ink if chosen else theme.text_colour(species, origin)
-        fill = _STANDING_FILL[int(marks.standing[row])]
-        family_colour = theme.colour(species, origin)
-        ratio = self._atlas[0][1]
-        marker = marker_pixmap(theme.marker(species, origin), family_colour, fill, _MARKER, ratio)
-        return self._text(row), colour, theme.accent if chosen else "", marker
+        if chosen:
+            return LabelContent(self._text(row), theme.accent_ink, theme.accent)
+        colour = theme.text_colour(marks.species[row], marks.origin[row])
+        return LabelContent(self._text(row), colour, "")
+
+    def _marker_kind(self, atlas: LabelAtlas, row: int, theme: Theme) -> int:
+        who = self.marks.species[row], self.marks.origin[row]
+        fill = _STANDING_FILL[int(self.marks.standing[row])]
+        key = (theme.marker(*who), theme.colour(*who), fill, _MARKER, self._atlas[0][1])
+        return atlas.marker_kind(key, lambda: marker_pixmap(*key))
 
     def _text(self, row: int) -> str:
         return self.marks.short[row] if self.mode == "short" else self.marks.text[row]
@@ -179,10 +194,23 @@ class LabelLayer:
 
 
 def leader_lines(x: np.ndarray, places: np.ndarray, top: float) -> np.ndarray:
-    """Elbows from the feet of labels at ``places`` down to features at ``x``: (3 n, 4)."""
-    lines = np.empty((3, len(x), 4))
-    start, knee, base, end = top + 1.5, top + 4.5, top + _LEADER - 4, top + _LEADER - 1
-    lines[0, :, 0], lines[0, :, 1], lines[0, :, 2], lines[0, :, 3] = places, start, places, knee
-    lines[1, :, 0], lines[1, :, 1], lines[1, :, 2], lines[1, :, 3] = places, knee, x, base
-    lines[2, :, 0], lines[2, :, 1], lines[2, :, 2], lines[2, :, 3] = x, base, x, end
-    return lines.reshape(-1, 4)
+    """Lines from the feet of labels at ``places`` down to features at ``x``.
+
+    One stroke where a label stands over its feature, an elbow of three elsewhere.
+    """
+    start, knee, base, end = top + 1.0, top + 4.5, top + _LEADER - 4, top + _LEADER - 1
+    apart = x != places
+    straight, x, places = x[~apart], x[apart], places[apart]
+    strokes = (
+        (straight, start, straight, end),
+        (places, start, places, knee),
+        (places, knee, x, base),
+        (x, base, x, end),
+    )
+    lines = np.empty((len(straight) + 3 * len(x), 4))
+    stop = 0
+    for stroke in strokes:
+        first, stop = stop, stop + len(stroke[0])
+        for column, values in enumerate(stroke):
+            lines[first:stop, column] = values
+    return lines
