@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from .catalogues import chosen_catalogue
 from .parsing import (
     abundances,
     count,
@@ -49,8 +50,9 @@ def _add_physics(group) -> None:
         "--species", action="append", default=[], metavar="LIST", help="only these: 'Fe I,Ti II'"
     )
     group.add_argument(
-        "--catalogue", action="append", default=[], metavar="FILE", help="lines of your own"
-    )
+        "--catalogue", action="append", default=[], metavar="FILE",
+        help="use these lines instead; name 'shipped' as well to keep the shipped ones",
+    )  # fmt: skip
     group.add_argument("--seed", type=count, default=0, metavar="N")
 
 
@@ -119,24 +121,23 @@ def _from_spectrum(options, wanted, progress):
     from ..job.solve import solve
 
     spectrum = read(options)
-    return solve(spectrum, _catalogue(options, spectrum.medium), wanted, progress)
+    catalogue, notes = chosen_catalogue(options.catalogue, spectrum.medium)
+    return _noted(solve(spectrum, catalogue, wanted, progress), notes)
 
 
 def _from_features(options, wanted, progress):
     from ..job.solve import solve_features
 
     medium = options.medium or "air"
-    catalogue = _catalogue(options, medium)
-    return solve_features(options.spectrum, catalogue, wanted, medium=medium, progress=progress)
+    catalogue, notes = chosen_catalogue(options.catalogue, medium)
+    session = solve_features(options.spectrum, catalogue, wanted, medium=medium, progress=progress)
+    return _noted(session, notes)
 
 
-def _catalogue(options, medium: str):
-    """The shipped lines (None), or the user's own files."""
-    if not options.catalogue:
-        return None
-    from ..lines.user import read_user_catalogue
+def _noted(session, notes: tuple[str, ...]):
+    from dataclasses import replace
 
-    return read_user_catalogue(options.catalogue, "air" if medium == "unknown" else medium)
+    return replace(session, warnings=(*session.warnings, *notes)) if notes else session
 
 
 def _report(session, options) -> None:
