@@ -10,7 +10,14 @@ from .interstellar import find_clouds
 from .model import VelocityResult
 from .populations import HYDROGEN, NEBULAR, SKY, STELLAR, TELLURIC, Component
 from .temperature import COARSE
-from .velocity import emission_vote, refine, stellar_vote, telluric_vote
+from .velocity import (
+    ORDINARY_SHIFT,
+    emission_vote,
+    refine,
+    stellar_vote,
+    telluric_vote,
+    typical_width,
+)
 from .voting import DECLARE_MARGIN, Vote
 
 BROAD_ERROR = 2.0  # km/s: pressure shifts and asymmetric wings of hydrogen and helium
@@ -43,7 +50,7 @@ def find_components(setting, progress) -> Found:
         components.append(Component(SKY, 0.0, 0.5 if o.frame == "topocentric" else 15.0))
     telluric = telluric_vote(f, setting.catalogue, o.frame, o.velocity_range)
     if np.isfinite(telluric.velocity):
-        components.append(_telluric(telluric, o.frame))
+        components.append(_telluric(telluric, o.frame, typical_width(f)))
     has_star = bool(components) and components[0].population == STELLAR
     return Found(tuple(components), main, temperature, has_star, warnings)
 
@@ -90,12 +97,18 @@ def _emission_velocity(nebula: Vote, main: VelocityResult) -> float:
     return nebula.velocity if nebula.declared else main.velocity
 
 
-def _telluric(vote: Vote, frame: str) -> Component:
-    """Where telluric lines stand; wide while the vote is not clear."""
+def _telluric(vote: Vote, frame: str, width: float) -> Component:
+    """Where telluric lines stand; wide while the vote is not clear.
+
+    Lines broader than ORDINARY_SHIFT blend whole bands: their vote is biased, and the
+    observer's frame is the better guess.
+    """
+    if frame in ("topocentric", "geocentric"):
+        return Component(TELLURIC, vote.velocity if vote.declared else 0.0, 0.5)
+    if width > ORDINARY_SHIFT:
+        return Component(TELLURIC, 0.0, ORDINARY_SHIFT / 2)
     if vote.declared:
         return Component(TELLURIC, vote.velocity, vote.error)
-    if frame in ("topocentric", "geocentric"):
-        return Component(TELLURIC, 0.0, 0.5)
     return Component(TELLURIC, vote.velocity, 3.0)
 
 

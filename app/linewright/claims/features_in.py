@@ -27,9 +27,11 @@ def feature_data(features) -> FeatureData:
     line = features.sign > 0
     strength = np.where(line, np.where(np.isfinite(features.depth), absorption, np.nan), emission)
     strength_err = np.where(line, absorption_err, emission_err)
+    # A fit whose error exceeds its width has failed; its peak is still inside the line.
+    failed = 0.5 * np.where(features.fwhm > 0, features.fwhm, np.inf)
     return FeatureData(
         features.wave,
-        features.wave_err,
+        np.minimum(features.wave_err, failed),
         features.fwhm,
         features.sign,
         strength,

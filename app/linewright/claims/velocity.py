@@ -7,7 +7,7 @@ import numpy as np
 from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
 from .problem import inside
-from .voting import Vote, line_weights, vote
+from .voting import Vote, line_weights, summarise, vote
 
 VOTERS = 240  # strongest features that vote
 TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: required lists)
@@ -23,7 +23,18 @@ TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: requir
         [10700.0, 11100.0],
     ]
 )
-FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0, "barycentric": 33.0}
+ORDINARY_SHIFT = 33.0  # km/s: the largest barycentric correction, with the Earth's rotation
+UNUSUAL = 40.0  # log-likelihood an extraordinary shift must make up for
+FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0,
+               "barycentric": 33.0}
+
+
+def typical_width(features) -> float:
+    """Median FWHM of the features in km/s; 0 where none is measured."""
+    known = np.isfinite(features.fwhm) & (features.fwhm > 0)
+    if not np.any(known):
+        return 0.0
+    return float(C_KM_S * np.median(features.fwhm[known] / features.wave[known]))
 
 
 def strongest(features, sign: int, count: int = VOTERS, where=None):
@@ -68,7 +79,16 @@ def telluric_vote(features, catalogue, frame: str, velocity_range) -> Vote:
     strength = np.where(
         catalogue.origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref), np.nan
     )
-    return _vote(features, rows, catalogue, strength, span)
+    return _near_observer(_vote(features, rows, catalogue, strength, span), limit)
+
+
+def _near_observer(result: Vote, limit: float | None) -> Vote:
+    """Where the frame is not known, shifts no barycentric correction gives must earn it."""
+    if limit is not None or not np.isfinite(result.velocity):
+        return result
+    beyond = np.maximum(np.abs(result.grid) - ORDINARY_SHIFT, 0.0) / ORDINARY_SHIFT
+    penalty = np.minimum(20.0 * beyond, UNUSUAL)
+    return summarise(result.grid, result.score - penalty, result.width)
 
 
 def _vote(features, rows, catalogue, strength, velocity_range) -> Vote:

@@ -14,7 +14,8 @@ OUTLIER_SHARE = 0.25  # prior share of features the list does not explain
 
 @dataclass(frozen=True, eq=False)
 class Vote:
-    """Outcome of a vote: km/s; ``score`` is the log-likelihood over ``grid``."""
+    """Outcome of a vote: km/s; ``score`` is the log-likelihood over ``grid``; ``width`` the
+    typical error of one feature."""
 
     velocity: float
     error: float
@@ -22,6 +23,7 @@ class Vote:
     rivals: tuple[tuple[float, float], ...]
     grid: np.ndarray
     score: np.ndarray
+    width: float = 1.0
 
     @property
     def declared(self) -> bool:
@@ -53,7 +55,7 @@ def vote(wave, sigma, line_wave, weight, velocity_range, step=None) -> Vote:
     score = np.zeros(len(grid))
     for x, w in zip(np.asarray(wave, float), width, strict=True):
         score += _feature_score(x, w, line_wave, weight, grid)
-    return _summarise(grid, score, wave, width)
+    return summarise(grid, score, float(np.median(width)))
 
 
 def _feature_score(x, width, line_wave, weight, grid):
@@ -78,9 +80,11 @@ def _feature_score(x, width, line_wave, weight, grid):
     return np.log(OUTLIER_SHARE + (1 - OUTLIER_SHARE) * density / mean)
 
 
-def _summarise(grid, score, wave, width) -> Vote:
+def summarise(grid, score, width: float) -> Vote:
+    """The Vote of a score curve; width: typical km/s error of one feature, which says how
+    far from the best a rival must stand."""
     best = int(np.argmax(score))
-    exclusion = 6.0 * float(np.median(width)) + 2 * (grid[1] - grid[0])
+    exclusion = 6.0 * width + 2 * (grid[1] - grid[0])
     peaks = _peaks(score)
     far = peaks[np.abs(grid[peaks] - grid[best]) > exclusion]
     rivals = far[np.argsort(-score[far], kind="stable")][:5]
@@ -94,6 +98,7 @@ def _summarise(grid, score, wave, width) -> Vote:
         tuple((float(grid[i]), float(score[best] - score[i])) for i in rivals),
         grid,
         score,
+        width,
     )
 
 
