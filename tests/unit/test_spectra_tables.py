@@ -87,3 +87,14 @@ def test_a_table_without_flux_is_refused_with_its_columns(tmp_path):
     Table({"name": ["a", "b"], "ra": [1.0, 2.0]}).write(tmp_path / "s.ecsv")
     with pytest.raises(InputRefused, match="name, ra"):
         read_spectrum(tmp_path / "s.ecsv")
+
+
+def test_a_list_of_features_is_opened_with_a_warning(tmp_path):
+    rng = np.random.default_rng(3)
+    table = Table({"wave": np.sort(rng.uniform(4000.0, 6000.0, 200)), "flux": np.ones(200)})
+    table.write(tmp_path / "list.ecsv")
+    spectrum = read_spectrum(tmp_path / "list.ecsv", medium="air")
+    assert any("--features" in w for w in spectrum.warnings)
+    _table().write(tmp_path / "s.ecsv")
+    regular = read_spectrum(tmp_path / "s.ecsv", medium="air")
+    assert not any("--features" in w for w in regular.warnings)

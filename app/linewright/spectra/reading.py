@@ -123,6 +123,12 @@ def _highest(raw: Raw) -> float:
     return highest
 
 
+def _scattered(segments) -> bool:
+    """True when steps vary so much that a list of lines is more likely than a spectrum."""
+    steps = np.concatenate([np.diff(s.wave) for s in segments])
+    return len(steps) < 20000 and float(np.mean(steps > 3 * np.median(steps))) > 0.05
+
+
 def _resolution(raw: Raw) -> float | None:
     """Resolving power where a header states it (SPEC_RES, SPECRES, RESOLVPW)."""
     for card in raw.cards:
@@ -182,6 +188,9 @@ def read_spectrum(path, **choices: Unpack[Choices]) -> Spectrum:
     check_unchanged(opened)
     known = _decided(raw, given.get("medium"), given.get("frame"))
     segments, notes = clean_segments(raw.segments, raw.unit, known.medium, opened.path)
+    if _scattered(segments):
+        notes.append("the samples are scattered like a list of features: to identify a feature "
+                     "table use --features")
     return Spectrum(
         segments, known.medium, known.medium_from, known.frame, known.frame_from,
         raw.flux_unit, raw.name, str(opened.path), opened.sha256,
