@@ -1,0 +1,1 @@
+"""How the sample spectra are made: scenes, line lists, light, detector, files."""
