@@ -23,6 +23,7 @@ def main() -> int:
     parser.add_argument("folder", type=Path)
     parser.add_argument("files", nargs="*")
     parser.add_argument("--medium", default="air")
+    parser.add_argument("--read", default="", help="such as 'columns wave=11,flux=2'")
     parser.add_argument("--sizes", default=",".join(SIZES))
     parser.add_argument("--themes", default="light,dark")
     parser.add_argument("--range", default="", help="LO:HI shown")
@@ -84,8 +85,11 @@ def prepare(app, window, path: str, args) -> None:
 
     bench = window.bench
     opening.open_files(bench, [path])
-    wait(app, lambda: bench.desk is not None and bench.desk.name == Path(path).name
-         or bench.desk is not None and not bench.tasks.running(), 60)
+    key = f"open {Path(path).absolute()}"
+    wait(app, lambda: not bench.tasks.busy(key), 60)
+    if args.read:
+        opening.read_again(bench, args.read)
+        wait(app, lambda: not bench.tasks.busy(key), 60)
     if bench.session.spectrum.medium not in ("air", "vacuum"):
         opening.set_medium(bench, args.medium)
     wait(app, lambda: bench.depth is not None, 60)

@@ -231,3 +231,22 @@ def test_closing_one_spectrum_asks_about_its_work(solved, qtbot):
     assert solved.bench.desk is not None
     qtbot.mouseClick(button(solved, "Close without saving"), Qt.MouseButton.LeftButton)
     assert solved.bench.desk is None
+
+
+def test_a_file_is_read_another_way(window, qtbot, tmp_path):
+    path = tmp_path / "many.txt"
+    wave = np.linspace(500.0, 510.0, 900)
+    np.savetxt(path, np.column_stack([np.arange(900), np.ones(900), wave]), fmt="%.5f")
+    opening.open_files(window.bench, [path])
+    qtbot.waitUntil(lambda: not window.bench.tasks.busy(f"open {path}"), timeout=15000)
+    window.bench.run("file.reread")
+    window.ask_bar.edit.setText("columns wave=3,flux=2 unit nm medium air")
+    window.ask_bar.edit.returnPressed.emit()
+    qtbot.waitUntil(lambda: window.bench.spectrum is not None
+                    and window.bench.spectrum.medium == "air", timeout=15000)
+    assert window.bench.spectrum.own_range() == pytest.approx((5000.0, 5100.0))
+    assert len(window.bench.desks) == 1
+    window.bench.run("file.reread")
+    window.ask_bar.edit.setText("colums 3")
+    window.ask_bar.edit.returnPressed.emit()
+    assert "not understood" in window.notices.current.text

@@ -2,56 +2,54 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from ..lines.catalogue import LineCatalogue
 from ..session.model import Session
 
-SOLAR = (5200.0, 1.0)  # K and log10 dyn cm-2, until a solve says better
+ASSUMED_K = 5200.0  # until a solve says better
+DECADES = (-3.0, 3.0)  # log10 emissivity (H beta = 100 is 2) shown as the shortest, longest tooth
 
 
-def conditions(session: Session | None) -> tuple[float, float]:
-    """(temperature in K, log10 electron pressure in dyn cm-2) to predict with."""
-    temperature = session.temperature_k if session is not None else np.nan
-    log_pe = session.log_pe if session is not None else np.nan
-    return (
-        float(temperature) if np.isfinite(temperature) else SOLAR[0],
-        float(log_pe) if np.isfinite(log_pe) else SOLAR[1],
+@dataclass(frozen=True)
+class Conditions:
+    """temperature in K; log10 electron pressure in dyn cm-2, None for the typical one
+    emission: whether the features stand mostly in emission
+    """
+
+    temperature: float = ASSUMED_K
+    log_pe: float | None = None
+    emission: bool = False
+
+
+def conditions(session: Session | None) -> Conditions:
+    """What a session says of the gas; the Sun's temperature where it says nothing."""
+    if session is None:
+        return Conditions()
+    temperature, log_pe = session.temperature_k, session.log_pe
+    signs = session.features.sign
+    return Conditions(
+        float(temperature) if np.isfinite(temperature) else ASSUMED_K,
+        float(log_pe) if np.isfinite(log_pe) else None,
+        bool(len(signs) and np.mean(signs) < -0.3),
     )
 
 
-def predicted_depths(
-    catalogue: LineCatalogue,
-    temperature: float,
-    log_pe: float,
-    low: float,
-    high: float,
-    features: int,
-) -> np.ndarray:
+def predicted_depths(catalogue: LineCatalogue, where: Conditions) -> np.ndarray:
     """Depth 0-1 of every line, shape (n,); 0 where nothing is predicted.
 
-    S is the strength of ``lines.strengths``; its zero point is that of the line ranked
-    ``features`` (at least one in 1.5 Angstrom) between low and high, vacuum Angstrom. The depth follows
-    0.9 / (1 + 10^(1.1 - 0.85 (S - S0))), the saturation curve through a few per cent at
-    the zero point. Emission lines use their relative emissivity on the same footing.
+    Absorption by ``lines.depths``. Lines with an emission model but no depth, and all lines
+    with one where the features are in emission, get their place on a logarithmic scale of
+    emissivity (DECADES), since no profile is predicted for them.
     """
-    from ..lines.strengths import absorption_strength
+    from ..lines.depths import catalogue_depths
 
-    strength = absorption_strength(catalogue, temperature, log_pe)
-    first, last = np.searchsorted(catalogue.wave, [low, high])
-    rank = max(features, int((high - low) / 1.5))
-    depth = _saturated(strength, strength[first:last], rank)
-    telluric = np.isfinite(catalogue.depth_ref)
-    depth[telluric] = 1.0 - np.exp(-np.clip(catalogue.depth_ref[telluric], 0.0, 50.0))
-    only_emission = ~np.isfinite(strength) & np.isfinite(catalogue.emission)
-    shine = catalogue.emission[only_emission]
-    depth[only_emission] = np.clip((shine + 3.0) / 6.0, 0.0, 1.0)  # 10^-3 to 10^3 of H beta = 100
-    return depth
-
-
-def _saturated(strength: np.ndarray, inside: np.ndarray, rank: int) -> np.ndarray:
-    known = np.sort(inside[np.isfinite(inside)])[::-1]
-    if not len(known):
-        return np.zeros(len(strength))
-    zero = known[min(rank, len(known)) - 1]
-    return np.nan_to_num(0.9 / (1.0 + 10.0 ** (1.1 - 0.85 * (strength - zero))), nan=0.0)
+    depth = catalogue_depths(catalogue, where.temperature, where.log_pe)
+    shining = np.isfinite(catalogue.emission)
+    if not where.emission:
+        shining &= ~np.isfinite(depth)
+    low, high = DECADES
+    shine = np.clip((catalogue.emission - low) / (high - low), 0.0, 1.0)
+    return np.nan_to_num(np.where(shining, shine, depth), nan=0.0)

@@ -11,6 +11,8 @@ from ..session.model import Session
 from ..spectra.medium import C_KM_S, to_medium
 from ..spectra.spectrum import Spectrum
 
+COUNT = 6
+
 
 @dataclass(frozen=True, eq=False)
 class SiblingStrip:
@@ -33,11 +35,12 @@ def sibling_strips(
     depth: np.ndarray,
     species: str,
     velocity: float,
-    count: int = 6,
+    besides: float = 0.0,
 ) -> list[SiblingStrip]:
-    """Up to ``count`` strips, strongest predicted lines first chosen, shown by wavelength.
+    """Up to COUNT strips, strongest predicted lines first chosen, shown by wavelength.
 
     depth: predicted depth of every catalogue line, shape (len(catalogue),)
+    besides: vacuum wavelength of the line on trial, which is no sibling of itself
     Lines outside the samples, or where most samples are masked, are passed over.
     """
     if species not in catalogue.species_names:
@@ -47,14 +50,16 @@ def sibling_strips(
     strength = np.nan_to_num(np.asarray(depth)[rows], nan=0.0)
     half = half_width(session, float(np.median(catalogue.wave[rows])) if len(rows) else 5000.0)
     strips: list[tuple] = []
+    taken = [besides]
     for row in rows[np.argsort(-strength, kind="stable")]:
         wave = float(catalogue.wave[row])
-        if any(abs(wave - s[0]) / wave * C_KM_S < half / 2 for s in strips):
+        if any(abs(wave - other) / wave * C_KM_S < half / 2 for other in taken):
             continue
         cut = _cut(spectrum, session, wave, velocity, half)
         if cut is not None:
             strips.append((wave, *cut, float(depth[row])))
-        if len(strips) == count:
+            taken.append(wave)
+        if len(strips) == COUNT:
             break
     return [_finished(spectrum, session, s, velocity, species) for s in sorted(strips, key=_first)]
 

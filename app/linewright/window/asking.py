@@ -74,6 +74,11 @@ class Questions:
         self.ask_bar.ask("Note", self.bench.session.claims[row].note, "kept with this feature",
                          lambda text: claiming.set_note(self.bench, text))
 
+    def ask_reading(self) -> None:
+        self.ask_bar.ask(f"Read {self.bench.asked_file.name} with", "",
+                         "columns wave=11,flux=2 unit nm hdu 1 row 3 frame rest medium air",
+                         lambda text: opening.read_again(self.bench, text))
+
     def ask_wavelength(self) -> None:
         self.ask_bar.ask("Go to (Å)", "", "5183.6 or a range 5160:5200",
                          lambda text: viewing.go_to(self.bench, text))

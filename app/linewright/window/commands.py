@@ -60,6 +60,9 @@ def _file() -> list[Command]:
     return [
         _c("file.open", "Open spectrum or session…", "Ctrl+O", "File", always,
            lambda b: b.window.ask_open(), "Open FITS, VOTable, ECSV or text, or a saved session"),
+        _c("file.reread", "Read the file another way…", "", "File",
+           lambda b: b.asked_file is not None, lambda b: b.window.ask_reading(),
+           "Say which columns, unit, HDU, row, frame or medium to read"),
         _c("file.save", "Save session", "Ctrl+S", "File", has_session,
            lambda b: b.window.save(), "Save everything known about this spectrum", group=1),
         _c("file.save_as", "Save session as…", "Ctrl+Shift+S", "File", has_session,

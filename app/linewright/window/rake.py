@@ -45,7 +45,7 @@ class RakeKeeper(QObject):
         bench = self._bench
         if bench.catalogue is None:
             return
-        request = _Prediction(bench.catalogue, bench.session, bench.spectrum)
+        request = _Prediction(bench.catalogue, bench.session)
         if request.key == self._known:
             return
         self._known = request.key
@@ -101,15 +101,13 @@ class RakeKeeper(QObject):
 class _Prediction:
     """A frozen request: what the depths depend on."""
 
-    def __init__(self, catalogue, session, spectrum):
+    def __init__(self, catalogue, session):
         self._catalogue = catalogue
         self._conditions = conditions(session)
-        self._range = spectrum.own_range() if spectrum is not None else (4000.0, 7000.0)
-        self._count = len(session.features) if session is not None else 0
-        self.key = (id(catalogue), self._conditions, self._range, self._count // 50)
+        self.key = (id(catalogue), self._conditions)
 
     def run(self) -> np.ndarray:
-        return predicted_depths(self._catalogue, *self._conditions, *self._range, self._count)
+        return predicted_depths(self._catalogue, self._conditions)
 
 
 def _loaded(_progress):

@@ -138,4 +138,5 @@ class Refresher:
         for part in (self._space.spectrum_view, self._space.track,
                      self._space.evidence.siblings.strips):
             part.set_theme(self._bench.theme)
+        self._space.ledger.show_theme(self._bench.theme)
         self._space.evidence.refresh()

@@ -59,6 +59,7 @@ class Workbench:
         self.withdraw: Callable[[str], None] = lambda topic: None
         self.commands: dict = {}
         self.window = None
+        self.asked_file: Path | None = None
         self._listeners: list[Callable[[Session | None, Session | None], None]] = []
 
     @property

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
+from ...errors import InputRefused, LinewrightError
 from ...job.view_session import unsolved_session
 from ...progress import Progress
 from ...session.document import Document
@@ -16,6 +17,7 @@ from ..tasks import Request
 from ..workbench import Desk
 
 MEDIUM = "medium"
+CHOICES = ("columns", "unit", "hdu", "row", "frame", "medium")
 
 
 @dataclass(frozen=True)
@@ -36,6 +38,7 @@ def open_files(bench, files) -> None:
 def open_file(bench, path: Path) -> None:
     """Reads beside the window; a file that is already open is only shown."""
     path = Path(path).absolute()
+    bench.asked_file = path
     for desk in bench.desks:
         if path in (desk.path, Path(desk.document.session.spectrum.path or ".")):
             bench.show_desk(desk)
@@ -46,6 +49,50 @@ def open_file(bench, path: Path) -> None:
         done=lambda opened: _show(bench, opened),
         failed=lambda error: _failed(bench, error),
     ))
+
+
+def read_again(bench, text: str) -> None:
+    """Reads the file last asked for with choices such as 'columns wave=1,flux=2 unit nm'."""
+    path = bench.asked_file
+    try:
+        choices = reading_choices(text)
+    except LinewrightError as refusal:
+        bench.refuse(refusal)
+        return
+    bench.tasks.start(Request(
+        key=f"open {path}", title=f"Opening {path.name}",
+        work=lambda progress: _read_with(path, choices),
+        done=lambda opened: _replace(bench, path, opened),
+        failed=lambda error: _failed(bench, error),
+    ))
+
+
+def reading_choices(text: str) -> dict:
+    """'columns wave=11,flux=2 unit nm hdu 1 row 3 frame rest medium air' as arguments."""
+    words = text.split()
+    if len(words) % 2 or any(w not in CHOICES for w in words[::2]):
+        raise InputRefused("reading", f"'{text}' is not understood",
+                           "write pairs such as: columns wave=1,flux=2 unit nm hdu 1")
+    pairs = dict(zip(words[::2], words[1::2], strict=True))
+    for name in ("hdu", "row"):
+        if name in pairs and not pairs[name].isdigit():
+            raise InputRefused(name, f"'{pairs[name]}' is no number", "count HDUs from 0, rows "
+                               "from 1")
+    return {k: int(v) if k in ("hdu", "row") else v for k, v in pairs.items()}
+
+
+def _read_with(path: Path, choices: dict) -> Opened:
+    from ...spectra.reading import read_spectrum
+
+    return Opened(read_spectrum(path, **choices), None, None)
+
+
+def _replace(bench, path: Path, opened: Opened) -> None:
+    """The new reading takes the place of an untouched desk of the same file."""
+    for desk in list(bench.desks):
+        if Path(desk.document.session.spectrum.path or ".") == path and desk.saved:
+            drop(bench, desk)
+    _show(bench, opened)
 
 
 def read(path: Path, progress: Progress) -> Opened:
@@ -125,10 +172,9 @@ def follow_medium(desk: Desk) -> None:
 
 
 def _failed(bench, error: Exception) -> None:
-    from ...errors import LinewrightError
-
     if isinstance(error, LinewrightError):
-        bench.refuse(error)
+        bench.notify(Notice(str(error), "refused", (
+            ("Read it another way…", lambda: bench.window.ask_reading()),), topic="refused"))
     else:
         bench.window.report_unexpected(error)
 

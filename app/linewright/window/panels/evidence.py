@@ -25,6 +25,7 @@ from .candidate_row import CandidateRow
 from .siblings import SiblingsBox
 
 SHOWN = 6
+LEAST = 0.001  # below this probability only the two best are listed
 BUTTONS = ("claim.accept", "claim.blend", "claim.aside", "claim.note")
 
 
@@ -144,7 +145,7 @@ class EvidencePanel(QWidget):
         self.none_near.setText(say.HAND_PICKED if hand else say.NO_CANDIDATES)
         self.none_near.setVisible(not claim.candidates)
         for rank, widget in enumerate(self.rows):
-            known = rank < len(claim.candidates)
+            known = rank < _listed(claim)
             widget.setVisible(known)
             if known:
                 self._fill(widget, session, row, claim, rank == chosen)
@@ -186,6 +187,12 @@ class EvidencePanel(QWidget):
     def _name_species(self) -> None:
         if self._workbench.name_species(self.species.text()):
             self.species.clear()
+
+
+def _listed(claim) -> int:
+    hopeful = sum(c.probability >= LEAST for c in claim.candidates)
+    accepted = [k + 1 for k, c in enumerate(claim.candidates) if c == claim.line]
+    return min(SHOWN, len(claim.candidates), max(hopeful, 2, *accepted))
 
 
 def _act_button(command, workbench) -> QPushButton:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 from PySide6.QtCore import Qt
-from PySide6.QtGui import QFont
+from PySide6.QtGui import QBrush, QColor, QFont
 from PySide6.QtWidgets import QComboBox, QLabel
 
 from ...session.model import STANDINGS, Session
@@ -26,6 +26,7 @@ class LedgerModel(ColumnModel):
     def __init__(self, parent=None):
         super().__init__(parent)
         self.arrays: LedgerArrays | None = None
+        self.quiet = QBrush(QColor("#808080"))
         self._bold, self._struck = QFont(), QFont()
         self._bold.setBold(True)
         self._struck.setStrikeOut(True)
@@ -36,6 +37,8 @@ class LedgerModel(ColumnModel):
             if claim.standing == "set aside":
                 return self._struck if column.title != "standing" else None
             return self._bold if claim.by == "person" else None
+        if role == Qt.ItemDataRole.ForegroundRole and claim.standing == "unclaimed":
+            return self.quiet
         if role == Qt.ItemDataRole.ToolTipRole:
             return claim.note or claim.flags or None
         return None
@@ -88,6 +91,10 @@ class LedgerPanel(TablePanel):
         self.species.addItems(["any species", *names])
         self.species.setCurrentIndex(max(self.species.findText(chosen), 0))
         self.species.blockSignals(False)
+
+    def show_theme(self, theme) -> None:
+        self.model.quiet = QBrush(QColor(theme.muted))
+        self.table.viewport().update()
 
     def refresh(self) -> None:
         a = self.model.arrays

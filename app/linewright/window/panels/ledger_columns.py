@@ -30,7 +30,11 @@ class LedgerArrays:
 def shown_species(claim) -> str:
     """The claim in the trade's notation, with what it is blended with."""
     others = [s for s, _wave, _share in claim.blend if s != claim.species]
-    return " + ".join([claim.species, *dict.fromkeys(others)]) if claim.species else ""
+    if not claim.species:
+        return ""
+    if claim.standing == "unclaimed":  # the best guess, not a claim
+        return f"({claim.species})"
+    return " + ".join([claim.species, *dict.fromkeys(others)])
 
 
 def ledger_columns(a: LedgerArrays) -> list[Column]:

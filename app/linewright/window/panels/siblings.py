@@ -42,14 +42,15 @@ class SiblingsBox(QWidget):
         if not ready or bench.spectrum is None:
             self.clear()
             return
-        shown = (candidate.species, bench.view.now.velocity, id(session), id(bench.depth),
+        shown = (candidate.species, candidate.wave, bench.view.now.velocity, id(session), id(bench.depth),
                  bench.theme.name)
         if shown == self._shown:
             return
         self._shown = shown
         velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
         self._found = sibling_strips(
-            bench.spectrum, session, bench.catalogue, bench.depth, candidate.species, velocity)
+            bench.spectrum, session, bench.catalogue, bench.depth, candidate.species, velocity,
+            candidate.wave)
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")

@@ -9,6 +9,8 @@ from .spectrum_item import Reduced
 
 # A turning point counts when it stands out by this share of the flux range in view.
 PROMINENCE = 0.03
+# ... on both sides within this many pixels: the end of a plateau is no peak.
+REACH = 40.0
 
 
 def outline(reduced: list[Reduced]) -> tuple[np.ndarray, np.ndarray]:
@@ -34,13 +36,25 @@ def _column_outline(columns: Columns) -> tuple[np.ndarray, np.ndarray]:
 
 
 def turning_points(pixel: np.ndarray, flux: np.ndarray) -> np.ndarray:
-    """Pixels of the peaks and troughs that stand out, ascending.
-
-    A zigzag pass: a turn is kept once the flux has come back by PROMINENCE of the range.
-    """
+    """Pixels of the peaks and troughs that stand out on both sides, ascending."""
     if len(flux) < 3:
         return np.zeros(0)
     needed = PROMINENCE * float(np.max(flux) - np.min(flux))
+    turns = _zigzag(flux, needed)
+    return np.array([pixel[i] for i, sign in turns if _stands_out((pixel, flux), i, sign * needed)])
+
+
+def _stands_out(line, i: int, needed: float) -> bool:
+    """Whether the flux falls (needed < 0: rises) by that much on both sides of sample i."""
+    pixel, flux = line
+    first, last = np.searchsorted(pixel, [pixel[i] - REACH, pixel[i] + REACH])
+    fall = (flux[i] - flux[first:last]) * np.sign(needed)
+    before, after = fall[: i - first], fall[i - first :]
+    return bool(np.any(before >= abs(needed)) and np.any(after >= abs(needed)))
+
+
+def _zigzag(flux: np.ndarray, needed: float) -> list[tuple[int, int]]:
+    """(sample, +1 peak or -1 trough) of each turn the flux came back from by ``needed``."""
     found, best, direction = [], 0, 0
     for i in range(1, len(flux)):
         change = float(flux[i] - flux[best])
@@ -50,6 +64,6 @@ def turning_points(pixel: np.ndarray, flux: np.ndarray) -> np.ndarray:
         elif change * direction > 0:
             best = i
         elif -change * direction > needed:
-            found.append(pixel[best])
+            found.append((best, direction))
             direction, best = -direction, i
-    return np.array(found)
+    return found
