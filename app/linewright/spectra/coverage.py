@@ -45,7 +45,8 @@ def _long_masks(segment: Segment) -> list[tuple[int, int]]:
             if b - a >= MASK_RUN or a == 0 or b == size]
 
 
-def _steps_that_are_gaps(segment: Segment) -> np.ndarray:
+def gap_steps(segment: Segment) -> np.ndarray:
+    """Indices of the steps (sample i to i + 1) that are gaps."""
     steps = np.diff(segment.wave)
     return np.flatnonzero(steps > GAP_FACTOR * local_step(segment.wave))
 
@@ -57,7 +58,7 @@ def segment_coverage(segment: Segment) -> list[tuple[float, float]]:
     for start, stop in _long_masks(segment):
         good[start:stop] = False
     ranges = []
-    cuts = _steps_that_are_gaps(segment) + 1
+    cuts = gap_steps(segment) + 1
     for start, stop in zip(*runs_of(good)):
         inside = cuts[(cuts > start) & (cuts < stop)]
         bounds = [start, *inside.tolist(), stop]
