@@ -10,6 +10,9 @@ import numpy as np
 
 from .level import SAMPLES, block_levels
 
+ROUGH = 1e-3  # run of the continuum inside a block that straight nodes cannot follow
+
+
 def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
     """Index slices of about ``size`` Angstrom holding at least ``least`` usable samples."""
     count = max(1, int(round((wave[-1] - wave[0]) / size)))
@@ -42,10 +45,11 @@ def fit_continuum(wave, flux, good, sigma, size: float, length: float = 1.0, rou
         level = np.maximum(level, floor)
         run = smooth_run(wave, centre, level)
         samples = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])
-        noise = np.array([np.median(sigma[b] / run[b]) for b in blocks])
+        noise = np.array([np.hypot(np.median(sigma[b] / run[b]), ROUGH) for b in blocks])
         ratio, error = block_levels(samples, noise, weight)
         level = bridge_dips(centre, np.maximum(level * ratio, floor))
-    return centre, level, np.hypot(error, 0.25 * np.abs(_apart(centre, level)))
+    bent = np.minimum(0.25 * np.abs(_apart(centre, level)), 0.03)
+    return centre, level, np.hypot(np.minimum(error, 0.03), bent)
 
 
 def smooth_run(wave, centre, level) -> np.ndarray:

@@ -9,15 +9,14 @@ import numpy as np
 from ..errors import InputRefused
 from ..progress import Progress
 from .continuum import fit_continuum, smooth_run
-from .detect import find_extrema, run_filters
+from .detect import run_filters
 from .features import FeatureTable
-from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA
-from .groups import Trace, fit_features, group_features
-from .guess import first_guess
+from .finding import filter_runs, segment_features
+from .groups import Trace
 from .matched import expected_false, threshold_for
 from .noise import estimate_noise
 from .options import Measurement, MeasureOptions, SegmentMeasure
-from .veil import owners, veil
+from .veil import veil
 from .stretches import stretches, usable
 from .width import measure_width
 
@@ -50,14 +49,14 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
             spectrum.name or "spectrum", "no stretch of 30 usable samples in it",
             "check the mask, the flux column and the ranges asked for",
         )
-    filtered = [_filter(p) for p in prepared]
+    filtered = [filter_runs(p) if p is not None else [] for p in prepared]
     pieces = [piece for runs in filtered for f in runs for piece in f.pieces]
     threshold = options.threshold or threshold_for(pieces)
     tables = []
     for i, (ready, runs) in enumerate(zip(prepared, filtered)):
         progress.report("finding and fitting features", 0.6 + 0.4 * i / len(prepared))
         if ready is not None:
-            tables.append(_features(ready, runs, threshold, i))
+            tables.append(segment_features(ready, runs, threshold, i))
     progress.report("measured", 1.0)
     return Measurement(
         features=_join(tables),
@@ -95,7 +94,7 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     noise = estimate_noise(flux, good, runs)
     width = _assumed_width(wave, noise.lag, options)
     for round_ in range(2):
-        sigma = _sigma(segment, noise, warnings if round_ == 1 else [])
+        sigma = _sigma(segment, good, noise, warnings if round_ == 1 else [])
         size = _node_distance(wave, good, width)
         centre, level, error = fit_continuum(wave, flux, good, sigma, size, _length(noise))
         run = smooth_run(wave, centre, level)
@@ -105,7 +104,8 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
         if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
             longest = max(1.0, float(np.median(pixels[good])) / 3.0)
-            noise = estimate_noise(flux, good, runs, quiet, longest)
+            noise = estimate_noise(y, good, runs, quiet, longest)
+            noise = replace(noise, sigma=noise.sigma * run)
     under = _veil(y, relative, runs, pixels, _length(noise))
     trace = Trace(wave, y, relative, good, width, np.interp(wave, centre, error),
                   noise.correlation, under)
@@ -144,24 +144,25 @@ def _assumed_width(wave, lag, options):
 
 
 def _node_distance(wave, good, width):
-    """150 line widths, but at least 12 nodes over the range and 100 samples a node."""
+    """150 line widths, at most a 25th of the range, but 15 widths and 60 samples at least."""
     typical = float(np.median(width[good]))
     step = float(np.median(np.gradient(wave)[good]))
     span = float(wave[good][-1] - wave[good][0])
-    return max(min(150.0 * typical, span / 12.0), 25.0 * typical, min(100 * step, span / 12.0))
+    return max(min(150.0 * typical, span / 25.0), 15.0 * typical, min(60 * step, span / 12.0))
 
 
-def _sigma(segment, noise, warnings):
-    """Noise in flux units: the uncertainty array where it agrees with the pixels."""
+def _sigma(segment, good, noise, warnings):
+    """Noise in flux units: the uncertainty array where it agrees with the pixels.
+
+    The pixels may scatter less than the array says by a factor 0.7 (correlated samples
+    do) and more by 1.25 before the array is rescaled.
+    """
     if segment.uncertainty is None:
         return noise.sigma
-    given = np.where(segment.uncertainty > 0, segment.uncertainty, np.nan)
-    ratio = noise.sigma / given
-    scale = float(np.nanmedian(ratio))
-    index = np.arange(len(given))
-    fine = np.isfinite(given)
-    given = np.interp(index, index[fine], given[fine])
-    if 0.8 < scale < 1.25:
+    index = np.arange(len(good))
+    given = np.interp(index, index[good], segment.uncertainty[good])
+    scale = float(np.median(noise.sigma[good] / given[good]))
+    if 0.7 < scale < 1.25:
         return given
     warnings.append(
         f"the uncertainty array is off by a factor {scale:.2f} against the scatter of the "
@@ -188,67 +189,6 @@ def _quiet(y, noise, good, runs, pixels, model):
         near = np.convolve(busy, np.ones(2 * reach + 1), mode="full")[reach : reach + len(busy)]
         quiet[r] &= near < 0.5
     return quiet
-
-
-def _filter(ready):
-    if ready is None:
-        return []
-    t = ready.trace
-    return [
-        run_filters(t.y[r], t.noise[r], t.good[r], ready.fwhm_pixels[r], t.correlation,
-                    t.level_err[r])
-        for r in ready.runs
-    ]
-
-
-def _features(ready, filtered, threshold, segment) -> FeatureTable:
-    t = ready.trace
-    index, sign, significance, limits = [], [], [], []
-    for r, f in zip(ready.runs, filtered):
-        i, s, strength = find_extrema(f, t.good[r], threshold)
-        index.append(i + r.start)
-        sign.append(s)
-        significance.append(strength)
-        limits.append(np.tile([r.start, r.stop], (len(i), 1)))
-    index, sign, significance = map(np.concatenate, (index, sign, significance))
-    limits = np.concatenate(limits).reshape(-1, 2)
-    smooth = max(1, int(round(0.3 * np.median(ready.fwhm_pixels))))
-    own = np.zeros(len(index), dtype=bool)
-    for s in (1, -1):
-        which = sign == s
-        own[which] = owners(index[which], s * t.y[index[which]], np.maximum(s * t.veil, 0.0))
-    start = first_guess(t, index, sign, own, smooth)
-    group = group_features(start[:, 1], FWHM_PER_SIGMA * np.exp(start[:, 2]), limits[:, 0])
-    fitted = fit_features(t, start, limits, group, own)
-    return _table(ready, fitted, own, sign, significance, segment)
-
-
-def _table(ready, fitted, own, sign, significance, segment) -> FeatureTable:
-    p, e = fitted.params, fitted.errors
-    m = len(p)
-    base = np.interp(p[:, 1], ready.trace.wave, ready.trace.veil)
-    base = np.where(own, 0.0, np.minimum(base, 0.98))
-    p, e = p.copy(), e.copy()
-    p[:, 0] /= 1.0 - base
-    e[:, [0, 3]] /= (1.0 - base)[:, None]
-    fwhm = FWHM_PER_SIGMA * np.exp(p[:, 2])
-    counts = np.bincount(fitted.group, minlength=1) if m else np.zeros(1, dtype=int)
-    blend = counts[fitted.group] > 1 if m else np.zeros(0, dtype=bool)
-    first = np.r_[True, np.diff(fitted.group) != 0] if m else np.zeros(0, dtype=bool)
-    start = np.maximum.accumulate(np.where(first, np.arange(m), 0)) if m else np.zeros(0, int)
-    component = np.where(blend, np.arange(m) - start + 1, 0)
-    flags = [
-        " ".join(w for w, on in (("blend", b), ("fallback", f), ("wing", w)) if on)
-        for b, f, w in zip(blend, fitted.trouble, np.abs(base) > 0.02)
-    ]
-    return FeatureTable(
-        number=np.arange(1, m + 1), segment=np.full(m, segment), component=component,
-        sign=sign, wave=p[:, 1], wave_err=e[:, 1], significance=significance,
-        depth=p[:, 0], depth_err=e[:, 0], fwhm=fwhm, fwhm_err=e[:, 2],
-        ew=1e3 * GAUSSIAN_AREA * p[:, 0] * fwhm, ew_err=1e3 * e[:, 3],
-        continuum=np.interp(p[:, 1], ready.trace.wave, ready.flux_level) * (1.0 - base),
-        flags=tuple(flags),
-    )
 
 
 def _join(tables) -> FeatureTable:

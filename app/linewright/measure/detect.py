@@ -15,18 +15,20 @@ from dataclasses import dataclass
 import numpy as np
 
 from .matched import curvature_kernel, filtered_correlation, gaussian_kernel, noise_gain
+from .veil import running_mean
 
 
 @dataclass(frozen=True, eq=False)
 class Filtered:
     """Signal-to-noise of the two filters at each sample of a stretch, shape (n,).
 
-    level: Gaussian against the continuum; curve: curvature; fwhm: samples, shape (n,);
+    level: Gaussian against the continuum; curve: curvature; tame: y smoothed over 0.4 widths; fwhm: samples, shape (n,);
     pieces: (samples, correlation of neighbours) for the count of independent trials.
     """
 
     level: np.ndarray
     curve: np.ndarray
+    tame: np.ndarray
     fwhm: np.ndarray
     pieces: tuple[tuple[float, float], ...]
 
@@ -55,7 +57,7 @@ def run_filters(y, noise, good, fwhm, correlation, level_err=None) -> Filtered:
     """
     weight = np.where(good, 1.0 / noise, 0.0)
     held = _filled(y, good)
-    level, curve = np.empty(len(y)), np.empty(len(y))
+    level, curve, tame = np.empty(len(y)), np.empty(len(y)), np.empty(len(y))
     pieces = []
     for span in _spans(fwhm):
         width = float(np.median(fwhm[span]))
@@ -70,9 +72,10 @@ def run_filters(y, noise, good, fwhm, correlation, level_err=None) -> Filtered:
             s = s / np.sqrt(1.0 + fake**2)
         h = same(held[wide], bend) / (noise[wide] * noise_gain(bend, correlation))
         level[span], curve[span] = s[inner], h[inner]
+        tame[span] = running_mean(held[wide], 2 * int(0.2 * width) + 1)[inner]
         rho = filtered_correlation(gauss, correlation, 1) / gain**2
         pieces.append((float(good[span].sum()), float(min(rho, 1 - 1e-9))))
-    return Filtered(level, curve, fwhm, tuple(pieces))
+    return Filtered(level, curve, tame, fwhm, tuple(pieces))
 
 
 def _matched(y, weight, kernel, gain):
@@ -93,11 +96,11 @@ def find_extrema(filtered: Filtered, good, threshold: float):
     """Features of one stretch: (sample index, sign, significance), each shape (m,), sorted."""
     found = []
     for sign in (1, -1):
-        level, curve = sign * filtered.level, sign * filtered.curve
+        level, curve, tame = (sign * x for x in (filtered.level, filtered.curve, filtered.tame))
         lone = _distinct(level, threshold, threshold)
         lone = lone[curve[lone] > 0]
         bends = _distinct(curve, threshold, threshold)
-        bends = bends[level[bends] >= threshold]
+        bends = _flat_cores(bends[level[bends] >= threshold], tame, curve, filtered.fwhm)
         keep = np.unique(np.r_[bends, _apart(lone, bends, curve)])
         found.append(np.c_[keep, np.full(len(keep), sign), level[keep]])
     table = np.concatenate(found)
@@ -135,6 +138,27 @@ def _distinct(signal, least: float, dip: float) -> np.ndarray:
         lower = np.where(signal[peaks[pair]] < signal[peaks[pair + 1]], pair, pair + 1)
         peaks = np.delete(peaks, np.unique(lower))
     return peaks
+
+
+def _flat_cores(bends, tame, curve, fwhm) -> np.ndarray:
+    """Curvature maxima with the two shoulders of one flat core replaced by its middle.
+
+    A broad core with a flat bottom bends most at its rims. Two neighbours are rims when
+    the signal between them exceeds both and no inflection parts them.
+    """
+    bends = list(bends)
+    i = 0
+    while i + 1 < len(bends):
+        a, b = bends[i], bends[i + 1]
+        if b - a < 40 * fwhm[a] and np.all(curve[a : b + 1] > 0):
+            top = a + int(np.argmax(tame[a : b + 1]))
+            margin = 0.25 * fwhm[a]
+            if top - a > margin and b - top > margin:
+                bends[i : i + 2] = [top]
+                i = max(i - 1, 0)
+                continue
+        i += 1
+    return np.array(bends, dtype=int)
 
 
 def _apart(lone, bends, curve) -> np.ndarray:

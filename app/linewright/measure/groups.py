@@ -14,10 +14,10 @@ import numpy as np
 from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, profiles, spread_noise
 
 REACH = 1.3  # widths on either side of a window's outer members
-CLOSE = 1.3  # features nearer than this many mean widths share a fit
+CLOSE = 1.8  # features nearer than this many mean widths share a fit
 BROAD = 2.5  # line widths beyond which only the core of a feature is fitted
-CORE = 0.65  # widths on either side of a core
-MOST = 5  # members of a group
+CORE = 0.35  # widths on either side of a core, at least one line width
+MOST = 6  # members of a group
 LONGEST = 1500  # samples of a window
 
 
@@ -48,6 +48,9 @@ class Fitted:
     group: np.ndarray
     trouble: np.ndarray
     misfit: np.ndarray
+
+    def take(self, which) -> Fitted:
+        return Fitted(*(getattr(self, n)[which] for n in self.__dataclass_fields__))
 
 
 def group_features(centre, fwhm, run) -> np.ndarray:
@@ -166,7 +169,8 @@ def _reach(trace, params, rows, limits, own):
     fwhm = FWHM_PER_SIGMA * np.exp(params[:, 2])
     at = np.minimum(np.searchsorted(trace.wave, params[:, 1]), len(trace.wave) - 1)
     broad = own & (fwhm > BROAD * trace.width[at])
-    half = np.where(broad, CORE, REACH) * fwhm
+    core = np.maximum(CORE * fwhm, trace.width[at])
+    half = np.where(broad, core, REACH * fwhm)
     low = (params[:, 1] - half)[rows].min(axis=1)
     high = (params[:, 1] + half)[rows].max(axis=1)
     first = np.maximum(np.searchsorted(trace.wave, low), limits[rows[:, 0], 0])

@@ -33,7 +33,7 @@ def _flank(sign, y, index, height, direction):
     """Samples from each extremum to half its height; stops where the flank turns up."""
     n = len(y)
     distance = np.full(len(index), np.inf)
-    lowest = height.copy()
+    lowest, place = height.copy(), np.ones(len(index))
     active = np.ones(len(index), dtype=bool)
     for k in range(1, 600):
         on = np.flatnonzero(active)
@@ -47,10 +47,11 @@ def _flank(sign, y, index, height, direction):
         before = np.maximum(lowest[on] - value, 1e-12)
         part = np.clip((lowest[on] - 0.5 * height[on]) / before, 0.0, 1.0)
         distance[on[down]] = (k - 1 + part)[down]
-        # a flank that turned has fallen to ``lowest`` after about k samples
-        fall = np.clip(1.0 - lowest[on] / height[on], 0.02, 0.5)
-        distance[on[turn]] = (k * np.sqrt(0.5 / fall))[turn]
+        # a flank that turns before half height is a blend's: the valley is its limit
+        distance[on[turn]] = 0.8 * place[on[turn]]
         active[on[down | turn]] = False
+        deeper = value < lowest[on]
+        place[on[deeper]] = k
         lowest[on] = np.minimum(lowest[on], value)
     distance[~np.isfinite(distance)] = 600.0
     return distance

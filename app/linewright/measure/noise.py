@@ -61,14 +61,16 @@ def block_medians(values: np.ndarray, size: int, least: int) -> tuple[np.ndarray
 
     Blocks with fewer than ``least`` finite values give NaN.
     """
-    edges = np.linspace(0, len(values), max(1, round(len(values) / size)) + 1).astype(int)
-    medians = np.full(len(edges) - 1, np.nan)
-    for i, (a, b) in enumerate(zip(edges[:-1], edges[1:])):
-        part = values[a:b]
-        part = part[np.isfinite(part)]
-        if len(part) >= least:
-            medians[i] = np.median(part)
-    return 0.5 * (edges[:-1] + edges[1:] - 1), medians
+    count = max(1, round(len(values) / size))
+    width = -(-len(values) // count)
+    grid = np.full(count * width, np.nan)
+    grid[: len(values)] = values
+    grid = np.sort(grid.reshape(count, width), axis=1)
+    filled = np.isfinite(grid).sum(axis=1)
+    rows = np.arange(count)
+    middle = 0.5 * (grid[rows, np.maximum(filled - 1, 0) // 2] + grid[rows, filled // 2 % width])
+    centre = np.minimum(rows * width + 0.5 * (width - 1), len(values) - 1)
+    return centre, np.where(filled >= max(least, 1), middle, np.nan)
 
 
 def quiet_profile(flux, good, runs) -> np.ndarray:
@@ -78,12 +80,15 @@ def quiet_profile(flux, good, runs) -> np.ndarray:
     ])
     if not np.any(np.isfinite(table)):
         return np.full(len(LAGS), np.nan)
-    rank = np.nanmedian(table[3:8], axis=0)
+    rank = np.mean(table[3:8], axis=0)
     rank = np.where(np.isfinite(rank), rank, np.inf)
+    if not np.any(np.isfinite(rank)):
+        return np.full(len(LAGS), np.nan)
+    rank = np.where(np.isfinite(table).all(axis=0), rank, np.inf)
     keep = np.argsort(rank)[: max(1, int(np.isfinite(rank).sum() // 4))]
     # ratios, so that a quiet block of low flux does not rule the others
     relative = table[:, keep] / rank[keep]
-    return np.nanmedian(relative, axis=1) * np.nanmedian(rank[keep])
+    return np.median(relative, axis=1) * np.median(rank[keep])
 
 
 def plateau(profile: np.ndarray, longest: float) -> int:
@@ -123,17 +128,28 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0) -> Noise:
         free = good
     lag = plateau(profile, longest)
     correlation = correlation_from(profile, lag)
-    used = max(lag, 2) if lag > 1 or profile[0] >= PLATEAU * profile[1] else 1
-    values = _differences(flux, free, runs, used)
-    sigma = _local(values, max(1000, 400 * lag))
+    sigma = _local(_values(flux, free, runs, lag, profile), flux, lag)
+    if free is not good:
+        # where nothing is quiet: the shortest lag, least touched by lines
+        r = np.r_[correlation, 0.0, 0.0]
+        short = _differences(flux, good, runs, 1) / np.sqrt((6 - 8 * r[1] + 2 * r[2]) / 6)
+        bound = _local(short, flux, lag)
+        sigma = np.where(np.isfinite(sigma), np.minimum(sigma, 1.5 * bound), bound)
     return Noise(sigma, correlation, lag)
 
 
-def _local(values: np.ndarray, size: int) -> np.ndarray:
+def _values(flux, free, runs, lag, profile):
+    """Scatter of single samples: DER_SNR's own lag 2 where lag 1 agrees with it."""
+    used = max(lag, 2) if lag > 1 or profile[0] >= PLATEAU * profile[1] else 1
+    return _differences(flux, free, runs, used)
+
+
+def _local(values: np.ndarray, flux, lag: int) -> np.ndarray:
+    """Medians of blocks, joined by straight lines; all-sample median where none is filled."""
+    size = int(max(200, min(1000, len(flux) // 12)) * max(1.0, 0.4 * lag))
     centre, medians = block_medians(values, size, min(100, max(8, size // 10)))
     fine = np.isfinite(medians)
     if not fine.any():
         finite = values[np.isfinite(values)]
-        level = np.median(finite) if len(finite) else np.nan
-        return np.full(len(values), level)
+        return np.full(len(values), np.median(finite) if len(finite) >= 20 else np.nan)
     return np.interp(np.arange(len(values)), centre[fine], medians[fine])

@@ -12,7 +12,7 @@ from __future__ import annotations
 import numpy as np
 
 FWHM_PER_SIGMA = 2.3548200450309493
-LAGS = (1, 2, 3, 4, 6, 8, 12)
+LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30)
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
 
@@ -30,25 +30,32 @@ def block_widths(y, noise, good, run, correlation, lag: int, size: int) -> np.nd
     samples of a block.
     """
     r = np.zeros(2 * lag + 1)
-    r[: len(correlation)] = correlation[: 2 * lag + 1]
+    known = correlation[: 2 * lag + 1]
+    r[: len(known)] = known
     n1, n2 = 2.0 * (1.0 - r[lag]), 6.0 - 8.0 * r[lag] + 2.0 * r[2 * lag]
+    size = min(size, run.stop - run.start)
+    count = (run.stop - run.start) // size
+    if size < max(16, 6 * lag):
+        return np.zeros((0, 2))
+    cut = slice(run.start, run.start + count * size)
+    z, ok = y[cut].reshape(count, size), good[cut].reshape(count, size)
+    var = np.mean(noise[cut].reshape(count, size) ** 2, axis=1)
+    one = z[:, lag:] - z[:, :-lag]
+    both = ok[:, lag:] & ok[:, :-lag]
+    two = one[:, lag:] - one[:, :-lag]
+    all3 = both[:, lag:] & both[:, :-lag]
+    d1 = _mean_square(one, both) - n1 * var
+    d2 = _mean_square(two, all3) - n2 * var
+    fine = (ok.mean(axis=1) >= 0.8) & (d2 >= LEAST_SIGNAL * n2 * var) & (d1 > 0)
     grid = np.geomspace(0.35, 60.0, 400)
-    ratios = difference_ratio(grid)
-    found = []
-    for start in range(run.start, max(run.stop - size // 2, run.start + 1), size):
-        block = slice(start, min(start + size, run.stop))
-        z, ok = y[block], good[block]
-        if ok.sum() < 0.8 * len(z) or len(z) < max(16, 6 * lag):
-            continue
-        z = np.interp(np.arange(len(z)), np.flatnonzero(ok), z[ok])
-        var = float(np.median(noise[block])) ** 2
-        d1 = float(np.mean((z[lag:] - z[:-lag]) ** 2)) - n1 * var
-        d2 = float(np.mean((z[2 * lag :] - 2 * z[lag:-lag] + z[: -2 * lag]) ** 2)) - n2 * var
-        if d2 < LEAST_SIGNAL * n2 * var or d1 <= 0:
-            continue
-        sigma = float(np.interp(-d2 / d1, -ratios, grid))
-        found.append((0.5 * (block.start + block.stop - 1), lag * sigma * FWHM_PER_SIGMA))
-    return np.array(found).reshape(-1, 2)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        sigma = np.interp(-d2 / d1, -difference_ratio(grid), grid)
+    middle = run.start + (np.arange(count) + 0.5) * size - 0.5
+    return np.c_[middle, lag * sigma * FWHM_PER_SIGMA][fine]
+
+
+def _mean_square(values, ok):
+    return np.sum(np.where(ok, values * values, 0.0), axis=1) / np.maximum(ok.sum(axis=1), 1)
 
 
 def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
@@ -75,5 +82,9 @@ def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
     flat, slope = np.median(fwhm), np.median(fwhm / where)
     scatter_flat = np.median(np.abs(np.log(fwhm / flat)))
     scatter_slope = np.median(np.abs(np.log(fwhm / where / slope)))
-    width = np.full(len(wave), flat) if scatter_flat < 0.8 * scatter_slope else slope * wave
+    # samples even in ln(wavelength) tell of an instrument of constant resolving power
+    even_log = np.ptp(step / wave) / np.mean(step / wave) < np.ptp(step) / np.mean(step)
+    favoured = 0.8 if not even_log else 0.4
+    constant = scatter_flat < favoured * scatter_slope
+    width = np.full(len(wave), flat) if constant else slope * wave
     return np.maximum(width, 2.0 * step)

@@ -1,0 +1,130 @@
+"""Features of one segment: found, fitted, and looked for again in what the fit left."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .detect import find_extrema, run_filters
+from .features import FeatureTable
+from .gauss import FWHM_PER_SIGMA
+from .groups import Fitted, backgrounds, fit_features, group_features
+from .guess import first_guess
+from .table import fitted_table
+from .veil import owners, running_min
+
+MISFIT = 0.12  # residuals below this share of a neighbour's depth may be its own misfit
+LEAST_DEPTH = 3.0  # sigmas of depth below which a feature found in residuals is dropped
+
+
+@dataclass(frozen=True, eq=False)
+class Found:
+    """Features before and after their fit: sample index, sign, significance, first and
+    last+1 sample of the stretch, source of a veil or not, start parameters; m rows."""
+
+    index: np.ndarray
+    sign: np.ndarray
+    significance: np.ndarray
+    limits: np.ndarray
+    own: np.ndarray
+    start: np.ndarray
+
+    def take(self, which) -> Found:
+        return Found(*(getattr(self, n)[which] for n in self.__dataclass_fields__))
+
+    def joined(self, other: Found) -> Found:
+        both = Found(*(
+            np.concatenate([getattr(self, n), getattr(other, n)])
+            for n in self.__dataclass_fields__
+        ))
+        return both.take(np.argsort(both.start[:, 1], kind="stable"))
+
+
+def filter_runs(ready):
+    """Filter outputs of each stretch of a prepared segment."""
+    t = ready.trace
+    return [
+        run_filters(t.y[r], t.noise[r], t.good[r], ready.fwhm_pixels[r], t.correlation,
+                    t.level_err[r])
+        for r in ready.runs
+    ]
+
+
+def segment_features(ready, filtered, threshold: float, segment: int) -> FeatureTable:
+    """All features of one segment as a table."""
+    found = _first(ready, filtered, threshold)
+    fitted = _fit(ready, found)
+    more = _second(ready, filtered, threshold, found, fitted)
+    if len(more.index):
+        start = Found(found.index, found.sign, found.significance, found.limits, found.own,
+                      fitted.params)
+        found = start.joined(more)
+        fitted = _fit(ready, found)
+    keep = _trusted(found, fitted, more)
+    return fitted_table(ready, found.take(keep), fitted.take(keep), segment)
+
+
+def _collect(ready, outputs, threshold):
+    index, sign, significance, limits = [], [], [], []
+    for r, f in zip(ready.runs, outputs, strict=True):
+        i, s, strength = find_extrema(f, ready.trace.good[r], threshold)
+        index.append(i + r.start)
+        sign.append(s)
+        significance.append(strength)
+        limits.append(np.tile([r.start, r.stop], (len(i), 1)))
+    return (np.concatenate(index), np.concatenate(sign), np.concatenate(significance),
+            np.concatenate(limits).reshape(-1, 2))
+
+
+def _first(ready, filtered, threshold) -> Found:
+    t = ready.trace
+    index, sign, significance, limits = _collect(ready, filtered, threshold)
+    own = np.zeros(len(index), dtype=bool)
+    for s in (1, -1):
+        which = sign == s
+        own[which] = owners(index[which], s * t.y[index[which]], np.maximum(s * t.veil, 0.0))
+    start = first_guess(t, index, sign, own, _smooth(ready))
+    return Found(index, sign, significance, limits, own, start)
+
+
+def _smooth(ready) -> int:
+    return max(1, int(np.round(0.3 * np.median(ready.fwhm_pixels))))
+
+
+def _fit(ready, found: Found) -> Fitted:
+    fwhm = FWHM_PER_SIGMA * np.exp(found.start[:, 2])
+    group = group_features(found.start[:, 1], fwhm, found.limits[:, 0])
+    return fit_features(ready.trace, found.start, found.limits, group, found.own)
+
+
+def _second(ready, filtered, threshold, found, fitted) -> Found:
+    """Features in the residuals that neither misfit nor the raw spectrum speaks against."""
+    t = ready.trace
+    _, model = backgrounds(t, fitted.params, found.own)
+    residual = t.y - model
+    outputs = [
+        run_filters(residual[r], t.noise[r], t.good[r], ready.fwhm_pixels[r], t.correlation,
+                    t.level_err[r])
+        for r in ready.runs
+    ]
+    index, sign, significance, limits = _collect(ready, outputs, threshold)
+    height = np.empty(len(t.y))
+    raw = np.empty(len(t.y))
+    nearby = np.empty(len(t.y))
+    for r, f, before in zip(ready.runs, outputs, filtered, strict=True):
+        height[r], raw[r] = f.tame, before.level
+        reach = 2 * int(1.2 * np.median(f.fwhm)) + 1
+        nearby[r] = -running_min(-np.abs(model[r]), reach)
+    solid = (sign * height[index] > MISFIT * nearby[index]) & (sign * raw[index] >= threshold)
+    index, sign = index[solid], sign[solid]
+    start = np.c_[height[index], t.wave[index], np.log(t.width[index] / FWHM_PER_SIGMA)]
+    return Found(index, sign, significance[solid], limits[solid],
+                 np.zeros(len(index), dtype=bool), start)
+
+
+def _trusted(found, fitted, more) -> np.ndarray:
+    """All but the residual finds whose fitted depth is within its error."""
+    late = np.isin(found.index, more.index)
+    weak = np.abs(fitted.params[:, 0]) < LEAST_DEPTH * fitted.errors[:, 0]
+    return np.flatnonzero(~(late & (weak | fitted.trouble)))
