@@ -31,7 +31,10 @@ def outline(reduced: list[Reduced]) -> tuple[np.ndarray, np.ndarray]:
 def _column_outline(columns: Columns) -> tuple[np.ndarray, np.ndarray]:
     good = np.isfinite(columns.low)
     pixel = np.repeat(columns.column[good] + 0.5, 2)
-    flux = np.stack([columns.low[good], columns.high[good]], axis=1).ravel()
+    low, high = columns.low[good], columns.high[good]
+    # In the order the line runs, or a steep flank would look like a zigzag.
+    falling = columns.last[good] < columns.first[good]
+    flux = np.where(falling, [high, low], [low, high]).T.ravel()
     return pixel, flux
 
 

@@ -10,6 +10,7 @@ from .extremes import PixelScale
 from .feature_marks import FeatureMarks, no_marks
 from .geometry import LEFT, RIGHT, Frame
 from .lane import Lane
+from .safe_paint import painting
 from .spectrum_item import SpectrumItem
 
 HEIGHT = 62
@@ -87,8 +88,13 @@ class ContextStrip(Lane):
         picture.fill(QColor(self.state.theme.base))
         whole = self.whole_scale()
         scale = PixelScale(whole.low, whole.high, whole.origin * ratio, whole.width * ratio)
-        painter = QPainter(picture)
-        painter.scale(1 / ratio, 1 / ratio)
+        with painting(picture) as painter:
+            painter.scale(1 / ratio, 1 / ratio)
+            self._paint_whole(painter, scale, ratio)
+            self._paint_heat(painter, scale, ratio)
+        return picture
+
+    def _paint_whole(self, painter: QPainter, scale: PixelScale, ratio: float) -> None:
         reduced = self.item.reduce(scale)
         limits = self.item.flux_limits(reduced) or (0.0, 1.0)
         low, high = min(limits[0], max(0.0, 0.8 * limits[0])), limits[1]
@@ -96,15 +102,14 @@ class ContextStrip(Lane):
         foot = (self.height() - _HEAT - 6) * ratio
         frame = Frame(scale, 5 * ratio, foot, low, high, ratio)
         self.item.paint(painter, frame, reduced, self.state.theme.faint)
-        self._paint_heat(painter, scale, ratio)
-        painter.end()
-        return picture
 
     def _paint_heat(self, painter: QPainter, scale: PixelScale, ratio: float) -> None:
         """Feature density along the foot, smoothed over a few pixels, as opacity."""
         if len(self.marks) == 0:
             return
         bins = np.arange(LEFT * ratio, (self.width() - RIGHT) * ratio + 1, 3 * ratio)
+        if len(bins) < 2:
+            return
         count, _ = np.histogram(scale.pixels(self.marks.wave), bins)
         density = np.convolve(count, np.array([1.0, 2.0, 1.0]) / 4, mode="same")
         density = np.sqrt(density / max(density.max(), 1e-9))

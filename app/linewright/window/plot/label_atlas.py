@@ -14,6 +14,8 @@ import shiboken6
 from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QColor, QFont, QPainter, QPixmap
 
+from .safe_paint import painting
+
 _COLUMNS, _ROWS = 128, 5
 MARKER_KINDS = 64
 
@@ -67,19 +69,21 @@ class LabelAtlas:
         """Place of a marker; ``make()`` gives its picture when it is new."""
         if key not in self._kinds:
             place = self._kinds[key] = len(self._kinds) % MARKER_KINDS
-            painter = QPainter(self._markers)
             box = QRectF(place * self.marker, 0, self.marker, self.marker)
             picture = make()
-            painter.drawPixmap(box, picture, QRectF(picture.rect()))
-            painter.end()
+            with painting(self._markers) as painter:
+                painter.drawPixmap(box, picture, QRectF(picture.rect()))
         return self._kinds[key]
 
     def _corner(self, slot):
         return (slot % _COLUMNS) * self.width, (slot // _COLUMNS) * self.height
 
     def _render(self, slot: int, content: LabelContent) -> None:
-        left, top = self._corner(slot)
-        painter = QPainter(self._labels)
+        with painting(self._labels) as painter:
+            self._write(painter, self._corner(slot), content)
+
+    def _write(self, painter: QPainter, corner: tuple, content: LabelContent) -> None:
+        left, top = corner
         box = QRectF(left, top, self.width, self.height)
         painter.setClipRect(box)
         painter.fillRect(box, QColor(self._ground))
@@ -94,7 +98,6 @@ class LabelAtlas:
         painter.setPen(QColor(content.colour))
         flags = int(Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignLeft)
         painter.drawText(QRectF(2, 0, room, line), flags, content.text)
-        painter.end()
 
     def blit_labels(self, painter: QPainter, slots: np.ndarray, column, top: int) -> None:
         """Copy label slots about device-pixel columns, from device row ``top`` down."""

@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
-import sys
-import traceback
-
 from PySide6.QtGui import QColor, QPainter, QPen
 from PySide6.QtWidgets import QWidget
 
 from .extremes import PixelScale
 from .geometry import LEFT, RIGHT, lane_scale
+from .safe_paint import paint_safely
 from .view_state import ViewState
+
+_NARROWEST = LEFT + RIGHT + 24
 
 
 class Lane(QWidget):
-    """Base of the lanes: change marks dirty, Qt repaints once a frame, ``paints`` counts.
+    """Base of the lanes: a change marks dirty, Qt repaints once a frame, ``paints`` counts.
 
-    A failing ``draw`` is reported once and leaves an empty lane: an exception must not
-    leave paintEvent with an active painter.
+    ``exposed`` is the rectangle of the present paint; ``failed`` holds the traceback of a
+    ``draw`` that raised.
     """
 
     def __init__(self, state: ViewState, parent: QWidget | None = None):
@@ -25,31 +25,24 @@ class Lane(QWidget):
         self.state = state
         self.paints = 0
         self.exposed = self.rect()
-        self._failed = ""
+        self.failed = ""
         state.changed.connect(self.update)
 
     def paintEvent(self, event) -> None:
         self.paints += 1
         self.exposed = event.rect()
-        painter = QPainter(self)
-        try:
-            painter.fillRect(self.exposed, QColor(self.state.theme.base))
+        paint_safely(self, self._paint)
+
+    def _paint(self, painter: QPainter) -> None:
+        painter.fillRect(self.exposed, QColor(self.state.theme.base))
+        if self.width() >= _NARROWEST:
             self.draw(painter)
-            if self.hasFocus():
-                painter.setPen(QPen(QColor(self.state.theme.accent), 2))
-                painter.drawRect(self.rect().adjusted(1, 1, -1, -1))
-        except Exception:
-            self._report(traceback.format_exc())
-        finally:
-            painter.end()
+        if self.hasFocus():
+            painter.setPen(QPen(QColor(self.state.theme.accent), 2))
+            painter.drawRect(self.rect().adjusted(1, 1, -1, -1))
 
     def draw(self, painter: QPainter) -> None:
         """Paint in logical pixels; the background is done."""
-
-    def _report(self, text: str) -> None:
-        if text != self._failed:
-            self._failed = text
-            sys.stderr.write(text)
 
     def scale(self, place: tuple[float, float] = (0.0, 1.0)) -> PixelScale:
         """Wavelength scale; default: in logical pixels of this widget."""

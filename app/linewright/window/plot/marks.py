@@ -8,6 +8,8 @@ from functools import lru_cache
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen, QPixmap, QPolygonF
 
+from .safe_paint import painting
+
 MARKERS = ("diamond", "triangle", "square", "circle", "cross", "bar", "star", "vee", "hexagon")
 # Share of the marker filled, from the bottom: the standing without its colour.
 FILL = {"firm": 1.0, "likely": 0.5, "tentative": 0.0}
@@ -66,8 +68,7 @@ def marker_pixmap(name: str, colour: str, fill: float, size: int, ratio: float) 
     pixmap = QPixmap(round(size * ratio), round(size * ratio))
     pixmap.setDevicePixelRatio(ratio)
     pixmap.fill(Qt.GlobalColor.transparent)
-    painter = QPainter(pixmap)
     shape = marker_polygon(name, size / 2, size / 2, size / 2 - 1)
-    draw_marker(painter, shape, colour, fill)
-    painter.end()
+    with painting(pixmap) as painter:
+        draw_marker(painter, shape, colour, fill)
     return pixmap

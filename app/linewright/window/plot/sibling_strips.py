@@ -13,6 +13,7 @@ from ..theme import LIGHT, Theme
 from .extremes import Extremes, PixelScale
 from .geometry import Frame, nice_ticks
 from .primitives import draw_lines
+from .safe_paint import paint_safely
 from .spectrum_item import column_lines, draw_run, reduce_part
 
 _COLUMNS = 2
@@ -90,17 +91,13 @@ class SiblingStrips(QWidget):
         return QRectF(column * width, row * height, width, height)
 
     def paintEvent(self, _event) -> None:
-        painter = QPainter(self)
-        try:
-            painter.fillRect(self.rect(), QColor(self._theme.base))
-            font = painter.font()
-            font.setPointSizeF(max(7.0, font.pointSizeF() - 1))
-            painter.setFont(font)
-            self._draw(painter)
-        finally:
-            painter.end()
+        paint_safely(self, self._draw)
 
     def _draw(self, painter: QPainter) -> None:
+        painter.fillRect(self.rect(), QColor(self._theme.base))
+        font = painter.font()
+        font.setPointSizeF(max(7.0, font.pointSizeF() - 1))
+        painter.setFont(font)
         if not self.strips:
             painter.setPen(QColor(self._theme.muted))
             flags = Qt.AlignmentFlag.AlignCenter | Qt.TextFlag.TextWordWrap

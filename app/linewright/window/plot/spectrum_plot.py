@@ -16,6 +16,7 @@ from .spectrum_item import Reduced, SpectrumItem
 
 _CLICK_REACH = 5.0
 _FOOT = 6
+_LOWEST = 12
 _HEADROOM = 0.06
 _CALM_SHARE = 0.6
 
@@ -56,6 +57,8 @@ class SpectrumPlot(NavigableLane):
             self._draw_empty(painter)
             return
         top = self.labels.height
+        if self.height() - _FOOT - top < _LOWEST:
+            return
         painter.save()
         x, y, ratio = to_device(painter)
         scale = self.scale((x, ratio))

@@ -7,6 +7,8 @@ from functools import lru_cache
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPixmap
 
+from .safe_paint import painting
+
 
 @lru_cache(maxsize=1024)
 def _picture(text: str, colour: str, font_key: str, ratio: float) -> QPixmap:
@@ -17,11 +19,10 @@ def _picture(text: str, colour: str, font_key: str, ratio: float) -> QPixmap:
     picture = QPixmap(max(1, round(width * ratio)), max(1, round(height * ratio)))
     picture.setDevicePixelRatio(ratio)
     picture.fill(Qt.GlobalColor.transparent)
-    painter = QPainter(picture)
-    painter.setFont(font)
-    painter.setPen(QColor(colour))
-    painter.drawText(QPointF(1, metrics.ascent()), text)
-    painter.end()
+    with painting(picture) as painter:
+        painter.setFont(font)
+        painter.setPen(QColor(colour))
+        painter.drawText(QPointF(1, metrics.ascent()), text)
     return picture
 
 

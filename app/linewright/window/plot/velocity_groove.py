@@ -11,6 +11,7 @@ from ..theme import LIGHT, Theme
 from .extremes import Extremes, PixelScale
 from .geometry import nice_ticks
 from .primitives import draw_lines, draw_polyline, polygon
+from .safe_paint import paint_safely
 
 _SIDE = 16
 _TOP = 3
@@ -73,11 +74,7 @@ class VelocityGroove(QWidget):
         return self.height() - self.fontMetrics().height() - 8.0
 
     def paintEvent(self, _event) -> None:
-        painter = QPainter(self)
-        try:
-            self._draw(painter)
-        finally:
-            painter.end()
+        paint_safely(self, self._draw)
 
     def _draw(self, painter: QPainter) -> None:
         theme, scale, floor = self._theme, self.scale(), self._floor()
