@@ -21,13 +21,15 @@ LEAST_DEPTH = 3.0  # sigmas of depth below which a feature found in residuals is
 @dataclass(frozen=True, eq=False)
 class Found:
     """Features before and after their fit: sample index, sign, significance, first and
-    last+1 sample of the stretch, source of a veil or not, start parameters; m rows."""
+    last+1 sample of the stretch, source of a veil or not, found in residuals or not,
+    start parameters; m rows."""
 
     index: np.ndarray
     sign: np.ndarray
     significance: np.ndarray
     limits: np.ndarray
     own: np.ndarray
+    late: np.ndarray
     start: np.ndarray
 
     def take(self, which) -> Found:
@@ -58,10 +60,10 @@ def segment_features(ready, filtered, threshold: float, segment: int) -> Feature
     more = _second(ready, filtered, threshold, found, fitted)
     if len(more.index):
         start = Found(found.index, found.sign, found.significance, found.limits, found.own,
-                      fitted.params)
+                      found.late, fitted.params)
         found = start.joined(more)
         fitted = _fit(ready, found)
-    keep = _trusted(found, fitted, more)
+    keep = _trusted(found, fitted)
     return fitted_table(ready, found.take(keep), fitted.take(keep), segment)
 
 
@@ -85,7 +87,8 @@ def _first(ready, filtered, threshold) -> Found:
         which = sign == s
         own[which] = owners(index[which], s * t.y[index[which]], np.maximum(s * t.veil, 0.0))
     start = first_guess(t, index, sign, own, _smooth(ready))
-    return Found(index, sign, significance, limits, own, start)
+    late = np.zeros(len(index), dtype=bool)
+    return Found(index, sign, significance, limits, own, late, start)
 
 
 def _smooth(ready) -> int:
@@ -117,14 +120,31 @@ def _second(ready, filtered, threshold, found, fitted) -> Found:
         reach = 2 * int(1.2 * np.median(f.fwhm)) + 1
         nearby[r] = -running_min(-np.abs(model[r]), reach)
     solid = (sign * height[index] > MISFIT * nearby[index]) & (sign * raw[index] >= threshold)
+    solid &= _away(found, fitted, t.wave[index], sign, 0.5 * t.width[index])
     index, sign = index[solid], sign[solid]
     start = np.c_[height[index], t.wave[index], np.log(t.width[index] / FWHM_PER_SIGMA)]
     return Found(index, sign, significance[solid], limits[solid],
-                 np.zeros(len(index), dtype=bool), start)
+                 np.zeros(len(index), dtype=bool), np.ones(len(index), dtype=bool), start)
 
 
-def _trusted(found, fitted, more) -> np.ndarray:
+def _away(found, fitted, wave, sign, least) -> np.ndarray:
+    """True where no feature of the same sign is nearer than ``least`` Angstrom."""
+    out = np.ones(len(wave), dtype=bool)
+    for s in (1, -1):
+        there = np.sort(fitted.params[found.sign == s, 1])
+        which = sign == s
+        if not len(there) or not which.any():
+            continue
+        right = np.clip(np.searchsorted(there, wave[which]), 1, len(there) - 1)
+        near = np.minimum(
+            np.abs(there[np.minimum(right, len(there) - 1)] - wave[which]),
+            np.abs(there[right - 1] - wave[which]),
+        )
+        out[which] = near >= least[which]
+    return out
+
+
+def _trusted(found, fitted) -> np.ndarray:
     """All but the residual finds whose fitted depth is within its error."""
-    late = np.isin(found.index, more.index)
     weak = np.abs(fitted.params[:, 0]) < LEAST_DEPTH * fitted.errors[:, 0]
-    return np.flatnonzero(~(late & (weak | fitted.trouble)))
+    return np.flatnonzero(~(found.late & (weak | fitted.trouble)))
