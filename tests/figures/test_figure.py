@@ -221,6 +221,17 @@ def test_refusals_come_in_one_line(made, spectrum, tmp_path):
     assert path.read_text() == "mine"
 
 
+def test_large_and_small_fluxes_take_out_a_power_of_ten(made, spectrum):
+    for factor, name in [(3e9, "flux (10⁹)"), (3e-15, "flux (10⁻¹⁵)"), (30.0, "flux")]:
+        segment = replace(spectrum.segments[0], flux=spectrum.segments[0].flux * factor)
+        bright = replace(made, continuum=())
+        drawn, _ = figure.draw_figure(bright, replace(spectrum, segments=(segment,)), FigureStyle())
+        drawn.canvas.draw()
+        axes = drawn.axes[0]
+        assert axes.get_ylabel() == name and axes.yaxis.get_offset_text().get_text() == ""
+        assert axes.get_ylim()[1] < 1000
+
+
 def test_gaps_and_masked_samples_break_the_trace(made, spectrum):
     segment = spectrum.segments[0]
     mask = np.zeros(len(segment.wave), dtype=bool)

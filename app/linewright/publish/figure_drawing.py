@@ -23,6 +23,7 @@ LEFT, RIGHT, TOP = 36.0, 12.0, 4.0
 ELBOW = 13.0
 TICK_LABELS, AXIS_LABEL = 11.0, 11.0
 FONT = "DejaVu Sans"
+SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
 def draw(session: Session, spectrum: Spectrum | None, style: FigureStyle):
@@ -75,6 +76,7 @@ class _Page:
         self.pitch = pitch
         self.figure = Figure(figsize=(style.width_pt / 72.0, self.height / 72.0))
         FigureCanvasAgg(self.figure)
+        self.power = 0 if spectrum is None else _power(spectrum)
         self.shown = self.left_out = 0
 
     def add_row(self, index: int, low: float, high: float) -> None:
@@ -98,10 +100,9 @@ class _Page:
         if self.spectrum is None:
             return stick_traces(self.session, low, high), []
         medium = self.session.spectrum.medium
-        return (
-            traces(self.spectrum, medium, low, high, width),
-            continuum_traces(self.session, low, high),
-        )
+        drawn = traces(self.spectrum, medium, low, high, width)
+        continuum = continuum_traces(self.session, low, high)
+        return _scaled(drawn, self.power), _scaled(continuum, self.power)
 
     def _axes(self, row: Row, last: bool):
         style, wide, tall = self.style, self.style.width_pt, self.height
@@ -122,7 +123,9 @@ class _Page:
         if self.spectrum is None:
             return "1 - depth"
         unit = self.session.spectrum.flux_unit
-        return f"flux ({unit})" if unit and len(unit) < 24 else "flux"
+        power = f"10{str(self.power).translate(SUPERSCRIPTS)}" if self.power else ""
+        factor = " ".join(part for part in (power, unit if len(unit) < 24 else "") if part)
+        return f"flux ({factor})" if factor else "flux"
 
     def finish(self) -> tuple[int, int]:
         draw_legend(self.figure, (self.height, self.left_out), self.marks, self.session, self.style)
@@ -134,6 +137,20 @@ def wave_name(medium: str) -> str:
     if medium == "unknown":
         return "wavelength, air or vacuum unknown (Å)"
     return f"wavelength in {medium} (Å)"
+
+
+def _power(spectrum: Spectrum) -> int:
+    """Power of ten taken out of the flux axis; 0 where its numbers are handy as they are."""
+    values = np.concatenate(
+        [np.abs(s.flux[~s.mask & np.isfinite(s.flux)]) for s in spectrum.segments]
+    )
+    largest = float(np.quantile(values, 0.999)) if len(values) else 0.0
+    power = int(np.floor(np.log10(largest))) if largest > 0 else 0
+    return 0 if -3 < power < 4 else power
+
+
+def _scaled(drawn: list[Trace], power: int) -> list[Trace]:
+    return [Trace(t.wave, t.flux / 10.0**power) for t in drawn] if power else drawn
 
 
 def _limits(drawn: list[Trace]) -> tuple[float, float]:
@@ -165,4 +182,4 @@ def _dress(axes, style: FigureStyle) -> None:
     axes.spines["top"].set_visible(False)
     for side in ("left", "right", "bottom"):
         axes.spines[side].set_linewidth(AXIS_WIDTH)
-    axes.yaxis.get_offset_text().set_fontsize(style.type_size - 0.5)
+    axes.yaxis.set_major_formatter(ScalarFormatter(useOffset=False))

@@ -13,7 +13,7 @@ from .figure_leaders import FOOT, MARKERS
 from .figure_style import CONTINUUM, DASHES, GREY, INK, LEADER_WIDTH, FigureStyle
 
 LEFT, RIGHT = 8.0, 7.0
-SAMPLE, AFTER, LINE = 13.0, 9.0, 9.5
+SAMPLE, AFTER, LINE = 12.5, 7.5, 9.5
 
 
 @dataclass(frozen=True)

@@ -85,8 +85,9 @@ def _lines(session: Session) -> dict:
     return {
         "wave_lab": to_medium(lab, session.spectrum.medium),
         "wave_lab_err": lab_err,
-        "e_low": column("e_low"),
-        "loggf": column("loggf"),
+        # single precision in the catalogue: digits beyond these are noise
+        "e_low": np.round(column("e_low"), 6),
+        "loggf": np.round(column("loggf"), 4),
         "velocity": C_KM_S * (ratio - 1.0),
         "velocity_err": C_KM_S * ratio * relative,
         "source": ["" if x is None else x.source for x in lines],
