@@ -36,10 +36,11 @@ def invented(monkeypatch):
 
 
 @pytest.fixture
-def window(qtbot, invented):
+def window(qtbot, invented, monkeypatch):
     """A shown window without a spectrum; closed without questions."""
     from linewright.window.main_window import MainWindow
 
+    monkeypatch.setattr(MainWindow, "_warm_engine", lambda self: None)
     window = MainWindow()
     qtbot.addWidget(window, before_close_func=lambda w: setattr(w, "_leaving", True))
     window.resize(1440, 860)

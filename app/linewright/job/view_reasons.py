@@ -69,6 +69,6 @@ def _share(c: Candidate, _depth: float, good: list, bad: list) -> None:
 
 def _siblings(roll: RollRow, good: list, bad: list) -> None:
     if roll.verdict == "present":
-        good.append(f"{roll.seen} of {roll.expected} expected {roll.species} lines are seen")
+        good.append(f"{roll.seen} {roll.species} lines seen, {roll.expected} expected")
     elif roll.verdict == "absent":
         bad.append(f"{roll.missing} of {roll.expected} expected {roll.species} lines are missing")

@@ -18,13 +18,15 @@ COUNT = 6
 class SiblingStrip:
     """wave: rest wavelength in the spectrum's own medium, Angstrom
     velocity: km/s about the expected place, shape (n,); flux over continuum, shape (n,)
-    feature: number of the feature claimed there, or None; predicted depth 0-1
+    feature: number of the feature there, or None; said: the species it is claimed for
+    predicted: depth 0-1
     """
 
     wave: float
     velocity: np.ndarray
     flux: np.ndarray
     feature: int | None
+    said: str
     predicted: float
 
 
@@ -113,16 +115,18 @@ def _level(session: Session, k: int, x: np.ndarray, segment) -> np.ndarray:
 def _finished(spectrum, session, strip, velocity, species) -> SiblingStrip:
     wave, v, flux, predicted = strip
     own = float(to_medium(wave, spectrum.medium))
-    number = _feature_there(session, wave * (1.0 + velocity / C_KM_S), species)
-    return SiblingStrip(own, v, flux, number, predicted)
+    number, said = _feature_there(session, wave * (1.0 + velocity / C_KM_S), species)
+    return SiblingStrip(own, v, flux, number, said, predicted)
 
 
-def _feature_there(session: Session, expected: float, species: str) -> int | None:
+def _feature_there(session: Session, expected: float, species: str) -> tuple[int | None, str]:
     f = session.features
     if not len(f):
-        return None
+        return None, ""
     reach = np.fmax(np.nan_to_num(0.5 * f.fwhm), 0.03)
     near = np.nonzero(np.abs(f.wave - expected) <= reach)[0]
     claimed = [i for i in near if session.claims[i].species == species]
     chosen = claimed or list(near)
-    return int(f.number[chosen[0]]) if chosen else None
+    if not chosen:
+        return None, ""
+    return int(f.number[chosen[0]]), session.claims[chosen[0]].species

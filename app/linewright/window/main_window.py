@@ -16,7 +16,7 @@ from .notices import Notice, NoticeBar
 from .showing import Showing
 from .status import StatusLine
 from .style import style_of
-from .tasks import Tasks
+from .tasks import Request, Tasks
 from .theme import theme_named
 from .troubles import log_trouble
 from .welcome import WelcomePage
@@ -83,7 +83,15 @@ class MainWindow(Questions, Showing, QMainWindow):
             self.space.tables.currentChanged.connect(lambda _k: self.menus.refresh())
             self.refresher.theme_changed()
             self.refresher.rake.load_catalogue()
+            self._warm_engine()
         return self.space
+
+    def _warm_engine(self) -> None:
+        """The first solve should not wait for imports and catalogue."""
+        self.tasks.start(Request(
+            key="warm", title="", shown=False,
+            work=lambda progress: self.bench.engine.call("window.engine_child:warm"),
+            done=lambda _ready: None, failed=lambda _error: None))
 
     @property
     def ledger(self):

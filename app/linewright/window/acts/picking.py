@@ -14,35 +14,44 @@ def pick(bench, wave: float) -> None:
     """Snaps to the extremum nearest a vacuum wavelength and fits it, beside the window."""
     if bench.spectrum is None:
         return
-    desk, spectrum, session = bench.desk, bench.spectrum, bench.session
-    span = bench.view.now.span or spectrum.own_range()
-    reach = (span[1] - span[0]) * 0.01
+    from ...job.view_pick import surroundings, without_claims
+
+    desk, session = bench.desk, bench.session
+    about = surroundings(bench.spectrum, session, wave)
+    if about is None:
+        return
+    low, high = bench.view.now.span or bench.spectrum.own_range()
+    arguments = (*about, without_claims(session), wave, (high - low) * 0.01)
+    engine = None if bench.tasks.busy("solve") else bench.engine
     bench.tasks.start(Request(
         key="pick", title="Measuring", shown=False,
-        work=lambda progress: _measured(spectrum, session, wave, reach),
-        done=lambda row: _add(bench, desk, row),
+        work=lambda progress: _picked(engine, arguments),
+        done=lambda found: _add(bench, desk, found),
         failed=lambda error: _failed(bench, error),
     ))
 
 
-def _measured(spectrum, session, wave: float, reach: float):
-    from ...measure import measure_at
+def _picked(engine, arguments):
+    """In the engine's process, or here in the worker while that one is solving."""
+    if engine is not None:
+        return engine.call("job.view_pick:pick", *arguments)
+    from ...job.view_pick import pick as pick_here
 
-    return measure_at(spectrum, wave, reach=reach)
+    return pick_here(*arguments)
 
 
-def _add(bench, desk, row) -> None:
+def _add(bench, desk, found) -> None:
     if desk is not bench.desk:
         return
-    if row is None or not len(row):
+    if found is None:
         bench.notify(Notice("Nothing stands out of the noise there. Zoom in and click nearer to "
                             "its centre.", "note", seconds=6, topic="pick"))
         return
+    row, claim = found
     same = _already(bench.session, row)
     if same is not None:
         bench.view.select(same)
-        return
-    if bench.act(add_feature, row):
+    elif bench.act(add_feature, row, claim):
         features = bench.session.features
         bench.view.select(int(features.number[np.argmax(features.number)]))
 

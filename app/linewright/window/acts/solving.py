@@ -50,10 +50,14 @@ def summary(session) -> Notice:
                       "click a trough or peak to measure it.", "warning", topic="solved")
     words = f"{count:,} features, {firm:,} firm or likely, {len(session.orphans):,} orphans."
     if v.declared:
-        return Notice(f"{words} Velocity {v.velocity:+.2f} ± {v.error:.2f} km/s.", "note",
+        return Notice(f"{words} Velocity {signed(v.velocity)} ± {v.error:.2f} km/s.", "note",
                       seconds=12, topic="solved")
     return Notice(f"{words} The velocity is not certain: see the other peaks in the Velocity "
                   "track, slide there and solve again.", "warning", topic="solved")
+
+
+def signed(value: float) -> str:
+    return f"{value:+.2f}".replace("-", "−")
 
 
 def stop(bench) -> None:

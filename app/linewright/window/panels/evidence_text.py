@@ -22,8 +22,7 @@ def heading(session: Session, row: int) -> str:
     f = session.features
     wave = float(to_medium(f.wave[row], session.spectrum.medium))
     depth = words.number(f.depth[row], 2)
-    digits = 0 if abs(f.ew[row]) >= 30 else 1
-    ew = words.with_error(f.ew[row], f.ew_err[row], digits)
+    ew = words.number(f.ew[row], 0 if abs(f.ew[row]) >= 30 else 1)
     parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", f"EW {ew} mÅ" if ew else ""]
     return "   ".join(p for p in parts if p)
 

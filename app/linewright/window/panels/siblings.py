@@ -54,7 +54,8 @@ class SiblingsBox(QWidget):
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
-        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s)) for s in self._found]
+        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species))
+                  for s in self._found]
         self.strips.set_strips(strips, bench.theme.colour(candidate.species, candidate.origin))
 
     def _go(self, index: int) -> None:
@@ -65,5 +66,7 @@ class SiblingsBox(QWidget):
             self._workbench.look_at(strip.wave)
 
 
-def _note(strip) -> str:
-    return "seen" if strip.feature is not None else "not seen"
+def _note(strip, species: str) -> str:
+    if strip.feature is None:
+        return "not seen"
+    return "seen" if strip.said == species else (strip.said or "no claim")
