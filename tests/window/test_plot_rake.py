@@ -103,6 +103,17 @@ def test_a_missing_line_is_marked_by_a_ring(view):
     assert len(columns) and abs(columns.mean() - at) < 2 and np.ptp(columns) <= 10
 
 
+def test_the_tooth_under_the_pointer_has_a_name(view):
+    rest = air_to_vacuum(np.array([5045.0, 5055.0]))
+    view.set_rake(RakeData(rest, np.array([0.25, 0.5]), np.array([0, 1]), ("Fe I", "Mg I")))
+    view.set_view(5040.0, 5060.0)
+    view.set_velocity(60.0)
+    x = float(view.rake.scale().pixels(5055.0 * (1 + 60.0 / C_KM_S)))
+    assert view.rake.tooth_text(x, 35) == "Mg I 5055.000 Å, predicted depth 0.50"
+    assert view.rake.tooth_text(x, 10) == ""
+    assert view.rake.tooth_text(x + 20, 35) == ""
+
+
 def test_rows_beyond_the_room_are_told(view):
     count = 20
     names = tuple(f"X{i} I" for i in range(count))

@@ -17,6 +17,8 @@ HEIGHT = 62
 _HEAT = 5
 _GRIP = 6
 _SMALLEST = 8
+# Bright lines may leave the strip: what is between them matters more here.
+_RANGES = 3.0
 
 
 class ContextStrip(Lane):
@@ -96,7 +98,7 @@ class ContextStrip(Lane):
 
     def _paint_whole(self, painter: QPainter, scale: PixelScale, ratio: float) -> None:
         reduced = self.item.reduce(scale)
-        limits = self.item.flux_limits(reduced) or (0.0, 1.0)
+        limits = self.item.flux_limits(reduced, _RANGES) or (0.0, 1.0)
         low, high = min(limits[0], max(0.0, 0.8 * limits[0])), limits[1]
         high = high if high > low else low + 1.0
         foot = (self.height() - _HEAT - 6) * ratio

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtCore import QEvent, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QImage, QPainter, QPen
+from PySide6.QtWidgets import QToolTip
 
+from ...spectra.medium import C_KM_S, from_medium, to_medium
 from .geometry import LEFT, RIGHT, to_device
 from .marks import marker_pixmap
 from .navigation import NavigableLane
@@ -18,6 +20,7 @@ TALLEST = 156
 MOST_ROWS = 12
 _HEAD = 4
 _WIDE_SPACING = 10
+_REACH = 4.0
 
 
 class RakeLane(NavigableLane):
@@ -51,6 +54,27 @@ class RakeLane(NavigableLane):
             "Rake: where lines of the chosen species are predicted at this velocity; the "
             "longer a tooth, the deeper the line should be." + more
         )
+
+    def tooth_text(self, x: float, y: float) -> str:
+        """Species, wavelength (own medium, at rest) and depth of the tooth at a point."""
+        row = int((y - _HEAD) // self.row_height)
+        if not 0 <= row < self.shown_rows or x < LEFT:
+            return ""
+        state = self.state
+        rest = float(from_medium(self.wave_at(x), state.medium)) / (1 + state.velocity / C_KM_S)
+        tooth = self.teeth.nearest(row, rest, _REACH * self.scale().per_pixel)
+        if tooth is None:
+            return ""
+        wave = float(to_medium(tooth[0], state.medium))
+        return f"{self.teeth.names[row]} {wave:.3f} Å, predicted depth {tooth[1]:.2f}"
+
+    def event(self, event: QEvent) -> bool:
+        """The tool tip names the tooth under the pointer, elsewhere it explains the Rake."""
+        if event.type() == QEvent.Type.ToolTip:
+            text = self.tooth_text(event.pos().x(), event.pos().y())
+            QToolTip.showText(event.globalPos(), text or self.toolTip(), self)
+            return True
+        return super().event(event)
 
     def draw(self, painter: QPainter) -> None:
         if self.shown_rows == 0:

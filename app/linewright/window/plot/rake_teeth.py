@@ -54,6 +54,16 @@ class RakeTeeth:
         at = np.floor(scale.pixels(shifted[inside])) + 0.5
         return self._row[which], at, self._depth[which]
 
+    def nearest(self, row: int, rest: float, within: float) -> tuple[float, float] | None:
+        """(rest wavelength, depth) of a row's tooth closest to ``rest``, vacuum Angstrom."""
+        first, last = np.searchsorted(
+            self._key, [row * _ROW_STRIDE + rest - within, row * _ROW_STRIDE + rest + within]
+        )
+        if last <= first:
+            return None
+        best = first + int(np.argmin(np.abs(self.wave[first:last] - rest)))
+        return float(self.wave[best]), float(self._depth[best])
+
     def _vacuum_edges(self, scale: PixelScale, medium: str) -> np.ndarray:
         if self._edges[:2] != (scale, medium):
             self._edges = (scale, medium, from_medium(scale.edges(), medium))

@@ -67,8 +67,13 @@ class SpectrumItem:
         """What each segment in view must draw."""
         return [reduce_part(part, scale) for part in self.parts]
 
-    def flux_limits(self, reduced: list[Reduced]) -> tuple[float, float] | None:
-        """(lowest, highest) flux in view, wild outliers left out; None with nothing in view."""
+    def flux_limits(
+        self, reduced: list[Reduced], ranges: float = OUTLIER_RANGES
+    ) -> tuple[float, float] | None:
+        """(lowest, highest) flux in view; None with nothing in view.
+
+        What lies more than ``ranges`` bulk ranges from the median is left out.
+        """
         pairs = [part.extremes() for part in reduced]
         lows = np.concatenate([pair[0] for pair in pairs])
         highs = np.concatenate([pair[1] for pair in pairs])
@@ -77,7 +82,7 @@ class SpectrumItem:
         values = np.concatenate([lows, highs])
         order = [int(share * (len(values) - 1)) for share in (0.02, 0.5, 0.98)]
         bottom, middle, top = np.partition(values, order)[order].tolist()
-        reach = OUTLIER_RANGES * max(top - bottom, 1e-300)
+        reach = ranges * max(top - bottom, 1e-300)
         return max(float(lows.min()), middle - reach), min(float(highs.max()), middle + reach)
 
     def paint(self, painter: QPainter, frame: Frame, reduced: list[Reduced], ink: str) -> None:
@@ -129,16 +134,22 @@ def reduce_part(part: Extremes, scale: PixelScale, raw: float = RAW_PER_PIXEL) -
 
 
 def column_lines(columns: Columns, frame: Frame) -> np.ndarray:
-    """Line rows (x1, y1, x2, y2): one upright per column, one to each from the one before."""
+    """Line rows (x1, y1, x2, y2): one upright per column and what joins it to the one before.
+
+    Neighbouring columns whose uprights share a height touch already: no line is needed.
+    """
     x = columns.column + 0.5
-    low, high = frame.y(columns.low), frame.y(columns.high)
+    high = frame.y(columns.high)
     # A column of one value would be a line of no length, which nothing draws.
-    upright = np.stack([x, np.maximum(low, high + 0.5), x, high], axis=1)
-    upright = upright[np.isfinite(low)]
-    where = np.nonzero(columns.joined)[0]
-    first, last = frame.y(columns.first), frame.y(columns.last)
-    across = np.stack([x[where - 1], last[where - 1], x[where], first[where]], axis=1)
-    return np.concatenate([upright, across])
+    low = np.maximum(frame.y(columns.low), high + 0.5)
+    upright = np.stack([x, low, x, high], axis=1)
+    touch = (np.diff(columns.column) == 1) & (low[1:] >= high[:-1]) & (low[:-1] >= high[1:])
+    apart = columns.joined.copy()
+    apart[1:] &= ~touch
+    where = np.nonzero(apart)[0]
+    first, last = frame.y(columns.first[where]), frame.y(columns.last[where - 1])
+    across = np.stack([x[where - 1], last, x[where], first], axis=1)
+    return np.concatenate([upright[np.isfinite(low)], across])
 
 
 def draw_run(painter: QPainter, x: np.ndarray, y: np.ndarray) -> None:
