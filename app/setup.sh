@@ -103,7 +103,7 @@ if ! have test && ! { [ "$job" = run ] && have run; }; then
     echo "Setting up .venv (once; about half a minute) ..."
     extra=
     [ "$job" = test ] && extra='[test]'
-    .venv/bin/python -m pip install --quiet --disable-pip-version-check -e ".$extra" </dev/null
+    .venv/bin/python -m pip install --quiet --quiet --disable-pip-version-check -e ".$extra" </dev/null
     echo "$stamp" >".venv/stamp-$job"
 fi
 
@@ -125,8 +125,17 @@ columns = ("feature", "wave", "depth", "ew", "species", "wave_lab", "velocity", 
            "standing")
 with open(sys.argv[1], newline="", encoding="utf-8") as handle:
     rows = list(csv.DictReader(line for line in handle if not line.startswith("#")))
+
+
+def shown(name, text):
+    try:
+        return f"{float(text):.8g}" if "wave" in name else f"{float(text):.4g}"
+    except ValueError:
+        return text
+
+
 print("".join(f"{name:>12}" for name in columns))
 for row in rows[:12]:
-    print("".join(f"{row[name][:11]:>12}" for name in columns))
+    print("".join(f"{shown(name, row[name]):>12}" for name in columns))
 print(f"... {len(rows)} rows in all: {sys.argv[1]}")
 PY
