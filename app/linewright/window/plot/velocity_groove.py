@@ -3,18 +3,17 @@
 from __future__ import annotations
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, Qt, Signal
-from PySide6.QtGui import QColor, QKeyEvent, QMouseEvent, QPainter, QPen, QPolygonF, QWheelEvent
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QColor, QKeyEvent, QMouseEvent, QPainter, QPen, QWheelEvent
 from PySide6.QtWidgets import QWidget
 
 from ..theme import LIGHT, Theme
 from .extremes import Extremes, PixelScale
-from .geometry import nice_ticks
-from .primitives import draw_lines, draw_polyline, polygon
+from .groove_marks import TOP, draw_handle, draw_rivals, draw_ticks
+from .primitives import draw_polyline, polygon
 from .safe_paint import paint_safely
 
 _SIDE = 16
-_TOP = 3
 _SNAP = 5.0
 
 
@@ -82,10 +81,11 @@ class VelocityGroove(QWidget):
         self._draw_curve(painter, scale, floor)
         painter.setPen(QPen(QColor(theme.faint), 0))
         painter.drawLine(_SIDE, int(floor), self.width() - _SIDE, int(floor))
-        self._draw_ticks(painter, scale, floor)
+        draw_ticks(painter, self.width(), (scale, floor), theme)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
-        self._draw_rivals(painter, scale, floor)
-        self._draw_handle(painter, float(scale.pixels(self.velocity)), floor)
+        inside = [v for v, _below in self.rivals if self.low <= v <= self.high]
+        draw_rivals(painter, scale.pixels(inside), floor, theme)
+        draw_handle(painter, (float(scale.pixels(self.velocity)), floor), theme, self.declared)
         if self.hasFocus():
             painter.setPen(QPen(QColor(theme.accent), 2))
             painter.setBrush(Qt.BrushStyle.NoBrush)
@@ -99,7 +99,7 @@ class VelocityGroove(QWidget):
             return
         base, top = float(np.median(y)), float(np.max(y))
         low = min(float(np.min(y)), base)
-        y = floor - 1 - (y - low) / max(top - low, 1e-300) * (floor - _TOP - 4)
+        y = floor - 1 - (y - low) / max(top - low, 1e-300) * (floor - TOP - 4)
         shade = QColor(self._theme.accent)
         shade.setAlpha(45)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
@@ -123,51 +123,6 @@ class VelocityGroove(QWidget):
             columns = self._curve.columns(scale)
             x, y, good = columns.column + 0.5, columns.high, np.isfinite(columns.high)
         return np.clip(x[good], _SIDE, self.width() - _SIDE), y[good]
-
-    def _draw_ticks(self, painter: QPainter, scale: PixelScale, floor: float) -> None:
-        major, minor, decimals = nice_ticks(self.low, self.high, max(2, int(scale.width // 80)))
-        for ticks, length in ((minor, 2.0), (major, 4.0)):
-            x = np.floor(scale.pixels(ticks)) + 0.5
-            top = np.full(len(x), floor)
-            draw_lines(painter, np.stack([x, top, x, top + length], axis=1))
-        painter.setPen(QColor(self._theme.muted))
-        font = painter.font()
-        font.setPointSizeF(max(7.0, font.pointSizeF() - 1))
-        painter.setFont(font)
-        line = self.fontMetrics().height()
-        for value, x in zip(major, scale.pixels(major)):
-            left = min(max(float(x) - 40, 0.0), self.width() - 80.0)
-            side = Qt.AlignmentFlag.AlignHCenter
-            if left > x - 40:
-                side = Qt.AlignmentFlag.AlignLeft
-            elif left < x - 40:
-                side = Qt.AlignmentFlag.AlignRight
-            text = f"{value + 0.0:.{decimals}f}".replace("-", "−")
-            painter.drawText(QRectF(left, floor + 5, 80, line), int(side), text)
-
-    def _draw_rivals(self, painter: QPainter, scale: PixelScale, floor: float) -> None:
-        painter.setPen(QPen(QColor(self._theme.muted), 1))
-        painter.setBrush(QColor(self._theme.base))
-        for velocity, _below in self.rivals:
-            if self.low <= velocity <= self.high:
-                x = float(scale.pixels(velocity))
-                tip = [QPointF(x, floor - 6), QPointF(x - 4, floor), QPointF(x + 4, floor)]
-                painter.drawPolygon(QPolygonF(tip))
-
-    def _draw_handle(self, painter: QPainter, x: float, floor: float) -> None:
-        """A pin; hollow with a broken stem while the velocity is only a guess."""
-        colour = QColor(self._theme.profile)
-        style = Qt.PenStyle.SolidLine if self.declared else Qt.PenStyle.DotLine
-        painter.setPen(QPen(colour, 1.6, style))
-        painter.drawLine(QPointF(x, _TOP + 8), QPointF(x, floor))
-        painter.setPen(QPen(colour, 1.6))
-        painter.setBrush(colour if self.declared else QColor(self._theme.base))
-        painter.drawPolygon(
-            QPolygonF([
-                QPointF(x - 5, _TOP), QPointF(x + 5, _TOP),
-                QPointF(x + 5, _TOP + 5), QPointF(x, _TOP + 10), QPointF(x - 5, _TOP + 5),
-            ])
-        )
 
     def _at(self, x: float) -> float:
         """Velocity under x, at a rival's mark exactly there; rounded to 0.01 km/s."""
