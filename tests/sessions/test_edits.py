@@ -127,6 +127,18 @@ def test_restore_of_a_machine_claim_does_nothing(made):
     assert edits.restore(made, 3) is made
 
 
+def test_restore_does_not_take_the_record_of_an_earlier_solve(made):
+    """After solving again a number may mean another feature; its probabilities tell."""
+    number = _with_candidates(made)
+    before = edits.set_aside(made, number, "artefact")
+    row = made.index_of(number)
+    solved = replace(_claim(made, number), probability=0.61, species="Fe I", by="person")
+    claims = (*before.claims[:row], solved, *before.claims[row + 1 :])
+    claim = _claim(edits.restore(replace(before, claims=claims), number), number)
+    assert (claim.by, claim.standing) == ("machine", "tentative")
+    assert claim.species == solved.candidates[0].species
+
+
 def test_restore_without_history_falls_back_to_the_probability(made):
     number = _with_candidates(made)
     after = replace(edits.accept_candidate(made, number, 2), history=())

@@ -24,6 +24,10 @@ from .model import (
 )
 from .plain import candidate_from, contributors_from, plain
 
+# What of a claim a person's act may change, kept in the history for `restore`; the two
+# probabilities (which no act changes) tell whether that record is of the present claim or
+# of an earlier solve, whose numbers may mean other features.
+MACHINE_PROOF = ("probability", "p_line")
 MACHINE_FIELDS = (
     "species",
     "standing",
@@ -59,10 +63,8 @@ def _edit_claim(session: Session, action: str, detail: dict, **changes) -> Sessi
     new = replace(old, **changes)
     if old.by == "machine" and new.by == "person":
         # kept beside the act, so that `restore` finds what the machine had said
-        detail = {
-            **detail,
-            "machine": {name: getattr(old, name) for name in MACHINE_FIELDS},
-        }
+        names = (*MACHINE_FIELDS, *MACHINE_PROOF)
+        detail = {**detail, "machine": {name: getattr(old, name) for name in names}}
     claims = (*session.claims[:row], new, *session.claims[row + 1 :])
     return noted(session, action, detail, claims=claims)
 
@@ -175,17 +177,21 @@ def restore(session: Session, number: int) -> Session:
     claim = _claim(session, number)
     if claim.by == "machine":
         return session
-    said = _machine_said(session, number) or _machine_would_say(claim)
+    said = _machine_said(session, number, claim) or _machine_would_say(claim)
     return _edit_claim(session, "restore", {"feature": number}, by="machine", **said)
 
 
-def _machine_said(session: Session, number: int) -> dict | None:
+def _machine_said(session: Session, number: int, claim: Claim) -> dict | None:
+    proof = {name: plain(getattr(claim, name)) for name in MACHINE_PROOF}
     for entry in reversed(session.history):
-        if entry.detail.get("feature") == number and "machine" in entry.detail:
-            said = dict(entry.detail["machine"])
-            said["chosen"] = candidate_from(said["chosen"])
-            said["blend"] = contributors_from(said["blend"])
-            return said
+        said = entry.detail.get("machine")
+        if entry.detail.get("feature") == number and said:
+            if any(said[name] != value for name, value in proof.items()):
+                return None
+            changes = {name: said[name] for name in MACHINE_FIELDS}
+            changes["chosen"] = candidate_from(said["chosen"])
+            changes["blend"] = contributors_from(said["blend"])
+            return changes
     return None
 
 

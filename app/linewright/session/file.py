@@ -34,7 +34,7 @@ def load_session(path) -> Session:
     try:
         _validator()(parts)
         return session_from(parts, Path(path).absolute().parent)
-    except (ValueError, InputRefused) as problem:
+    except (ValueError, OverflowError, InputRefused) as problem:
         raise InputRefused(path, f"damaged session: {_brief(problem)}", _NOT_OURS) from None
 
 
