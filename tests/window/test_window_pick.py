@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from linewright.job.view_pick import pick, surroundings, without_claims
+from linewright.job.view_pick import pick, surroundings, weighed, without_claims
 from linewright.job.view_session import unsolved_session
 from linewright.session.document import Document
 from linewright.spectra.medium import C_KM_S
@@ -79,7 +79,32 @@ def test_a_pick_in_a_solved_session_is_weighed_among_its_neighbours(invented):
     wave = float(session.features.wave[row])
     session = remove_feature(session, row + 1)
     about = surroundings(spectrum, session, wave)
-    measured, claim = pick(*about, without_claims(session), wave, 0.1)
+    measured = pick(*about, wave, 0.1)
     assert measured.wave[0] == pytest.approx(wave, abs=0.01)
+    claim = weighed(without_claims(session), measured, spectrum.frame, invented)
+    assert claim.candidates[0].species == invented.species_of(row)
+    assert abs(claim.candidates[0].wave - invented.wave[row]) < 1e-6
     assert 0.0 <= claim.probability <= 1.0
     assert claim.p_unlisted > 0.0
+
+
+def test_a_pick_and_its_claim_are_one_step_of_undo(solved, qtbot, invented, monkeypatch):
+    import window_builders as build
+
+    from linewright.window.acts import picking
+
+    bench = solved.bench
+    row = lone_line(invented)
+    bench.view.select(row + 1)
+    bench.run("claim.remove")
+    before = bench.session
+    said = build.claim_of(invented, row, np.random.default_rng(1))
+    original = picking._call
+    monkeypatch.setattr(picking, "_call", lambda engine, name, arguments: said
+                        if name == "weighed" else original(None, name, arguments))
+    picking.pick(bench, float(invented.wave[row] * (1 + build.VELOCITY / C_KM_S)))
+    qtbot.waitUntil(lambda: bench.selected_row() is not None
+                    and bench.session.claims[bench.selected_row()] == said, timeout=60000)
+    assert bench.desk.document.undo_label == "add feature"
+    bench.run("edit.undo")
+    assert bench.session is before

@@ -16,9 +16,9 @@ from ..measure.options import MeasureOptions
 from ..session.model import Claim, Session
 from ..spectra.spectrum import Segment, Spectrum
 
-SURROUNDINGS = 400  # line widths measured on either side, for noise and continuum
+SURROUNDINGS = 120  # line widths measured about it, for noise and continuum
 LEAST_SIGNIFICANCE = 2.5  # a person's eye has chosen the place: one trial, not thousands
-NEIGHBOURS = 150  # features weighed with it
+NEIGHBOURS = 40  # features weighed with it
 
 
 def surroundings(
@@ -36,18 +36,16 @@ def surroundings(
 
 
 def without_claims(session: Session) -> Session:
-    """What ``pick`` needs of a session: measurements, velocity and conditions."""
+    """What ``weighed`` needs of a session: measurements, velocity and conditions."""
     return replace(session, claims=(), roll_call=(), orphans=(), history=())
 
 
 def pick(
-    about: Spectrum, index: int, session: Session, wave: float, reach: float
-) -> tuple[FeatureTable, Claim] | None:
-    """(one-row table, claim) of the peak or trough within ``reach`` of a vacuum wavelength.
+    about: Spectrum, index: int, wave: float, reach: float
+) -> FeatureTable | None:
+    """One-row table of the peak or trough within ``reach`` of a vacuum wavelength.
 
-    about, index: from ``surroundings``. Measured as in a solve; the claim is weighed at the
-    session's velocity and temperature with the nearest features. None when nothing stands
-    out.
+    about, index: from ``surroundings``. Measured as in a solve. None when nothing stands out.
     """
     try:
         found = measure_spectrum(about, MeasureOptions(threshold=LEAST_SIGNIFICANCE))
@@ -58,8 +56,7 @@ def pick(
     if not np.any(within):
         return None
     row = found.features.take([int(np.argmin(np.where(within, near, np.inf)))])
-    row = replace(row, segment=np.array([index]), flags=(_by_hand(row.flags[0]),))
-    return row, weighed(session, row, about.frame)
+    return replace(row, segment=np.array([index]), flags=(_by_hand(row.flags[0]),))
 
 
 def segment_at(spectrum: Spectrum, wave: float) -> int | None:
@@ -78,7 +75,7 @@ def _cut(segment: Segment, wave: float, session: Session) -> Segment:
     widths = session.features.fwhm[np.isfinite(session.features.fwhm)]
     step = float(np.median(np.diff(segment.wave)))
     width = float(np.median(widths)) if len(widths) else max(4.0 * step, wave / 40000.0)
-    half = max(SURROUNDINGS * width / 2.0, 150 * step)
+    half = max(SURROUNDINGS * width / 2.0, 300 * step)
     part = slice(*np.searchsorted(segment.wave, [wave - half, wave + half]))
     sigma = segment.uncertainty
     return Segment(segment.wave[part], segment.flux[part],
@@ -86,8 +83,11 @@ def _cut(segment: Segment, wave: float, session: Session) -> Segment:
 
 
 def weighed(session: Session, row: FeatureTable, frame: str, catalogue=None) -> Claim:
-    """The machine's claim for a new feature among its neighbours; no claim before a solve."""
-    if not np.isfinite(session.temperature_k) or not np.isfinite(session.velocity.velocity):
+    """The machine's claim for a new feature, at the session's velocity and temperature.
+
+    Weighed with the nearest features; no claim before a solve (``can_weigh``).
+    """
+    if not can_weigh(session):
         return Claim()
     together = _with_neighbours(session.features, row)
     at = int(np.nonzero(together.number == 0)[0][0])
@@ -98,6 +98,18 @@ def weighed(session: Session, row: FeatureTable, frame: str, catalogue=None) -> 
         complete=False)
     catalogue = load_catalogue() if catalogue is None else catalogue
     return identify(together, (ends,), catalogue, options).claims[at]
+
+
+def can_weigh(session: Session) -> bool:
+    return bool(np.isfinite(session.temperature_k) and np.isfinite(session.velocity.velocity))
+
+
+def with_claim(session: Session, number: int, claim: Claim) -> Session:
+    """The machine's claim put to a feature that has none yet and was not judged since."""
+    row = session.index_of(number)
+    if session.claims[row] != Claim():
+        return session
+    return replace(session, claims=(*session.claims[:row], claim, *session.claims[row + 1:]))
 
 
 def _with_neighbours(features: FeatureTable, row: FeatureTable) -> FeatureTable:

@@ -14,46 +14,82 @@ def pick(bench, wave: float) -> None:
     """Snaps to the extremum nearest a vacuum wavelength and fits it, beside the window."""
     if bench.spectrum is None:
         return
-    from ...job.view_pick import surroundings, without_claims
+    from ...job.view_pick import surroundings
 
-    desk, session = bench.desk, bench.session
-    about = surroundings(bench.spectrum, session, wave)
+    desk = bench.desk
+    about = surroundings(bench.spectrum, bench.session, wave)
     if about is None:
         return
     low, high = bench.view.now.span or bench.spectrum.own_range()
-    arguments = (*about, without_claims(session), wave, (high - low) * 0.01)
-    engine = None if bench.tasks.busy("solve") else bench.engine
+    arguments = (*about, wave, (high - low) * 0.01)
+    engine = _free_engine(bench)
     bench.tasks.start(Request(
         key="pick", title="Measuring", shown=False,
-        work=lambda progress: _picked(engine, arguments),
-        done=lambda found: _add(bench, desk, found),
+        work=lambda progress: _call(engine, "pick", arguments),
+        done=lambda row: _add(bench, desk, row),
         failed=lambda error: _failed(bench, error),
     ))
 
 
-def _picked(engine, arguments):
-    """In the engine's process, or here in the worker while that one is solving."""
+def _free_engine(bench):
+    """None while the engine's process is solving: short work is done in a thread then."""
+    return None if bench.tasks.busy("solve") else bench.engine
+
+
+def _call(engine, name: str, arguments):
     if engine is not None:
-        return engine.call("job.view_pick:pick", *arguments)
-    from ...job.view_pick import pick as pick_here
+        return engine.call(f"job.view_pick:{name}", *arguments)
+    from ...job import view_pick
 
-    return pick_here(*arguments)
+    return getattr(view_pick, name)(*arguments)
 
 
-def _add(bench, desk, found) -> None:
+def _add(bench, desk, row) -> None:
     if desk is not bench.desk:
         return
-    if found is None:
+    if row is None:
         bench.notify(Notice("Nothing stands out of the noise there. Zoom in and click nearer to "
                             "its centre.", "note", seconds=6, topic="pick"))
         return
-    row, claim = found
     same = _already(bench.session, row)
     if same is not None:
         bench.view.select(same)
-    elif bench.act(add_feature, row, claim):
+        return
+    before = bench.session
+    if bench.act(add_feature, row):
         features = bench.session.features
-        bench.view.select(int(features.number[np.argmax(features.number)]))
+        number = int(features.number[np.argmax(features.number)])
+        bench.view.select(number)
+        _weigh(bench, desk, before, row, number)
+
+
+def _weigh(bench, desk, before, row, number: int) -> None:
+    """The machine's word on the new feature follows when it is found."""
+    from ...job.view_pick import can_weigh, without_claims
+
+    if not can_weigh(before):
+        return
+    engine, arguments = _free_engine(bench), (without_claims(before), row, before.spectrum.frame)
+    bench.tasks.start(Request(
+        key=f"weigh {number}", title="Weighing", shown=False,
+        work=lambda progress: _call(engine, "weighed", arguments),
+        done=lambda claim: _weighed(desk, number, claim),
+        failed=lambda error: _failed(bench, error),
+    ))
+
+
+def _weighed(desk, number: int, claim) -> None:
+    """Part of the pick's own step where nothing was done since, else a step of its own."""
+    from ...job.view_pick import with_claim
+
+    session = desk.document.session
+    if number not in session.features.number:
+        return
+    new = with_claim(session, number, claim)
+    last = session.history[-1] if session.history else None
+    if last is not None and last.action == "add_feature" and new is not session:
+        desk.document.undo()
+    desk.document.replace(new, "add feature" if last and last.action == "add_feature" else "weigh")
 
 
 def _already(session, row) -> int | None:
