@@ -48,11 +48,11 @@ def write_table(name: str, columns: dict[str, np.ndarray], out: Path | None = No
             entry.external_attr = 0o644 << 16
             entry.create_system = 3
             archive.writestr(entry, buffer.getvalue())
-    _enter(path)
+    enter_in_manifest(path)
     return path
 
 
-def _enter(path: Path) -> None:
+def enter_in_manifest(path: Path) -> None:
     """Notes size and SHA-256 of a table in the manifest beside it."""
     manifest = path.parent / "manifest.json"
     entries = json.loads(manifest.read_text()) if manifest.is_file() else {}
@@ -61,13 +61,21 @@ def _enter(path: Path) -> None:
     manifest.write_text(json.dumps(entries, indent=1, sort_keys=True) + "\n")
 
 
+def _used(codes, names: list[str]) -> tuple[np.ndarray, list[str]]:
+    """Codes and names without the names no row uses."""
+    present, recoded = np.unique(np.asarray(codes).astype(int), return_inverse=True)
+    return recoded, [names[code] for code in present]
+
+
 def pack_lines(lines: dict[str, np.ndarray], names: list[str], keys: list[str]) -> dict:
     """Compact columns of a line table, repeats merged, sorted by wavelength.
 
     ``lines`` holds wave, wave_err, species, origin, source and any of e_low, loggf,
     loggf_err, emission, depth_ref, j_low, j_up, spread, grade (NaN or missing: unknown).
     """
-    lines = lines if "depth_ref" in lines else merge(lines)
+    lines = dict(lines) if "depth_ref" in lines else dict(merge(lines))
+    lines["species"], names = _used(lines["species"], names)
+    lines["source"], keys = _used(lines["source"], keys)
     n = len(lines["wave"])
     blank = np.full(n, np.nan)
     order = np.lexsort((lines.get("e_low", blank), lines["species"], lines["wave"]))

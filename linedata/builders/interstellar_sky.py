@@ -15,7 +15,7 @@ import numpy as np
 from airglow import hydroxyl_lines
 from common import ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, write_table
 from nist_levels import read_levels
-from ritz import match_lines, sort_levels
+from ritz import sort_levels
 from symbols import ROMAN
 
 # Resonance lines: element, stage, air wavelength, oscillator strength times g_low of the ground

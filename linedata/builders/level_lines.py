@@ -16,7 +16,7 @@ from common import (
 from level_pairs import permitted_lines
 from level_physics import ionisation_energies
 from nist_levels import read_levels
-from published_strengths import PUBLISHED
+from published_strengths import FORBIDDEN, PUBLISHED, SOURCES
 from symbols import ELEMENTS, ROMAN
 
 IONS = [
@@ -30,32 +30,42 @@ LEAST_LOGGF = -2.5
 POOR_LEVELS = {("S", 3): 0.1, ("N", 3): 0.006, ("Fe", 3): 0.010, ("C", 4): 0.012}
 # Scatter of the Coulomb approximation against published log gf, dex.
 STRENGTH_ERROR = {("S", 2): 0.25, ("Fe", 3): 0.3, ("Ne", 2): 0.25, ("O", 2): 0.15, ("P", 2): 0.16}
-KEYS = ["NIST_ASD"]
+KEYS = ["NIST_ASD", "Ekberg1993", "YanDrake1995", "Wiese1996"]
 SAME_WAVE, SAME_ENERGY = 0.03, 0.01  # Angstrom at 5000 A, eV
 
 
-def ritz_of_published(source: Path, element: str, stage: int) -> list[dict]:
-    """Core-changing lines with a published log gf, their Ritz wavelengths found among levels."""
-    levels = read_levels(source, element, stage)
+def find_pair(levels, air: float, e_low: float, change_parity: bool) -> tuple | None:
+    """(lower row, upper row, vacuum Ritz wavelength) nearest an air wavelength and E_low (eV)."""
+    vacuum = float(air_to_vacuum(air))
+    best = None
+    for low in np.flatnonzero(np.abs(levels.energy * EV_PER_CM - e_low) < 0.01):
+        gap = 1e8 / np.maximum(levels.energy - levels.energy[low], 1.0)
+        for up in np.flatnonzero(np.abs(gap - vacuum) < 0.15):
+            step = abs(levels.j[up] - levels.j[low])
+            if (levels.odd[up] != levels.odd[low]) == change_parity and step <= 2 - change_parity:
+                miss = abs(gap[up] - vacuum)
+                if best is None or miss < best[0]:
+                    best = (miss, low, up, float(gap[up]))
+    return best[1:] if best else None
+
+
+def ritz_of_published(source: Path, ion: tuple[str, int], forbidden: bool = False) -> list[dict]:
+    """Lines with a published strength, their Ritz wavelengths found among the levels."""
+    levels = read_levels(source, *ion)
     lines = []
-    for air, e_low, loggf in PUBLISHED.get((element, stage), ()):
-        vacuum = float(air_to_vacuum(air))
-        near = np.flatnonzero(np.abs(levels.energy * EV_PER_CM - e_low) < 0.01)
-        best = None
-        for low in near:
-            gap = 1e8 / np.maximum(levels.energy - levels.energy[low], 1.0)
-            for up in np.flatnonzero(np.abs(gap - vacuum) < 0.15):
-                if levels.odd[up] != levels.odd[low] and abs(levels.j[up] - levels.j[low]) <= 1:
-                    miss = abs(gap[up] - vacuum)
-                    if best is None or miss < best[0]:
-                        best = (miss, low, up, float(gap[up]))
-        if best is None:
-            raise ValueError(f"{element} {stage}: no levels for {air}")
-        _, low, up, wave = best
+    for air, e_low, *strength in (FORBIDDEN if forbidden else PUBLISHED).get(ion, ()):
+        pair = find_pair(levels, air, e_low, not forbidden)
+        if pair is None:
+            raise ValueError(f"{ion}: no levels for {air}")
+        low, up, wave = pair
+        loggf = strength[0]
+        if forbidden:
+            loggf = float(np.log10(1.4992e-16 * strength[0] * strength[1] * wave**2))
         lines.append({
             "wave": wave, "wave_err": float(np.hypot(0.002, 4e-7 * wave)),
             "e_low": levels.energy[low] * EV_PER_CM, "j_low": levels.j[low],
-            "j_up": levels.j[up], "loggf": loggf, "loggf_err": 0.2,
+            "j_up": levels.j[up], "loggf": loggf, "loggf_err": 0.1 if forbidden else 0.2,
+            "key": "Wiese1996" if forbidden else SOURCES.get(ion, "NIST_ASD"),
         })
     return lines
 
@@ -80,7 +90,7 @@ def ion_lines(source: Path, element: str, stage: int, energies: np.ndarray) -> l
         for line in permitted_lines(source, element, stage, energies[z, stage - 1])
         if line["loggf"] > LEAST_LOGGF
     ]
-    published = ritz_of_published(source, element, stage)
+    published = ritz_of_published(source, (element, stage))
     taken = np.array([line["wave"] for line in published])
     lines = [line for line in lines if not np.any(np.abs(taken - line["wave"]) < 0.003)]
     lines += published
@@ -109,10 +119,14 @@ def main() -> None:
         rows += found
         names.append(name)
         print(name, len(found))
+    for ion in FORBIDDEN:
+        found = ritz_of_published(source, ion, forbidden=True)
+        rows += [line | {"species": len(names)} for line in found]
+        names.append(f"[{ion[0]} {ROMAN[ion[1] - 1]}]")
     columns = ("wave", "wave_err", "e_low", "j_low", "j_up", "loggf", "loggf_err", "species")
     lines = {key: np.array([row[key] for row in rows]) for key in columns}
     lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
-    lines["source"] = np.zeros(len(rows))
+    lines["source"] = np.array([KEYS.index(row.get("key", "NIST_ASD")) for row in rows])
     write_table("level_lines", pack_lines(lines, names, KEYS), arguments.out)
     print(len(rows), "lines")
 

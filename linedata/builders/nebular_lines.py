@@ -26,7 +26,7 @@ PUBLISHED = {
     ("N", 2): ("n_ii_atom_FFT04.dat", "n_ii_coll_T11.dat", "FroeseFischer2004"),
     ("O", 1): ("o_i_atom_WFD96.dat", "o_i_coll_BK95.dat", "Wiese1996"),
     ("O", 2): ("o_ii_atom_FFT04.dat", "o_ii_coll_Kal09.dat", "FroeseFischer2004"),
-    ("O", 3): ("o_iii_atom_FFT04.dat", "o_iii_coll_SSB14.dat", "FroeseFischer2004"),
+    ("O", 3): ("o_iii_atom_FFT04-SZ00.dat", "o_iii_coll_SSB14.dat", "Storey2000"),
     ("Ne", 3): ("ne_iii_atom_FFT04.dat", "ne_iii_coll_McLB00.dat", "FroeseFischer2004"),
     ("Ne", 4): ("ne_iv_atom_FFT04.dat", "ne_iv_coll_G81.dat", "FroeseFischer2004"),
     ("Ne", 5): ("ne_v_atom_GMZ97-U-BD93.dat", "ne_v_coll_LB94.dat", "Galavis1997"),

@@ -14,6 +14,8 @@ import numpy as np
 
 from common import source_file
 
+# Error of a level in units of its last printed digit: rounding (0.29) and a little more.
+ROUNDING = 0.35
 ROMAN = "i ii iii iv v vi vii viii".split()
 
 
@@ -41,7 +43,7 @@ def _energy(text: str) -> tuple[float, float] | None:
         return None
     digits = len(match[0].partition(".")[2])
     bracketed = "[" in text or "(" in text or "?" in text
-    return float(match[0]), (3.0 if bracketed else 0.7) * 10.0**-digits
+    return float(match[0]), (3.0 if bracketed else ROUNDING) * 10.0**-digits
 
 
 def _spin(text: str) -> float:

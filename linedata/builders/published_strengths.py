@@ -4,6 +4,16 @@
 Al II: NIST ASD (Kelleher & Podobedova 2008); Li I: Yan & Drake 1995, PRA 52, R4316.
 """
 
+# Bibliographic key of the log gf of an ion; others: NIST_ASD.
+SOURCES = {("Fe", 3): "Ekberg1993", ("Li", 1): "YanDrake1995"}
+# Forbidden lines seen in absorption in stars: gf = 1.4992e-16 g A lambda^2, A (s-1) of Wiese,
+# Fuhr & Deters 1996: (air wavelength, E_low in eV, 2J+1 above, A).
+FORBIDDEN = {
+    ("O", 1): [
+        (6300.304, 0.0, 5, 5.65e-3), (6363.776, 0.020, 5, 1.82e-3), (5577.339, 1.967, 1, 1.26),
+    ],
+    ("C", 1): [(8727.13, 1.264, 1, 0.599)],
+}
 PUBLISHED = {
     ("Fe", 3): [
         (4395.755, 8.256, -2.595), (4419.596, 8.241, -2.218), (4431.019, 8.248, -2.572),

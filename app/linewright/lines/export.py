@@ -6,8 +6,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from ..spectra.medium import to_medium
+from ..errors import InputRefused
+from ..spectra.medium import from_medium, to_medium
 from .catalogue import ORIGINS, LineCatalogue
+from .depths import catalogue_depths
 
 if TYPE_CHECKING:
     from astropy.table import Table
@@ -29,6 +31,11 @@ _COLUMNS = (
     ("depth_ref", None, "telluric optical depth at line centre, air mass 1"),
 )
 
+_FORMATS = {
+    "wave": ".4f", "wave_err": ".4f", "e_low": ".4f", "loggf": ".3f", "loggf_err": ".2f",
+    "spread": ".4f", "emission": ".2f", "depth_ref": ".4f",
+}
+
 
 def _values(catalogue: LineCatalogue, medium: str) -> dict[str, np.ndarray]:
     named = {
@@ -40,14 +47,48 @@ def _values(catalogue: LineCatalogue, medium: str) -> dict[str, np.ndarray]:
     return {name: named.get(name, getattr(catalogue, name)) for name, _, _ in _COLUMNS}
 
 
-def catalogue_table(
-    catalogue: LineCatalogue, medium: str = "air", depth: np.ndarray | None = None
-) -> Table:
-    """Astropy table of a catalogue, unknown numbers masked.
+def select_lines(catalogue: LineCatalogue, wave_range, medium: str, species=()) -> LineCatalogue:
+    """Rows with wave_range[0] <= wave <= wave_range[1] in ``medium`` and of the named species.
 
-    medium: 'air' or 'vacuum', of the column ``wave``; depth: optional predicted central
-    depths, one per line, added as a last column.
+    wave_range None and empty species leave everything; species are canonical names.
     """
+    if wave_range is not None:
+        low, high = (float(from_medium(edge, medium)) for edge in wave_range)
+        catalogue = catalogue.between(low, high)
+    if species:
+        wanted = [k for k, name in enumerate(catalogue.species_names) if name in set(species)]
+        catalogue = catalogue.take(np.isin(catalogue.species, wanted))
+    return catalogue
+
+
+def catalogue_table(
+    catalogue: LineCatalogue,
+    wave_range: tuple[float, float] | None = None,
+    medium: str = "air",
+    species: tuple[str, ...] = (),
+    depth_above: float | None = None,
+    temperature: float | None = None,
+) -> Table:
+    """Astropy table of lines in a range, unknown numbers masked.
+
+    wave_range in ``medium`` ('air' or 'vacuum', also of the column ``wave``); species:
+    canonical names, all when empty; temperature (K) adds a column of predicted depths, and
+    depth_above keeps only lines predicted deeper (it needs a temperature).
+    Raises InputRefused for depth_above without temperature.
+    """
+    if depth_above is not None and temperature is None:
+        raise InputRefused("depth above", "depths need a temperature", "give the temperature in K")
+    lines = select_lines(catalogue, wave_range, medium, species)
+    depth = None
+    if temperature is not None:
+        depth = catalogue_depths(lines, temperature)
+        if depth_above is not None:
+            keep = np.nan_to_num(depth, nan=-1.0) > depth_above
+            lines, depth = lines.take(keep), depth[keep]
+    return _table(lines, medium, depth)
+
+
+def _table(catalogue: LineCatalogue, medium: str, depth: np.ndarray | None) -> Table:
     from astropy.table import MaskedColumn, Table
 
     table = Table(meta={"medium": medium, "catalogue": catalogue.identity})
@@ -57,10 +98,10 @@ def catalogue_table(
         numeric = column.dtype.kind == "f"
         mask = ~np.isfinite(column) if numeric else np.zeros(len(column), bool)
         table[name] = MaskedColumn(column, mask=mask, unit=unit, description=description)
-    for name, digits in (("wave", ".4f"), ("wave_err", ".4f"), ("e_low", ".4f"), ("loggf", ".3f")):
+    for name, digits in _FORMATS.items():
         table[name].info.format = digits
     if depth is not None:
-        column = MaskedColumn(depth, mask=~np.isfinite(depth), description="predicted depth")
-        table["depth"] = column
+        description = "predicted central depth at the temperature asked for"
+        table["depth"] = MaskedColumn(depth, mask=~np.isfinite(depth), description=description)
         table["depth"].info.format = ".3f"
     return table

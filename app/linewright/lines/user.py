@@ -30,14 +30,14 @@ class UserCatalogue:
     problems: tuple[str, ...]
 
 
-def read_user_catalogue(
-    path: str | Path, medium: str = "unknown", *, source: str = "user", origin: str = "stellar"
+def read_user_rows(
+    path: str | Path, medium: str = "unknown", source: str = "user", origin: str = "stellar"
 ) -> UserCatalogue:
-    """Lines of a CSV or ECSV file.
+    """Usable lines of a CSV or ECSV file, and what is wrong with the other rows.
 
     medium: 'air' or 'vacuum' of the column ``wave``; 'unknown' asks the file's metadata
     entry ``medium``. Raises InputRefused where the medium stays unknown, a required column
-    is missing or no row can be used. No row is dropped silently: see ``problems``.
+    is missing or no row can be used.
     """
     table = _read_table(Path(path))
     medium = _medium(path, medium, table.meta)
@@ -52,6 +52,27 @@ def read_user_catalogue(
     )
 
 
+def read_user_catalogue(paths, medium: str = "unknown") -> LineCatalogue:
+    """The lines of one or several user files as one catalogue.
+
+    paths: a path or a sequence of paths; medium as in ``read_user_rows``. A file with bad
+    rows is refused with their numbers (InputRefused), so that none is dropped silently.
+    """
+    paths = [paths] if isinstance(paths, (str, Path)) else list(paths)
+    merged = None
+    for path in paths:
+        found = read_user_rows(path, medium, source=f"user:{Path(path).name}")
+        if found.problems:
+            shown = "; ".join(found.problems[:5])
+            more = len(found.problems) - 5
+            shown += f"; and {more} more" if more > 0 else ""
+            raise InputRefused(path, shown, "correct or delete these rows")
+        merged = found.catalogue if merged is None else merge_catalogues(merged, found.catalogue)
+    if merged is None:
+        raise InputRefused("catalogue", "no file named", _CURE)
+    return merged
+
+
 def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalogue:
     """All rows of both, sorted by wavelength; names and sources joined."""
     names = {name: k for k, name in enumerate(first.species_names)}
@@ -59,13 +80,12 @@ def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalog
     species = np.array([names.setdefault(n, len(names)) for n in second.species_names], int)
     sources = np.array([keys.setdefault(n, len(keys)) for n in second.source_keys], int)
     order = np.argsort(np.concatenate([first.wave, second.wave]), kind="stable")
+    recoded = {"species": species, "source": sources}
     columns = {}
     for name, values in vars(first).items():
         if isinstance(values, np.ndarray):
             other = getattr(second, name)
-            other = {"species": species, "source": sources}.get(name, np.arange(0))[other] if (
-                name in ("species", "source")
-            ) else other
+            other = recoded[name][other] if name in recoded else other
             columns[name] = np.concatenate([values, other])[order].astype(values.dtype)
     return LineCatalogue(
         **columns,

@@ -1,0 +1,87 @@
+"""Telluric lines against the Sun's spectrum through the Earth's air and broad-band depths.
+
+Sources: O2 gamma band of the solar spectrum beside the checkout (Gaia-ESO reference; stellar
+rest frame, so the band stands at an unknown shift); strengths of HITRAN 2004 (Rothman et al.
+2005); direct-beam transmission of ASTM G173-03 at 761 and 687 nm, 0.115 and 0.600.
+"""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from linewright.lines.loading import load_catalogue
+from linewright.spectra.medium import vacuum_to_air
+
+SUN = Path(__file__).resolve().parents[2].parent / "shared" / "spectra" / "sun_r47000.txt"
+C_KM_S = 299792.458
+
+
+@pytest.fixture(scope="module")
+def telluric():
+    return load_catalogue(origins="telluric")
+
+
+def gas(catalogue, name, low, high):
+    air = vacuum_to_air(catalogue.wave)
+    mine = (catalogue.species == catalogue.species_names.index(name)) & (air > low) & (air < high)
+    return air[mine], catalogue.depth_ref[mine]
+
+
+@pytest.mark.skipif(not SUN.is_file(), reason="the solar spectrum is not beside this checkout")
+def test_oxygen_lines_of_the_sun_line_up_within_20_mA(telluric):
+    """Lines deeper than 0.5 at 6287-6312 A, two solar blends (6298.46, 6302.00) left out."""
+    air, depth = gas(telluric, "O2", 6287.0, 6312.0)
+    chosen = air[(depth > 0.5) & (np.abs(air - 6298.457) > 0.1) & (np.abs(air - 6302.0) > 0.1)]
+    wave, flux = np.loadtxt(SUN).T
+    shifts = np.arange(-60.0, 60.0, 0.25)
+    found = [np.median(np.interp(chosen * (1 + v / C_KM_S), wave, flux)) for v in shifts]
+    best = shifts[int(np.argmin(found))]
+    offsets = []
+    for line in chosen * (1 + best / C_KM_S):
+        near = np.abs(wave - line) < 0.08
+        offsets.append(wave[near][np.argmin(flux[near])] - line)
+    assert len(chosen) >= 10
+    assert min(found) < 0.82
+    assert np.median(np.abs(offsets)) < 0.006
+    assert np.abs(offsets).max() < 0.020
+
+
+@pytest.mark.skipif(not SUN.is_file(), reason="the solar spectrum is not beside this checkout")
+def test_deeper_oxygen_lines_are_deeper_in_the_sun(telluric):
+    air, depth = gas(telluric, "O2", 6287.0, 6312.0)
+    use = (depth > 0.2) & (np.abs(air - 6298.457) > 0.1) & (np.abs(air - 6302.0) > 0.1)
+    wave, flux = np.loadtxt(SUN).T
+    shifted = air[use] * (1 - 24.5 / C_KM_S)
+    seen = [1 - flux[np.abs(wave - line) < 0.05].min() for line in shifted]
+    ranks = [np.argsort(np.argsort(values)) for values in (depth[use], seen)]
+    assert np.corrcoef(*ranks)[0, 1] > 0.9
+
+
+def band_transmission(telluric, low, high, step=0.002):
+    """Mean transmission of O2 with pressure-broadened lines, half width 0.03 cm-1."""
+    air, depth = gas(telluric, "O2", low - 20, high + 20)
+    grid = np.arange(low, high, step)
+    tau = np.zeros_like(grid)
+    for line, peak in zip(air, depth, strict=True):
+        width = 0.03 * line**2 * 1e-8
+        tau += peak / (1 + ((grid - line) / width) ** 2)
+    return float(np.exp(-tau).mean())
+
+
+def test_oxygen_bands_within_a_factor_1_5_of_astm_g173(telluric):
+    """Equivalent optical depth of 1-nm bins centred on 761 and 687 nm (vacuum in the standard
+    to within the bin), air mass 1.5."""
+    for centre, published in ((7610.0, 0.115), (6875.0, 0.600)):
+        found = 1.0 - band_transmission(telluric, centre - 5, centre + 5)
+        assert found / (1.0 - published) == pytest.approx(1.0, rel=0.5)
+
+
+@pytest.mark.parametrize(
+    ("low", "high"), [(5880, 6000), (6460, 6600), (7160, 7340), (8120, 8350), (9000, 9800)]
+)
+def test_water_where_the_literature_puts_it(telluric, low, high):
+    _, depth = gas(telluric, "H2O", low, high)
+    assert (depth > 0.02).sum() >= 10

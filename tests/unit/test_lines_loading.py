@@ -1,0 +1,140 @@
+"""The shipped catalogue as loaded: shape, order, identity, speed; tables against the manifest."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import os
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from linewright.errors import InputRefused
+from linewright.lines.catalogue import ORIGINS
+from linewright.lines.citations import bibtex, citation
+from linewright.lines.loading import LINE_TABLES, load_catalogue
+from linewright.lines.species import parse_species
+from linewright.lines.strengths import absorption_strength
+from linewright.resources import tables_dir
+
+ROOT = Path(__file__).resolve().parents[2]
+SOURCES = os.environ.get("LINEWRIGHT_SOURCES", "")
+
+
+@pytest.fixture(scope="module")
+def catalogue():
+    return load_catalogue()
+
+
+def test_sorted_finite_and_of_equal_length(catalogue):
+    assert np.all(np.diff(catalogue.wave) >= 0)
+    for name, values in vars(catalogue).items():
+        if isinstance(values, np.ndarray):
+            assert len(values) == len(catalogue), name
+    assert np.isfinite(catalogue.wave).all()
+    assert (catalogue.wave_err > 0).all() and np.isfinite(catalogue.wave_err).all()
+    assert (catalogue.spread >= 0).all()
+    assert catalogue.wave[0] > 1150 and catalogue.wave[-1] < 25001
+
+
+def test_every_origin_has_what_it_needs(catalogue):
+    origin = np.array(ORIGINS)[catalogue.origin]
+    assert set(origin) >= {"stellar", "nebular", "telluric", "interstellar", "sky"}
+    assert np.isfinite(catalogue.loggf[origin == "stellar"]).all()
+    assert np.isfinite(catalogue.e_low[origin == "stellar"]).all()
+    assert np.isfinite(catalogue.emission[origin == "nebular"]).all()
+    assert (catalogue.depth_ref[origin == "telluric"] > 0).all()
+    assert not np.isfinite(catalogue.loggf[origin == "telluric"]).any()
+
+
+def test_species_names_are_canonical_and_used(catalogue):
+    for name in catalogue.species_names:
+        assert str(parse_species(name)) == name
+    assert set(catalogue.species) == set(range(len(catalogue.species_names)))
+
+
+def test_no_line_is_entered_twice(catalogue):
+    """Same origin and species, E_low within 1 meV and wavelength within 1 mA."""
+    order = np.lexsort((catalogue.wave, catalogue.species, catalogue.origin))
+    same = (np.diff(catalogue.species[order]) == 0) & (np.diff(catalogue.origin[order]) == 0)
+    near = np.diff(catalogue.wave[order]) < 0.001
+    level = ~(np.abs(np.diff(catalogue.e_low[order])) > 0.001)
+    assert np.flatnonzero(same & near & level).tolist() == []
+
+
+def test_arrays_are_read_only_and_shared(catalogue):
+    assert load_catalogue() is catalogue
+    with pytest.raises(ValueError, match="read-only"):
+        catalogue.wave[0] = 1.0
+
+
+def test_selection_by_origin_and_table(catalogue):
+    sky = load_catalogue(origins=("sky", "telluric"))
+    assert 0 < len(sky) < len(catalogue)
+    assert set(np.array(ORIGINS)[sky.origin]) == {"sky", "telluric"}
+    parts = [load_catalogue(name) for name in LINE_TABLES]
+    assert sum(len(part) for part in parts) == len(catalogue)
+    assert {part.identity for part in parts} == {catalogue.identity}
+
+
+def test_unknown_origin_and_table_are_refused():
+    with pytest.raises(InputRefused):
+        load_catalogue(origins=("lunar",))
+    with pytest.raises(InputRefused):
+        load_catalogue("everything")
+
+
+def test_every_source_has_a_citation_and_a_bibtex_entry(catalogue):
+    for key in catalogue.source_keys:
+        assert citation(key) != key
+        assert f"{{{key}," in bibtex([key])
+
+
+def test_a_users_own_source_is_its_own_citation():
+    assert citation("user:mine.csv") == "user:mine.csv" and bibtex(["user:mine.csv"]) == ""
+
+
+def test_strengths_of_all_lines_take_milliseconds(catalogue):
+    absorption_strength(catalogue, 5000.0, 1.0)
+    start = time.perf_counter()
+    strength = absorption_strength(catalogue, 5777.0, 1.2)
+    assert time.perf_counter() - start < 0.25
+    assert strength.shape == (len(catalogue),)
+    assert np.isfinite(strength[catalogue.origin == ORIGINS.index("stellar")]).all()
+    assert np.isnan(strength[np.isnan(catalogue.loggf)]).all()
+
+
+def test_metallicity_and_abundance_shift_what_they_should(catalogue):
+    names = [catalogue.species_names.index(n) for n in ("Fe I", "Ba II", "H I")]
+    base = absorption_strength(catalogue, 5000.0, 1.0)
+    poor = absorption_strength(catalogue, 5000.0, 1.0, -1.0, {"Ba": 0.7})
+    for code, shift in zip(names, (-1.0, -0.3, 0.0), strict=True):
+        mine = (catalogue.species == code) & np.isfinite(base)
+        assert (poor - base)[mine] == pytest.approx(shift, abs=1e-9)
+
+
+def test_tables_are_the_ones_in_the_manifest():
+    folder = tables_dir()
+    manifest = json.loads((folder / "manifest.json").read_text())
+    shipped = {path.name for path in folder.iterdir()} - {"manifest.json"}
+    assert shipped == set(manifest)
+    for name, entry in manifest.items():
+        data = (folder / name).read_bytes()
+        assert hashlib.sha256(data).hexdigest() == entry["sha256"], name
+    assert sum(entry["bytes"] for entry in manifest.values()) < 15e6
+
+
+@pytest.mark.timeout(300)
+@pytest.mark.skipif(not SOURCES, reason="LINEWRIGHT_SOURCES names no folder of source packages")
+@pytest.mark.parametrize("builder", ["level_physics", "hydrogen_helium", "citations"])
+def test_rebuilding_gives_the_same_bytes(builder, tmp_path):
+    script = ROOT / "linedata" / "builders" / f"{builder}.py"
+    command = [sys.executable, str(script), SOURCES, "--out", str(tmp_path)]
+    subprocess.run(command, check=True, capture_output=True)
+    rebuilt = json.loads((tmp_path / "manifest.json").read_text())
+    manifest = json.loads((tables_dir() / "manifest.json").read_text())
+    assert rebuilt and all(manifest[name] == entry for name, entry in rebuilt.items())
