@@ -73,12 +73,12 @@ def _weigh(bench, desk, before, row, number: int) -> None:
     bench.tasks.start(Request(
         key=f"weigh {number}", title="Weighing", shown=False,
         work=lambda progress: _call(engine, "weighed", arguments),
-        done=lambda claim: _weighed(desk, number, claim),
+        done=lambda claim: _weighed(bench, desk, number, claim),
         failed=lambda error: _failed(bench, error),
     ))
 
 
-def _weighed(desk, number: int, claim) -> None:
+def _weighed(bench, desk, number: int, claim) -> None:
     """Part of the pick's own step where nothing was done since, else a step of its own."""
     from ...job.view_pick import with_claim
 
@@ -86,10 +86,15 @@ def _weighed(desk, number: int, claim) -> None:
     if number not in session.features.number:
         return
     new = with_claim(session, number, claim)
-    last = session.history[-1] if session.history else None
-    if last is not None and last.action == "add_feature" and new is not session:
+    if new is session:
+        return
+    selected = bench.view.now.selected
+    still_last = session.history[-1].action == "add_feature"
+    if still_last:
         desk.document.undo()
-    desk.document.replace(new, "add feature" if last and last.action == "add_feature" else "weigh")
+    desk.document.replace(new, "add feature" if still_last else "weigh")
+    if desk is bench.desk:
+        bench.view.select(selected)
 
 
 def _already(session, row) -> int | None:
