@@ -107,6 +107,19 @@ def test_nothing_is_drawn_across_a_gap_or_a_mask(view):
     assert inked(5041, 5059) == 0.0 and inked(5011, 5019) == 0.0
 
 
+def test_a_spectrum_prepared_in_a_worker_looks_the_same(view):
+    from concurrent.futures import ThreadPoolExecutor
+
+    long = scenes.spectrum(samples=700_000, dips=DIPS)
+    view.set_spectrum(long)
+    plain = scenes.pixels(view.plot)
+    with ThreadPoolExecutor(1) as pool:
+        prepared = pool.submit(SpectrumView.prepare, long).result()
+    view.set_spectrum(scenes.spectrum())
+    view.set_spectrum(long, prepared)
+    assert np.array_equal(scenes.pixels(view.plot), plain)
+
+
 def test_view_is_in_the_own_medium_and_reported(view, qtbot):
     assert view.axis.title() == "wavelength in air (Å)"
     low, high = view.view()
@@ -339,6 +352,12 @@ def test_context_bracket_drags_the_view(view, qtbot):
     qtbot.mouseRelease(view.strip, Qt.MouseButton.LeftButton, pos=end - QPoint(40, 0))
     assert view.view()[0] == pytest.approx(low)
     assert view.view()[1] < 5060 + shift
+
+
+def test_keys_on_the_context_strip_move_the_view(view, qtbot):
+    view.set_view(5040, 5060)
+    qtbot.keyClick(view.strip, Qt.Key.Key_Right)
+    assert view.view() == pytest.approx((5042, 5062))
 
 
 def test_an_empty_view_says_what_to_do(qtbot):

@@ -170,6 +170,15 @@ QMenu::separator { height: 1px; background: $edge; margin: 4px 8px; }
 QPushButton, QToolButton, QComboBox {
     background: $raised; border: 1px solid $edge; border-radius: 4px; padding: 4px 12px; }
 QToolButton { padding: 4px 6px; }
+QComboBox::drop-down { border: 0; width: 20px; }
+QComboBox::down-arrow { width: 0; height: 0; border-left: 4px solid $raised;
+    border-right: 4px solid $raised; border-top: 5px solid $muted; }
+QCheckBox::indicator, QRadioButton::indicator, QAbstractItemView::indicator {
+    width: 12px; height: 12px; border: 1px solid $muted; background: $raised; }
+QCheckBox::indicator, QAbstractItemView::indicator { border-radius: 3px; }
+QRadioButton::indicator { border-radius: 7px; }
+QCheckBox::indicator:checked, QRadioButton::indicator:checked,
+QAbstractItemView::indicator:checked { background: $accent; border: 1px solid $ink; }
 QPushButton:hover, QToolButton:hover, QComboBox:hover { border-color: $accent; }
 QPushButton:pressed, QToolButton:pressed, QToolButton:checked, QPushButton:checked {
     background: $accent; color: $accent_ink; }

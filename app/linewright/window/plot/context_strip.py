@@ -76,7 +76,8 @@ class ContextStrip(Lane):
         shade = QColor(accent)
         shade.setAlpha(50)
         foot = self.height() - _HEAT - 3
-        painter.fillRect(QRectF(left, 2, right - left, foot - 2), shade)
+        if right - left < self.whole_scale().width:
+            painter.fillRect(QRectF(left, 2, right - left, foot - 2), shade)
         painter.setPen(QPen(accent, 1.6))
         for x, inward in ((left, 5), (right, -5)):
             painter.drawLine(int(x), 2, int(x), foot)

@@ -9,7 +9,7 @@ from PySide6.QtGui import QColor, QPainter, QPen
 
 from ...spectra.medium import to_medium
 from ...spectra.spectrum import Segment, Spectrum
-from .extremes import Columns, Extremes, PixelScale
+from .extremes import PYRAMID_ABOVE, Columns, Extremes, PixelScale
 from .geometry import Frame
 from .primitives import draw_lines, draw_polyline
 
@@ -54,6 +54,13 @@ class SpectrumItem:
         ]
         self._segments = spectrum.segments
         self._bands: list[tuple[Extremes, Extremes] | None] | None = None
+
+    def prepared(self) -> SpectrumItem:
+        """Itself, with the pyramids that long segments will need."""
+        for part in self.parts:
+            if len(part.x) > PYRAMID_ABOVE:
+                part.build_pyramid()
+        return self
 
     @property
     def samples(self) -> int:

@@ -50,9 +50,21 @@ class SpectrumView(QWidget):
         self.plot.pickRequested.connect(self._pick)
         self._session: Session | None = None
 
-    def set_spectrum(self, spectrum: Spectrum | None) -> None:
-        """Show a spectrum whole; None empties the view. The session is removed."""
-        item = None if spectrum is None else SpectrumItem(spectrum)
+    @staticmethod
+    def prepare(spectrum: Spectrum) -> SpectrumItem:
+        """The slow part of ``set_spectrum`` for millions of samples; safe in a worker."""
+        return SpectrumItem(spectrum).prepared()
+
+    def set_spectrum(
+        self, spectrum: Spectrum | None, prepared: SpectrumItem | None = None
+    ) -> None:
+        """Show a spectrum whole; None empties the view. The session is removed.
+
+        prepared: what ``prepare`` made of this spectrum, where it was called before.
+        """
+        item = prepared
+        if item is None and spectrum is not None:
+            item = SpectrumItem(spectrum)
         self.plot.set_item(item, "" if spectrum is None else spectrum.flux_unit)
         self.strip.set_item(item)
         if spectrum is None:
