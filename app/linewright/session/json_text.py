@@ -67,8 +67,17 @@ def _part(value) -> str:
 
 
 def parse(text: str):
-    """Plain data of JSON text; ValueError for NaN literals, repeated keys or broken text."""
-    return json.loads(text, parse_constant=_refuse, object_pairs_hook=_once)
+    """Plain data of JSON text.
+
+    ValueError for NaN literals, repeated keys, integers beyond 64 bits or broken text.
+    """
+    return json.loads(text, parse_constant=_refuse, parse_int=_integer, object_pairs_hook=_once)
+
+
+def _integer(text: str) -> int:
+    if len(text) > 18:
+        raise ValueError("an integer is too large")
+    return int(text)
 
 
 def _refuse(name: str):
