@@ -18,13 +18,16 @@ def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
     count = max(1, int(round((wave[-1] - wave[0]) / size)))
     edges = np.searchsorted(wave, np.linspace(wave[0], wave[-1], count + 1))
     edges[-1] = len(wave)
+    least = max(least, 0.4 * good.sum() / count)
     blocks = []
     start = 0
     for stop in edges[1:]:
-        if good[start:stop].sum() >= least or stop == edges[-1]:
-            if stop > start and good[start:stop].any():
-                blocks.append(slice(int(start), int(stop)))
+        if good[start:stop].sum() >= least:
+            blocks.append(slice(int(start), int(stop)))
             start = stop
+    if not blocks:
+        return [slice(0, len(wave))]
+    blocks[-1] = slice(blocks[-1].start, len(wave))
     return blocks
 
 

@@ -103,8 +103,9 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
         pixels = width / np.gradient(wave)
         if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
-            longest = max(1.0, float(np.median(pixels[good])) / 3.0)
-            noise = estimate_noise(y, good, runs, quiet, longest)
+            sure = bool(quiet[good].mean() > 0.6)
+            longest = max(1.0, float(np.median(pixels[good])) / (1.0 if sure else 3.0))
+            noise = estimate_noise(y, good, runs, quiet, longest, sure)
             noise = replace(noise, sigma=noise.sigma * run)
     under = _veil(y, relative, runs, pixels, _length(noise))
     trace = Trace(wave, y, relative, good, width, np.interp(wave, centre, error),

@@ -83,7 +83,7 @@ def fit_windows(windows: Windows, start, low, high, rounds: int = 25) -> Fit:
         )
         chi2[yes] = new[better]
         damping[on] = np.where(better, damping[on] * 0.2, damping[on] * 8.0)
-        done = better & (gained < 1e-4 * (1.0 + 1e-3 * new)) | (damping[on] > 1e7)
+        done = (np.abs(gained) < 1e-3 * (1.0 + 1e-3 * new)) | (damping[on] > 1e6)
         active[on[done]] = False
     return Fit(params, _inverse(matrix), chi2, ~active)
 

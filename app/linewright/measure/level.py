@@ -72,13 +72,22 @@ def score_levels(samples, levels, sigma, weight) -> np.ndarray:
     return fit - EMISSION_COST * lifted
 
 
-def block_levels(samples, sigma, weight):
-    """(levels, one sigma), each (b,), of b blocks.
+def block_levels(samples, sigma, weight, together: int = 8):
+    """(levels, one sigma), each (b,), of b blocks, ``together`` at a time to stay in cache.
 
     samples: sorted quantiles of each block, (b, q); sigma: (b,); weight: (b,) as in
     ``score_levels``. First the quantiles themselves are tried, then a fine grid about
     the best.
     """
+    parts = [
+        _few_levels(samples[i : i + together], sigma[i : i + together], weight[i : i + together])
+        for i in range(0, len(samples), together)
+    ]
+    levels, errors = zip(*parts, strict=True)
+    return np.concatenate(levels), np.concatenate(errors)
+
+
+def _few_levels(samples, sigma, weight):
     probe = (np.linspace(0.05, 0.98, 24) * samples.shape[1]).astype(int)
     tried = samples[:, probe]
     best = np.argmax(score_levels(samples, tried, sigma, weight), axis=1)

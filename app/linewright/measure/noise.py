@@ -20,6 +20,7 @@ import numpy as np
 MAD = 1.482602
 LAGS = tuple(range(1, 17))
 PLATEAU = 0.9
+STILL = 1.2  # rise beyond the plateau that correlation alone may bring
 
 
 def der_snr(flux) -> tuple[float, float]:
@@ -102,6 +103,19 @@ def plateau(profile: np.ndarray, longest: float) -> int:
     return 1
 
 
+def settled(profile: np.ndarray, lag: int) -> int:
+    """Up to twice the plateau's first lag, where samples are surely independent.
+
+    Only where D_k stays put on the way: a further rise is the work of lines.
+    """
+    if lag == 1:
+        return 1
+    for later in range(min(2 * lag, LAGS[-1]), lag, -1):
+        if np.max(profile[lag:later]) <= STILL * profile[lag - 1]:
+            return later
+    return lag
+
+
 def correlation_from(profile: np.ndarray, lag: int) -> np.ndarray:
     """Autocorrelation r_0..r_lag from D_k by r_k = (6 - 6 (D_k/D_lag)^2 + 2 r_2k) / 8."""
     if lag == 1:
@@ -114,12 +128,13 @@ def correlation_from(profile: np.ndarray, lag: int) -> np.ndarray:
     return r[:lag]
 
 
-def estimate_noise(flux, good, runs, quiet=None, longest=16.0) -> Noise:
+def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> Noise:
     """Local noise of one segment.
 
     flux: any unit, shape (n,); good: usable samples; runs: slices without gaps;
     quiet: samples free of features (None at first: all); longest: largest lag allowed
-    in samples (a third of the line width: beyond, lines look like noise).
+    in samples (a part of the line width: beyond, lines look like noise); sure: enough
+    is quiet to follow the correlation further.
     """
     free = good if quiet is None else good & quiet
     profile = quiet_profile(flux, free, runs)
@@ -127,6 +142,8 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0) -> Noise:
         profile = quiet_profile(flux, good, runs)
         free = good
     lag = plateau(profile, longest)
+    if sure:
+        lag = settled(profile, lag)
     correlation = correlation_from(profile, lag)
     sigma = _local(_values(flux, free, runs, lag, profile), flux, lag)
     if free is not good:

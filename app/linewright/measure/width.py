@@ -66,11 +66,12 @@ def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
     """
     step = np.gradient(wave)
     tables = []
-    for lag in LAGS:
+    lags = [lag for lag in LAGS if lag >= len(correlation)]  # nearer samples share noise
+    for lag in lags:
         size = max(64, 40 * lag)
         parts = [block_widths(y, noise, good, r, correlation, lag, size) for r in runs]
         tables.append(np.concatenate(parts))
-    share = np.array([len(t) * max(64, 40 * lag) for t, lag in zip(tables, LAGS)])
+    share = np.array([len(t) * max(64, 40 * lag) for t, lag in zip(tables, lags, strict=True)])
     if share.max() == 0 or max(len(t) for t in tables) < 3:
         return None
     # the shortest lag at which most of the blocks rise above the noise
