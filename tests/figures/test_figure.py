@@ -149,6 +149,10 @@ def test_a_line_seen_in_two_orders_is_named_once():
 def test_a_feature_table_is_drawn_as_sticks(made):
     drawn, report = figure.draw_figure(made, None, FigureStyle())
     assert report.shown > 20 and drawn.axes[0].get_ylabel() == "1 - depth"
+    unknown = replace(made.features, depth=np.full(len(made.features), np.nan))
+    drawn, _ = figure.draw_figure(replace(made, features=unknown), None, FigureStyle())
+    axes = drawn.axes[0]
+    assert axes.get_ylabel() == "depths not given" and len(axes.get_yticks()) == 0
 
 
 @pytest.mark.parametrize(

@@ -76,6 +76,7 @@ class _Page:
         self.pitch = pitch
         self.figure = Figure(figsize=(style.width_pt / 72.0, self.height / 72.0))
         FigureCanvasAgg(self.figure)
+        self.depths = bool(np.isfinite(session.features.depth).any())
         self.power = 0 if spectrum is None else _power(spectrum)
         self.shown = self.left_out = 0
 
@@ -112,6 +113,8 @@ class _Page:
         axes.set_xlim(row.low, row.high)
         axes.set_ylim(row.floor, row.ceiling)
         _dress(axes, style)
+        if self.spectrum is None and not self.depths:
+            axes.set_yticks([])
         name = {"fontsize": style.type_size, "fontfamily": FONT}
         axes.set_ylabel(self._flux_name(), labelpad=3.0, **name)
         axes.yaxis.set_label_coords(-(LEFT - style.type_size - 3.0) / row.width, 0.5)
@@ -121,7 +124,7 @@ class _Page:
 
     def _flux_name(self) -> str:
         if self.spectrum is None:
-            return "1 - depth"
+            return "1 - depth" if self.depths else "depths not given"
         unit = self.session.spectrum.flux_unit
         power = f"10{str(self.power).translate(SUPERSCRIPTS)}" if self.power else ""
         factor = " ".join(part for part in (power, unit if len(unit) < 24 else "") if part)
