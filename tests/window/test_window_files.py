@@ -250,3 +250,19 @@ def test_a_file_is_read_another_way(window, qtbot, tmp_path):
     window.ask_bar.edit.setText("colums 3")
     window.ask_bar.edit.returnPressed.emit()
     assert "not understood" in window.notices.current.text
+
+
+def test_nothing_is_saved_among_the_samples(solved, tmp_path):
+    from dataclasses import replace
+
+    from linewright.resources import samples_dir
+    from linewright.window import layout_memory as memory
+    from linewright.window.acts import saving
+
+    desk = solved.bench.desk
+    session = desk.document.session
+    sample = replace(session, spectrum=replace(
+        session.spectrum, path=str(samples_dir() / "a_star.txt.gz")))
+    desk.document.replace(sample, "test")
+    memory.keep("save folder", str(tmp_path))
+    assert saving.suggested(solved.bench, ".ecsv") == str(tmp_path / "a_star.ecsv")

@@ -19,7 +19,7 @@ def test_the_ledger_lists_every_feature_in_own_medium(solved):
     texts = shown_texts(solved.ledger, 0)
     wave = to_medium(session.features.wave, "air")
     assert len(texts) == len(session.features)
-    assert texts[0].startswith(f"{wave[0]:.3f} ± 0.003")
+    assert texts[0].startswith(f"{wave[0]:.4f} ± 0.0030")
 
 
 def test_ledger_filters_by_text_standing_and_species(solved, qtbot):

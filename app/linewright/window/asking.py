@@ -27,7 +27,10 @@ class Questions:
 
     def _ask_path(self, title: str, suggestion: str, kinds: str) -> Path | None:
         name, _kind = QFileDialog.getSaveFileName(self, title, suggestion, kinds)
-        return Path(name) if name else None
+        if not name:
+            return None
+        memory.keep("save folder", str(Path(name).parent))
+        return Path(name)
 
     def save(self) -> None:
         if self.bench.desk.path is None:

@@ -33,7 +33,7 @@ def style_of(theme: Theme) -> str:
 QPushButton#primary {{ background: {t.accent}; color: {t.accent_ink}; border-color: {t.accent};
     padding: 6px 16px; }}
 QPushButton#act {{ padding: 4px 1px; }}
-QPushButton#sample {{ text-align: left; padding: 8px 12px; }}
+QPushButton#sample {{ text-align: left; padding: 5px 12px; }}
 QTableView::item {{ padding: 0 7px; }}
 QTableView {{ alternate-background-color: {t.window}; }}
 """

@@ -9,7 +9,6 @@ from pathlib import Path
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import (
     QFrame,
-    QGridLayout,
     QHBoxLayout,
     QLabel,
     QPushButton,
@@ -28,6 +27,7 @@ class Sample:
 
     path: Path
     title: str
+    description: str
     medium: str
 
 
@@ -38,7 +38,8 @@ def samples() -> list[Sample]:
         listed = json.loads((folder / "samples.json").read_text("utf-8"))
     except (LinewrightError, OSError, ValueError):
         return []
-    found = [Sample(folder / s["file"], str(s.get("title", s["file"])), str(s.get("medium", "")))
+    found = [Sample(folder / s["file"], *(str(s.get(k, "")) for k in (
+                 "title", "description", "medium")))
              for s in listed if isinstance(s, dict) and "file" in s]
     return [s for s in found if s.path.is_file()]
 
@@ -85,16 +86,16 @@ class WelcomePage(QWidget):
         heading.setObjectName("heading")
         box.addSpacing(8)
         box.addWidget(heading)
-        grid = QGridLayout()
-        grid.setSpacing(6)
-        for k, sample in enumerate(known):
-            button = QPushButton(sample.title)
+        column = QVBoxLayout()
+        column.setSpacing(4)
+        for sample in known:
+            button = QPushButton(f"{sample.title}\n{sample.description}")
             button.setObjectName("sample")
             button.setToolTip(f"{sample.path.name} · wavelengths in {sample.medium}")
             button.clicked.connect(lambda _checked, p=sample.path: self.opened.emit(str(p)))
             self.buttons.append(button)
-            grid.addWidget(button, k // 2, k % 2)
-        box.addLayout(grid)
+            column.addWidget(button)
+        box.addLayout(column)
         box.addSpacing(8)
         box.addWidget(_quiet("Then F5 solves, a click on a feature explains it, Ctrl+S saves. "
                              "Ctrl+Shift+P finds any command, F1 explains all of them."))

@@ -134,6 +134,7 @@ def _show(bench, opened: Opened) -> None:
     for warning in session.warnings:
         bench.notify(Notice(warning, "warning", topic=warning[:40]))
     ask_medium(bench)
+    bench.window.spectrum_view.setFocus()
 
 
 def ask_medium(bench) -> None:

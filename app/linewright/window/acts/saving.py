@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 from ...errors import LinewrightError
+from ...resources import samples_dir
+from .. import layout_memory as memory
 from ..notices import Notice
 from ..tasks import Request
 
@@ -20,7 +23,19 @@ def suggested(bench, suffix: str) -> str:
     stem = at.name
     for ending in (SUFFIX, ".gz", ".fits", ".fit", ".txt", ".csv", ".ecsv", ".dat"):
         stem = stem.removesuffix(ending)
-    return str(at.parent / f"{stem}{suffix}")
+    return str(_folder(at.parent) / f"{stem}{suffix}")
+
+
+def _folder(beside: Path) -> Path:
+    """Beside the spectrum, except where nothing should or can be written."""
+    try:
+        shipped = beside.is_relative_to(samples_dir())
+    except LinewrightError:
+        shipped = False
+    if beside.is_dir() and os.access(beside, os.W_OK) and not shipped:
+        return beside
+    kept = Path(str(memory.recall("save folder", "")))
+    return kept if kept.is_dir() and kept != Path() else Path.home()
 
 
 def save(bench, path: Path | None = None, then=lambda: None) -> None:

@@ -16,6 +16,7 @@ class LedgerArrays:
     def __init__(self, session: Session):
         f, claims = session.features, session.claims
         self.features, self.claims = f, claims
+        self.digits = words.digits_for(f.wave_err)
         self.wave = to_medium(f.wave, session.spectrum.medium)
         lab = np.array([c.line.wave if c.line else np.nan for c in claims], dtype=float)
         self.lab = to_medium(lab, session.spectrum.medium) if len(lab) else lab
@@ -42,11 +43,11 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
     f = a.features
     return [
         Column("wavelength (Å)", "Fitted centre and its error, in the spectrum's own medium",
-               lambda i: words.with_error(a.wave[i], f.wave_err[i], 3), lambda: a.wave, True, 136),
+               lambda i: words.with_error(a.wave[i], f.wave_err[i], a.digits), lambda: a.wave, True, 150),
         Column("claim", "The species said to make this feature; after + what is blended in",
                lambda i: a.species[i], lambda: a.species.astype(str), False, 112),
         Column("laboratory (Å)", "Laboratory wavelength of the claimed line, same medium",
-               lambda i: words.number(a.lab[i], 3), lambda: a.lab, True, 102),
+               lambda i: words.number(a.lab[i], a.digits), lambda: a.lab, True, 102),
         Column("velocity (km/s)", "c (λ/λ laboratory − 1) in vacuum, receding positive",
                lambda i: words.number(a.velocity[i], 2, True), lambda: a.velocity, True, 104),
         Column("depth", "(continuum − flux)/continuum at the centre; negative in emission",

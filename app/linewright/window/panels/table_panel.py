@@ -86,8 +86,17 @@ class TablePanel(QWidget):
                 self.table.selectionModel().clearCurrentIndex()
             elif row != self.table.currentIndex().row():
                 self.table.setCurrentIndex(self.model.index(row, 0))
+                self._centre(row)
         finally:
             self._following = False
+
+    def _centre(self, row: int) -> None:
+        """Neighbours of the row stay in sight on both sides."""
+        place = self.table.visualRect(self.model.index(row, 0))
+        height = self.table.viewport().height()
+        if place.top() < place.height() or place.bottom() > height - place.height():
+            self.table.scrollTo(self.model.index(row, 0),
+                                QAbstractItemView.ScrollHint.PositionAtCenter)
 
     def _moved(self, current, _previous) -> None:
         if current.isValid() and not self._following:

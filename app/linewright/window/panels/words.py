@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
+
 GLYPHS = {
     "firm": "●",
     "likely": "◕",
@@ -24,6 +26,14 @@ def number(value: float, digits: int, signed: bool = False) -> str:
 def with_error(value: float, error: float, digits: int) -> str:
     text = number(value, digits)
     return f"{text} ± {number(error, digits)}" if text and math.isfinite(error) else text
+
+
+def digits_for(errors) -> int:
+    """Decimals that show two figures of a typical error, 2 to 4."""
+    known = errors[np.isfinite(errors) & (errors > 0)]
+    if not len(known):
+        return 3
+    return int(np.clip(np.ceil(-np.log10(np.median(known))) + 1, 2, 4))
 
 
 def standing(name: str) -> str:
