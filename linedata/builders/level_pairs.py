@@ -7,7 +7,7 @@ Coulomb approximation. gf = 303.75 S / lambda(Angstrom), S in atomic units (Cowa
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from pathlib import Path
 
@@ -120,7 +120,21 @@ def states_of(source: Path, element: str, stage: int, limit_ev: float) -> list[S
         state = _state(source, (element, stage), levels, row, limit_ev / EV_PER_CM)
         if state is not None:
             states.append(state)
-    return states
+    return states + _unlisted_partners(states)
+
+
+def _unlisted_partners(states: list[State]) -> list[State]:
+    """The second J of J1K pairs of which the levels give one (unresolved): same energy."""
+    pairs: dict[tuple, list[State]] = {}
+    for state in states:
+        if state.scheme == "JK":
+            pairs.setdefault((state.core, state.n, state.ell, state.big_l), []).append(state)
+    partners = []
+    for (_, _, _, big_k), found in pairs.items():
+        other = 2 * big_k - found[0].j
+        if len(found) == 1 and other >= 0:
+            partners.append(replace(found[0], j=other, row=found[0].row + 100000))
+    return partners
 
 
 def _state(source: Path, ion: tuple[str, int], levels: Levels, row: int, limit: float):
@@ -151,15 +165,48 @@ def line_strength(low: State, up: State, charge: float) -> float:
     return weights * angle * max(low.ell, up.ell) * radial**2
 
 
+def _bare(core: str) -> str:
+    """A core configuration without the J of its parent term."""
+    return re.sub(r"<[\d/]+>", "", core)
+
+
+def mixed_strength(ls: State, jk: State, charge: float) -> float:
+    """S of a line between an LS-coupled and a J1K-coupled level of one core (atomic units).
+
+    The J1K state is expanded over L and S of the same J; coefficients
+    sqrt((2J1+1)(2L+1)(2K+1)(2S+1)) {S1 L1 J1; l K L} {L S1 K; 1/2 J S} (Cowan 1981, ch. 9).
+    """
+    term = parent_term(jk.core)
+    l1, s1 = float(TERM_LETTERS.index(term[1])), (int(term[0]) - 1) / 2.0
+    amplitude = 0.0
+    for total in range(int(abs(l1 - jk.ell)), int(l1 + jk.ell) + 1):
+        recoupled = six_j(s1, l1, jk.parent, jk.ell, jk.big_l, total)
+        recoupled *= six_j(total, s1, jk.big_l, 0.5, jk.j, ls.spin)
+        recoupled *= six_j(ls.big_l, ls.j, ls.spin, jk.j, total, 1.0)
+        recoupled *= six_j(ls.ell, ls.big_l, l1, total, jk.ell, 1.0)
+        amplitude += (2 * total + 1) * recoupled
+    weights = (2 * jk.parent + 1) * (2 * jk.big_l + 1) * (2 * ls.spin + 1)
+    weights *= (2 * ls.j + 1) * (2 * jk.j + 1) * (2 * ls.big_l + 1)
+    radial = coulomb_radial(ls.n_eff, ls.ell, jk.n_eff, jk.ell, charge)
+    return weights * amplitude**2 * max(ls.ell, jk.ell) * radial**2
+
+
+def _strength(low: State, up: State, charge: float) -> float:
+    if low.scheme == up.scheme:
+        return line_strength(low, up, charge)
+    ls, jk = (low, up) if low.scheme == "LS" else (up, low)
+    return mixed_strength(ls, jk, charge)
+
+
 def _permitted(low: State, up: State) -> bool:
-    return (
-        low.core == up.core
-        and low.scheme == up.scheme
-        and low.spin == up.spin
-        and abs(low.ell - up.ell) == 1
-        and abs(low.j - up.j) <= 1
-        and low.j + up.j > 0
-    )
+    if abs(low.ell - up.ell) != 1 or abs(low.j - up.j) > 1 or low.j + up.j == 0:
+        return False
+    if low.scheme == up.scheme:
+        return low.core == up.core and low.spin == up.spin
+    ls, jk = (low, up) if low.scheme == "LS" else (up, low)
+    same = _bare(ls.core) == _bare(jk.core)
+    implied = not parent_term(ls.core) and ls.core == re.sub(r"\.?\([^()]*\)$", "", jk.core)
+    return bool(parent_term(jk.core)) and (same or implied)
 
 
 def permitted_lines(source: Path, element: str, stage: int, limit_ev: float) -> list[dict]:
@@ -172,8 +219,8 @@ def permitted_lines(source: Path, element: str, stage: int, limit_ev: float) -> 
             if not 4000.0 < gap < 83334.0 or not _permitted(low, up):
                 continue
             wave = 1e8 / gap
-            strength = line_strength(low, up, float(stage))
-            if not strength > 0:
+            strength = _strength(low, up, float(stage))
+            if not strength > 1e-12:
                 continue
             error = wave**2 * 1e-8 * np.hypot(low.error, up.error)
             lines.append({

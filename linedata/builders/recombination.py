@@ -11,7 +11,7 @@ from astropy.io import fits
 from common import source_file, vacuum_to_air
 from helium import line_pairs as helium_lines
 from hydrogenic import centroid
-from level_pairs import parent_term, permitted_lines
+from level_pairs import TERM_LETTERS, parent_term, permitted_lines
 from nebula_model import DENSITY, HBETA, TEMPERATURE, recombination_level
 
 FAINTEST = -4.0  # log10 of 100 j/j_Hbeta: lines fainter than 1e-6 H beta are left out
@@ -113,11 +113,12 @@ def _helium_nominal(line: dict, lines: list[dict]) -> float:
 
 def _weight(state) -> float:
     """Share of a shell's recombinations into one level: (2J+1) over all states of the shell."""
-    spins = 2.0 * (2 * state.ell + 1)
-    if state.scheme == "JK":
-        return (2 * state.j + 1) / (spins * (2 * state.parent + 1) * 3.0)
     term = parent_term(state.core)
-    return (2 * state.j + 1) / (spins * (2 * state.parent + 1) * int(term[0] if term else 1))
+    if term:
+        parent = int(term[0]) * (2 * TERM_LETTERS.index(term[1]) + 1)
+    else:  # a closed core, or one odd electron that makes the total spin whole
+        parent = (2 * state.parent + 1) * (2 if float(state.spin).is_integer() else 1)
+    return (2 * state.j + 1) / (2.0 * (2 * state.ell + 1) * parent)
 
 
 def permitted_rows(source: Path, ion, limit_ev: float, log_recombining: float) -> list[dict]:
