@@ -22,6 +22,10 @@ MARKERS = {
 }  # fmt: skip
 
 
+# a star's points leave it little ink at the size of the others
+SIZES = {"star": 1.5}
+
+
 class LabelDrawing:
     """Draws on ``figure`` in points; ``row`` says where the panel lies."""
 
@@ -78,7 +82,9 @@ class LabelDrawing:
         if dashes:
             look["dashes"] = dashes
         self._line([x, x, place, place], [foot, top, base - STUB, base], **look)
-        marker = {"marker": MARKERS[label.family.marker], "ms": FOOT, "mew": 0.6, "lw": 0}
+        shape = label.family.marker
+        size = FOOT * SIZES.get(shape, 1.0)
+        marker = {"marker": MARKERS[shape], "ms": size, "mew": 0.6, "lw": 0}
         self._line([x], [foot], color=label.family.light, **marker)
         self._text(label.text, place, base + 1.5)
 

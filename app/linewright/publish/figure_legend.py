@@ -9,7 +9,7 @@ from matplotlib.lines import Line2D
 from ..session.model import Session
 from .families import FAMILIES
 from .figure_labels import Marks
-from .figure_leaders import FOOT, MARKERS
+from .figure_leaders import FOOT, MARKERS, SIZES
 from .figure_style import CONTINUUM, DASHES, GREY, INK, LEADER_WIDTH, FigureStyle
 
 LEFT, RIGHT = 8.0, 7.0
@@ -30,7 +30,7 @@ def _entries(marks: list[Marks], session: Session) -> list[Entry]:
     used = {label.family.title for label in labels}
     entries = []
     for family in (f for f in FAMILIES if f.title in used):
-        look = {"marker": MARKERS[family.marker], "ms": FOOT + 0.8, "color": family.light}
+        look = {"marker": MARKERS[family.marker], "ms": _size(family), "color": family.light}
         entries.append(Entry(family.title, look, False))
     for standing in (s for s in DASHES if any(label.standing == s for label in labels)):
         look = {"color": INK, "lw": LEADER_WIDTH}
@@ -45,6 +45,10 @@ def _entries(marks: list[Marks], session: Session) -> list[Entry]:
         look = {"color": CONTINUUM, "lw": 0.8, "dashes": (4, 2)}
         entries.append(Entry("continuum", look, True))
     return entries
+
+
+def _size(family) -> float:
+    return (FOOT + 0.8) * SIZES.get(family.marker, 1.0)
 
 
 def _left_out_text(count: int) -> str:
