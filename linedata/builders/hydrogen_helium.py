@@ -9,7 +9,7 @@ import numpy as np
 
 from common import ORIGIN_CODE, pack_lines, script_arguments, write_table
 from helium import line_pairs
-from hydrogenic import HELIUM_II, HYDROGEN, centroid
+from hydrogenic import HELIUM_II, HYDROGEN, centroid, centroid_error
 
 NAMES = ["H I", "He I", "He II"]
 KEYS = ["Hydrogenic", "NIST_ASD"]
@@ -19,8 +19,7 @@ HIGHEST = {"H I": 40, "He II": 30}
 
 
 def formula_lines(ion) -> list[dict[str, float]]:
-    """Lines of a one-electron ion: gf-weighted centroids, half the gap to the level average
-    entering the error."""
+    """Lines of a one-electron ion at their gf-weighted centroids."""
     lines = []
     for low in range(1, 10):
         for up in range(low + 1, HIGHEST[ion.name] + 1):
@@ -28,8 +27,8 @@ def formula_lines(ion) -> list[dict[str, float]]:
             if not SHORTEST < 1e8 / gross < LONGEST or (ion.name == "H I" and low > 5):
                 continue
             line = centroid(ion, low, up)
-            apart = line["wave"] - line.pop("average")
-            line["wave_err"] = float(np.hypot(4e-7 * line["wave"], 0.5 * apart) + 0.002)
+            del line["average"]
+            line["wave_err"] = centroid_error(line)
             lines.append({**line, "loggf_err": 0.01})
     return lines
 

@@ -10,7 +10,7 @@ from astropy.io import fits
 
 from common import source_file, vacuum_to_air
 from helium import line_pairs as helium_lines
-from hydrogenic import centroid
+from hydrogenic import centroid, centroid_error
 from level_pairs import TERM_LETTERS, parent_term, permitted_lines
 from nebula_model import DENSITY, HBETA, TEMPERATURE, recombination_level
 
@@ -52,10 +52,9 @@ def one_electron_rows(ion, emissivity: dict, abundance: float) -> list[dict]:
         if value <= 0 or low > 6 or up > 40 or not 3000.0 < 1e8 / gross < 25000.0:
             continue
         line = centroid(ion, low, up)
-        apart = line["wave"] - line["average"]
         rows.append({
             "wave": line["wave"], "spread": line["spread"], "e_low": line["e_low"],
-            "wave_err": float(np.hypot(4e-7 * line["wave"], 0.5 * apart) + 0.002),
+            "wave_err": centroid_error(line),
             "j_low": np.nan, "j_up": np.nan,
             "emission": float(np.log10(100 * value / HBETA) + abundance),
         })

@@ -31,9 +31,10 @@ _COLUMNS = (
     ("depth_ref", None, "telluric optical depth at line centre, air mass 1"),
 )
 
-_FORMATS = {
-    "wave": ".4f", "wave_err": ".4f", "e_low": ".4f", "loggf": ".3f", "loggf_err": ".2f",
-    "spread": ".4f", "emission": ".2f", "depth_ref": ".4f",
+# Decimals written.
+_DIGITS = {
+    "wave": 4, "wave_err": 4, "e_low": 4, "loggf": 3, "loggf_err": 2, "spread": 4, "emission": 2,
+    "depth_ref": 5, "depth": 3,
 }
 
 
@@ -97,11 +98,13 @@ def _table(catalogue: LineCatalogue, medium: str, depth: np.ndarray | None) -> T
         column = values[name]
         numeric = column.dtype.kind == "f"
         mask = ~np.isfinite(column) if numeric else np.zeros(len(column), bool)
+        if name in _DIGITS:
+            column = np.round(column, _DIGITS[name])
         table[name] = MaskedColumn(column, mask=mask, unit=unit, description=description)
-    for name, digits in _FORMATS.items():
-        table[name].info.format = digits
     if depth is not None:
         description = "predicted central depth at the temperature asked for"
-        table["depth"] = MaskedColumn(depth, mask=~np.isfinite(depth), description=description)
-        table["depth"].info.format = ".3f"
+        rounded = np.round(depth, _DIGITS["depth"])
+        table["depth"] = MaskedColumn(rounded, mask=~np.isfinite(depth), description=description)
+    for name in set(_DIGITS) & set(table.colnames):
+        table[name].info.format = f".{_DIGITS[name]}f"
     return table
