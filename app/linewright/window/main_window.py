@@ -196,6 +196,7 @@ class MainWindow(Questions, Showing, QMainWindow):
             self.space.remember()
         self.tasks.close()
         self.bench.engine.close()
+        self.bench.export_engine.close()
         event.accept()
 
     def _ask_leave(self, unsaved) -> None:

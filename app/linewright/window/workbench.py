@@ -49,7 +49,7 @@ class Workbench:
     """What panels and commands share. ``listen`` gets (old session, new session)."""
 
     def __init__(self, tasks: Tasks):
-        self.engine = Engine()
+        self.engine, self.export_engine = Engine(), Engine()  # saving never waits for a solve
         self.tasks, self.view, self.theme = tasks, ViewState(), LIGHT
         self.desks: list[Desk] = []
         self.desk: Desk | None = None

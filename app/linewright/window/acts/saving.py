@@ -12,6 +12,7 @@ from ..notices import Notice
 from ..tasks import Request
 
 SUFFIX = ".linewright.json"
+CALLS = "window.export_calls"
 TABLES = ("ecsv", "csv", "tex", "vot", "mrt")
 FIGURES = ("pdf", "svg", "png")
 
@@ -42,19 +43,15 @@ def save(bench, path: Path | None = None, then=lambda: None) -> None:
     """Writes the session whole or not at all; ``then`` runs when it is on disk."""
     desk = bench.desk
     path = Path(path) if path is not None else desk.path
-    session = desk.document.session
+    session, engine = desk.document.session, bench.export_engine
     bench.tasks.start(Request(
         key=f"save {id(desk)}", title=f"Saving {path.name}",
-        work=lambda progress: _write(session, path),
+        # the file dialog asked about an existing file, or it is our own
+        work=lambda progress: engine.call(
+            "session.file:save_session", session, path, force=True),
         done=lambda _none: _saved(bench, desk, session, path, then),
         failed=lambda error: failed(bench, error),
     ))
-
-
-def _write(session, path: Path) -> None:
-    from ...session.file import save_session
-
-    save_session(session, path, force=True)  # the file dialog asked, or it is our own file
 
 
 def _saved(bench, desk, session, path: Path, then) -> None:
@@ -67,38 +64,26 @@ def _saved(bench, desk, session, path: Path, then) -> None:
 
 
 def export_table(bench, path: Path, what: str = "ledger") -> None:
-    session = bench.session
+    session, engine = bench.session, bench.export_engine
     bench.tasks.start(Request(
         key="table", title=f"Writing {path.name}",
-        work=lambda progress: _table(session, what, path),
+        work=lambda progress: engine.call(f"{CALLS}:write_table_file", session, what, path),
         done=lambda _none: _written(bench, path),
         failed=lambda error: failed(bench, error),
     ))
 
 
-def _table(session, what: str, path: Path) -> None:
-    from ...publish.ledger import session_table
-    from ...publish.writers import check_suffix, write_table
-
-    check_suffix(path)
-    write_table(session_table(session, what), path, force=True)
-
-
 def export_figure(bench, path: Path) -> None:
     """The figure of what is in view, in the order of the annotated spectrum."""
     session, spectrum, span = bench.session, bench.spectrum, bench.view.now.span
+    engine = bench.export_engine
     bench.tasks.start(Request(
         key="figure", title=f"Drawing {path.name}",
-        work=lambda progress: _figure(session, spectrum, span, path),
+        work=lambda progress: engine.call(
+            f"{CALLS}:write_figure_file", session, spectrum, path, span),
         done=lambda report: _written(bench, path, _left_out(report)),
         failed=lambda error: failed(bench, error),
     ))
-
-
-def _figure(session, spectrum, span, path: Path):
-    from ...publish import figure
-
-    return figure.write_figure(session, spectrum, path, force=True, range=span)
 
 
 def _left_out(report) -> str:

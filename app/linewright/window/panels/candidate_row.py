@@ -67,6 +67,8 @@ class CandidateRow(QFrame):
         grid.setColumnStretch(1, 1)
 
     def show_chosen(self, chosen: bool) -> None:
+        if self.property("chosen") == chosen:
+            return
         self.setProperty("chosen", chosen)
         self.style().unpolish(self)
         self.style().polish(self)

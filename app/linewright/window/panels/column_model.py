@@ -54,6 +54,18 @@ class ColumnModel(QAbstractTableModel):
             order = np.concatenate([order[~absent], order[absent]])
         return self._keep[order]
 
+    @property
+    def is_sorted(self) -> bool:
+        return self._order is not None
+
+    def repaint_rows(self, sources) -> None:
+        """Source rows whose texts changed while their place did not."""
+        for source in sources:
+            row = self.row_showing(int(source))
+            if row >= 0:
+                self.dataChanged.emit(
+                    self.index(row, 0), self.index(row, max(len(self.columns) - 1, 0)))
+
     def source_row(self, index: QModelIndex) -> int:
         return int(self.shown[index.row()])
 

@@ -74,6 +74,8 @@ class LedgerPanel(TablePanel):
 
     def show_session(self, session: Session | None) -> None:
         first = self._session is None
+        if self._took_claims(session):
+            return
         self._session = session
         self.model.arrays = LedgerArrays(session) if session is not None else None
         self._fill_species()
@@ -82,9 +84,32 @@ class LedgerPanel(TablePanel):
             for i, column in enumerate(self.model.columns):
                 self.table.setColumnWidth(i, column.width)
 
+    def _took_claims(self, session: Session | None) -> bool:
+        """A few changed claims are repainted where they stand, unless they move the rows."""
+        if session is None or self.model.arrays is None:
+            return False
+        if session.spectrum.medium != self._session.spectrum.medium:
+            return False
+        rows = self.model.arrays.take_claims(session)
+        if rows is None:
+            return False
+        self._session = session
+        self._fill_species()
+        if self._narrowed() or self.model.is_sorted:
+            self.refresh()
+        else:
+            self.model.repaint_rows(rows)
+        return True
+
+    def _narrowed(self) -> bool:
+        return bool(self.text.text().strip() or self.standing.currentIndex() > 0
+                    or self.species.currentIndex() > 0)
+
     def _fill_species(self) -> None:
         names = sorted({c.species for c in self._session.claims if c.species}) if (
             self._session is not None) else []
+        if names == [self.species.itemText(k) for k in range(1, self.species.count())]:
+            return
         chosen = self.species.currentText()
         self.species.blockSignals(True)
         self.species.clear()

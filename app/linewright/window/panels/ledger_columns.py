@@ -27,6 +27,31 @@ class LedgerArrays:
         self.by = np.array([c.by for c in claims], dtype=object)
         self.note = np.array([c.note for c in claims], dtype=object)
 
+    def take_claims(self, session: Session) -> np.ndarray | None:
+        """Takes over the claims that differ, in place; returns their rows.
+
+        None when the features or many claims changed: then make new arrays.
+        """
+        if session.features is not self.features:
+            return None
+        pairs = zip(self.claims, session.claims, strict=True)
+        rows = np.array([i for i, (old, new) in enumerate(pairs) if old is not new], dtype=int)
+        if len(rows) > 100:
+            return None
+        self.claims = session.claims
+        for i in rows:
+            self._take(i, session)
+        return rows
+
+    def _take(self, i: int, session: Session) -> None:
+        claim = session.claims[i]
+        lab = claim.line.wave if claim.line else np.nan
+        self.lab[i] = to_medium(lab, session.spectrum.medium)
+        self.velocity[i] = C_KM_S * (self.features.wave[i] / lab - 1.0)
+        self.species[i], self.probability[i] = shown_species(claim), claim.probability
+        self.standing[i] = STANDINGS.index(claim.standing)
+        self.by[i], self.note[i] = claim.by, claim.note
+
 
 def shown_species(claim) -> str:
     """The claim in the trade's notation, with what it is blended with."""

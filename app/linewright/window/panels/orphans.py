@@ -33,6 +33,12 @@ class OrphansPanel(TablePanel):
 
     def show_session(self, session) -> None:
         first = not self._rows
+        old = self._session
+        if old is not None and session is not None and (
+                session.orphans is old.orphans and session.features is old.features
+                and session.spectrum is old.spectrum):
+            self._session = session
+            return
         self._session = session
         self._rows = () if session is None else session.orphans
         self.refresh()

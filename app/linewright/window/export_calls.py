@@ -1,0 +1,19 @@
+"""Writing of tables and figures as single calls for the engine's process; no Qt here."""
+
+from __future__ import annotations
+
+
+def write_table_file(session, what: str, path) -> None:
+    """The Ledger, Roll call or Orphans; the suffix decides the format."""
+    from ..publish.ledger import session_table
+    from ..publish.writers import check_suffix, write_table
+
+    check_suffix(path)
+    write_table(session_table(session, what), path, force=True)
+
+
+def write_figure_file(session, spectrum, path, span):
+    """The annotated figure of a range; returns how many labels found room."""
+    from ..publish.figure import write_figure
+
+    return write_figure(session, spectrum, path, force=True, range=span)
