@@ -28,7 +28,6 @@ class Prepared:
     trace: Trace
     runs: list
     nodes: SegmentMeasure
-    flux_level: np.ndarray
     fwhm_pixels: np.ndarray
 
 
@@ -104,14 +103,14 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
         if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
             sure = bool(quiet[good].mean() > 0.6)
-            longest = max(1.0, float(np.median(pixels[good])) / (1.0 if sure else 3.0))
+            longest = max(1.0, float(np.median(pixels[good])) * (0.85 if sure else 0.33))
             noise = estimate_noise(y, good, runs, quiet, longest, sure)
             noise = replace(noise, sigma=noise.sigma * run)
     under = _veil(y, relative, runs, pixels, _length(noise))
     trace = Trace(wave, y, relative, good, width, np.interp(wave, centre, error),
                   noise.correlation, under)
     nodes = _nodes(trace, centre, level, error, pixels)
-    return Prepared(trace, runs, nodes, run, pixels)
+    return Prepared(trace, runs, nodes, pixels)
 
 
 def _veil(y, noise, runs, pixels, length):
@@ -145,11 +144,15 @@ def _assumed_width(wave, lag, options):
 
 
 def _node_distance(wave, good, width):
-    """150 line widths, at most a 25th of the range, but 15 widths and 60 samples at least."""
+    """150 line widths, at most a 25th of the range, but 15 widths, 60 samples
+    and a 300th of the range at least."""
     typical = float(np.median(width[good]))
     step = float(np.median(np.gradient(wave)[good]))
     span = float(wave[good][-1] - wave[good][0])
-    return max(min(150.0 * typical, span / 25.0), 15.0 * typical, min(60 * step, span / 12.0))
+    return max(
+        min(150.0 * typical, span / 25.0), 15.0 * typical, min(60 * step, span / 12.0),
+        span / 300.0,
+    )
 
 
 def _sigma(segment, good, noise, warnings):

@@ -9,7 +9,7 @@ import numpy as np
 from .detect import find_extrema, run_filters
 from .features import FeatureTable
 from .gauss import FWHM_PER_SIGMA
-from .groups import Fitted, backgrounds, fit_features, group_features
+from .groups import BROAD, Fitted, backgrounds, fit_features, group_features
 from .guess import first_guess
 from .table import fitted_table
 from .veil import owners, running_min
@@ -64,7 +64,7 @@ def segment_features(ready, filtered, threshold: float, segment: int) -> Feature
         found = start.joined(more)
         fitted = _fit(ready, found)
     keep = _trusted(found, fitted)
-    return fitted_table(ready, found.take(keep), fitted.take(keep), segment)
+    return fitted_table(ready.trace, ready.nodes, found.take(keep), fitted.take(keep), segment)
 
 
 def _collect(ready, outputs, threshold):
@@ -97,8 +97,11 @@ def _smooth(ready) -> int:
 
 def _fit(ready, found: Found) -> Fitted:
     fwhm = FWHM_PER_SIGMA * np.exp(found.start[:, 2])
-    group = group_features(found.start[:, 1], fwhm, found.limits[:, 0])
-    return fit_features(ready.trace, found.start, found.limits, group, found.own)
+    t = ready.trace
+    at = np.clip(np.searchsorted(t.wave, found.start[:, 1]), 0, len(t.wave) - 1)
+    alone = found.own & (fwhm > BROAD * t.width[at])
+    group = group_features(found.start[:, 1], fwhm, found.limits[:, 0], alone)
+    return fit_features(t, found.start, found.limits, group, found.own)
 
 
 def _second(ready, filtered, threshold, found, fitted) -> Found:

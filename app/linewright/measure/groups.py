@@ -53,17 +53,18 @@ class Fitted:
         return Fitted(*(getattr(self, n)[which] for n in self.__dataclass_fields__))
 
 
-def group_features(centre, fwhm, run) -> np.ndarray:
+def group_features(centre, fwhm, run, alone) -> np.ndarray:
     """Group number of each feature (sorted by wavelength), shape (m,).
 
-    centre, fwhm: Angstrom; run: stretch index of each. Groups longer than MOST are cut
+    centre, fwhm: Angstrom; run: stretch of each; alone: True for broad sources, whose
+    core is fitted by itself. Groups longer than MOST are cut
     at their widest separations.
     """
     m = len(centre)
     if m == 0:
         return np.zeros(0, dtype=int)
     apart = np.diff(centre) / (0.5 * (fwhm[1:] + fwhm[:-1]))
-    cut = (apart > CLOSE) | (np.diff(run) != 0)
+    cut = (apart > CLOSE) | (np.diff(run) != 0) | alone[1:] | alone[:-1]
     edges = np.r_[0, np.flatnonzero(cut) + 1, m]
     stack = [(a, b) for a, b in zip(edges[:-1], edges[1:])]
     group, number = np.zeros(m, dtype=int), 0
@@ -210,7 +211,7 @@ class _Batch:
         low[..., 1] -= 0.5 * width
         high[..., 1] += 0.5 * width
         low[..., 2] = np.log(np.minimum(0.6 * narrow, 0.8 * width) / FWHM_PER_SIGMA)
-        high[..., 2] = np.log(np.maximum(2.5 * width, 2.0 * narrow) / FWHM_PER_SIGMA)
+        high[..., 2] = np.log(np.maximum(1.8 * width, 1.6 * narrow) / FWHM_PER_SIGMA)
         return low, high
 
     def finish(self, fit, windows, errors, misfit, trouble):

@@ -74,8 +74,11 @@ def block_medians(values: np.ndarray, size: int, least: int) -> tuple[np.ndarray
     return centre, np.where(filled >= max(least, 1), middle, np.nan)
 
 
-def quiet_profile(flux, good, runs) -> np.ndarray:
-    """D_k at LAGS, the median over the quietest quarter of blocks, shape (len(LAGS),)."""
+def quiet_profile(flux, good, runs, share: float = 0.25) -> np.ndarray:
+    """D_k at LAGS, the median over the quietest ``share`` of blocks, shape (len(LAGS),).
+
+    Choosing quiet blocks biases the level low by some per cent; with share 1 nothing is.
+    """
     table = np.array([
         block_medians(_differences(flux, good, runs, lag), 128, 40)[1] for lag in LAGS
     ])
@@ -86,7 +89,7 @@ def quiet_profile(flux, good, runs) -> np.ndarray:
     if not np.any(np.isfinite(rank)):
         return np.full(len(LAGS), np.nan)
     rank = np.where(np.isfinite(table).all(axis=0), rank, np.inf)
-    keep = np.argsort(rank)[: max(1, int(np.isfinite(rank).sum() // 4))]
+    keep = np.argsort(rank)[: max(1, int(np.isfinite(rank).sum() * share))]
     # ratios, so that a quiet block of low flux does not rule the others
     relative = table[:, keep] / rank[keep]
     return np.median(relative, axis=1) * np.median(rank[keep])
@@ -103,14 +106,14 @@ def plateau(profile: np.ndarray, longest: float) -> int:
     return 1
 
 
-def settled(profile: np.ndarray, lag: int) -> int:
+def settled(profile: np.ndarray, lag: int, longest: float) -> int:
     """Up to twice the plateau's first lag, where samples are surely independent.
 
     Only where D_k stays put on the way: a further rise is the work of lines.
     """
     if lag == 1:
         return 1
-    for later in range(min(2 * lag, LAGS[-1]), lag, -1):
+    for later in range(int(min(2 * lag, LAGS[-1], longest)), lag, -1):
         if np.max(profile[lag:later]) <= STILL * profile[lag - 1]:
             return later
     return lag
@@ -137,13 +140,13 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> No
     is quiet to follow the correlation further.
     """
     free = good if quiet is None else good & quiet
-    profile = quiet_profile(flux, free, runs)
+    profile = quiet_profile(flux, free, runs, 1.0 if sure else 0.25)
     if not np.all(np.isfinite(profile[:2])):
         profile = quiet_profile(flux, good, runs)
         free = good
     lag = plateau(profile, longest)
     if sure:
-        lag = settled(profile, lag)
+        lag = settled(profile, lag, longest)
     correlation = correlation_from(profile, lag)
     sigma = _local(_values(flux, free, runs, lag, profile), flux, lag)
     if free is not good:

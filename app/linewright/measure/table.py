@@ -4,37 +4,66 @@ from __future__ import annotations
 
 import numpy as np
 
+from .broad import integrate_broad
 from .features import FeatureTable
 from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA
 
+SATURATED = 0.9  # central depth beyond which a line is called saturated
+WING = 0.02  # veil beyond which a feature is said to stand in a wing
 
-def fitted_table(ready, found, fitted, segment: int) -> FeatureTable:
-    """FeatureTable of fitted features, depths against the continuum under the veil."""
-    own, sign, significance = found.own, found.sign, found.significance
-    p, e = fitted.params, fitted.errors
-    m = len(p)
-    base = np.interp(p[:, 1], ready.trace.wave, ready.trace.veil)
-    base = np.where(own, 0.0, np.minimum(base, 0.98))
-    p, e = p.copy(), e.copy()
-    p[:, 0] /= 1.0 - base
-    e[:, [0, 3]] /= (1.0 - base)[:, None]
-    fwhm = FWHM_PER_SIGMA * np.exp(p[:, 2])
-    counts = np.bincount(fitted.group, minlength=1) if m else np.zeros(1, dtype=int)
-    blend = counts[fitted.group] > 1 if m else np.zeros(0, dtype=bool)
-    first = np.r_[True, np.diff(fitted.group) != 0] if m else np.zeros(0, dtype=bool)
-    start = np.maximum.accumulate(np.where(first, np.arange(m), 0)) if m else np.zeros(0, int)
-    component = np.where(blend, np.arange(m) - start + 1, 0)
-    flags = [
-        " ".join(w for w, on in (("blend", b), ("fallback", f), ("wing", w)) if on)
-        for b, f, w in zip(blend, fitted.trouble, np.abs(base) > 0.02)
-    ]
+
+def fitted_table(trace, nodes, found, fitted, segment: int) -> FeatureTable:
+    """FeatureTable of fitted features.
+
+    trace: Trace of the segment; nodes: its SegmentMeasure; found, fitted: what was found
+    and fitted, m rows. Depths are relative to the continuum lowered by the veil.
+    """
+    m = len(fitted.params)
+    base = np.interp(fitted.params[:, 1], trace.wave, trace.veil)
+    base = np.where(found.own, 0.0, np.minimum(base, 0.98))
+    depth, depth_err = fitted.params[:, 0] / (1 - base), fitted.errors[:, 0] / (1 - base)
+    fwhm, fwhm_err = FWHM_PER_SIGMA * np.exp(fitted.params[:, 2]), fitted.errors[:, 2].copy()
+    ew, ew_err = 1e3 * GAUSSIAN_AREA * depth * fwhm, 1e3 * fitted.errors[:, 3] / (1 - base)
+    wide = integrate_broad(trace, found, fitted)
+    fwhm_err[wide.rows] *= wide.fwhm / fwhm[wide.rows]
+    fwhm[wide.rows] = wide.fwhm
+    ew[wide.rows], ew_err[wide.rows] = 1e3 * wide.area, 1e3 * wide.area_err
+    void = fitted.params[:, 0] == 0  # a fit that ended at no line at all measures nothing else
+    wave_err = np.where(void, np.nan, fitted.errors[:, 1])
+    fwhm_err[void] = ew_err[void] = np.nan
+    component = _components(fitted.group)
+    marks = {
+        "blend": component > 0,
+        "integrated": np.isin(np.arange(m), wide.rows),
+        "wing": np.abs(base) > WING,
+        "saturated": depth > SATURATED,
+        "edge": _at_edge(trace, fitted.params[:, 1], fwhm, found.limits),
+        "fallback": fitted.trouble,
+    }
     return FeatureTable(
         number=np.arange(1, m + 1), segment=np.full(m, segment), component=component,
-        sign=sign, wave=p[:, 1], wave_err=e[:, 1], significance=significance,
-        depth=p[:, 0], depth_err=e[:, 0], fwhm=fwhm, fwhm_err=e[:, 2],
-        ew=1e3 * GAUSSIAN_AREA * p[:, 0] * fwhm, ew_err=1e3 * e[:, 3],
-        continuum=np.interp(p[:, 1], ready.trace.wave, ready.flux_level) * (1.0 - base),
-        flags=tuple(flags),
+        sign=found.sign, wave=fitted.params[:, 1], wave_err=wave_err,
+        significance=found.significance, depth=depth, depth_err=depth_err, fwhm=fwhm,
+        fwhm_err=fwhm_err, ew=ew, ew_err=ew_err,
+        continuum=nodes.continuum_at(fitted.params[:, 1]) * (1.0 - base),
+        flags=tuple(" ".join(w for w in marks if marks[w][i]) for i in range(m)),
     )
 
 
+def _components(group) -> np.ndarray:
+    """0 for a lone feature, 1, 2, ... along a fitted blend, shape (m,)."""
+    if not len(group):
+        return np.zeros(0, dtype=int)
+    first = np.r_[True, np.diff(group) != 0]
+    start = np.maximum.accumulate(np.where(first, np.arange(len(group)), 0))
+    together = np.bincount(group)[group] > 1
+    return np.where(together, np.arange(len(group)) - start + 1, 0)
+
+
+def _at_edge(trace, centre, fwhm, limits) -> np.ndarray:
+    """True within one FWHM of an end of the stretch or with a hole that near."""
+    low, high = trace.wave[limits[:, 0]], trace.wave[limits[:, 1] - 1]
+    total = np.r_[0, np.cumsum(~trace.good)]
+    a = np.searchsorted(trace.wave, centre - fwhm)
+    b = np.searchsorted(trace.wave, centre + fwhm)
+    return (centre - low < fwhm) | (high - centre < fwhm) | (total[b] > total[a])
