@@ -91,3 +91,20 @@ class _Killer(Progress):
         child = self._engine._alive()
         child.kill()
         self._engine._alive = lambda: child
+
+
+def test_a_session_travels_whole(invented):
+    import pickle
+
+    import window_builders as build
+
+    from linewright.session.encode import session_bytes
+    from linewright.window.parcels import packed, unpacked
+
+    session = build.session_of(build.spectrum_of(invented), invented)
+    parcel = packed(("done", [1, session], {"a": 2}))
+    assert max(len(p) for p in parcel[1:]) < len(pickle.dumps(session.claims)) / 3
+    kind, (one, again), rest = unpacked(pickle.loads(pickle.dumps(parcel)))
+    assert (kind, one, rest) == ("done", 1, {"a": 2})
+    assert again.claims == session.claims
+    assert session_bytes(again, build.__file__) == session_bytes(session, build.__file__)

@@ -10,13 +10,14 @@ from ..claims.identify import identify
 from ..claims.options import ClaimOptions
 from ..errors import InputRefused
 from ..lines.loading import load_catalogue
-from ..measure.core import measure_spectrum
+from ..measure import measure_at, measure_spectrum
 from ..measure.features import FeatureTable
 from ..measure.options import MeasureOptions
 from ..session.model import Claim, Session
 from ..spectra.spectrum import Segment, Spectrum
 
 SURROUNDINGS = 120  # line widths measured about it, for noise and continuum
+LEAST_BY_HAND = 1.5
 LEAST_SIGNIFICANCE = 2.5  # a person's eye has chosen the place: one trial, not thousands
 NEIGHBOURS = 40  # features weighed with it
 
@@ -51,12 +52,20 @@ def pick(
         found = measure_spectrum(about, MeasureOptions(threshold=LEAST_SIGNIFICANCE))
     except InputRefused:
         return None
-    near = np.abs(found.features.wave - wave)
-    within = near <= np.fmax(reach, np.nan_to_num(found.features.fwhm))
+    row = _nearest(found.features, wave, reach)
+    if row is None:  # too faint to be found: fitted where the person points
+        row = _nearest(measure_at(about, found, wave), wave, reach)
+    if row is None or not row.significance[0] >= LEAST_BY_HAND:
+        return None
+    return replace(row, segment=np.array([index]), flags=(_by_hand(row.flags[0]),))
+
+
+def _nearest(features: FeatureTable, wave: float, reach: float) -> FeatureTable | None:
+    distance = np.abs(features.wave - wave)
+    within = distance <= np.fmax(reach, np.nan_to_num(features.fwhm))
     if not np.any(within):
         return None
-    row = found.features.take([int(np.argmin(np.where(within, near, np.inf)))])
-    return replace(row, segment=np.array([index]), flags=(_by_hand(row.flags[0]),))
+    return features.take([int(np.argmin(np.where(within, distance, np.inf)))])
 
 
 def segment_at(spectrum: Spectrum, wave: float) -> int | None:
@@ -68,7 +77,7 @@ def segment_at(spectrum: Spectrum, wave: float) -> int | None:
 
 
 def _by_hand(flags: str) -> str:
-    return " ".join([*flags.split(), "hand"])
+    return " ".join([*(w for w in flags.split() if w != "hand"), "hand"])
 
 
 def _cut(segment: Segment, wave: float, session: Session) -> Segment:

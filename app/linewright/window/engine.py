@@ -11,6 +11,7 @@ from pathlib import Path
 
 from ..errors import Cancelled, LinewrightError
 from ..progress import Progress
+from .parcels import packed, unpacked
 
 _PACKAGE_PARENT = str(Path(__file__).resolve().parents[2])
 _START = "from linewright.window.engine_child import serve; serve()"
@@ -53,7 +54,7 @@ class Engine:
                 keywords["report"] = True
             child = self._alive()
             try:
-                pickle.dump((target, arguments, keywords), child.stdin,
+                pickle.dump(packed((target, arguments, keywords)), child.stdin,
                             protocol=pickle.HIGHEST_PROTOCOL)
                 child.stdin.flush()
                 return self._await(child, progress)
@@ -63,7 +64,7 @@ class Engine:
 
     def _await(self, child, progress: Progress | None):
         while True:
-            kind, *content = pickle.load(child.stdout)
+            kind, *content = unpacked(pickle.load(child.stdout))
             if kind == "done":
                 return content[0]
             if kind == "refused":

@@ -14,16 +14,19 @@ import traceback
 
 from ..errors import LinewrightError
 from ..progress import Progress
+from .parcels import packed, unpacked
 
 
 def serve() -> None:
     """Answers calls until the window closes the pipe."""
+    if hasattr(os, "nice"):
+        os.nice(5)  # the window's frames come first
     source = sys.stdin.buffer
     sink = os.fdopen(os.dup(sys.stdout.fileno()), "wb")
     os.dup2(sys.stderr.fileno(), sys.stdout.fileno())  # a stray print must not break a pickle
     while True:
         try:
-            target, arguments, keywords = pickle.load(source)
+            target, arguments, keywords = unpacked(pickle.load(source))
         except EOFError:
             return
         _send(sink, _answer(target, arguments, keywords, sink))
@@ -56,7 +59,7 @@ def _sendable(error: Exception) -> Exception:
 
 
 def _send(sink, message) -> None:
-    pickle.dump(message, sink, protocol=pickle.HIGHEST_PROTOCOL)
+    pickle.dump(packed(message), sink, protocol=pickle.HIGHEST_PROTOCOL)
     sink.flush()
 
 
