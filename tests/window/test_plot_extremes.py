@@ -6,7 +6,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from linewright.window.plot.extremes import (
@@ -39,6 +39,7 @@ def compare(x, y, scale: PixelScale) -> None:
     last = scale.first_column() + len(scale.edges()) - 1
     rows = [i for i, c in enumerate(columns.column) if scale.first_column() <= c < last]
     assert [int(columns.column[i]) for i in rows] == sorted(wanted)
+    assert np.all(np.diff(columns.column) > 0)
     for i in rows:
         got = (columns.first[i], columns.low[i], columns.high[i], columns.last[i])
         np.testing.assert_array_equal(got, wanted[int(columns.column[i])])
@@ -59,6 +60,7 @@ def test_no_extreme_of_any_column_is_lost(origin, width, nan_share):
     compare(x, y, PixelScale(x[500], x[-700], origin, width))
 
 
+@example(count=2, seed=1, origin=0.0, width=1.0, ends=(0.0, -0.1875))  # sample on the border
 @settings(max_examples=60, deadline=None)
 @given(
     count=st.integers(1, 400),

@@ -196,8 +196,11 @@ class Extremes:
         for sample, front in ((int(bounds[0]) - 1, True), (int(bounds[-1]), False)):
             if not 0 <= sample < len(self.x):
                 continue
-            pixel = np.clip(scale.pixels(self.x[sample]), -1e9, 1e9)
-            extra = [np.array([int(np.floor(pixel))])] + [self.y[sample : sample + 1]] * 4
+            column = int(np.floor(np.clip(scale.pixels(self.x[sample]), -1e9, 1e9)))
+            # On the very border rounding may put it inside, where it does not belong.
+            before, after = scale.first_column() - 1, scale.first_column() + len(bounds) - 1
+            column = min(column, before) if front else max(column, after)
+            extra = [np.array([column])] + [self.y[sample : sample + 1]] * 4
             pair = (lambda a, b: [a, b]) if front else (lambda a, b: [b, a])
             columns = [np.concatenate(pair(e, c)) for e, c in zip(extra, columns)]
             start = np.concatenate(pair([sample], start))
