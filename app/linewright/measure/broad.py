@@ -17,6 +17,7 @@ from .guess import first_guess
 from .veil import running_mean
 
 FAINT = 0.01  # share of the central depth at which the integration ends
+RISE = 0.06  # rise of a flank, as a share of the depth, that another line must cause
 FARTHEST = 25.0  # widths from the centre at which it ends at the latest
 
 
@@ -58,9 +59,9 @@ def _area(trace, tame, index, sign, fwhm, limits):
     step = np.gradient(trace.wave[max(0, index - 2) : index + 3]).mean()
     reach = int(FARTHEST * fwhm / step)
     foot = max(FAINT * abs(tame[index]), 2.0 * trace.noise[index] / 3.0)
-    below = sign * tame < foot
-    left = _foot(below[max(limits[0], index - reach) : index][::-1])
-    right = _foot(below[index : min(limits[1], index + reach)])
+    z = sign * tame
+    left = _foot(z[max(limits[0], index - reach) : index + 1][::-1], foot)
+    right = _foot(z[index : min(limits[1], index + reach)], foot)
     span = slice(index - left, index + right + 1)
     dx = np.gradient(trace.wave[span]) if right + left > 1 else np.array([step])
     length = 1.0 + 2.0 * trace.correlation[1:].sum()
@@ -69,6 +70,7 @@ def _area(trace, tame, index, sign, fwhm, limits):
     return np.sum(trace.y[span] * dx), np.hypot(noise, level)
 
 
-def _foot(below) -> int:
-    """Samples to the first one below the foot, all of them when none is."""
-    return int(np.argmax(below)) if below.any() else max(len(below) - 1, 0)
+def _foot(z, foot: float) -> int:
+    """Samples until the flank z falls below ``foot`` or turns up by RISE of its start."""
+    end = (z < foot) | (z > np.minimum.accumulate(z) + RISE * abs(z[0]))
+    return int(np.argmax(end)) if end.any() else len(z) - 1

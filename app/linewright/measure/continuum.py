@@ -6,11 +6,23 @@ an unbiased one, crowded absorption its upper edge, and emission lines lift noth
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from .level import SAMPLES, block_levels
 
+ROUNDS = 2
 ROUGH = 1e-3  # run of the continuum inside a block that straight nodes cannot follow
+
+
+@dataclass(frozen=True)
+class Spacing:
+    """size: Angstrom between nodes, much wider than a line, narrower than the run of the
+    continuum; length: samples per independent noise value."""
+
+    size: float
+    length: float = 1.0
 
 
 def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
@@ -31,20 +43,18 @@ def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
     return blocks
 
 
-def fit_continuum(wave, flux, good, sigma, size: float, length: float = 1.0, rounds: int = 2):
+def fit_continuum(wave, flux, good, sigma, spacing: Spacing):
     """Nodes (wave, flux, relative error) of the pseudo-continuum of one segment.
 
-    wave, flux: shape (n,); sigma: noise in flux units, shape (n,); size: Angstrom between
-    nodes, much wider than a line, narrower than the run of the continuum; length: samples
-    per independent noise value.
+    wave, flux: shape (n,); good: usable; sigma: noise in flux units, shape (n,).
     """
-    blocks = [np.arange(b.start, b.stop)[good[b]] for b in block_edges(wave, good, size)]
+    blocks = [np.arange(b.start, b.stop)[good[b]] for b in block_edges(wave, good, spacing.size)]
     centre = np.array([wave[b].mean() for b in blocks])
     floor = np.array([np.median(sigma[b]) for b in blocks])
     level = _smooth(np.array([np.quantile(flux[b], 0.7) for b in blocks]))
-    weight = np.array([len(b) / length / SAMPLES for b in blocks])
+    weight = np.array([len(b) / spacing.length / SAMPLES for b in blocks])
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
-    for _ in range(rounds):
+    for _ in range(ROUNDS):
         level = np.maximum(level, floor)
         run = smooth_run(wave, centre, level)
         samples = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])

@@ -8,7 +8,7 @@ import numpy as np
 
 from ..errors import InputRefused
 from ..progress import Progress
-from .continuum import fit_continuum, smooth_run
+from .continuum import Spacing, fit_continuum, smooth_run
 from .detect import run_filters
 from .features import FeatureTable
 from .finding import filter_runs, segment_features
@@ -94,11 +94,12 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     width = _assumed_width(wave, noise.lag, options)
     for round_ in range(2):
         sigma = _sigma(segment, good, noise, warnings if round_ == 1 else [])
-        size = _node_distance(wave, good, width)
-        centre, level, error = fit_continuum(wave, flux, good, sigma, size, _length(noise))
+        spacing = Spacing(_node_distance(wave, good, width), _length(noise))
+        centre, level, error = fit_continuum(wave, flux, good, sigma, spacing)
         run = smooth_run(wave, centre, level)
         y, relative = 1.0 - flux / run, sigma / run
-        width = _width(wave, y, relative, good, runs, noise, options)
+        if not options.resolution:
+            width = _width(wave, y, relative, good, runs, noise)
         pixels = width / np.gradient(wave)
         if round_ < 1:
             quiet = _quiet(y, relative, good, runs, pixels, noise)
@@ -175,10 +176,8 @@ def _sigma(segment, good, noise, warnings):
     return given * scale
 
 
-def _width(wave, y, noise, good, runs, model, options):
+def _width(wave, y, noise, good, runs, model):
     """Line width in Angstrom at every sample; three independent samples without lines."""
-    if options.resolution:
-        return wave / options.resolution
     width = measure_width(wave, y, noise, good, runs, model.correlation)
     return 3.0 * model.lag * np.gradient(wave) if width is None else width
 

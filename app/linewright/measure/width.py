@@ -22,18 +22,22 @@ def difference_ratio(sigma):
     return (6.0 - 8.0 * a1 + 2.0 * a2) / (2.0 * (1.0 - a1))
 
 
-def block_widths(y, noise, good, run, correlation, lag: int, size: int) -> np.ndarray:
+def block_size(lag: int) -> int:
+    """Samples of a block."""
+    return max(64, 40 * lag)
+
+
+def block_widths(y, noise, good, run, correlation, lag: int) -> np.ndarray:
     """(middle sample, FWHM in samples) of the blocks with enough structure, shape (b, 2).
 
     y: (continuum - flux)/continuum; noise: its one sigma; good: usable; run: slice
-    without gaps; correlation: of the noise; lag: samples between the differences; size:
-    samples of a block.
+    without gaps; correlation: of the noise; lag: samples between the differences.
     """
     r = np.zeros(2 * lag + 1)
     known = correlation[: 2 * lag + 1]
     r[: len(known)] = known
     n1, n2 = 2.0 * (1.0 - r[lag]), 6.0 - 8.0 * r[lag] + 2.0 * r[2 * lag]
-    size = min(size, run.stop - run.start)
+    size = min(block_size(lag), run.stop - run.start)
     count = (run.stop - run.start) // size
     if size < max(16, 6 * lag):
         return np.zeros((0, 2))
@@ -68,10 +72,9 @@ def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
     tables = []
     lags = [lag for lag in LAGS if lag >= len(correlation)]  # nearer samples share noise
     for lag in lags:
-        size = max(64, 40 * lag)
-        parts = [block_widths(y, noise, good, r, correlation, lag, size) for r in runs]
+        parts = [block_widths(y, noise, good, r, correlation, lag) for r in runs]
         tables.append(np.concatenate(parts))
-    share = np.array([len(t) * max(64, 40 * lag) for t, lag in zip(tables, lags, strict=True)])
+    share = np.array([len(t) * block_size(lag) for t, lag in zip(tables, lags, strict=True)])
     if share.max() == 0 or max(len(t) for t in tables) < 3:
         return None
     # the shortest lag at which most of the blocks rise above the noise
