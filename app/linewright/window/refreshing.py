@@ -10,6 +10,9 @@ from .acts import opening
 from .acts.picking import pick
 from .acts.viewing import slide
 from .rake import RakeKeeper
+from .steps import Steps
+
+MANY = 1000  # features whose first showing is spread over several frames
 
 
 class Refresher:
@@ -17,7 +20,8 @@ class Refresher:
 
     def __init__(self, bench, space):
         self._bench, self._space = bench, space
-        self._spectrum = None
+        self._spectrum = self._session = None
+        self._steps = Steps(space)
         self._ours = False  # while the window itself moves the view
         self.rake = RakeKeeper(bench, space.spectrum_view.set_rake, space)
         self._calm = QTimer(space)
@@ -38,26 +42,42 @@ class Refresher:
     def session_changed(self, old, new) -> None:
         bench, space = self._bench, self._space
         if new is None:
+            self._steps.run([])
+            self._session = None
             self._show_spectrum(None)
             return
         if not opening.spectrum_matches(bench.desk):
             opening.follow_medium(bench.desk)
         self._show_spectrum(bench.spectrum)
-        space.spectrum_view.set_session(new)
-        space.ledger.show_session(new)
-        space.roll_call.show_session(new)
-        space.orphans.show_session(new)
-        space.show_counts(len(new.features), len(new.roll_call),
-                          len(bench.catalogue or ()), len(new.orphans))
-        self._show_track(new)
-        self._show_selected()
+        if new is self._session:
+            return
+        many = len(new.features) > MANY and (
+            self._session is None or new.features is not self._session.features)
+        self._session = new
+        self._steps.run([
+            lambda: space.spectrum_view.set_session(new),
+            lambda: self._show_track(new),
+            lambda: space.ledger.show_session(new),
+            lambda: space.orphans.show_session(new),
+            lambda: self._show_rest(new),
+            self._show_selected,
+            self.rake.refresh,
+        ], spread=many)
+
+    def _show_rest(self, session) -> None:
+        self._space.roll_call.show_session(session)
+        self._show_counts(session)
         self.rake.predict()
-        self.rake.refresh()
+
+    def _show_counts(self, session) -> None:
+        lines = len(self._bench.catalogue or ())
+        self._space.show_counts(len(session.features), len(session.roll_call), lines,
+                                len(session.orphans))
 
     def _show_spectrum(self, spectrum) -> None:
         if spectrum is self._spectrum:
             return
-        self._spectrum = spectrum
+        self._spectrum, self._session = spectrum, None
         self._space.spectrum_view.set_spectrum(spectrum)
         if spectrum is not None:
             self._bench.view.change(span=tuple(self._space.spectrum_view.view()))
@@ -129,9 +149,7 @@ class Refresher:
         space.evidence.show_species(names)
         space.catalogue.show_catalogue()
         if bench.session is not None:
-            s = bench.session
-            space.show_counts(len(s.features), len(s.roll_call), len(bench.catalogue or ()),
-                              len(s.orphans))
+            self._show_counts(bench.session)
             space.evidence.refresh()
 
     def theme_changed(self) -> None:
