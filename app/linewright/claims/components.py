@@ -49,7 +49,8 @@ def find_components(setting, progress) -> Found:
         components.append(Component(NEBULAR, _emission_velocity(nebula, main)))
         components.append(Component(SKY, 0.0, 0.5 if o.frame == "topocentric" else 15.0))
     telluric = telluric_vote(f, setting.catalogue, o.frame, o.velocity_range)
-    if np.isfinite(telluric.velocity):
+    # A table without coverage cannot refute telluric lines: only a clear vote brings them in.
+    if np.isfinite(telluric.velocity) and (o.complete or telluric.declared):
         components.append(_telluric(telluric, o.frame, typical_width(f)))
     has_star = bool(components) and components[0].population == STELLAR
     return Found(tuple(components), main, temperature, has_star, warnings)
@@ -63,7 +64,8 @@ def _star(setting, progress) -> tuple[Vote, float]:
     for i, t in enumerate(tried):
         progress.report("voting on the velocity", i / len(tried))
         result = stellar_vote(
-            setting.features, setting.catalogue, setting.absorption(t), o.velocity_range
+            setting.features, setting.catalogue, setting.absorption(t), o.velocity_range,
+            0 if o.complete else setting.counts[0],
         )
         if best is None or result.score.max() > best.score.max() + 3.0:
             best, best_t = result, t

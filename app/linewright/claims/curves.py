@@ -11,7 +11,7 @@ import numpy as np
 BIN = 0.2  # dex
 LOW, HIGH = -4.0, 6.0
 CENTRES = np.arange(LOW + BIN / 2, HIGH, BIN)
-FLOOR, CEILING = 1e-5, 0.985  # lists have errors even for the strongest lines
+FLOOR, CEILING = 1e-5, 0.96  # lists have errors even for the strongest lines
 PRIOR_LINES = 0.4  # lines per bin that the usual form is worth before anything is seen
 SLOPE = 1.5  # per dex, of the two-parameter form used when features are few
 

@@ -22,6 +22,7 @@ class Entries:
     sign: +1 absorption, -1 emission
     species: index of the (population, species) pair for strength offsets
     component: index of the velocity component; row: catalogue row
+    segment: of the spectrum; a line in overlapping segments has an entry in each
     """
 
     wave: np.ndarray
@@ -32,6 +33,7 @@ class Entries:
     species: np.ndarray
     component: np.ndarray
     row: np.ndarray
+    segment: np.ndarray
 
     def __len__(self) -> int:
         return len(self.wave)

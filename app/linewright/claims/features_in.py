@@ -13,7 +13,7 @@ EXCESS_SHARE = 0.25  # of the surplus width: how far its centroid may be off any
 LN10 = np.log(10.0)
 
 
-def feature_data(features) -> FeatureData:
+def feature_data(features, overlapping: bool = False) -> FeatureData:
     """FeatureData of a FeatureTable: m = log10(d/(1-d)) of the depth in absorption,
     log10 of |equivalent width x continuum| in emission (line flux up to a constant)."""
     depth = np.clip(features.depth, SHALLOWEST, DEEPEST)
@@ -37,6 +37,7 @@ def feature_data(features) -> FeatureData:
         strength,
         np.clip(np.nan_to_num(strength_err, nan=0.0), 0.0, 2.0),
         excess_error(features.wave, features.fwhm, strength, features.sign),
+        features.segment if overlapping else np.zeros(len(features), dtype=int),
     )
 
 

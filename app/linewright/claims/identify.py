@@ -17,10 +17,10 @@ from .mixture import solve_mixture
 from .model import Claim, Orphan, RollRow, VelocityResult
 from .options import ClaimOptions
 from .orphans import rank_orphans
-from .populations import POPULATIONS, UNGRADED, Component, assemble
+from .populations import HYDROGEN, POPULATIONS, UNGRADED, Component, assemble
 from .problem import Problem
 from .roll_call import call_roll
-from .temperature import electron_pressure, neighbours, peak
+from .temperature import electron_pressure, neighbours, peak, prior_log
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
 PROFILE_ROUNDS = 5
@@ -40,13 +40,25 @@ class Identification:
     warnings: tuple[str, ...]
     solution: object
 
+    def shown(self) -> tuple[tuple[str, float, float], ...]:
+        """(origin, km/s, error) of the components that explain at least one feature, and of
+        the star; hydrogen counts as the star's."""
+        used = {c.origin for c in self.claims if c.probability >= 0.5} | {"stellar"}
+        rows = [
+            (c.origin, c.velocity, c.error)
+            for c in self.components
+            if c.population != HYDROGEN and c.origin in used
+        ]
+        return tuple(dict.fromkeys(rows))
+
 
 class Setting:
     """The fixed part of an identification: features, catalogue rows in reach, options."""
 
     def __init__(self, features, catalogue, coverage, options: ClaimOptions):
         self.features, self.options = features, options
-        self.data = feature_data(features)
+        self.segments = overlapping_segments(features)
+        self.data = feature_data(features, len(self.segments) > 1)
         self.coverage = np.asarray(coverage, dtype=float).reshape(-1, 2)
         low, high = options.velocity_range
         reach = max(abs(low), abs(high), abs(options.velocity or 0.0)) / C_KM_S + 1e-4
@@ -72,7 +84,10 @@ class Setting:
 
     def problem(self, components, temperature: float) -> Problem:
         entries = assemble(
-            self.catalogue, self.absorption(temperature), components, self.coverage, self.counts
+            self.catalogue,
+            self.absorption(temperature),
+            components,
+            (self.coverage, self.counts, self.segments),
         )
         return Problem(
             self.data,
@@ -92,6 +107,24 @@ class Setting:
             return np.zeros(len(wave))
         relative = self.features.fwhm[known] / self.features.wave[known]
         return np.percentile(relative, 25) * np.asarray(wave)
+
+
+def overlapping_segments(features):
+    """Wavelength ranges (s, 2) of the features' segments; one endless range where none overlap.
+
+    A line may show again in an overlapping order, so each order gets entries of its own.
+    """
+    endless = np.array([[-np.inf, np.inf]])
+    count = int(features.segment.max(initial=0)) + 1
+    ranges = np.full((count, 2), np.nan)
+    for i in range(count):
+        waves = features.wave[features.segment == i]
+        if len(waves):
+            ranges[i] = waves.min() - 1.0, waves.max() + 1.0
+    used = ranges[np.isfinite(ranges[:, 0])]
+    used = used[np.argsort(used[:, 0], kind="stable")]
+    overlap = np.any(used[1:, 0] < used[:-1, 1]) if len(used) > 1 else False
+    return np.nan_to_num(ranges, nan=np.inf) if overlap else endless
 
 
 def _allowed(catalogue, species):
@@ -152,5 +185,5 @@ def _temperature(setting: Setting, found: Found, progress) -> float:
     for i, t in enumerate(tried):
         progress.report("excitation temperature", i / len(tried))
         problem = setting.problem(found.components, t)
-        values.append(solve_mixture(problem, PROFILE_ROUNDS).log_likelihood)
+        values.append(solve_mixture(problem, PROFILE_ROUNDS).log_likelihood + prior_log(t))
     return round(peak(tried, values))

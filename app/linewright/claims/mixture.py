@@ -22,7 +22,7 @@ from .unlisted import Null, learn_null
 ROUNDS = 12
 TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.04, 3.5, 0.02  # heavy tail of position errors
 ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
-STRENGTH_TAIL, STRENGTH_RANGE = 0.04, 8.0  # share and width (dex) of strengths gone wrong
+STRENGTH_TAIL, STRENGTH_RANGE = 0.03, 8.0  # share and width (dex) of strengths gone wrong
 OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid
 LIST_SCATTER = 0.002  # Angstrom: position scatter of a species' lines before it is learned
 SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom

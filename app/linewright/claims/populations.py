@@ -81,9 +81,9 @@ def zero_point(strength, observed, coverage, features: int) -> float:
 def predict(catalogue, absorption, component: Component, index: int, context) -> Entries:
     """Entries of one component.
 
-    context: (coverage (k, 2), features by sign, number of species names).
+    context: (coverage (k, 2), features by sign, number of species names, segment ranges).
     """
-    coverage, counts, species_count = context
+    coverage, counts, species_count, segments = context
     strength = strengths(catalogue, component.population, absorption) + component.log_ratio
     factor = 1.0 + component.velocity / C_KM_S
     observed = catalogue.wave * factor
@@ -91,8 +91,9 @@ def predict(catalogue, absorption, component: Component, index: int, context) ->
         emission = component.population == NEBULAR
         scale = strength if emission else absorption
         strength = strength - zero_point(scale, observed, coverage, counts[int(emission)])
-    near = inside(observed, coverage + np.array([-2.0, 2.0]))
-    rows = np.nonzero(near & (strength > -DEEPEST))[0]
+    near = inside(observed, coverage + np.array([-2.0, 2.0])) & (strength > -DEEPEST)
+    within = (observed >= segments[:, :1] - 2.0) & (observed <= segments[:, 1:] + 2.0)
+    segment, rows = np.nonzero(within & near)
     error = np.hypot(catalogue.wave_err[rows], observed[rows] * component.error / C_KM_S)
     return Entries(
         observed[rows],
@@ -103,16 +104,19 @@ def predict(catalogue, absorption, component: Component, index: int, context) ->
         catalogue.species[rows] + component.population * species_count,
         np.full(len(rows), index),
         rows,
+        segment,
     )
 
 
-def assemble(catalogue, absorption, components, coverage, counts) -> Entries:
+def assemble(catalogue, absorption, components, searched) -> Entries:
     """All entries of all components.
 
-    coverage: (k, 2) vacuum Angstrom in the spectrum's frame, merged and ascending;
-    counts: (absorption features, emission features).
+    searched: (coverage (k, 2) in vacuum Angstrom of the spectrum's frame, merged and
+    ascending; numbers of absorption and emission features; segment ranges (s, 2), one
+    endless range unless segments overlap).
     """
-    context = (coverage, counts, len(catalogue.species_names))
+    coverage, counts, segments = searched
+    context = (coverage, counts, len(catalogue.species_names), segments)
     parts = [
         predict(catalogue, absorption, component, i, context)
         for i, component in enumerate(components)

@@ -17,7 +17,7 @@ class FeatureData:
     sign: +1 absorption, -1 emission; strength: measured strength m, dex (NaN unknown):
     log10(d/(1-d)) of the central depth in absorption, log10 of line flux in emission;
     strength_err: dex; excess: position error (Angstrom) of features broader than others of
-    their strength, which are unresolved blends
+    their strength, which are unresolved blends; segment: index, all 0 unless segments overlap
     """
 
     wave: np.ndarray
@@ -27,6 +27,7 @@ class FeatureData:
     strength: np.ndarray
     strength_err: np.ndarray
     excess: np.ndarray
+    segment: np.ndarray
 
     def __len__(self) -> int:
         return len(self.wave)
@@ -72,4 +73,5 @@ def find_pairs(features: FeatureData, entries: Entries, reach):
     start = np.repeat(first - np.concatenate(([0], np.cumsum(count)[:-1])), count)
     entry = start + np.arange(len(feature))
     same = features.sign[feature] == entries.sign[entry]
+    same &= features.segment[feature] == entries.segment[entry]
     return feature[same], entry[same]

@@ -8,10 +8,11 @@ of species called.
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from .model import RollRow
-from .populations import POPULATIONS, STELLAR
 
 LISTED = 60  # strongest predicted lines of a species that are called
 SHIFTS = 40  # displaced lists per side that measure the chance rate
@@ -31,10 +32,14 @@ def call_roll(solution, catalogue) -> tuple[RollRow, ...]:
         rows = np.nonzero(names == name)[0]
         if np.max(shows[rows], initial=0) > 0.02 or np.sum(seen[rows]) > 0.5:
             groups[name] = rows
-    trials = max(len(groups), 1)
+    tails = {name: coincidence.tail(rows, shows) for name, rows in groups.items()}
     table = [
-        _row(catalogue.species_names[int(name)], rows, solution, seen, shows,
-             coincidence.tail(rows, shows), trials)
+        _row(
+            catalogue.species_names[int(name)],
+            _Count(seen[rows], shows[rows], min(1.0, tails[name] * len(groups))),
+            solution.state,
+            e.species[rows[0]],
+        )
         for name, rows in groups.items()
     ]
     return tuple(sorted(table, key=lambda r: (-r.seen, r.p_chance, r.species)))
@@ -50,24 +55,27 @@ def _shows(solution):
     return out * solution.groups.share
 
 
-def _row(name, rows, solution, seen, shows, p_chance, trials) -> RollRow:
-    state, e = solution.state, solution.problem.entries
-    likely = rows[shows[rows] >= EXPECTED]
-    found = int(np.sum(seen[likely] > 0.5))
-    number = int(np.sum(seen[rows] > 0.5))
-    species = e.species[rows[0]]
-    offset = float(state.offsets[species])
-    error = float(state.offset_errors[species])
-    corrected = min(1.0, p_chance * trials)
+@dataclass(frozen=True, eq=False)
+class _Count:
+    """A species' lines: P(seen) and P(shows) per line, corrected chance probability."""
+
+    seen: np.ndarray
+    shows: np.ndarray
+    p_chance: float
+
+
+def _row(name: str, count: _Count, state, species: int) -> RollRow:
+    likely = count.shows >= EXPECTED
+    expected, number = int(np.sum(likely)), int(np.sum(count.seen > 0.5))
     return RollRow(
         name,
-        len(likely),
+        expected,
         number,
-        len(likely) - found,
-        corrected,
-        offset,
-        error,
-        _verdict(len(likely), number, corrected, np.sum(shows[rows])),
+        expected - int(np.sum(count.seen[likely] > 0.5)),
+        count.p_chance,
+        float(state.offsets[species]),
+        float(state.offset_errors[species]),
+        _verdict(expected, number, count.p_chance, float(np.sum(count.shows))),
     )
 
 
@@ -142,5 +150,3 @@ def poisson_binomial_tail(rates, observed: float) -> float:
         distribution[0] *= 1 - p
     return float(np.clip(np.sum(distribution[need:]), 0.0, 1.0))
 
-
-__all__ = ["call_roll", "poisson_binomial_tail", "POPULATIONS", "STELLAR"]

@@ -12,12 +12,19 @@ import numpy as np
 _PE_T = np.array([3000.0, 4000.0, 5000.0, 6000.0, 8000.0, 10000.0, 15000.0, 20000.0, 30000.0])
 _PE = np.array([-1.0, 0.0, 0.8, 1.3, 2.3, 2.7, 2.9, 3.1, 3.5])
 
+USUAL, USUAL_WIDTH = 5000.0, 0.25
 COARSE = (3800.0, 5000.0, 6500.0, 9000.0, 13000.0, 20000.0, 30000.0)
 
 
 def electron_pressure(temperature: float) -> float:
     """log10 of a dwarf's electron pressure (dyn cm-2) at an excitation temperature in K."""
     return float(np.interp(temperature, _PE_T, _PE))
+
+
+def prior_log(temperature: float) -> float:
+    """Mild preference for the temperature where most stars under study stand: it decides
+    only while features are few."""
+    return -0.5 * (np.log(temperature / USUAL) / USUAL_WIDTH) ** 2
 
 
 def neighbours(temperature: float) -> tuple[float, ...]:

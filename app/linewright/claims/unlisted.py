@@ -8,7 +8,7 @@ import numpy as np
 
 PRIOR_SHARE = 0.08  # unlisted share of features before anything is learned
 PRIOR_WEIGHT = 6.0  # features that prior is worth
-WIDER_NULL = 5.0  # factor on that prior when absence is no evidence (see the study)
+WIDER_NULL = 8.0  # factor on that prior when absence is no evidence (see the study)
 STRENGTH_BINS = np.arange(-6.0, 10.01, 0.25)
 
 

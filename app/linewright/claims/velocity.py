@@ -52,16 +52,17 @@ def vote_sigma(features, rows):
     return np.sqrt(features.wave_err[rows] ** 2 + (0.03 * width) ** 2 + 0.005**2)
 
 
-def stellar_vote(features, catalogue, strength, velocity_range) -> Vote:
+def stellar_vote(features, catalogue, strength, velocity_range, behind: int = 0) -> Vote:
     """Vote of the strongest absorption features outside telluric bands.
 
-    strength: (n,) absorption strength per catalogue row (NaN elsewhere).
+    strength: (n,) absorption strength per catalogue row (NaN elsewhere); behind: lines that
+    stand behind the table, where the features are no selection by strength.
     """
     outside = ~inside(features.wave, TELLURIC_RANGES)
     rows = strongest(features, 1, where=outside)
     if len(rows) < 3:
         rows = strongest(features, 1)
-    return _vote(features, rows, catalogue, strength, velocity_range)
+    return _vote(features, rows, catalogue, strength, velocity_range, behind)
 
 
 def emission_vote(features, catalogue, velocity_range) -> Vote:
@@ -91,7 +92,7 @@ def _near_observer(result: Vote, limit: float | None) -> Vote:
     return summarise(result.grid, result.score - penalty, result.width)
 
 
-def _vote(features, rows, catalogue, strength, velocity_range) -> Vote:
+def _vote(features, rows, catalogue, strength, velocity_range, behind: int = 0) -> Vote:
     usable = np.nonzero(np.isfinite(strength))[0]
     if len(rows) == 0 or len(usable) == 0:
         nothing = np.array([velocity_range[0], velocity_range[1]], dtype=float)
@@ -99,7 +100,7 @@ def _vote(features, rows, catalogue, strength, velocity_range) -> Vote:
     low = features.wave[rows].min() / (1 + velocity_range[1] / C_KM_S) - 1.0
     high = features.wave[rows].max() / (1 + velocity_range[0] / C_KM_S) + 1.0
     usable = usable[(catalogue.wave[usable] >= low) & (catalogue.wave[usable] <= high)]
-    weight = line_weights(strength[usable], 1.5 * len(rows))
+    weight = line_weights(strength[usable], max(1.5 * len(rows), behind))
     keep = weight > 0.01
     return vote(
         features.wave[rows],

@@ -10,6 +10,7 @@ from pathlib import Path
 
 import numpy as np
 
+from .. import __version__
 from ..claims.identify import Identification, identify
 from ..claims.options import ClaimOptions
 from ..errors import InputRefused, MediumUnknown
@@ -24,7 +25,6 @@ from ..spectra.spectrum import Spectrum
 from .feature_file import read_feature_file
 from .options import SolveOptions
 
-VERSION = "0.1.0"
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
 
 
@@ -200,13 +200,13 @@ def _session(reference, features, found: Identification, options, catalogue) -> 
         claims=found.claims,
         velocity=found.velocity,
         options=options.as_dict(),
-        components=tuple((c.origin, c.velocity, c.error) for c in found.components),
+        components=found.shown(),
         temperature_k=found.temperature,
         log_pe=found.log_pe,
         roll_call=found.roll_call,
         orphans=found.orphans,
         catalogue_id=catalogue.identity,
-        version=VERSION,
+        version=__version__,
         seed=options.seed,
     )
 
