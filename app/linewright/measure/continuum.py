@@ -66,7 +66,7 @@ def fit_continuum(wave, flux, good, sigma, spacing: Spacing):
 
 
 def smooth_run(wave, centre, level) -> np.ndarray:
-    """Monotone cubic through the nodes (Fritsch & Butland 1984), flat beyond the ends."""
+    """Monotone cubic through the nodes (Fritsch & Butland 1984), straight beyond the ends."""
     if len(centre) < 3:
         return np.interp(wave, centre, level)
     h, d = np.diff(centre), np.diff(level) / np.diff(centre)
@@ -80,7 +80,9 @@ def smooth_run(wave, centre, level) -> np.ndarray:
     i = np.clip(np.searchsorted(centre, at) - 1, 0, len(h) - 1)
     t = (at - centre[i]) / h[i]
     ends = level[i] * (1 + 2 * t) * (1 - t) ** 2 + level[i + 1] * t * t * (3 - 2 * t)
-    return ends + h[i] * (slope[i] * t * (1 - t) ** 2 - slope[i + 1] * t * t * (1 - t))
+    inside = ends + h[i] * (slope[i] * t * (1 - t) ** 2 - slope[i + 1] * t * t * (1 - t))
+    beyond = np.where(wave < centre[0], slope[0], slope[-1]) * (wave - at)
+    return inside + np.clip(beyond, -0.2 * np.abs(inside), 0.2 * np.abs(inside))
 
 
 def _apart(centre, level, reach: int = 1) -> np.ndarray:

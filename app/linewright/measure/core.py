@@ -68,6 +68,12 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
     )
 
 
+def filtered_runs_of(spectrum, options: MeasureOptions):
+    """(samples, neighbour correlation) of every stretch, as ``expected_false`` takes them."""
+    prepared = [prepare(s, options, []) for s in spectrum.segments]
+    return [piece for p in prepared if p for f in filter_runs(p) for piece in f.pieces]
+
+
 def _chosen(segment, ranges):
     good = usable(segment)
     if ranges:
@@ -130,6 +136,7 @@ def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
     at = np.unique(np.linspace(0, len(trace.wave) - 1, 200).astype(int))
     count = 16 * max(len(centre) - 1, 1) + 1
     dense = np.interp(np.linspace(0, len(centre) - 1, count), np.arange(len(centre)), centre)
+    dense = np.unique(np.r_[trace.wave[0], dense, trace.wave[-1]])
     return SegmentMeasure(
         node_wave=dense, node_flux=smooth_run(dense, centre, level),
         node_err=np.interp(dense, centre, error),

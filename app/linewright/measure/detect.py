@@ -100,7 +100,7 @@ def find_extrema(filtered: Filtered, good, threshold: float):
         lone = _distinct(level, threshold, threshold)
         lone = lone[curve[lone] > 0]
         bends = _distinct(curve, threshold, threshold)
-        bends = _flat_cores(bends[level[bends] >= threshold], tame, curve, filtered.fwhm)
+        bends = _flat_cores(bends[level[bends] >= threshold], tame, filtered.fwhm)
         keep = np.unique(np.r_[bends, _apart(lone, bends, curve)])
         found.append(np.c_[keep, np.full(len(keep), sign), level[keep]])
     table = np.concatenate(found)
@@ -140,24 +140,24 @@ def _distinct(signal, least: float, dip: float) -> np.ndarray:
     return peaks
 
 
-def _flat_cores(bends, tame, curve, fwhm) -> np.ndarray:
+def _flat_cores(bends, tame, fwhm) -> np.ndarray:
     """Curvature maxima with the two shoulders of one flat core replaced by its middle.
 
     A broad core with a flat bottom bends most at its rims. Two neighbours are rims when
-    the signal between them exceeds both and no inflection parts them.
+    the signal half-way between them exceeds that at both; the members of a blend have a
+    saddle there, and a shoulder lies below the line beside it.
     """
     bends = list(bends)
     i = 0
     while i + 1 < len(bends):
         a, b = bends[i], bends[i + 1]
-        if b - a < 40 * fwhm[a] and np.all(curve[a : b + 1] > 0):
-            top = a + int(np.argmax(tame[a : b + 1]))
-            margin = 0.25 * fwhm[a]
-            if top - a > margin and b - top > margin:
-                bends[i : i + 2] = [top]
-                i = max(i - 1, 0)
-                continue
-        i += 1
+        quarter = (b - a) // 4
+        middle = tame[a + quarter : b - quarter + 1]
+        if b - a < 40 * fwhm[a] and np.median(middle) > max(tame[a], tame[b]):
+            bends[i : i + 2] = [(a + b) // 2]
+            i = max(i - 1, 0)
+        else:
+            i += 1
     return np.array(bends, dtype=int)
 
 

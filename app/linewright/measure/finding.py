@@ -100,6 +100,7 @@ def _fit(ready, found: Found) -> Fitted:
     t = ready.trace
     at = np.clip(np.searchsorted(t.wave, found.start[:, 1]), 0, len(t.wave) - 1)
     alone = found.own & (fwhm > BROAD * t.width[at])
+    fwhm = np.maximum(fwhm, t.width[at])
     group = group_features(found.start[:, 1], fwhm, found.limits[:, 0], alone)
     return fit_features(t, found.start, found.limits, group, found.own)
 

@@ -138,6 +138,8 @@ def fit_features(trace: Trace, start, run_limits, group, own, sweeps: int = 3) -
     m = len(params)
     errors, misfit = np.full((m, 4), np.nan), np.full(m, np.nan)
     trouble = np.zeros(m, dtype=bool)
+    if m == 0:
+        return Fitted(params, errors, group, trouble, misfit)
     members_of = np.split(np.arange(m), np.flatnonzero(np.diff(group)) + 1)
     sizes = np.array([len(x) for x in members_of])
     for sweep in range(sweeps):

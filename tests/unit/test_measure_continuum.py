@@ -1,0 +1,81 @@
+"""Pseudo-continuum: noise, crowded absorption, emission, slopes, broad dips."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from measure_simulation import spectrum_of
+
+from linewright.measure.core import measure_spectrum
+from linewright.measure.continuum import bridge_dips, smooth_run
+
+WAVE = 5000 + 0.02 * np.arange(30_000)
+
+
+def _bias(flux, truth, options=None):
+    measured = measure_spectrum(spectrum_of(WAVE, flux), *([options] if options else []))
+    level = measured.segments[0].continuum_at(WAVE)
+    return level / truth - 1.0, measured
+
+
+@pytest.mark.parametrize("snr", [10.0, 100.0])
+def test_pure_noise_is_not_climbed(snr):
+    rng = np.random.default_rng(21)
+    bias, _ = _bias(1 + rng.standard_normal(len(WAVE)) / snr, np.ones(len(WAVE)))
+    assert abs(np.mean(bias)) < 0.1 / snr
+    assert np.std(bias) < 0.15 / snr
+
+
+def test_crowded_absorption_is_followed_along_its_upper_edge():
+    """Lines drawn as in a cool dwarf: one per 3 FWHM, depths with a power law down to
+    nothing, so that few samples are free of any line."""
+    rng = np.random.default_rng(22)
+    y = np.zeros(len(WAVE))
+    for centre in rng.uniform(WAVE[0], WAVE[-1], 1500):
+        depth = 0.9 * rng.uniform() ** 3
+        a, b = np.searchsorted(WAVE, [centre - 0.6, centre + 0.6])
+        y[a:b] = 1 - (1 - y[a:b]) * (1 - depth * np.exp(-0.5 * ((WAVE[a:b] - centre) / 0.057) ** 2))
+    bias, measured = _bias(1 - y + 0.01 * rng.standard_normal(len(WAVE)), np.ones(len(WAVE)))
+    assert abs(np.median(bias)) < 0.005
+    assert np.mean(measured.features.sign > 0) > 0.98
+
+
+def test_emission_lines_lift_nothing():
+    rng = np.random.default_rng(23)
+    flux = 2.0 + 0.02 * rng.standard_normal(len(WAVE))
+    centres = np.arange(5003, 5598, 5.0)
+    heights = 10 ** rng.uniform(-0.5, 3.3, len(centres))
+    for centre, height in zip(centres, heights, strict=True):
+        flux += height * np.exp(-0.5 * ((WAVE - centre) / 0.08) ** 2)
+    bias, measured = _bias(flux, np.full(len(WAVE), 2.0))
+    assert np.max(np.abs(bias)) < 0.01
+    f = measured.features
+    for centre, height in zip(centres, heights, strict=True):
+        k = np.argmin(np.abs(f.wave - centre))
+        assert abs(f.wave[k] - centre) < 0.02 and f.sign[k] == -1
+        assert f.depth[k] == pytest.approx(-height / 2.0, rel=0.1)
+
+
+def test_a_blaze_is_followed():
+    rng = np.random.default_rng(24)
+    blaze = 1e4 * np.sinc((WAVE - 5300) / 700) ** 2
+    flux = blaze * (1 + 0.01 * rng.standard_normal(len(WAVE)))
+    bias, _ = _bias(flux, blaze)
+    assert np.max(np.abs(bias)) < 0.015
+    assert abs(np.mean(bias)) < 0.003
+
+
+def test_an_isolated_dip_of_nodes_is_bridged_and_a_slope_is_not():
+    centre = np.arange(20.0)
+    level = 1 + 0.01 * centre + 0.0005 * np.random.default_rng(1).standard_normal(20)
+    dipped = level.copy()
+    dipped[9] *= 0.97
+    assert bridge_dips(centre, dipped)[9] == pytest.approx(level[9], rel=2e-3)
+    assert np.allclose(bridge_dips(centre, level), level, rtol=2e-3)
+
+
+def test_the_cubic_is_monotone_between_nodes():
+    centre, level = np.array([0.0, 1, 2, 3, 4]), np.array([1.0, 1.0, 5.0, 5.2, 9.0])
+    curve = smooth_run(np.linspace(0, 4, 401), centre, level)
+    assert np.all(np.diff(curve) >= -1e-12)
+    assert np.allclose(smooth_run(centre, centre, level), level)
