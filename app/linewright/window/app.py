@@ -57,7 +57,7 @@ def open_later(window, files: list[str]) -> None:
     """After the first paint: named files, or the drawing library while nothing is asked."""
     from PySide6.QtCore import QTimer
 
-    from .acts.opening import open_files
+    from .commands import opening
 
     if files:
-        QTimer.singleShot(0, lambda: open_files(window.bench, files))
+        QTimer.singleShot(0, lambda: opening.open_files(window.bench, files))

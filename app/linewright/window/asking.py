@@ -7,8 +7,11 @@ from pathlib import Path
 from PySide6.QtWidgets import QFileDialog
 
 from . import layout_memory as memory
-from .acts import claiming, opening, saving, viewing
-from .workspace_names import TABLES
+from .commands import claim as claiming
+from .commands import opening, saving
+from .commands import view as viewing
+from .formats import FIGURES, SUFFIX, TABLES
+from .workspace_names import TABLES as TABS
 
 SPECTRA = ("Spectra and sessions (*.fits *.fit *.fts *.fits.gz *.fz *.txt *.dat *.asc *.csv *.tsv "
            "*.tab *.ecsv *.vot *.xml *.json);;All files (*)")
@@ -45,16 +48,16 @@ class Questions:
             saving.save(self.bench, then=then)
 
     def ask_save(self, then=lambda: None) -> None:
-        path = self._ask_path("Save session", saving.suggested(self.bench, saving.SUFFIX),
-                              f"Sessions (*{saving.SUFFIX})")
+        path = self._ask_path("Save session", saving.suggested(self.bench, SUFFIX),
+                              f"Sessions (*{SUFFIX})")
         if path is not None:
             if not path.name.endswith(".json"):
-                path = path.with_name(path.name + saving.SUFFIX)
+                path = path.with_name(path.name + SUFFIX)
             saving.save(self.bench, path, then)
 
     def ask_table(self) -> None:
         what = self.table_shown()
-        kinds = ";;".join(f"{s.upper()} (*.{s})" for s in saving.TABLES)
+        kinds = ";;".join(f"{s.upper()} (*.{s})" for s in TABLES)
         path = self._ask_path(
             f"Export the {TABLE_NAMES[what]}", saving.suggested(self.bench, f".{what}.ecsv"), kinds)
         if path is not None:
@@ -62,11 +65,11 @@ class Questions:
 
     def table_shown(self) -> str:
         """The table of the tab in front; the Ledger for the Catalogue's tab."""
-        what = TABLES[self.space.tables.currentIndex()]
+        what = TABS[self.space.tables.currentIndex()]
         return what if what in TABLE_NAMES else "ledger"
 
     def ask_figure(self) -> None:
-        kinds = ";;".join(f"{s.upper()} (*.{s})" for s in saving.FIGURES)
+        kinds = ";;".join(f"{s.upper()} (*.{s})" for s in FIGURES)
         path = self._ask_path("Export the figure of what is in view",
                               saving.suggested(self.bench, ".pdf"), kinds)
         if path is not None:

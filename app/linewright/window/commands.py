@@ -1,13 +1,30 @@
-"""Commands as data: menus, tool tips, the palette and the help page come from here."""
+"""Commands as data: menus, tool tips, the palette and the help page come from here.
+
+Acts are named, not imported: the welcome page opens without the core.
+"""
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from importlib import import_module
 
-from .acts import claiming as claim
-from .acts import opening, saving, solving
-from .acts import viewing as view
+from .formats import FIGURES, TABLES
+
+
+class _Acts:
+    """An act's module, imported when one of its functions is called."""
+
+    def __init__(self, name: str):
+        self._name = name
+
+    def __getattr__(self, act: str):
+        return lambda *arguments, **named: getattr(
+            import_module(f".acts.{self._name}", __package__), act)(*arguments, **named)
+
+
+claim, opening, saving, solving, view = (
+    _Acts(name) for name in ("claiming", "opening", "saving", "solving", "viewing"))
 
 MENUS = ("File", "Edit", "Spectrum", "Claims", "View", "Help")
 
@@ -51,6 +68,22 @@ def has_features(bench) -> bool:
     return bench.session is not None and len(bench.session.features) > 0
 
 
+def can_solve(bench) -> bool:
+    return has_spectrum(bench) and not bench.tasks.busy("solve")
+
+
+def has_feature(bench) -> bool:
+    return bench.session is not None and claim.has_feature(bench)
+
+
+def has_candidate(bench) -> bool:
+    return bench.session is not None and claim.has_candidate(bench)
+
+
+def is_persons(bench) -> bool:
+    return bench.session is not None and claim.is_persons(bench)
+
+
 def _c(id, title, keys, menu, enabled, run, tip, **more) -> Command:  # noqa: A002
     return Command(id, title, tuple(keys.split(" | ")) if keys else (), menu, enabled, run, tip,
                    **more)
@@ -69,10 +102,10 @@ def _file() -> list[Command]:
            lambda b: b.window.ask_save(), "Save under another name", group=1),
         _c("file.table", "Export table…", "Ctrl+E", "File", has_features,
            lambda b: b.window.ask_table(), "Write the table shown below; the suffix decides "
-           "the format: " + " ".join(saving.TABLES), group=2),
+           "the format: " + " ".join(TABLES), group=2),
         _c("file.figure", "Export figure…", "Ctrl+Shift+E", "File", has_spectrum,
            lambda b: b.window.ask_figure(), "Draw the range in view, annotated, for a paper: "
-           + " ".join(saving.FIGURES), group=2),
+           + " ".join(FIGURES), group=2),
         _c("file.close", "Close spectrum", "Ctrl+W", "File", has_session,
            opening.close_desk, "Close this spectrum; unsaved work is asked about", group=3),
         _c("file.next", "Next open spectrum", "Ctrl+PgDown", "File", lambda b: len(b.desks) > 1,
@@ -103,7 +136,7 @@ def _edit() -> list[Command]:
 def _spectrum() -> list[Command]:
     medium = lambda name: lambda b: has_session(b) and b.session.spectrum.medium == name  # noqa
     return [
-        _c("spectrum.solve", "Solve", "F5", "Spectrum", solving.can_solve, solving.solve,
+        _c("spectrum.solve", "Solve", "F5", "Spectrum", can_solve, solving.solve,
            "Measure every feature, find the velocity and say what made each"),
         _c("spectrum.stop", "Stop solving", "Ctrl+.", "Spectrum",
            lambda b: b.tasks.busy("solve"), solving.stop, "Stop; nothing is changed"),
@@ -131,30 +164,30 @@ def _claims() -> list[Command]:
                   f"Claim the candidate ranked {n}")
     return [
         _c("claim.accept", "Accept candidate", "Ctrl+Return | Ctrl+Enter", "Claims",
-           claim.has_candidate, claim.accept, "Claim the candidate marked in Evidence: it "
+           has_candidate, claim.accept, "Claim the candidate marked in Evidence: it "
            "becomes firm, said by you", short="Accept"),
         rank(2), rank(3),
-        _c("claim.species", "Type a species", "F2", "Claims", claim.has_feature,
+        _c("claim.species", "Type a species", "F2", "Claims", has_feature,
            lambda b: b.window.focus_species(), "Claim a species that is not among the candidates"),
-        _c("claim.blend", "Mark or unmark a blend", "Ctrl+B", "Claims", claim.has_feature,
+        _c("claim.blend", "Mark or unmark a blend", "Ctrl+B", "Claims", has_feature,
            claim.toggle_blend, "Say that the marked candidate contributes as well", short="Blend"),
-        _c("claim.note", "Write a note", "Ctrl+M", "Claims", claim.has_feature,
+        _c("claim.note", "Write a note", "Ctrl+M", "Claims", has_feature,
            lambda b: b.window.ask_note(), "A note kept with this feature", short="Note"),
-        _c("claim.aside", "Set aside as artefact", "Del", "Claims", claim.has_feature,
+        _c("claim.aside", "Set aside as artefact", "Del", "Claims", has_feature,
            claim.set_aside, "Not a spectral line; the row stays, struck out", short="Set aside",
            group=1),
-        _c("claim.cosmic", "Set aside as cosmic ray", "Shift+Del", "Claims", claim.has_feature,
+        _c("claim.cosmic", "Set aside as cosmic ray", "Shift+Del", "Claims", has_feature,
            lambda b: claim.set_aside(b, "cosmic ray"), "A particle hit, not a line", group=1),
-        _c("claim.edge", "Set aside as gap edge", "", "Claims", claim.has_feature,
+        _c("claim.edge", "Set aside as gap edge", "", "Claims", has_feature,
            lambda b: claim.set_aside(b, "gap edge"), "Made by a gap or the end of the spectrum",
            group=1),
-        _c("claim.restore", "Restore the machine's claim", "Ctrl+R", "Claims", claim.is_persons,
+        _c("claim.restore", "Restore the machine's claim", "Ctrl+R", "Claims", is_persons,
            claim.restore, "Forget your act on this feature; the note stays", group=1),
-        _c("claim.lock", "Keep when solved again", "Ctrl+K", "Claims", claim.has_feature,
+        _c("claim.lock", "Keep when solved again", "Ctrl+K", "Claims", has_feature,
            claim.toggle_lock, "Solving again leaves this claim as it stands", group=1,
-           checked=lambda b: claim.has_feature(b)
+           checked=lambda b: has_feature(b)
            and b.session.claims[b.selected_row()].locked),
-        _c("claim.remove", "Remove feature", "Ctrl+Del", "Claims", claim.has_feature,
+        _c("claim.remove", "Remove feature", "Ctrl+Del", "Claims", has_feature,
            claim.remove, "Take the feature out of the Ledger (undo brings it back)", group=1),
         _c("claim.next", "Next feature", "Alt+Down", "Claims", has_features,
            lambda b: claim.step_feature(b, 1), "Select the next row of the Ledger", group=2),
@@ -197,7 +230,7 @@ def _view() -> list[Command]:
            lambda b: b.window.spectrum_view.step(0.25), "Move by a quarter of the view"),
         _c("view.goto", "Go to wavelength…", "Ctrl+G", "View", has_spectrum,
            lambda b: b.window.ask_wavelength(), "Type 5183.6, or a range 5160:5200", group=1),
-        _c("view.selected", "Go to the selected feature", "Ctrl+J", "View", claim.has_feature,
+        _c("view.selected", "Go to the selected feature", "Ctrl+J", "View", has_feature,
            view.look_at_selected, "Centre the view on it", group=1),
         _c("view.flux", "Automatic flux scale", "Ctrl+Shift+0", "View", has_spectrum,
            lambda b: b.window.spectrum_view.auto_flux(),

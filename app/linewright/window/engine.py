@@ -11,7 +11,6 @@ from pathlib import Path
 
 from ..errors import Cancelled, LinewrightError
 from ..progress import Progress
-from .parcels import packed, unpacked
 
 _PACKAGE_PARENT = str(Path(__file__).resolve().parents[2])
 _START = "from linewright.window.engine_child import serve; serve()"
@@ -47,6 +46,8 @@ class Engine:
         Raises what the function raises, Cancelled after ``stop``, EngineLost when the
         process died.
         """
+        from .parcels import packed
+
         with self._turn:
             self._stopped = False
             if progress is not None:
@@ -63,6 +64,8 @@ class Engine:
                 raise self._ending() from broken
 
     def _await(self, child, progress: Progress | None):
+        from .parcels import unpacked
+
         while True:
             kind, *content = unpacked(pickle.load(child.stdout))
             if kind == "done":

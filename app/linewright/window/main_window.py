@@ -7,10 +7,9 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import QApplication, QMainWindow, QStackedWidget, QVBoxLayout, QWidget
 
 from . import layout_memory as memory
-from .acts import opening
 from .ask_bar import AskBar
 from .asking import Questions
-from .commands import command_table
+from .commands import command_table, opening
 from .menus import Menus
 from .notices import Notice, NoticeBar
 from .showing import Showing

@@ -5,8 +5,7 @@ from __future__ import annotations
 from PySide6.QtGui import QAction, QKeySequence
 
 from . import layout_memory as memory
-from .acts import opening
-from .commands import MENUS
+from .commands import MENUS, opening
 
 
 class Menus:

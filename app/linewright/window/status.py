@@ -5,14 +5,14 @@ from __future__ import annotations
 from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QLabel, QProgressBar, QPushButton, QStatusBar
 
-from ..job.view_depths import conditions
-
 
 def description(bench) -> str:
     """file · medium · frame · samples · temperature · saved"""
     session = bench.session
     if session is None:
         return "No spectrum is open"
+    from ..job.view_depths import conditions
+
     s = session.spectrum
     medium = s.medium if s.medium != "unknown" else "air or vacuum?"
     frame = f"{s.frame} frame" if s.frame != "unknown" else "frame not stated"

@@ -2,22 +2,32 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
-
-import numpy as np
+from typing import TYPE_CHECKING
 
 from ..errors import LinewrightError
-from ..job.options import SolveOptions
-from ..session.document import Document
-from ..session.model import Candidate, Session
-from ..spectra.spectrum import Spectrum
 from .engine import Engine
 from .notices import Notice
 from .tasks import Tasks
 from .theme import LIGHT
 from .view_state import ViewState
+
+if TYPE_CHECKING:  # the welcome page opens without the core
+    import numpy as np
+
+    from ..job.options import SolveOptions
+    from ..session.document import Document
+    from ..session.model import Candidate, Session
+    from ..spectra.spectrum import Spectrum
+
+
+def _options() -> SolveOptions:
+    from ..job.options import SolveOptions
+
+    return SolveOptions()
 
 
 @dataclass(eq=False)
@@ -27,7 +37,7 @@ class Desk:
     spectrum: Spectrum | None
     document: Document
     path: Path | None = None
-    options: SolveOptions = field(default_factory=SolveOptions)
+    options: SolveOptions = field(default_factory=_options)
     span: tuple[float, float] | None = None
     velocity: float = 0.0
     selected: int | None = None
@@ -107,10 +117,10 @@ class Workbench:
         if desk is not self.desk:
             return
         selected = self.view.now.selected
-        if selected is not None and not np.any(new.features.number == selected):
+        if selected is not None and selected not in new.features.number:
             self.view.select(None)
         velocity = new.velocity.velocity
-        if velocity != old.velocity.velocity and np.isfinite(velocity):
+        if velocity != old.velocity.velocity and math.isfinite(velocity):
             self.view.change(velocity=float(velocity))
         self.tell(old, new)
 
@@ -119,7 +129,7 @@ class Workbench:
         number = self.view.now.selected
         if self.session is None or number is None:
             return None
-        at = np.nonzero(self.session.features.number == number)[0]
+        at = (self.session.features.number == number).nonzero()[0]
         return int(at[0]) if len(at) else None
 
     def candidate(self) -> Candidate | None:

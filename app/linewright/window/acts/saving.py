@@ -8,13 +8,11 @@ from pathlib import Path
 from ...errors import LinewrightError
 from ...resources import samples_dir
 from .. import layout_memory as memory
+from ..formats import SUFFIX
 from ..notices import Notice
 from ..tasks import Request
 
-SUFFIX = ".linewright.json"
 CALLS = "window.export_calls"
-TABLES = ("ecsv", "csv", "tex", "vot", "mrt")
-FIGURES = ("pdf", "svg", "png")
 
 
 def suggested(bench, suffix: str) -> str:

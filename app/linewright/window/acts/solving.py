@@ -9,10 +9,6 @@ from ..tasks import Request
 from . import opening
 
 
-def can_solve(bench) -> bool:
-    return bench.spectrum is not None and not bench.tasks.busy("solve")
-
-
 def solve(bench) -> None:
     """Solves the shown spectrum as it stands now; editing goes on meanwhile."""
     if bench.session.spectrum.medium not in ("air", "vacuum"):
