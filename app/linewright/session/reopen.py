@@ -7,7 +7,8 @@ from ..spectra.spectrum import Spectrum
 from .file import locate_spectrum
 from .model import Session
 
-READ_CHOICES = ("medium", "frame", "hdu", "row", "columns", "unit")
+READ_CHOICES = ("medium", "frame", "hdu", "row", "columns", "unit", "zero_point", "barycentric",
+                "heliocentric")
 
 
 def reopen_spectrum(session: Session, folders=()) -> Spectrum:

@@ -16,7 +16,9 @@ from ..errors import InputRefused, LinewrightError
 from .clean import clean_segments
 from .columns import parse_columns
 from .coverage import gap_steps
+from .earth_motion import corrected, zero_point_removed
 from .medium import AIR_LIMIT
+from .observation import observation_of
 from .opening import Opened, check_unchanged, open_checked
 from .raw import Card, Raw, Wanted
 from .spectrum import FRAMES, MEDIA, Spectrum
@@ -150,6 +152,8 @@ class Choices(TypedDict, total=False):
     columns: mapping or 'wave=1,flux=2,err=3' of wave, flux, err, ivar, mask to numbers
         from 1 or names
     unit: of the wavelengths, as in a file
+    zero_point: (km/s, error) of telluric or sky lines, taken out of the wavelengths
+    barycentric, heliocentric: km/s to apply once, lambda (1 + v/c); never on top of another
     """
 
     medium: str | None
@@ -158,6 +162,9 @@ class Choices(TypedDict, total=False):
     row: int | None
     columns: str | dict | None
     unit: str | None
+    zero_point: tuple[float, float] | None
+    barycentric: float | None
+    heliocentric: float | None
 
 
 def _given(choices: dict) -> dict:
@@ -195,10 +202,25 @@ def read_spectrum(path, **choices: Unpack[Choices]) -> Spectrum:
     if _scattered(segments):
         notes.append("the samples are scattered like a list of features: to identify a feature "
                      "table use --features")
-    return Spectrum(
+    spectrum = Spectrum(
         segments, known.medium, known.medium_from, known.frame, known.frame_from,
         raw.flux_unit, raw.name, str(opened.path), opened.sha256,
         raw.layout + (f" ({opened.packing})" if opened.packing else ""),
         known.corrections, (*raw.warnings, *known.warnings, *notes), _resolution(raw),
-        {**raw.choices, **given},
+        {**raw.choices, **{k: v for k, v in given.items() if k not in _MOVES}},
+        known.observer_velocity, observation_of(raw.cards),
     )
+    return _moved(spectrum, given)
+
+
+_MOVES = ("zero_point", "barycentric", "heliocentric")
+
+
+def _moved(spectrum: Spectrum, given: dict) -> Spectrum:
+    """The zero point is taken out first, in the observer's frame; then one correction."""
+    if "zero_point" in given:
+        spectrum = zero_point_removed(spectrum, *map(float, given["zero_point"]))
+    for kind in _MOVES[1:]:
+        if kind in given:
+            spectrum = corrected(spectrum, float(given[kind]), kind)
+    return spectrum

@@ -36,6 +36,9 @@ class Spectrum:
     an unknown medium are the file's numbers, unconverted. ``*_from`` say how a thing is
     known. ``corrections`` lists velocity corrections already applied by others.
     ``read_options`` are the choices needed to read the same file again.
+    ``observer_velocity``: km/s at which lines of the Earth's air must stand after a
+    correction whose number is known, NaN otherwise. ``observation``: place, target and time
+    (spectra.observation.Observation) where the file tells them, else None.
     """
 
     segments: tuple[Segment, ...]
@@ -52,6 +55,8 @@ class Spectrum:
     warnings: tuple[str, ...] = ()
     resolution: float | None = None
     read_options: dict = field(default_factory=dict)
+    observer_velocity: float = float("nan")
+    observation: object | None = None
 
     @property
     def samples(self) -> int:

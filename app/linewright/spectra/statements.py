@@ -26,7 +26,6 @@ _MEDIUM_TEXT = re.compile(
 _FRAME_TEXT = re.compile(
     r"\b(?P<f>barycent\w+|heliocent\w+|topocent\w+|geocent\w+|rest)[ -](?:rest[ -])?frame\b"
     r"|\bcorrected to (?:the )?(?P<g>barycent\w+|heliocent\w+)", re.IGNORECASE)
-_APPLIED_KEYS = (("HELIO_RV", "heliocentric"),)
 _OFFERED_KEYS = re.compile(
     r"^(?:BERV|BARYCORR|HELIOCORR|VHELIO|BARYVEL|HELIOVEL|BVC|BC|VHELCORR"
     r"|.*\b(?:BERV|BARYCOR|HELICOR))$")
@@ -34,7 +33,10 @@ _OFFERED_KEYS = re.compile(
 
 @dataclass(frozen=True)
 class Known:
-    """What is known about a spectrum's wavelengths."""
+    """What is known about a spectrum's wavelengths.
+
+    observer_velocity: km/s of a correction already applied, NaN when none or not stated
+    """
 
     medium: str
     medium_from: str
@@ -42,6 +44,7 @@ class Known:
     frame_from: str
     corrections: tuple[str, ...]
     warnings: tuple[str, ...]
+    observer_velocity: float = float("nan")
 
 
 def _as_medium(value) -> str:
@@ -149,24 +152,36 @@ def find_frame(raw: Raw, notes: list[str]) -> tuple[str, str]:
     return "unknown", "not stated"
 
 
-def find_corrections(raw: Raw, frame: str, notes: list[str]) -> tuple[str, ...]:
-    """Velocity corrections already in the wavelengths; offered ones become notes."""
-    applied, offered = [], []
-    applied_frame = frame in ("heliocentric", "barycentric")
-    kind = kind_of(raw.cards)
-    for card in raw.cards:
+def stated_corrections(cards: tuple[Card, ...]) -> list[tuple[float, str, bool]]:
+    """(km/s, keyword, whether the kind of file says it is the applied one) in header order."""
+    kind, found = kind_of(cards), []
+    for card in cards:
         key = card.key.upper()
         if isinstance(card.value, bool) or not isinstance(card.value, (int, float)):
             continue
-        wanted = key == "HELIO_RV" or (kind and key in kind.correction_keys)
-        if wanted or _OFFERED_KEYS.match(key):
-            text = f"{card.value:+.2f} km/s ({key})"
-            (applied if wanted and applied_frame else offered).append(text)
-    if offered and not applied:
+        wanted = key == "HELIO_RV" or (kind is not None and key in kind.correction_keys)
+        if (wanted or _OFFERED_KEYS.match(key)) and abs(card.value) < 100:
+            found.append((float(card.value), key, bool(wanted)))
+    return found
+
+
+def find_corrections(raw: Raw, frame: str, notes: list[str]) -> tuple[tuple[str, ...], float]:
+    """(velocity corrections already in the wavelengths, km/s of the first or NaN).
+
+    Offered ones become notes.
+    """
+    moved = frame in ("heliocentric", "barycentric")
+    stated = stated_corrections(raw.cards)
+    applied = [(v, key) for v, key, wanted in stated if wanted and moved]
+    if applied:
+        velocity, key = applied[0]
+        text = f"{frame} correction {velocity:+.2f} km/s ({key}) already applied"
+        return (text,), velocity
+    if stated:
         state = "not applied" if frame == "topocentric" else "whether applied is not said"
-        notes.append(f"the header gives a correction of {offered[0]}: {state}")
-    done = tuple(dict.fromkeys(f"{frame} correction {text} already applied" for text in applied))
-    return done[:1]
+        notes.append(f"the header gives a correction of {stated[0][0]:+.2f} km/s "
+                     f"({stated[0][1]}): {state}")
+    return (), float("nan")
 
 
 def known_of(raw: Raw) -> Known:
@@ -174,5 +189,5 @@ def known_of(raw: Raw) -> Known:
     notes: list[str] = []
     medium, medium_from = find_medium(raw, notes)
     frame, frame_from = find_frame(raw, notes)
-    corrections = find_corrections(raw, frame, notes)
-    return Known(medium, medium_from, frame, frame_from, corrections, tuple(notes))
+    corrections, velocity = find_corrections(raw, frame, notes)
+    return Known(medium, medium_from, frame, frame_from, corrections, tuple(notes), velocity)
