@@ -9,7 +9,7 @@ import numpy as np
 ABSORPTION, EMISSION = 1, -1
 MIN_RESOLUTION = 0.04  # Angstrom; lines closer than this are one feature in any spectrum
 RESOLUTION_SHARE = 0.45  # of the FWHM: lines closer than this are one feature
-SHARE_EXPONENT = 0.85  # softens predicted opacities, whose log scatter is about 0.15 dex
+SHARE_EXPONENT = 1.1  # softens predicted opacities, whose log scatter is 0.2 to 0.3 dex
 
 
 @dataclass(frozen=True, eq=False)

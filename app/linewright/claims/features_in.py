@@ -10,6 +10,8 @@ SHALLOWEST, DEEPEST = 0.002, 0.98
 MIN_FOR_WIDTHS = 40
 BROAD = 1.25  # a feature this much broader than its like is a blend
 EXCESS_SHARE = 0.25  # of the surplus width: how far its centroid may be off any one line
+CROWD = 2.0  # widths
+SHARED = ("blend", "wing", "fallback")
 LN10 = np.log(10.0)
 
 
@@ -29,6 +31,8 @@ def feature_data(features, overlapping: bool = False) -> FeatureData:
     strength_err = np.where(line, absorption_err, emission_err)
     # A fit whose error exceeds its width has failed; its peak is still inside the line.
     failed = 0.5 * np.where(features.fwhm > 0, features.fwhm, np.inf)
+    usual = usual_width(features.wave, features.fwhm, strength, features.sign)
+    surplus = np.maximum(features.fwhm**2 - (BROAD * usual) ** 2, 0.0)
     return FeatureData(
         features.wave,
         np.minimum(features.wave_err, failed),
@@ -36,26 +40,35 @@ def feature_data(features, overlapping: bool = False) -> FeatureData:
         features.sign,
         strength,
         np.clip(np.nan_to_num(strength_err, nan=0.0), 0.0, 2.0),
-        excess_error(features.wave, features.fwhm, strength, features.sign),
+        EXCESS_SHARE * np.sqrt(np.nan_to_num(surplus)),
         features.segment if overlapping else np.zeros(len(features), dtype=int),
+        is_crowded(features),
     )
 
 
-def excess_error(wave, fwhm, strength, sign):
-    """Position error (Angstrom) of features too broad for their strength; 0 for the rest.
+def is_crowded(features):
+    """True where the nearest other feature is closer than CROWD widths, or a fit was shared."""
+    wave = features.wave
+    order = np.lexsort((wave, features.segment))
+    step = np.abs(np.diff(wave[order]))
+    gap = np.full(len(wave), np.inf)
+    if len(step):
+        gap[order[:-1]] = step
+        gap[order[1:]] = np.minimum(gap[order[1:]], step)
+    shared = np.array([any(w in flag for w in SHARED) for flag in features.flags], dtype=bool)
+    return (gap < CROWD * np.nan_to_num(features.fwhm)) | shared
 
-    The width expected at a strength is the running median over features of like strength.
-    """
-    out = np.zeros(len(wave))
+
+def usual_width(wave, fwhm, strength, sign):
+    """FWHM (Angstrom) usual at each feature's strength: a running median over its like; NaN
+    where too few are measured."""
+    out = np.full(len(wave), np.nan)
     for s in (1, -1):
         rows = np.nonzero((sign == s) & np.isfinite(fwhm) & np.isfinite(strength) & (fwhm > 0))[0]
         if len(rows) < MIN_FOR_WIDTHS:
             continue
         order = rows[np.argsort(strength[rows], kind="stable")]
-        relative = fwhm[order] / wave[order]
-        expected = _running_median(relative) * wave[order]
-        surplus = np.maximum(fwhm[order] ** 2 - (BROAD * expected) ** 2, 0.0)
-        out[order] = EXCESS_SHARE * np.sqrt(surplus)
+        out[order] = _running_median(fwhm[order] / wave[order]) * wave[order]
     return out
 
 

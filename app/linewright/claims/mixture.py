@@ -38,7 +38,7 @@ class State:
     null: Null
     offsets: np.ndarray
     offset_errors: np.ndarray
-    error_scale: float
+    error_scale: np.ndarray
     scatter: np.ndarray
 
 
@@ -83,7 +83,7 @@ def _first_state(problem: Problem) -> State:
     relations = tuple(first_relation(f.strength) for _ in range(problem.populations))
     null = learn_null(f, np.full(len(f), 0.1), problem.length(), problem.complete)
     zero = np.zeros(problem.species)
-    return State(curves, relations, null, zero, zero + 0.4, 1.0, zero + LIST_SCATTER)
+    return State(curves, relations, null, zero, zero + 0.4, np.ones(2), zero + LIST_SCATTER)
 
 
 class _Pairs:
@@ -140,7 +140,8 @@ def _position(problem, pairs, state, groups):
     """Position likelihood per pair: the line's own place, or its blend's centroid."""
     e, f = problem.entries, problem.features
     list_error = np.hypot(e.error, state.scatter[e.species])
-    sigma = np.hypot(pairs.base[pairs.feature] * state.error_scale, list_error[pairs.entry])
+    scale = state.error_scale[f.crowded.astype(int)]
+    sigma = np.hypot((pairs.base * scale)[pairs.feature], list_error[pairs.entry])
     x = f.wave[pairs.feature]
     own = x - e.wave[pairs.entry]
     blend = x - groups.centroid[pairs.entry]
@@ -196,19 +197,21 @@ def _learn(problem, pairs, step: _Step, state: State, turn: int) -> State:
         detection=tuple(detection),
         relation=tuple(relation),
         null=learn_null(f, step.marginals.unlisted, problem.length(), problem.complete),
-        error_scale=_error_scale(step, pairs, state.error_scale),
+        error_scale=np.array(
+            [_error_scale(step, f.crowded[pairs.feature] == k, state.error_scale[k]) for k in (0, 1)]
+        ),
         scatter=_species_scatter(problem, pairs, step),
     )
     return _learn_offsets(problem, pairs, step, state) if turn >= 1 else state
 
 
-def _error_scale(step: _Step, pairs: _Pairs, previous: float) -> float:
-    """Robust scale of confident offsets, in units of their present sigma."""
-    sure = step.marginals.pair > 0.9
+def _error_scale(step: _Step, which, previous: float) -> float:
+    """Robust scale of likely offsets (clean or crowded features) in their present sigma."""
+    sure = (step.marginals.pair > 0.7) & which
     if np.sum(sure) < 15:
         return previous
     scale = 1.4826 * float(np.median(np.abs(step.offset[sure])))
-    return float(np.clip(previous * scale, 0.6, 4.0))
+    return float(np.clip(previous * scale, 0.5, 4.0))
 
 
 def _species_scatter(problem, pairs, step: _Step):

@@ -17,7 +17,8 @@ class FeatureData:
     sign: +1 absorption, -1 emission; strength: measured strength m, dex (NaN unknown):
     log10(d/(1-d)) of the central depth in absorption, log10 of line flux in emission;
     strength_err: dex; excess: position error (Angstrom) of features broader than others of
-    their strength, which are unresolved blends; segment: index, all 0 unless segments overlap
+    their strength, which are unresolved blends; segment: index, all 0 unless segments overlap;
+    crowded: True where a neighbour stands so near that it disturbs the centroid
     """
 
     wave: np.ndarray
@@ -28,6 +29,7 @@ class FeatureData:
     strength_err: np.ndarray
     excess: np.ndarray
     segment: np.ndarray
+    crowded: np.ndarray
 
     def __len__(self) -> int:
         return len(self.wave)
