@@ -142,3 +142,14 @@ def test_the_buttons_of_evidence_do_what_the_keys_do(chosen, qtbot):
     assert claim(chosen).by == "person"
     qtbot.mouseClick(buttons["claim.aside"], Qt.MouseButton.LeftButton)
     assert claim(chosen).standing == "set aside"
+
+
+def test_the_walk_begins_in_view_when_nothing_is_selected(solved, qtbot):
+    from linewright.spectra.medium import to_medium
+
+    bench = solved.bench
+    bench.view.select(None)
+    bench.view.change(span=(5200.0, 5220.0))
+    press(qtbot, solved, "Alt+Down")
+    wave = to_medium(bench.session.features.wave, "air")
+    assert bench.selected_row() == int((wave < 5200.0).sum())

@@ -95,13 +95,21 @@ def test_an_unknown_medium_is_asked_about_quietly(window, qtbot, text_file):
     assert window.bench.spectrum.medium == "air"
 
 
-def test_solving_without_a_medium_asks_instead(window, qtbot, text_file):
+def test_solving_without_a_medium_asks_and_goes_on(
+        window, qtbot, text_file, monkeypatch, invented):
+    import window_builders as build
+
     opening.open_files(window.bench, [text_file])
     opened(window, qtbot)
     window.notices.dismiss()
     window.bench.run("spectrum.solve")
     assert window.notices.current.topic == "medium"
     assert not window.bench.tasks.busy("solve")
+    from linewright.window.acts import solving
+
+    monkeypatch.setattr(solving, "_solved", lambda *a: build.session_of(a[1], invented))
+    qtbot.mouseClick(button(window, "Air"), Qt.MouseButton.LeftButton)
+    qtbot.waitUntil(lambda: window.ledger.model.rowCount() == len(invented), timeout=15000)
 
 
 @pytest.mark.parametrize("content", [b"", b"no numbers here\n", b"\x89PNG\r\n\x1a\n", b"{\"a\":1}"])

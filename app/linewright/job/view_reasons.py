@@ -31,7 +31,7 @@ def reasons(
     if roll is not None:
         _siblings(roll, good, bad)
     if claim.p_unlisted > 0.2:
-        bad.append(f"an unlisted line is as good as {claim.p_unlisted:.0%} probable")
+        bad.append(f"no listed line made it, with probability {claim.p_unlisted:.2f}")
     return Reasons(tuple(good), tuple(bad))
 
 

@@ -88,8 +88,9 @@ class NoticeBar(QFrame):
         if notice is None:
             return
         self.setProperty("kind", notice.kind)
-        self.style().unpolish(self)
-        self.style().polish(self)
+        for part in (self, self._glyph):  # the colours depend on the kind
+            self.style().unpolish(part)
+            self.style().polish(part)
         self._glyph.setText(GLYPHS[notice.kind])
         self._text.setText(notice.text)
         self.setAccessibleDescription(notice.text)

@@ -21,6 +21,16 @@ def description(bench) -> str:
     return " · ".join([bench.desk.name, medium, frame, f"{s.samples:,} samples", known, saved])
 
 
+def provenance(bench) -> str:
+    """How the things in the status line are known, one a line."""
+    if bench.session is None:
+        return ""
+    s = bench.session.spectrum
+    lines = [s.path, f"layout: {s.layout}", f"medium: {s.medium} ({s.medium_from})",
+             f"frame: {s.frame} ({s.frame_from})", *bench.session.warnings]
+    return "\n".join(line for line in lines if line)
+
+
 class StatusLine(QStatusBar):
     """Polls the tasks ten times a second only while one is running."""
 
@@ -49,6 +59,7 @@ class StatusLine(QStatusBar):
 
     def refresh(self) -> None:
         self.text.setText(description(self._bench))
+        self.text.setToolTip(provenance(self._bench))
 
     def watch(self) -> None:
         """Called when a task begins."""

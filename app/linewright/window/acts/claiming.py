@@ -10,6 +10,7 @@ from ...errors import LinewrightError
 from ...lines.species import normal_name
 from ...session import edits, feature_edits
 from ...session.model import Session
+from ...spectra.medium import to_medium
 
 UNDECIDED = ("likely", "tentative", "unclaimed")
 
@@ -122,10 +123,24 @@ def _select_from(bench, rows, direction: int, within=None) -> None:
     if not len(rows):
         return
     order = list(rows if within is None else within)
-    here = bench.selected_row()
     place = {row: k for k, row in enumerate(order)}
-    at = place.get(here, -1 if direction > 0 else len(order))
+    at = place.get(bench.selected_row())
+    if at is None:
+        at = _edge_of_view(bench, order, direction)
     ahead = [r for r in rows if (place[r] - at) * direction > 0]
     if ahead:
         chosen = ahead[0] if direction > 0 else ahead[-1]
         bench.view.select(int(bench.session.features.number[chosen]))
+
+
+def _edge_of_view(bench, order, direction: int) -> float:
+    """With nothing selected the walk begins at the edge of what is in view."""
+    outside = -1 if direction > 0 else len(order)
+    if bench.view.now.span is None:
+        return outside
+    low, high = bench.view.now.span
+    wave = to_medium(bench.session.features.wave, bench.session.spectrum.medium)
+    inside = [k for k, row in enumerate(order) if low <= wave[row] <= high]
+    if not inside:
+        return outside
+    return inside[0] - 0.5 if direction > 0 else inside[-1] + 0.5

@@ -131,22 +131,23 @@ def _show(bench, opened: Opened) -> None:
     if opened.trouble:
         bench.notify(Notice(f"The session is shown without its spectrum. {opened.trouble}",
                             "warning", topic="spectrum"))
-    for warning in session.warnings:
-        bench.notify(Notice(warning, "warning", topic=warning[:40]))
+    elif session.warnings:
+        bench.notify(Notice(f"Assumed in reading: {'; '.join(session.warnings)}.", "note",
+                            seconds=15, topic="reading"))
     ask_medium(bench)
     bench.window.spectrum_view.setFocus()
 
 
-def ask_medium(bench) -> None:
-    """The quiet question, when nothing says what the wavelengths are."""
+def ask_medium(bench, then=lambda: None) -> None:
+    """The quiet question, when nothing says what the wavelengths are; ``then`` follows."""
     bench.withdraw(MEDIUM)
     if bench.session is None or bench.session.spectrum.medium in ("air", "vacuum"):
         return
     bench.notify(Notice(
         f"{bench.desk.name} does not say whether its wavelengths are air or vacuum. "
         "They differ by about 83 km/s. Which are they?", "warning",
-        (("Air", lambda: set_medium(bench, "air")),
-         ("Vacuum", lambda: set_medium(bench, "vacuum"))), topic=MEDIUM))
+        (("Air", lambda: (set_medium(bench, "air"), then())),
+         ("Vacuum", lambda: (set_medium(bench, "vacuum"), then()))), topic=MEDIUM))
 
 
 def set_medium(bench, medium: str) -> None:

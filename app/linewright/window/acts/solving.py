@@ -12,7 +12,7 @@ from . import opening
 def solve(bench) -> None:
     """Solves the shown spectrum as it stands now; editing goes on meanwhile."""
     if bench.session.spectrum.medium not in ("air", "vacuum"):
-        opening.ask_medium(bench)
+        opening.ask_medium(bench, lambda: solve(bench))
         return
     desk, spectrum, options = bench.desk, bench.spectrum, bench.desk.options
     engine = bench.engine

@@ -29,8 +29,10 @@ def heading(session: Session, row: int) -> str:
 
 def verdict(claim: Claim) -> str:
     """What is claimed, how firmly and by whom."""
-    said = claim.species or "no claim"
-    parts = [f"{words.standing(claim.standing)}: {said}", f"by {claim.by}"]
+    said = f": {claim.species}" if claim.species else ""
+    if claim.standing == "unclaimed" and said:
+        said = f", best guess {claim.species}"
+    parts = [f"{words.standing(claim.standing)}{said}", f"by {claim.by}"]
     if claim.blend:
         names = dict.fromkeys(f"{s} {share:.0%}" if math.isfinite(share) else s
                               for s, _w, share in claim.blend)
