@@ -70,6 +70,8 @@ def pulls_of(lines: Lines, with_errors: bool = False):
     spectrum, centres = lines.build(with_errors)
     measured = measure_spectrum(spectrum)
     f = measured.features
+    if not len(f):
+        raise AssertionError(f"no feature found at all: {lines}")
     rows = np.array([np.argmin(np.abs(f.wave - c)) for c in centres])
     found = (np.abs(f.wave[rows] - centres) < 0.7 * lines.fwhm)
     found &= f.sign[rows] == np.sign(lines.depth)

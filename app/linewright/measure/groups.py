@@ -212,7 +212,7 @@ class _Batch:
         high[..., 0] = np.where(sign > 0, big, 0.0)
         low[..., 1] -= 0.5 * width
         high[..., 1] += 0.5 * width
-        low[..., 2] = np.log(np.minimum(0.6 * narrow, 0.8 * width) / FWHM_PER_SIGMA)
+        low[..., 2] = np.log(np.minimum(0.4 * narrow, 0.8 * width) / FWHM_PER_SIGMA)
         high[..., 2] = np.log(np.maximum(1.8 * width, 1.6 * narrow) / FWHM_PER_SIGMA)
         return low, high
 

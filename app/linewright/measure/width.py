@@ -13,6 +13,7 @@ import numpy as np
 
 FWHM_PER_SIGMA = 2.3548200450309493
 LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30)
+BLUNT = 0.7  # sigma in lags below which a block's ratio says little
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
 
@@ -58,6 +59,27 @@ def block_widths(y, noise, good, run, correlation, lag: int) -> np.ndarray:
     return np.c_[middle, lag * sigma * FWHM_PER_SIGMA][fine]
 
 
+def pooled_width(y, noise, good, runs, correlation):
+    """FWHM in samples from all samples at once, at the shortest lag that shows lines; or None."""
+    grid = np.geomspace(0.35, 60.0, 400)
+    for lag in (k for k in LAGS if k >= len(correlation)):
+        r = np.r_[correlation, np.zeros(2 * lag + 1)]
+        sums = np.zeros(4)
+        for run in runs:
+            z, ok, var = y[run], good[run], noise[run] ** 2
+            one, both = z[lag:] - z[:-lag], ok[lag:] & ok[:-lag]
+            two, all3 = one[lag:] - one[:-lag], both[lag:] & both[:-lag]
+            sums += (np.sum(one[both] ** 2 - 2 * (1 - r[lag]) * var[lag:][both]),
+                     np.sum(two[all3] ** 2 - (6 - 8 * r[lag] + 2 * r[2 * lag]) *
+                            var[lag : len(z) - lag][all3]),
+                     np.sum(6.0 * var[lag : len(z) - lag][all3]), all3.sum())
+        doubt = sums[2] * (0.02 + 3.0 / np.sqrt(max(sums[3], 1.0)))
+        if sums[0] > 0 and sums[1] > 3.0 * doubt:
+            sigma = np.interp(-sums[1] / sums[0], -difference_ratio(grid), grid)
+            return float(lag * sigma * FWHM_PER_SIGMA)
+    return None
+
+
 def _mean_square(values, ok):
     return np.sum(np.where(ok, values * values, 0.0), axis=1) / np.maximum(ok.sum(axis=1), 1)
 
@@ -78,9 +100,13 @@ def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
     if share.max() == 0 or max(len(t) for t in tables) < 3:
         return None
     # the shortest lag at which most of the blocks rise above the noise
-    found = tables[int(np.argmax((share >= 0.5 * share.max()) & (share > 0)))]
-    if len(found) < 3:
-        return None
+    chosen = int(np.argmax((share >= 0.5 * share.max()) & (share > 0)))
+    found = tables[chosen]
+    if np.median(found[:, 1]) < BLUNT * lags[chosen] * FWHM_PER_SIGMA:
+        # lines narrower than the lag: single blocks are too noisy, all together are not
+        pooled = pooled_width(y, noise, good, runs, correlation)
+        if pooled is not None:
+            found = np.array([[len(wave) / 2, pooled]])
     at = np.rint(found[:, 0]).astype(int)
     fwhm, where = found[:, 1] * step[at], wave[at]
     flat, slope = np.median(fwhm), np.median(fwhm / where)
