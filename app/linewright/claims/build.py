@@ -48,13 +48,15 @@ class _Builder:
 
     def claim(self, feature: int, pairs) -> Claim:
         unlisted = float(self.s.unlisted[feature])
+        sure = self._certainty(pairs)
+        unlisted = 1.0 - (1.0 - unlisted) * sure
         if len(pairs) == 0:
             return Claim(p_unlisted=1.0)
         best_species = self._species(pairs[np.argmax(self.species_p[pairs])])
         ranked = sorted(pairs, key=lambda p: (-self.species_p[p], -self.s.probability[p], p))
         kept = self._diverse(ranked)
-        probability = min(float(self.species_p[kept[0]]), 1.0)
-        candidates = tuple(self._candidate(p) for p in kept)
+        probability = min(float(self.species_p[kept[0]]), 1.0) * sure
+        candidates = tuple(self._candidate(p, sure) for p in kept)
         others = [c.species for c in candidates if c.species != best_species]
         return Claim(
             species=best_species,
@@ -83,7 +85,16 @@ class _Builder:
                 break
         return kept
 
-    def _candidate(self, pair: int) -> Candidate:
+    def _certainty(self, pairs) -> float:
+        """Certainty of the components behind a feature's pairs, weighted by probability."""
+        if len(pairs) == 0:
+            return 1.0
+        component = self.s.problem.entries.component[self.s.entry[pairs]]
+        certain = np.array([c.certainty for c in self.components])[component]
+        weight = self.s.probability[pairs] + 1e-12
+        return float(np.sum(weight * certain) / np.sum(weight))
+
+    def _candidate(self, pair: int, sure: float) -> Candidate:
         e = self.s.problem.entries
         entry = int(self.s.entry[pair])
         row, cat = int(e.row[entry]), self.catalogue
@@ -96,7 +107,7 @@ class _Builder:
             e_low=float(cat.e_low[row]),
             loggf=float(cat.loggf[row]),
             velocity=float(component.velocity),
-            probability=float(min(self.s.probability[pair], 1.0)),
+            probability=float(min(self.s.probability[pair], 1.0)) * sure,
             share=float(self.s.groups.share[entry]),
             offset_sigma=float(self.s.offset_sigma[pair]),
             depth_predicted=self._depth(entry),

@@ -42,11 +42,13 @@ def find_components(setting, progress) -> Found:
     main, how = _main(setting, star, nebula)
     warnings = _doubts(main, how)
     components = []
+    sure = _certainty(main)
     if np.any(f.sign > 0):
-        components.append(Component(STELLAR, main.velocity))
-        components.append(Component(HYDROGEN, main.velocity))
+        components.append(Component(STELLAR, main.velocity, certainty=sure))
+        components.append(Component(HYDROGEN, main.velocity, certainty=sure))
     if np.any(f.sign < 0):
-        components.append(Component(NEBULAR, _emission_velocity(nebula, main)))
+        certain = max(sure, nebula.certainty)
+        components.append(Component(NEBULAR, _emission_velocity(nebula, main), certainty=certain))
         components.append(Component(SKY, 0.0, 0.5 if o.frame == "topocentric" else 15.0))
     telluric = telluric_vote(f, setting.catalogue, o.frame, o.velocity_range)
     # A table without coverage cannot refute telluric lines: only a clear vote brings them in.
@@ -109,9 +111,14 @@ def _telluric(vote: Vote, frame: str, width: float) -> Component:
         return Component(TELLURIC, vote.velocity if vote.declared else 0.0, 0.5)
     if width > ORDINARY_SHIFT:
         return Component(TELLURIC, 0.0, ORDINARY_SHIFT / 2)
-    if vote.declared:
-        return Component(TELLURIC, vote.velocity, vote.error)
-    return Component(TELLURIC, vote.velocity, 3.0)
+    error = vote.error if vote.declared else 3.0
+    return Component(TELLURIC, vote.velocity, error, certainty=vote.certainty)
+
+
+def _certainty(main: VelocityResult) -> float:
+    if main.declared or main.how == "given":
+        return 1.0
+    return float(1.0 - np.exp(-0.5 * max(main.margin, 0.0)))
 
 
 def _doubts(main: VelocityResult, how: str) -> tuple[str, ...]:

@@ -12,6 +12,7 @@ BROAD = 1.25  # a feature this much broader than its like is a blend
 EXCESS_SHARE = 0.25  # of the surplus width: how far its centroid may be off any one line
 CROWD = 2.0  # widths
 SHARED = ("blend", "wing", "fallback")
+UNKNOWN_ERROR = 0.1  # Angstrom, where neither error nor width is known
 LN10 = np.log(10.0)
 
 
@@ -29,13 +30,11 @@ def feature_data(features, overlapping: bool = False) -> FeatureData:
     line = features.sign > 0
     strength = np.where(line, np.where(np.isfinite(features.depth), absorption, np.nan), emission)
     strength_err = np.where(line, absorption_err, emission_err)
-    # A fit whose error exceeds its width has failed; its peak is still inside the line.
-    failed = 0.5 * np.where(features.fwhm > 0, features.fwhm, np.inf)
     usual = usual_width(features.wave, features.fwhm, strength, features.sign)
     surplus = np.maximum(features.fwhm**2 - (BROAD * usual) ** 2, 0.0)
     return FeatureData(
         features.wave,
-        np.minimum(features.wave_err, failed),
+        position_error(features),
         features.fwhm,
         features.sign,
         strength,
@@ -44,6 +43,15 @@ def feature_data(features, overlapping: bool = False) -> FeatureData:
         features.segment if overlapping else np.zeros(len(features), dtype=int),
         is_crowded(features),
     )
+
+
+def position_error(features):
+    """Centroid errors (Angstrom) fit for use: a fit whose error is missing or exceeds its
+    width has failed, but its peak is still inside the line."""
+    limit = 0.5 * np.where(features.fwhm > 0, features.fwhm, np.inf)
+    error = np.where(features.wave_err > 0, features.wave_err, np.inf)
+    best = np.minimum(error, limit)
+    return np.where(np.isfinite(best), best, UNKNOWN_ERROR)
 
 
 def is_crowded(features):

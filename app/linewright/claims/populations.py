@@ -28,13 +28,17 @@ DEEPEST = 3.2  # dex below the weakest detectable line: beyond it a line cannot 
 
 @dataclass(frozen=True)
 class Component:
-    """A velocity at which lines of one population stand; km/s; ``log_ratio`` is the flux
-    share of a second star in dex."""
+    """A velocity at which lines of one population stand; km/s.
+
+    log_ratio: flux share of a second star, dex; certainty: probability that the component
+    is there at this velocity, which every claim on its lines inherits.
+    """
 
     population: int
     velocity: float
     error: float = 0.0
     log_ratio: float = 0.0
+    certainty: float = 1.0
 
     @property
     def origin(self) -> str:

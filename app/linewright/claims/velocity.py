@@ -6,6 +6,7 @@ import numpy as np
 
 from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
+from .features_in import position_error
 from .problem import inside
 from .voting import Vote, line_weights, summarise, vote
 
@@ -49,7 +50,7 @@ def strongest(features, sign: int, count: int = VOTERS, where=None):
 def vote_sigma(features, rows):
     """Errors for voting: centroid, a share of the width, and a list error of 5 mA."""
     width = np.nan_to_num(features.fwhm[rows])
-    return np.sqrt(features.wave_err[rows] ** 2 + (0.03 * width) ** 2 + 0.005**2)
+    return np.sqrt(position_error(features)[rows] ** 2 + (0.03 * width) ** 2 + 0.005**2)
 
 
 def stellar_vote(features, catalogue, strength, velocity_range, behind: int = 0) -> Vote:

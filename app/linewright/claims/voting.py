@@ -29,6 +29,12 @@ class Vote:
     def declared(self) -> bool:
         return self.margin >= DECLARE_MARGIN
 
+    @property
+    def certainty(self) -> float:
+        """Probability that the velocity is right: 1 once declared, else 1 - exp(-margin/2),
+        half the margin being what repeated features of one list are worth."""
+        return 1.0 if self.declared else float(1.0 - np.exp(-0.5 * max(self.margin, 0.0)))
+
 
 def line_weights(strength, expected: float):
     """Prior probability that a line shows, from its rank among the strengths.
@@ -83,6 +89,7 @@ def _feature_score(x, width, line_wave, weight, grid):
 def summarise(grid, score, width: float) -> Vote:
     """The Vote of a score curve; width: typical km/s error of one feature, which says how
     far from the best a rival must stand."""
+    # The rival may also be 'no line of the list': its score is 0, with the trials of the search.
     best = int(np.argmax(score))
     exclusion = 6.0 * width + 2 * (grid[1] - grid[0])
     peaks = _peaks(score)
@@ -94,7 +101,7 @@ def summarise(grid, score, width: float) -> Vote:
     return Vote(
         velocity,
         error,
-        float(score[best] - rival_level),
+        float(min(score[best] - rival_level, score[best] - np.log(len(grid)))),
         tuple((float(grid[i]), float(score[best] - score[i])) for i in rivals),
         grid,
         score,
