@@ -163,3 +163,14 @@ def test_the_empty_window_loads_nothing_heavy(heavy, tmp_path):
                    "PATH": "/usr/bin"}
     assert subprocess.run([sys.executable, "-c", code], env=environment, timeout=60,
                           check=False).returncode == 0
+
+
+def test_escape_closes_the_question_then_the_notice(solved, qtbot):
+    solved.bench.notify(Notice("something to read", "note", topic="a"))
+    solved.bench.run("view.goto")
+    escape = solved.menus.actions["view.dismiss"]
+    assert escape.isEnabled()
+    escape.trigger()
+    assert solved.ask_bar.isHidden() and not solved.notices.isHidden()
+    escape.trigger()
+    assert solved.notices.isHidden() and not escape.isEnabled()

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QLineEdit
 
 
 class AskBar(QFrame):
     """Not modal: the spectrum can be looked at while the line is open."""
+
+    asked = Signal()
 
     def __init__(self, parent=None):
         super().__init__(parent)
@@ -31,6 +33,7 @@ class AskBar(QFrame):
         self.edit.setAccessibleName(question)
         self._then = then
         self.show()
+        self.asked.emit()
         self.edit.setFocus(Qt.FocusReason.ShortcutFocusReason)
         self.edit.selectAll()
 

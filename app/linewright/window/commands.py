@@ -248,6 +248,9 @@ def _view() -> list[Command]:
         _c("view.uncertainty", "Uncertainty band", "Ctrl+Alt+U", "View", has_spectrum,
            lambda b: b.window.toggle_uncertainty(), "Show one sigma about the flux", group=2,
            checked=lambda b: b.window is not None and b.window.uncertainty_shown),
+        _c("view.dismiss", "Close notice or question", "Esc", "View",
+           lambda b: b.window is not None and b.window.can_dismiss(),
+           lambda b: b.window.dismiss(), "Close the bar above the work", group=2),
         theme("system", "As the desktop"), theme("light", "Light"), theme("dark", "Dark"),
     ]
 

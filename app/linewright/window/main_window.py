@@ -61,6 +61,8 @@ class MainWindow(Questions, Showing, QMainWindow):
         self.status = StatusLine(self.bench, self)
         self.setStatusBar(self.status)
         self.menus = Menus(self.bench, self)
+        self.notices.changed.connect(self.menus.refresh)
+        self.ask_bar.asked.connect(self.menus.refresh)
 
     def _restore(self) -> None:
         self.resize(1440, 860)

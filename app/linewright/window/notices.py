@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from PySide6.QtCore import Qt, QTimer
+from PySide6.QtCore import Qt, QTimer, Signal
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QToolButton
 
 GLYPHS = {"note": "i", "warning": "!", "refused": "×"}
@@ -28,6 +28,8 @@ class Notice:
 
 class NoticeBar(QFrame):
     """Shows the newest notice; closing it brings back the one before."""
+
+    changed = Signal()
 
     def __init__(self, parent=None):
         super().__init__(parent)
@@ -85,6 +87,7 @@ class NoticeBar(QFrame):
         self._buttons = []
         notice = self.current
         self.setVisible(notice is not None)
+        self.changed.emit()
         if notice is None:
             return
         self.setProperty("kind", notice.kind)

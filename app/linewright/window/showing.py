@@ -9,6 +9,16 @@ from PySide6.QtWidgets import QLineEdit
 class Showing:
     """Part of the main window: nothing here changes a session."""
 
+    def can_dismiss(self) -> bool:
+        return not self.ask_bar.isHidden() or not self.notices.isHidden()
+
+    def dismiss(self) -> None:
+        """The question first, then the notices one by one."""
+        if not self.ask_bar.isHidden():
+            self.ask_bar.hide()
+        else:
+            self.notices.dismiss()
+
     def toggle_panel(self, name: str) -> None:
         panel = self.space.panels()[name]
         panel.setVisible(panel.isHidden())

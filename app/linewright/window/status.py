@@ -16,7 +16,8 @@ def description(bench) -> str:
     s = session.spectrum
     medium = s.medium if s.medium != "unknown" else "air or vacuum?"
     frame = f"{s.frame} frame" if s.frame != "unknown" else "frame not stated"
-    known = f"T {conditions(session).temperature:,.0f} K" + ("" if len(session.features) else " assumed")
+    known = "in emission" if conditions(session).emission else (
+        f"T {conditions(session).temperature:,.0f} K" + ("" if len(session.features) else " assumed"))
     saved = "saved" if bench.desk.path and bench.desk.document.saved else "not saved"
     return " · ".join([bench.desk.name, medium, frame, f"{s.samples:,} samples", known, saved])
 

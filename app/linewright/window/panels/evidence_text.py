@@ -21,7 +21,7 @@ HAND_PICKED = "Picked by hand. Press F5 to solve and weigh its candidates."
 def heading(session: Session, row: int) -> str:
     f = session.features
     wave = float(to_medium(f.wave[row], session.spectrum.medium))
-    depth = words.number(f.depth[row], 2)
+    depth = words.number(f.depth[row], 2 if abs(f.depth[row]) < 10 else 0)
     ew = words.number(f.ew[row], 0 if abs(f.ew[row]) >= 30 else 1)
     parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", f"EW {ew} mÅ" if ew else ""]
     return "   ".join(p for p in parts if p)

@@ -76,7 +76,7 @@ class OrphansPanel(TablePanel):
                    lambda i: words.number(f.significance[at[i]], 1),
                    lambda: f.significance[at], True, 96),
             Column("depth", "(continuum − flux)/continuum at the centre",
-                   lambda i: words.number(f.depth[at[i]], 3), lambda: f.depth[at], True, 70),
+                   lambda i: words.depth(f.depth[at[i]]), lambda: f.depth[at], True, 70),
             Column("unlisted", "Probability that no catalogue line made it",
                    lambda i: words.probability(chance[i]), lambda: chance, True, 80),
             Column("nearest", "The nearest catalogue line", lambda i: rows[i].nearest,

@@ -28,6 +28,17 @@ def with_error(value: float, error: float, digits: int) -> str:
     return f"{text} ± {number(error, digits)}" if text and math.isfinite(error) else text
 
 
+def depth(value: float) -> str:
+    """Three decimals below 10; strong emission over a weak continuum needs fewer."""
+    size = abs(value) if math.isfinite(value) else 0.0
+    return number(value, 3 if size < 10 else 1 if size < 1000 else 0)
+
+
+def width(value: float, error: float = math.nan) -> str:
+    """An equivalent width in milliangstrom: one decimal below 1000."""
+    return with_error(value, error, 1 if abs(value) < 1000 else 0)
+
+
 def digits_for(errors) -> int:
     """Decimals that show two figures of a typical error, 2 to 4."""
     known = errors[np.isfinite(errors) & (errors > 0)]
