@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..lines.catalogue import LineCatalogue
-from ..session.model import Session
+from ..session.model import Candidate, Session
 from ..spectra.medium import C_KM_S, to_medium
 from ..spectra.spectrum import Spectrum
 
@@ -33,18 +33,17 @@ class SiblingStrip:
 def sibling_strips(
     spectrum: Spectrum,
     session: Session,
-    catalogue: LineCatalogue,
-    depth: np.ndarray,
-    species: str,
+    predicted: tuple[LineCatalogue, np.ndarray],
+    candidate: Candidate,
     velocity: float,
-    besides: float = 0.0,
 ) -> list[SiblingStrip]:
     """Up to COUNT strips, strongest predicted lines first chosen, shown by wavelength.
 
-    depth: predicted depth of every catalogue line, shape (len(catalogue),)
-    besides: vacuum wavelength of the line on trial, which is no sibling of itself
+    predicted: catalogue and the predicted depth of each of its lines, shape (n,)
+    candidate: the line on trial, which is no sibling of itself
     Lines outside the samples, or where most samples are masked, are passed over.
     """
+    (catalogue, depth), species = predicted, candidate.species
     if species not in catalogue.species_names:
         return []
     code = catalogue.species_names.index(species)
@@ -52,7 +51,7 @@ def sibling_strips(
     strength = np.nan_to_num(np.asarray(depth)[rows], nan=0.0)
     half = half_width(session, float(np.median(catalogue.wave[rows])) if len(rows) else 5000.0)
     strips: list[tuple] = []
-    taken = [besides]
+    taken = [candidate.wave]
     for row in rows[np.argsort(-strength, kind="stable")]:
         wave = float(catalogue.wave[row])
         if any(abs(wave - other) / wave * C_KM_S < half / 2 for other in taken):

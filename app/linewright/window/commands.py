@@ -84,9 +84,10 @@ def is_persons(bench) -> bool:
     return bench.session is not None and claim.is_persons(bench)
 
 
-def _c(id, title, keys, menu, enabled, run, tip, **more) -> Command:  # noqa: A002
-    return Command(id, title, tuple(keys.split(" | ")) if keys else (), menu, enabled, run, tip,
-                   **more)
+def _c(*fields, **more) -> Command:
+    """A Command of (id, title, keys, menu, enabled, run, tip); keys are parted by ' | '."""
+    name, title, keys, *rest = fields
+    return Command(name, title, tuple(keys.split(" | ")) if keys else (), *rest, **more)
 
 
 def _file() -> list[Command]:

@@ -49,8 +49,7 @@ class SiblingsBox(QWidget):
         self._shown = shown
         velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
         self._found = sibling_strips(
-            bench.spectrum, session, bench.catalogue, bench.depth, candidate.species, velocity,
-            candidate.wave)
+            bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity)
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
