@@ -10,6 +10,7 @@ from .interstellar import find_clouds
 from .model import VelocityResult
 from .populations import HYDROGEN, NEBULAR, SKY, STELLAR, TELLURIC, Component
 from .temperature import COARSE
+from .second_star import find_second_star
 from .velocity import (
     ORDINARY_SHIFT,
     emission_vote,
@@ -132,8 +133,9 @@ def _doubts(main: VelocityResult, how: str) -> tuple[str, ...]:
     )
 
 
-def refined(setting, found: Found, solution) -> Found:
-    """Velocities corrected by confident claims; interstellar clouds looked for."""
+def refined(setting, found: Found, solution, temperature: float) -> Found:
+    """Velocities corrected by confident claims; a second star and interstellar clouds
+    looked for among what is left unexplained."""
     components, velocity = [], found.velocity
     for i, component in enumerate(found.components):
         shift, error = refine(solution, i)
@@ -148,7 +150,9 @@ def refined(setting, found: Found, solution) -> Found:
         chosen = components[main]
         if chosen.error > 0:
             velocity = replace(velocity, velocity=chosen.velocity, error=chosen.error)
-    components += find_clouds(setting, solution, velocity.velocity)
+    star = next((c for c in components if c.population == STELLAR), None)
+    second = [] if star is None else find_second_star(setting, solution, star, temperature)
+    components += second or find_clouds(setting, solution, velocity.velocity)
     return replace(found, components=tuple(components), velocity=velocity)
 
 
@@ -173,3 +177,16 @@ def _tie_hydrogen(components: list[Component]) -> list[Component]:
         else c
         for c in components
     ]
+
+
+def settled(found: Found, solution) -> Found:
+    """Both stars' velocities corrected once each has its own lines."""
+    components = []
+    for i, component in enumerate(found.components):
+        shift, error = refine(solution, i)
+        if component.population == STELLAR and np.isfinite(error):
+            component = replace(component, velocity=component.velocity + shift, error=error)
+        components.append(component)
+    star = next(c for c in components if c.population == STELLAR)
+    velocity = replace(found.velocity, velocity=star.velocity, error=star.error)
+    return replace(found, components=tuple(components), velocity=velocity)

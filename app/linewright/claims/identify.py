@@ -10,7 +10,7 @@ from ..lines.strengths import absorption_strength
 from ..progress import Progress
 from ..spectra.medium import C_KM_S
 from .build import build_claims
-from .components import Found, find_components, refined
+from .components import Found, find_components, refined, settled
 from .entries import group_half_width
 from .features_in import feature_data
 from .mixture import solve_mixture
@@ -149,10 +149,13 @@ def identify(features, coverage, catalogue, options=ClaimOptions(), progress=Non
     solution = solve_mixture(
         setting.problem(found.components, temperature), progress=progress.part(0.6, 0.75)
     )
-    found = refined(setting, found, solution)
+    found = refined(setting, found, solution, temperature)
     solution = solve_mixture(
         setting.problem(found.components, temperature), progress=progress.part(0.75, 0.9)
     )
+    if any(c.log_ratio for c in found.components):
+        found = settled(found, solution)
+        solution = solve_mixture(setting.problem(found.components, temperature))
     claims = build_claims(solution, setting.catalogue, found.components)
     progress.report("calling the roll", 0.95)
     return Identification(
