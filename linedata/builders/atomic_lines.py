@@ -13,8 +13,10 @@ import numpy as np
 from common import (
     EV_PER_CM, ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, source_file, write_table,
 )
+from decays import radiative_widths
+from level_gaps import allowed
 from nist_levels import read_levels
-from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_lines, sort_levels
+from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_far, match_lines, sort_levels
 from symbols import ELEMENTS, ROMAN
 
 KEYS = ["Placco2021", "NIST_ASD"]
@@ -110,35 +112,62 @@ def strength_error(loggf: np.ndarray) -> np.ndarray:
     return np.select([loggf > -2.0, loggf > -4.5], [0.10, 0.25], 0.5)
 
 
+def matched(levels, lines: dict[str, np.ndarray]):
+    """Level pairs of lines: near ones first, then those whose listed wavelength is poor."""
+    found = match_lines(levels, lines["wave"], lines["e_low"])
+
+    def permitted(low: int, up: int) -> bool:
+        return bool(allowed(levels, low, up))
+
+    match_far(levels, lines["wave"], lines["e_low"], lines["loggf"], found, permitted)
+    return found
+
+
+def without_levels(ion: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """Lines of an ion without a level file: listed wavelengths, default scatter."""
+    lines = collapse(ion, np.arange(len(ion["wave"])))
+    n = len(lines["wave"])
+    lines["e_low"] = lines["e_low"] * E_LOW_SCALE
+    lines["listed"] = lines["wave"]
+    lines["error"] = DEFAULT_SCATTER * lines["wave"] / 5000.0
+    lines["ritz"] = np.zeros(n, bool)
+    for key in ("j_low", "j_up", "alt_shift", "gamma_rad"):
+        lines[key] = np.full(n, np.nan)
+    lines["term_low"] = lines["term_up"] = np.full(n, "", dtype=object)
+    return lines
+
+
+def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
+    """Lines of an ion, those with a level pair at their Ritz wavelengths."""
+    lines = collapse(ion, groups_of(ion, matched(levels, ion)))
+    found = matched(levels, lines)
+    listed, ritz = lines["wave"], found.low >= 0
+    shift = np.where(ritz, listed - found.wave, np.nan)
+    scatter = scatter_of(listed, found)
+    lines["listed"], lines["ritz"], lines["alt_shift"] = listed, ritz, shift
+    # The list's wavelength lies within three errors of the preferred one.
+    lines["error"] = np.where(
+        ritz, np.maximum(found.error, np.abs(shift) / 3.0), scatter * listed / 5000.0
+    )
+    lines["wave"] = found.wave
+    energy = levels.energy[found.low] * EV_PER_CM
+    lines["e_low"] = np.where(ritz, energy, lines["e_low"] * E_LOW_SCALE)
+    lines["gamma_rad"] = radiative_widths(levels, found, lines)
+    for side, rows in (("low", found.low), ("up", found.up)):
+        lines[f"j_{side}"] = np.where(ritz, levels.j[rows], np.nan)
+        names = [levels.label(row) if row >= 0 else "" for row in rows]
+        lines[f"term_{side}"] = np.array(names, dtype=object)
+    return lines
+
+
 def finish(ion: dict[str, np.ndarray], levels, hyperfine: float) -> dict[str, np.ndarray]:
-    """Lines of one ion with Ritz wavelengths, errors and J where levels allow."""
-    n = len(ion["wave"])
-    nan = np.full(n, np.nan)
-    if levels is None:
-        lines = collapse(ion, np.arange(n))
-        listed, ritz = lines["wave"], np.zeros(len(lines["wave"]), bool)
-        error = DEFAULT_SCATTER * listed / 5000.0
-        lines["e_low"] = lines["e_low"] * E_LOW_SCALE
-        lines.update(j_low=nan, j_up=nan)
-    else:
-        first = match_lines(levels, ion["wave"], ion["e_low"])
-        lines = collapse(ion, groups_of(ion, first))
-        matches = match_lines(levels, lines["wave"], lines["e_low"])
-        listed, ritz = lines["wave"], matches.low >= 0
-        scatter = scatter_of(listed, matches)
-        error = np.where(ritz, matches.error, scatter * listed / 5000.0)
-        lines["wave"] = matches.wave
-        lines["e_low"] = np.where(
-            ritz, levels.energy[matches.low] * EV_PER_CM, lines["e_low"] * E_LOW_SCALE
-        )
-        lines["j_low"] = np.where(ritz, levels.j[matches.low], np.nan)
-        lines["j_up"] = np.where(ritz, levels.j[matches.up], np.nan)
-        lines["pair"] = np.where(ritz, matches.low * len(levels) + matches.up, -1)
-    shift = hyperfine * listed / 5000.0
-    lines["wave_err"] = np.sqrt(error**2 + lines["spread"] ** 2 + shift**2)
-    lines["source"] = ritz.astype(int)
+    """Lines of one ion with Ritz wavelengths, errors, J and terms where levels allow."""
+    lines = with_levels(ion, levels) if levels else without_levels(ion)
+    shift = hyperfine * lines["listed"] / 5000.0
+    lines["wave_err"] = np.sqrt(lines["error"] ** 2 + lines["spread"] ** 2 + shift**2)
+    lines["source"] = lines["ritz"].astype(int)
+    lines["source_alt"] = np.where(lines["ritz"], 0, -1)
     lines["loggf_err"] = strength_error(lines["loggf"])
-    lines["listed"] = listed
     return lines
 
 

@@ -13,7 +13,8 @@ from common import TABLES, script_arguments
 
 # level_lines reads the finished atomic_lines.
 ORDER = (
-    "level_physics", "atomic_lines", "hydrogen_helium", "level_lines", "nebular_lines",
+    "level_physics", "atomic_lines", "hydrogen_helium", "level_lines", "level_gaps",
+    "rare_gases", "nebular_lines",
     "interstellar_sky", "telluric_lines", "citations",
 )
 

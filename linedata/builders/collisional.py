@@ -22,7 +22,8 @@ HC = 1.98644586e-16  # erg cm
 
 @dataclass(frozen=True)
 class Emission:
-    """One line: vacuum wavelength and error (Angstrom), levels, A (s-1), power per ion (erg/s)."""
+    """One line: vacuum wavelength and error (Angstrom), levels, A (s-1), power per ion (erg/s),
+    terms ('configuration|term')."""
 
     wave: float
     wave_err: float
@@ -31,6 +32,8 @@ class Emission:
     j_up: float
     a_value: float
     power: float
+    term_low: str = ""
+    term_up: str = ""
 
 
 def read_probabilities(path: Path) -> np.ndarray:
@@ -106,7 +109,7 @@ def _emissions(levels: Levels, a_values, upsilon, temperature, density) -> list[
             lines.append(Emission(
                 wave, float(np.hypot(error, 4e-7 * wave)), levels.energy[low] / 8065.543937,
                 levels.j[low], levels.j[up], a_values[up, low],
-                solved[up] * a_values[up, low] * HC * gap,
+                solved[up] * a_values[up, low] * HC * gap, levels.label(low), levels.label(up),
             ))
     return lines
 

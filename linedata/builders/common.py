@@ -18,9 +18,9 @@ sys.path.insert(0, str(LINEDATA.parent / "app"))
 
 from linewright.spectra.medium import air_to_vacuum, vacuum_to_air  # noqa: E402
 
-from merging import merge  # noqa: E402
+from packing import pack_lines  # noqa: E402
 
-__all__ = ["air_to_vacuum", "vacuum_to_air"]
+__all__ = ["air_to_vacuum", "pack_lines", "vacuum_to_air"]
 
 ORIGIN_CODE = {"stellar": 0, "nebular": 1, "telluric": 2, "interstellar": 3, "sky": 4, "lamp": 5}
 EV_PER_CM = 1.0 / 8065.543937
@@ -59,51 +59,6 @@ def enter_in_manifest(path: Path) -> None:
     data = path.read_bytes()
     entries[path.name] = {"bytes": len(data), "sha256": hashlib.sha256(data).hexdigest()}
     manifest.write_text(json.dumps(entries, indent=1, sort_keys=True) + "\n")
-
-
-def _used(codes, names: list[str]) -> tuple[np.ndarray, list[str]]:
-    """Codes and names without the names no row uses."""
-    present, recoded = np.unique(np.asarray(codes).astype(int), return_inverse=True)
-    return recoded, [names[code] for code in present]
-
-
-def pack_lines(lines: dict[str, np.ndarray], names: list[str], keys: list[str]) -> dict:
-    """Compact columns of a line table, repeats merged, sorted by wavelength.
-
-    ``lines`` holds wave, wave_err, species, origin, source and any of e_low, loggf,
-    loggf_err, emission, depth_ref, j_low, j_up, spread, grade (NaN or missing: unknown).
-    """
-    lines = dict(lines) if "depth_ref" in lines else dict(merge(lines))
-    lines["species"], names = _used(lines["species"], names)
-    lines["source"], keys = _used(lines["source"], keys)
-    n = len(lines["wave"])
-    blank = np.full(n, np.nan)
-    order = np.lexsort((lines.get("e_low", blank), lines["species"], lines["wave"]))
-
-    def column(key, dtype, fallback=blank):
-        return np.asarray(lines.get(key, fallback))[order].astype(dtype)
-
-    def doubled(key):
-        j = np.asarray(lines.get(key, blank), float)[order]
-        return np.where(np.isfinite(j), np.round(2 * np.nan_to_num(j)), -1).astype(np.int8)
-
-    return {
-        "wave": column("wave", "<f8"),
-        "wave_err": column("wave_err", "<f4"),
-        "species": column("species", "<i2"),
-        "origin": column("origin", "u1"),
-        "e_low": column("e_low", "<f4"),
-        "loggf": column("loggf", "<f4"),
-        "loggf_err": column("loggf_err", "<f2"),
-        "emission": column("emission", "<f2"),
-        "depth_ref": column("depth_ref", "<f4"),
-        "j_low2": doubled("j_low"),
-        "j_up2": doubled("j_up"),
-        "spread": column("spread", "<f2", np.zeros(n)),
-        "source": column("source", "<i2"),
-        "species_names": np.array(names, dtype="<U16"),
-        "source_keys": np.array(keys, dtype="<U48"),
-    }
 
 
 def script_arguments(description: str) -> argparse.Namespace:

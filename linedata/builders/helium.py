@@ -33,6 +33,13 @@ class Term:
     error: float
 
     @property
+    def label(self) -> str:
+        """'configuration|term'."""
+        odd = "*" if self.ell % 2 else ""
+        letter = "SPDFGHIK"[self.ell]
+        return f"1s.{self.n}{LETTERS[self.ell]}|{self.multiplicity}{letter}{odd}"
+
+    @property
     def n_eff(self) -> float:
         return float(np.sqrt(RYDBERG / (LIMIT - self.energy)))
 
@@ -126,6 +133,7 @@ def line_pairs(source: Path) -> list[dict[str, float]]:
                     "wave": wave, "wave_err": float(np.hypot(uncertain, 4e-7 * wave)),
                     "e_low": low.energy / 8065.543937, "loggf": float(np.log10(gf)),
                     "loggf_err": error, "spread": 0.0,
+                    "term_low": low.label, "term_up": up.label,
                     "weight": up.multiplicity / 4, "n_up": up.n, "l_up": up.ell,
                 })
     return lines

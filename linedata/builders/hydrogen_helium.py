@@ -29,6 +29,7 @@ def formula_lines(ion) -> list[dict[str, float]]:
             line = centroid(ion, low, up)
             del line["average"]
             line["wave_err"] = centroid_error(line)
+            line["term_low"], line["term_up"] = f"n={low}|", f"n={up}|"
             lines.append({**line, "loggf_err": 0.01})
     return lines
 
@@ -38,6 +39,8 @@ def main() -> None:
     groups = [formula_lines(HYDROGEN), line_pairs(arguments.source_dir), formula_lines(HELIUM_II)]
     rows = [row for group in groups for row in group]
     lines = {key: np.array([row[key] for row in rows]) for key in COLUMNS}
+    for key in ("term_low", "term_up"):
+        lines[key] = np.array([row[key] for row in rows], dtype=object)
     sizes = [len(group) for group in groups]
     lines["species"] = np.repeat(np.arange(3), sizes)
     lines["source"] = np.repeat([0, 1, 0], sizes)

@@ -64,7 +64,8 @@ def ritz_of_published(source: Path, ion: tuple[str, int], forbidden: bool = Fals
         lines.append({
             "wave": wave, "wave_err": float(np.hypot(0.002, 4e-7 * wave)),
             "e_low": levels.energy[low] * EV_PER_CM, "j_low": levels.j[low],
-            "j_up": levels.j[up], "loggf": loggf, "loggf_err": 0.1 if forbidden else 0.2,
+            "j_up": levels.j[up], "term_low": levels.label(low), "term_up": levels.label(up),
+            "loggf": loggf, "loggf_err": 0.1 if forbidden else 0.2,
             "key": "Wiese1996" if forbidden else SOURCES.get(ion, "NIST_ASD"),
         })
     return lines
@@ -125,6 +126,9 @@ def main() -> None:
         names.append(f"[{ion[0]} {ROMAN[ion[1] - 1]}]")
     columns = ("wave", "wave_err", "e_low", "j_low", "j_up", "loggf", "loggf_err", "species")
     lines = {key: np.array([row[key] for row in rows]) for key in columns}
+    for key in ("term_low", "term_up"):
+        lines[key] = np.array([row.get(key, "") for row in rows], dtype=object)
+    lines["nominal"] = np.array([row.get("nominal", False) for row in rows])
     lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
     lines["source"] = np.array([KEYS.index(row.get("key", "NIST_ASD")) for row in rows])
     write_table("level_lines", pack_lines(lines, names, KEYS), arguments.out)

@@ -29,7 +29,8 @@ class State:
     """One level seen as core + outer electron.
 
     core: configuration of the core with its parent term; n, ell: the outer electron;
-    big_l, spin: L and S (LS) or K and 1/2 (J1K); parent: L1 (LS) or J1 (J1K).
+    big_l, spin: L and S (LS) or K and 1/2 (J1K); parent: L1 (LS) or J1 (J1K);
+    label: 'configuration|term' as listed.
     """
 
     row: int
@@ -44,6 +45,7 @@ class State:
     energy: float
     error: float
     n_eff: float
+    label: str = ""
 
 
 def parent_term(core: str) -> str:
@@ -153,6 +155,7 @@ def _state(source: Path, ion: tuple[str, int], levels: Levels, row: int, limit: 
     return State(
         row, core, int(match[1]), ORBITALS.index(match[2]), *quantum, parent, levels.j[row],
         levels.energy[row], levels.error[row], round(float(n_eff), 5),
+        f"{levels.configuration[row]}|{levels.term[row]}",
     )
 
 
@@ -228,6 +231,7 @@ def permitted_lines(source: Path, element: str, stage: int, limit_ev: float) -> 
                 "e_low": low.energy * EV_PER_CM, "e_up": up.energy * EV_PER_CM,
                 "j_low": low.j, "j_up": up.j,
                 "loggf": float(np.log10(303.75 * strength / wave)), "low": low, "up": up,
+                "term_low": low.label, "term_up": up.label,
             })
     return lines
 

@@ -98,6 +98,7 @@ def forbidden_rows(emissions, log_abundance: float) -> list[dict]:
             rows.append({
                 "wave": line.wave, "wave_err": line.wave_err, "e_low": line.e_low,
                 "j_low": line.j_low, "j_up": line.j_up, "spread": 0.0, "emission": level,
+                "term_low": line.term_low, "term_up": line.term_up,
             })
     return rows
 
@@ -139,6 +140,8 @@ def main() -> None:
     found = collect(arguments.source_dir)
     columns = ("wave", "wave_err", "e_low", "j_low", "j_up", "spread", "emission")
     lines = {key: np.array([row[key] for row in found.rows], float) for key in columns}
+    for key in ("term_low", "term_up"):
+        lines[key] = np.array([row.get(key, "") for row in found.rows], dtype=object)
     lines["species"] = np.array([row["species"] for row in found.rows])
     lines["source"] = np.array([row["source"] for row in found.rows])
     lines["origin"] = np.full(len(found.rows), ORIGIN_CODE["nebular"])

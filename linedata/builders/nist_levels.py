@@ -13,6 +13,7 @@ from pathlib import Path
 import numpy as np
 
 from common import source_file
+from levels_beyond import beyond
 
 # Error of a level in units of its last printed digit: rounding (0.29) and a little more.
 ROUNDING = 0.35
@@ -32,6 +33,10 @@ class Levels:
 
     def __len__(self) -> int:
         return len(self.energy)
+
+    def label(self, row: int) -> str:
+        """'configuration|term' of one level."""
+        return f"{self.configuration[row]}|{self.term[row]}"
 
 
 def _energy(text: str) -> tuple[float, float] | None:
@@ -76,6 +81,11 @@ def read_levels(source: Path, element: str, stage: int) -> Levels | None:
             rows.append((*level, _spin(cells[2]), "*" in term, configuration, term))
     if not rows:
         return None
+    top = max(row[0] for row in rows)
+    for configuration, term, j, text in beyond(element, stage):
+        level = _energy(text)
+        if level[0] > top:
+            rows.append((*level, _spin(j), "*" in term, configuration, term))
     energy, error, j, odd, conf, terms = zip(*rows, strict=True)
     return Levels(
         np.array(energy), np.array(error), np.array(j), np.array(odd), np.array(conf),

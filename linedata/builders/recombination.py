@@ -135,6 +135,6 @@ def permitted_rows(source: Path, ion, limit_ev: float, log_recombining: float) -
         level = recombination_level(alpha, line["wave"], log_recombining)
         level += PUMPING.get((element, stage, up.spin), 0.0) if up.ell <= 2 else 0.0
         if level > FAINTEST and line["wave"] > 3000.0:
-            keys = ("wave", "wave_err", "e_low", "j_low", "j_up")
+            keys = ("wave", "wave_err", "e_low", "j_low", "j_up", "term_low", "term_up")
             rows.append({key: line[key] for key in keys} | {"spread": 0.0, "emission": level})
     return rows

@@ -15,6 +15,8 @@ CM_PER_EV = 8065.543937
 CM_PER_EV_LISTED = 8071.7
 WAVENUMBER_TOLERANCE = 0.5  # cm-1
 WAVE_TOLERANCE = 0.05  # Angstrom
+# Second look at lines left without a pair: levels and lines both free, one electron's jump.
+FAR_WAVE, FAR_WAVENUMBER, FAR_RIVAL = 0.12, 1.5, 0.25  # Angstrom at 5000 A, cm-1, Angstrom
 RIVAL_RATIO = 3.0  # a second pair must miss by this factor more, and by 0.02 A at least
 FLOOR = 4e-7  # relative: 0.002 A at 5000 A
 
@@ -38,13 +40,18 @@ def _allowed(levels: Levels, low: int, ups: np.ndarray) -> np.ndarray:
     return (levels.odd[ups] != levels.odd[low]) & (unknown | step)
 
 
-def _candidates(levels: Levels, wave: float, e_low: float):
-    """(miss in Angstrom, low, up) of every permitted level pair near one line."""
+def _candidates(levels: Levels, wave: float, e_low: float, reach: float | None = None):
+    """(miss in Angstrom, low, up) of every permitted level pair near one line.
+
+    reach: how far (Angstrom); by default WAVE_TOLERANCE or WAVENUMBER_TOLERANCE.
+    """
     lowest = e_low * CM_PER_EV - E_LOW_TOLERANCE
     highest = e_low * CM_PER_EV_LISTED + E_LOW_TOLERANCE
     lows = np.searchsorted(levels.energy, [lowest, highest])
     sigma = 1e8 / wave
     tolerance = min(WAVENUMBER_TOLERANCE, WAVE_TOLERANCE * sigma / wave)
+    if reach is not None:
+        tolerance = reach * sigma / wave
     found = []
     for low in range(*lows):
         top = levels.energy[low] + sigma
@@ -68,12 +75,40 @@ def match_lines(levels: Levels, wave: np.ndarray, e_low_ev: np.ndarray) -> Match
         if len(found) > 1 and found[1][0] < max(RIVAL_RATIO * miss, 0.02 * wave[k] / 5000.0):
             continue
         _, low, up = found[0]
-        result.low[k], result.up[k] = low, up
-        ritz = 1e8 / (levels.energy[up] - levels.energy[low])
-        result.wave[k] = ritz
-        spread = ritz**2 * 1e-8 * np.hypot(levels.error[low], levels.error[up])
-        result.error[k] = np.hypot(spread, FLOOR * ritz)
+        _enter(levels, result, k, low, up)
     return result
+
+
+def _enter(levels: Levels, result: Matches, k: int, low: int, up: int) -> None:
+    """Notes a pair and its Ritz wavelength (vacuum) as the match of line k."""
+    result.low[k], result.up[k] = low, up
+    ritz = 1e8 / (levels.energy[up] - levels.energy[low])
+    result.wave[k] = ritz
+    spread = ritz**2 * 1e-8 * np.hypot(levels.error[low], levels.error[up])
+    result.error[k] = np.hypot(spread, FLOOR * ritz)
+
+
+def match_far(levels: Levels, wave, e_low_ev, loggf, matches: Matches, permitted) -> None:
+    """Adds pairs to lines still without one whose listed wavelength is poor (strong ones first).
+
+    permitted(low, up) tells whether selection rules on S, L and configuration allow the pair.
+    """
+    taken = {(a, b) for a, b in zip(matches.low, matches.up, strict=True) if a >= 0}
+    for k in np.argsort(-loggf, kind="stable"):
+        if matches.low[k] >= 0:
+            continue
+        reach = min(FAR_RIVAL * wave[k] / 5000.0, FAR_WAVENUMBER * wave[k] ** 2 * 1e-8 * 2.0)
+        found = [
+            pair for pair in _candidates(levels, wave[k], e_low_ev[k], reach)
+            if pair[1:] not in taken and permitted(*pair[1:])
+        ]
+        if len(found) != 1:
+            continue
+        miss, low, up = found[0]
+        limit = min(FAR_WAVE * wave[k] / 5000.0, FAR_WAVENUMBER * wave[k] ** 2 * 1e-8)
+        if miss < limit:
+            taken.add((low, up))
+            _enter(levels, matches, k, low, up)
 
 
 def sort_levels(levels: Levels) -> Levels:

@@ -77,10 +77,15 @@ def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalog
     """All rows of both, sorted by wavelength; names and sources joined."""
     names = {name: k for k, name in enumerate(first.species_names)}
     keys = {name: k for k, name in enumerate(first.source_keys)}
+    terms = {name: k for k, name in enumerate(first.term_names)}
     species = np.array([names.setdefault(n, len(names)) for n in second.species_names], int)
     sources = np.array([keys.setdefault(n, len(keys)) for n in second.source_keys], int)
+    places = np.array([terms.setdefault(n, len(terms)) for n in second.term_names], int)
     order = np.argsort(np.concatenate([first.wave, second.wave]), kind="stable")
-    recoded = {"species": species, "source": sources}
+    recoded = {
+        "species": species, "source": sources, "source_alt": np.append(sources, -1),
+        "term_low": places, "term_up": places,
+    }
     columns = {}
     for name, values in vars(first).items():
         if isinstance(values, np.ndarray):
@@ -91,6 +96,7 @@ def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalog
         **columns,
         species_names=tuple(names),
         source_keys=tuple(keys),
+        term_names=tuple(terms),
         identity=f"{first.identity}+{second.identity}",
     )
 
