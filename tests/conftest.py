@@ -29,3 +29,10 @@ def pytest_configure(config):
     problem = complaint()
     if problem:
         pytest.exit(problem, returncode=3)
+
+
+@pytest.fixture(autouse=True)
+def own_configuration(request, monkeypatch, tmp_path_factory):
+    """No test reads or writes the user's remembered choices; each starts with none."""
+    name = f"configuration-{abs(hash(request.node.nodeid))}"
+    monkeypatch.setenv("LINEWRIGHT_CONFIG", str(tmp_path_factory.getbasetemp() / name))

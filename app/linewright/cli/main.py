@@ -12,6 +12,8 @@ import warnings
 
 COMMANDS = {
     "inspect": "say what was understood of a spectrum",
+    "correct": "show and apply the barycentric correction and a wavelength zero point",
+    "convert": "write a spectrum as standard FITS or ECSV",
     "solve": "find and identify the lines of a spectrum or a feature table",
     "table": "write the Ledger, the Roll call or the Orphans of a session",
     "figure": "draw a session's spectrum with its lines named",

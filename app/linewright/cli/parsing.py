@@ -79,6 +79,27 @@ def span(text: str) -> tuple[float, float]:
     return pair
 
 
+def zero_point(text: str) -> tuple[float, float]:
+    """'VALUE', 'VALUE:ERROR' in km/s, or the name of a file that holds them."""
+    value, _, error = text.partition(":")
+    try:
+        return number(value), number(error or "0")
+    except argparse.ArgumentTypeError:
+        return _zero_point_of_file(text)
+
+
+def _zero_point_of_file(name: str) -> tuple[float, float]:
+    import json
+    from pathlib import Path
+
+    try:
+        held = json.loads(Path(name).read_text(encoding="utf-8"))
+        return number(held["zero_point_kms"]), number(held["error_kms"])
+    except (OSError, ValueError, KeyError, TypeError):
+        raise argparse.ArgumentTypeError(
+            f"'{name}' is neither KM_S:ERROR nor a file with a zero point") from None
+
+
 def count(text: str) -> int:
     """A whole number from zero on."""
     if not re.fullmatch(r"\d+", text):

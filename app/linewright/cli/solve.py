@@ -108,7 +108,8 @@ def _check_company(options) -> None:
     """Options that would be ignored are refused instead."""
     from ..errors import InputRefused
 
-    names = ("hdu", "row", "columns", "unit", "frame") if options.features else ("wave_err",)
+    reading = ("hdu", "row", "columns", "unit", "frame", "barycentric", "zero_point")
+    names = reading if options.features else ("wave_err",)
     unused = [name for name in names if getattr(options, name) is not None]
     unused += ["coverage"] if options.coverage and not options.features else []
     if unused:

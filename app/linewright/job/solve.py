@@ -23,6 +23,7 @@ from ..session.model import ContinuumNodes, Session, SpectrumReference
 from ..spectra.medium import C_KM_S, from_medium
 from ..spectra.spectrum import Spectrum
 from .feature_file import read_feature_file
+from .observer_frame import frame_doubts
 from .options import SolveOptions
 
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
@@ -58,7 +59,12 @@ def solve(
         session,
         continuum=_continuum(measurement),
         measurement=_measured(measurement),
-        warnings=_join(spectrum.warnings, measurement.warnings, found.warnings),
+        warnings=_join(
+            spectrum.warnings,
+            measurement.warnings,
+            frame_doubts(spectrum, measurement.features, catalogue),
+            found.warnings,
+        ),
     )
 
 
@@ -242,7 +248,7 @@ def _medium_unknown(spectrum, measurement, catalogue, options) -> MediumUnknown:
     """The refusal, with the odds of both readings."""
     from .medium_odds import medium_odds
 
-    odds = medium_odds(measurement.features, catalogue, options)
+    odds = medium_odds(measurement.features, catalogue, options, spectrum.frame)
     return MediumUnknown(
         spectrum.path or spectrum.name,
         f"the file does not say whether its wavelengths are air or vacuum ({odds.in_words()})",

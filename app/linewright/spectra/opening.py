@@ -43,7 +43,8 @@ def _stamp(path: Path) -> tuple[int, int]:
     return status.st_size, status.st_mtime_ns
 
 
-def _check_regular(path: Path) -> None:
+def check_regular(path: Path) -> None:
+    """Raises InputRefused for what is no regular file of sensible size."""
     status = os.stat(path)
     if stat.S_ISDIR(status.st_mode):
         raise InputRefused(path, "is a folder, not a spectrum", "name a file in it")
@@ -110,7 +111,7 @@ def open_checked(path) -> Opened:
     """
     path = Path(path)
     try:
-        _check_regular(path)
+        check_regular(path)
         stamp = _stamp(path)
         head, checksum = _head_and_sum(path)
     except FileNotFoundError:

@@ -159,7 +159,7 @@ def stated_corrections(cards: tuple[Card, ...]) -> list[tuple[float, str, bool]]
         key = card.key.upper()
         if isinstance(card.value, bool) or not isinstance(card.value, (int, float)):
             continue
-        wanted = key == "HELIO_RV" or (kind is not None and key in kind.correction_keys)
+        wanted = key in ("HELIO_RV", "VCORR") or (kind is not None and key in kind.correction_keys)
         if (wanted or _OFFERED_KEYS.match(key)) and abs(card.value) < 100:
             found.append((float(card.value), key, bool(wanted)))
     return found

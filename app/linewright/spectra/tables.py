@@ -69,7 +69,25 @@ def _samples(view: TableView, roles: Roles, wanted: Wanted, what):
         picked, words = _vector_rows(view, roles, wanted, what)
         return picked, f"vector cells{words}"
     indices = (roles.wave, roles.flux, roles.err, roles.ivar, roles.mask)
-    return [[None if i is None else np.asarray(view.fetch(i)) for i in indices]], "a sample a row"
+    cells = [None if i is None else np.asarray(view.fetch(i)) for i in indices]
+    orders = _long_orders(view)
+    if len(orders) < 2:
+        return [cells], "a sample a row"
+    return [[None if c is None else c[o] for c in cells] for o in orders], (
+        f"a sample a row, {len(orders)} segments")
+
+
+def _long_orders(view: TableView) -> list[np.ndarray]:
+    """Rows of each order where a column numbers them, every one of at least 8 samples."""
+    at = next((i for i, info in enumerate(view.infos) if _ORDER_NAME.match(info.name)
+               and info.numeric and info.length == 1), None)
+    if at is None:
+        return []
+    numbers = np.asarray(view.fetch(at))
+    which, inverse, counts = np.unique(numbers, return_inverse=True, return_counts=True)
+    if len(which) > 500 or counts.min() < 8:
+        return []
+    return [np.flatnonzero(inverse == k) for k in range(len(which))]
 
 
 def _segment(cells, roles: Roles, view: TableView, notes: list[str]) -> RawSegment:
