@@ -108,6 +108,10 @@ class ChoicesPanel(QWidget):
         for name, text in shown(self._bench.desk.options).items():
             self.edits[name].setText(text)
         self.trouble.hide()
+        self.adjustSize()
+        over = self.parentWidget()
+        middle = over.mapToGlobal(over.rect().center())
+        self.move(middle - self.rect().center())
         self.show()
         self.raise_()
         self.activateWindow()
