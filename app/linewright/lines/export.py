@@ -8,7 +8,7 @@ import numpy as np
 
 from ..errors import InputRefused
 from ..spectra.medium import from_medium, to_medium
-from .catalogue import ORIGINS, LineCatalogue
+from .catalogue import FLAG_NAMES, GRADES, ORIGINS, LineCatalogue
 from .depths import catalogue_depths
 
 if TYPE_CHECKING:
@@ -29,13 +29,33 @@ _COLUMNS = (
     ("spread", "Angstrom", "rms spread of unresolved components"),
     ("emission", None, "log10 of nebular emissivity, H beta = 100"),
     ("depth_ref", None, "telluric optical depth at line centre, air mass 1"),
+    ("e_up", "eV", "upper-level energy"),
+    ("grade", None, "of the strength: A 0.05 dex, B 0.12, C 0.25, D 0.5, E worse or nominal"),
+    ("term_low", None, "configuration and term of the lower level"),
+    ("term_up", None, "configuration and term of the upper level"),
+    ("wave_alt", "Angstrom", "wavelength of the second source"),
+    ("gamma_rad", None, "log10 of the radiative damping constant, rad/s"),
+    ("flags", None, "non-LTE, nominal strength, components collapsed"),
 )
 
 # Decimals written.
 _DIGITS = {
     "wave": 4, "wave_err": 4, "e_low": 4, "loggf": 3, "loggf_err": 2, "spread": 4, "emission": 2,
-    "depth_ref": 5, "depth": 3,
+    "depth_ref": 5, "depth": 3, "e_up": 4, "wave_alt": 4, "gamma_rad": 2,
 }
+
+
+def _levels(catalogue: LineCatalogue) -> np.ndarray:
+    return np.array([name.replace("|", " ").strip() for name in catalogue.term_names])
+
+
+def _flag_words(flags: np.ndarray) -> np.ndarray:
+    """The flags of every line in words."""
+    words = [
+        ", ".join(name for bit, name in FLAG_NAMES.items() if code & bit)
+        for code in range(sum(FLAG_NAMES) + 1)
+    ]
+    return np.array(words)[flags]
 
 
 def _values(catalogue: LineCatalogue, medium: str) -> dict[str, np.ndarray]:
@@ -44,6 +64,11 @@ def _values(catalogue: LineCatalogue, medium: str) -> dict[str, np.ndarray]:
         "source": np.array(catalogue.source_keys)[catalogue.source],
         "origin": np.array(ORIGINS)[catalogue.origin],
         "wave": to_medium(catalogue.wave, medium),
+        "wave_alt": to_medium(catalogue.wave_alt, medium),
+        "grade": np.array(GRADES)[catalogue.grade],
+        "flags": _flag_words(catalogue.flags),
+        "term_low": _levels(catalogue)[catalogue.term_low],
+        "term_up": _levels(catalogue)[catalogue.term_up],
     }
     return {name: named.get(name, getattr(catalogue, name)) for name, _, _ in _COLUMNS}
 
