@@ -75,10 +75,17 @@ def read_ecsv(opened: Opened) -> TableView:
 
 
 def _refuse_entities(opened: Opened) -> None:
+    """Entities are declared before the root element, however much is put before them."""
     with opened.stream() as handle:
-        if b"<!ENTITY" in handle.read(1 << 16).upper():
-            raise InputRefused(opened.path, "XML with entity declarations is not opened",
-                               "save it as a plain VOTable")
+        kept = b""
+        while chunk := handle.read(1 << 20):
+            text = (kept + chunk).upper()
+            if b"<!ENTITY" in text:
+                raise InputRefused(opened.path, "XML with entity declarations is not opened",
+                                   "save it as a plain VOTable")
+            if b"<VOTABLE" in text or b"<VOT:VOTABLE" in text:
+                return
+            kept = chunk[-16:]
 
 
 def read_votable(opened: Opened, table_number: int | None) -> list[TableView]:

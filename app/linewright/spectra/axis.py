@@ -16,7 +16,7 @@ from ..errors import InputRefused
 from .units import ANGSTROM, METRE, WaveUnit, guess_unit, wave_unit
 
 _LINEAR_NAMES = ("", "LINEAR", "LAMBDA", "WAVELENGTH", "PIXEL", "ANGSTROM", "ANGSTROMS")
-_SPECTRAL = ("WAVE", "AWAV", "FREQ", "ENER", "WAVN", "VRAD", "VOPT", "ZOPT", "VELO", "BETA")
+SPECTRAL_CODES = ("WAVE", "AWAV", "FREQ", "ENER", "WAVN", "VRAD", "VOPT", "ZOPT", "VELO", "BETA")
 _DEFAULT_UNIT = {"WAVE": "m", "AWAV": "m", "FREQ": "Hz", "ENER": "J", "WAVN": "m-1"}
 _VELOCITY_WORDS = ("km/s", "m/s", "kms", "km s-1", "velocity", "vel", "rv")
 C_M_S = 299792458.0
@@ -167,7 +167,7 @@ def header_axis(header, count: int, what: str, number: int = 1, hdus=None) -> Ax
     could mean several things.
     """
     code = str(header.get(f"CTYPE{number}", "")).upper().strip()
-    if code[:4] in _SPECTRAL and (len(code) == 4 or code[4:5] == "-"):
+    if code[:4] in SPECTRAL_CODES and (len(code) == 4 or code[4:5] == "-"):
         return _standard(header, hdus, count, number, what)
     found = _coefficients(header, count) if number == 1 else None
     found = found or _flagged_log(header, count, number)

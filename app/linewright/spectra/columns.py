@@ -30,6 +30,12 @@ _ERR = re.compile(
 )
 _IVAR = re.compile(r"^(?:ivar|inv_?var\w*|invvar|inverse_?var\w*|flux_?ivar|ivar_?flux)$")
 _UNIT_SUFFIX = re.compile(r"_(nm|um|angstroms?|ang|aa|a|microns?)$")
+_START = re.compile(
+    r"^(?:crval1?|w0|wl0|wave_?(?:0|start|min|begin)|(?:start|min|first)_?(?:wave|lambda|w|wl)"
+    r"|lam(?:bda)?_?(?:0|start|min)|w_?start|start|coeff0)$")
+_STEP = re.compile(
+    r"^(?:cdelt1?|cd1_1|dw|wpc|d_?(?:wave|lambda|lam|wl)|(?:delta|step)_?(?:wave|lambda|lam|w)?"
+    r"|(?:wave|lambda|lam|w|wl)_?(?:step|delta|inc)|disp(?:ersion)?|coeff1)$")
 _MASK = re.compile(r"^(?:mask|bad|dq|qual|quality|flag|flags|data_?qual|data_?quality|and_?mask)$")
 
 
@@ -124,6 +130,25 @@ def role_of(info: ColumnInfo) -> str:
         by_name = ""
     by_utype = _by_utype(info)
     return by_name if by_name == "ivar" else by_utype or by_name
+
+
+def scale_columns(infos: list[ColumnInfo]) -> tuple[int, int, int] | None:
+    """(start, step, flux) columns of a table that states a scale instead of wavelengths.
+
+    The flux must have several samples a cell, start and step one each.
+    """
+    found: dict[str, int] = {}
+    for index, info in enumerate(infos):
+        name = info.name.strip().lower().replace("-", "_")
+        if info.numeric and info.length == 1:
+            for role, pattern in (("start", _START), ("step", _STEP)):
+                if pattern.match(name):
+                    found.setdefault(role, index)
+        elif role_of(info) == "flux":
+            found.setdefault("flux", index)
+    if {"start", "step", "flux"} <= set(found):
+        return found["start"], found["step"], found["flux"]
+    return None
 
 
 def column_unit(info: ColumnInfo) -> WaveUnit | None:

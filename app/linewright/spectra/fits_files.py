@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import re
 import warnings
+from dataclasses import replace
 
 import numpy as np
 
 from ..errors import InputRefused
+from .axis import SPECTRAL_CODES
 from .columns import ColumnInfo
 from .fits_images import Image, from_companions, from_header, images_of
 from .opening import Opened, check_fits_header
@@ -81,27 +83,44 @@ def _candidate(hdus, images, index: int, wanted: Wanted, what) -> Raw | None:
                _statements(hdus, index), raw.warnings)
 
 
-def _first(hdus, wanted: Wanted, what) -> tuple[int, Raw]:
-    """(HDU index, Raw) of the first HDU that holds a spectrum, or of the one asked for."""
-    images, refusals = images_of(hdus), []
+def _first(hdus, wanted: Wanted, opened: Opened) -> tuple[int, Raw]:
+    """(HDU index, Raw) of the first whole HDU that holds a spectrum, or of the one asked for."""
+    cut = _incomplete(hdus, opened)
+    images = [i for i in images_of(hdus) if i.index not in cut]
+    refusals = list(cut.values())
     order = range(len(hdus)) if wanted.hdu is None else [wanted.hdu]
     for index in order:
+        if index in cut:
+            continue
         try:
-            raw = _candidate(hdus, images, index, wanted, what)
+            raw = _candidate(hdus, images, index, wanted, opened.path)
         except InputRefused as refusal:
             if wanted.hdu is not None:
                 raise
             refusals.append(refusal)
             continue
         if raw is not None:
-            return index, raw
+            notes = tuple(f"HDU {i} is truncated and was left out" for i in cut)
+            return index, replace(raw, warnings=(*raw.warnings, *notes))
     if refusals:
         raise refusals[0]
+    raise _nothing_found(hdus, wanted, opened.path)
+
+
+def _nothing_found(hdus, wanted: Wanted, what) -> InputRefused:
     where = "no HDU" if wanted.hdu is None else f"HDU {wanted.hdu}"
     if len(hdus) == 1 and not getattr(hdus[0], "shape", ()):
-        raise InputRefused(what, "is a FITS header without data", "give the file with its data")
-    raise InputRefused(what, f"{where} holds a spectrum with a wavelength axis or column",
-                       "choose with --hdu or --columns, or save wavelength and flux as a table")
+        return InputRefused(what, "is a FITS header without data", "give the file with its data")
+    for hdu in hdus:
+        if getattr(hdu, "is_image", False) and len(getattr(hdu, "shape", ())) > 1:
+            codes = {n: str(hdu.header.get(f"CTYPE{n}", "")).upper()[:4] for n in (2, 3, 4)}
+            spectral = [n for n, code in codes.items() if code in SPECTRAL_CODES]
+            if spectral:
+                return InputRefused(
+                    what, f"is an image or cube with its wavelengths along axis {spectral[0]}",
+                    "extract a one-dimensional spectrum first")
+    return InputRefused(what, f"{where} holds a spectrum with a wavelength axis or column",
+                        "choose with --hdu or --columns, or save wavelength and flux as a table")
 
 
 def _others(hdus, chosen: int) -> int:
@@ -114,16 +133,17 @@ def _others(hdus, chosen: int) -> int:
                is not None and not h.is_image and wave_like <= set(h.columns.names))
 
 
-def _check_complete(hdus, opened: Opened) -> None:
+def _incomplete(hdus, opened: Opened) -> dict[int, InputRefused]:
+    """HDUs whose data end after the file does, with the refusal each deserves."""
+    cut = {}
     for index, hdu in enumerate(hdus):
         info = hdu.fileinfo()
-        if not info:
-            continue
-        end = info["datLoc"] + (hdu.size or 0)
+        end = info["datLoc"] + (hdu.size or 0) if info else 0
         if end > opened.size:
-            raise InputRefused(
+            cut[index] = InputRefused(
                 opened.path, f"is truncated or has a false size: HDU {index} needs {end} bytes, "
                 f"the file has {opened.size}", "fetch the file again")
+    return cut
 
 
 def _check_hdu(hdus, hdu: int | None, what) -> None:
@@ -143,9 +163,8 @@ def read_fits(opened: Opened, wanted: Wanted) -> Raw:
     with warnings.catch_warnings(), opened.stream() as stream:
         warnings.simplefilter("ignore")
         with fits.open(stream, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
-            _check_complete(hdus, opened)
             _check_hdu(hdus, wanted.hdu, opened.path)
-            index, raw = _first(hdus, wanted, opened.path)
+            index, raw = _first(hdus, wanted, opened)
             others = _others(hdus, index)
             layout = raw.layout + (f"; {others} more HDUs of this kind (choose with --hdu)"
                                    if others and wanted.hdu is None else "")

@@ -3,34 +3,19 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable
-from dataclasses import dataclass, field
 
 import numpy as np
 
 from ..errors import InputRefused
-from .columns import ColumnInfo, Roles, choose, column_unit
+from .columns import Roles, choose, column_unit
 from .raw import Card, Raw, RawSegment, Wanted
+from .scales import with_scale
+from .table_view import TableView
 from .uncertainty import mask_from_flags, sigma_from_ivar
 from .units import WaveUnit, guess_unit
 
 _ORDER_NAME = re.compile(r"^(?:sporder|order|orders|segment|detector|chip|arm|spec_?order)$",
                          re.IGNORECASE)
-
-
-@dataclass(frozen=True)
-class TableView:
-    """A table's columns and how to fetch one: ``fetch(i)`` has shape (rows,) or (rows, n)."""
-
-    where: str
-    infos: list[ColumnInfo]
-    rows: int
-    fetch: Callable[[int], np.ndarray]
-    cards: tuple[Card, ...] = ()
-    flux_unit: str = ""
-    name: str = ""
-    iv_spectrum: bool = False
-    notes: tuple[str, ...] = field(default=())
 
 
 def _rows_wanted(view: TableView, wanted: Wanted, what) -> tuple[list[int], str]:
@@ -140,8 +125,11 @@ def raw_from_table(view: TableView, wanted: Wanted, what) -> Raw | None:
 
     Raises InputRefused when the user's choices do not fit or units are unclear.
     """
+    if view.rows == 0:
+        return None
+    view = with_scale(view)
     roles = choose(view.infos, wanted.columns, str(what))
-    if roles is None or view.rows == 0:
+    if roles is None:
         return None
     if view.infos[roles.flux].length == 1 and view.rows < 2:
         return None
