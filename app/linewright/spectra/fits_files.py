@@ -10,11 +10,11 @@ import numpy as np
 
 from ..errors import InputRefused
 from .axis import SPECTRAL_CODES
-from .columns import ColumnInfo
 from .fits_images import Image, from_companions, from_header, images_of
+from .fits_tables import table_view
 from .opening import Opened, check_fits_header
 from .raw import Card, Raw, Wanted
-from .tables import TableView, raw_from_table
+from .tables import raw_from_table
 
 
 def _cards(header) -> list[Card]:
@@ -36,30 +36,6 @@ def _statements(hdus, index: int) -> tuple[Card, ...]:
     return tuple([c for c in _cards(hdus[0].header) if c.key not in stated] + own)
 
 
-def _table_view(hdus, index: int) -> TableView:
-    hdu = hdus[index]
-    header, columns = hdu.header, hdu.columns
-    infos = []
-    for number, column in enumerate(columns, start=1):
-        dtype = hdu.data.dtype[number - 1] if hdu.data is not None else np.dtype("f8")
-        length = int(np.prod(dtype.shape, dtype=int)) if dtype.shape else 1
-        variable = str(column.format).lstrip("0123456789")[:1] in ("P", "Q")
-        infos.append(ColumnInfo(
-            column.name, str(column.unit or ""), str(header.get(f"TUCD{number}", "")),
-            str(header.get(f"TUTYP{number}", "")), str(header.comments[f"TTYPE{number}"]),
-            2 if variable else length, variable or dtype.base.kind in "biuf",
-        ))
-    name = f" '{hdu.name}'" if hdu.name else ""
-    model = str(header.get("VOCLASS", "") or hdus[0].header.get("VOCLASS", "")).upper()
-    return TableView(
-        f"FITS table, HDU {index}{name}", infos, len(hdu.data),
-        lambda i: hdu.data.field(i), _statements(hdus, index),
-        str(header.get("BUNIT", "") or hdus[0].header.get("BUNIT", "")),
-        iv_spectrum="SPECTRUM" in model or any(i.utype.lower().count("spectralaxis")
-                                               for i in infos),
-    )
-
-
 def _from_image(hdus, images: list[Image], index: int, wanted: Wanted, what) -> Raw | None:
     image = next((i for i in images if i.index == index), None)
     if image is None:
@@ -71,11 +47,12 @@ def _from_image(hdus, images: list[Image], index: int, wanted: Wanted, what) -> 
         image, images, hdus, wanted, what)
 
 
-def _candidate(hdus, images, index: int, wanted: Wanted, what) -> Raw | None:
+def _candidate(hdus, images, index: int, wanted: Wanted, opened: Opened) -> Raw | None:
     hdu = hdus[index]
     if getattr(hdu, "columns", None) is not None and not hdu.is_image:
-        return raw_from_table(_table_view(hdus, index), wanted, what)
-    raw = _from_image(hdus, images, index, wanted, what)
+        view = table_view(hdus, index, opened, _statements(hdus, index))
+        return raw_from_table(view, wanted, opened.path)
+    raw = _from_image(hdus, images, index, wanted, opened.path)
     if raw is None:
         return None
     unit = re.sub(r"^[A-Za-z ]+\((.*)\)$", r"\1", str(hdu.header.get("BUNIT", "")).strip())
@@ -93,7 +70,7 @@ def _first(hdus, wanted: Wanted, opened: Opened) -> tuple[int, Raw]:
         if index in cut:
             continue
         try:
-            raw = _candidate(hdus, images, index, wanted, opened.path)
+            raw = _candidate(hdus, images, index, wanted, opened)
         except InputRefused as refusal:
             if wanted.hdu is not None:
                 raise
@@ -174,10 +151,12 @@ def read_fits(opened: Opened, wanted: Wanted) -> Raw:
 
 
 def _copied(segment):
-    """Native-endian arrays that outlive the file."""
-    def native(array):
-        return None if array is None else np.array(array, dtype=float)
+    """Native-endian arrays that outlive the file; what already is so is not copied again."""
+    def native(array, kind=np.dtype(float)):
+        if array is None or (array.base is None and array.dtype == kind):
+            return array
+        return np.array(array, dtype=kind)
 
-    mask = None if segment.mask is None else np.array(segment.mask, dtype=bool)
+    mask = native(segment.mask, np.dtype(bool))
     return type(segment)(native(segment.wave), native(segment.flux),
                          native(segment.uncertainty), mask)

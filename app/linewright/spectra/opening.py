@@ -8,6 +8,7 @@ import hashlib
 import io
 import os
 import stat
+import threading
 import zlib
 from dataclasses import dataclass
 from pathlib import Path
@@ -16,6 +17,38 @@ from ..errors import InputRefused
 
 DECODED_CAP = 2 * 1024**3  # bytes; larger decoded files are refused, not read
 _CHUNK = 1 << 20
+_APART = 1 << 24  # bytes from which the checksum is computed beside the reading
+
+
+class Checksum:
+    """SHA-256 of a file; of a long one it is computed beside the reading."""
+
+    def __init__(self, path: Path, apart: bool):
+        self._path, self._hex, self._problem = path, "", None
+        self._thread = threading.Thread(target=self._run, daemon=True) if apart else None
+        if self._thread:
+            self._thread.start()
+        else:
+            self._run()
+            self.hex()
+
+    def _run(self) -> None:
+        digest = hashlib.sha256()
+        try:
+            with open(self._path, "rb") as handle:
+                while chunk := handle.read(_CHUNK):
+                    digest.update(chunk)
+        except OSError as problem:
+            self._problem = problem
+        self._hex = digest.hexdigest()
+
+    def hex(self) -> str:
+        """The digest, when it is done. Raises OSError when the file could not be read."""
+        if self._thread:
+            self._thread.join()
+        if self._problem is not None:
+            raise self._problem
+        return self._hex
 
 
 @dataclass(frozen=True)
@@ -27,7 +60,7 @@ class Opened:
 
     path: Path
     kind: str
-    sha256: str
+    checksum: Checksum
     size: int
     stamp: tuple[int, int]
     data: bytes | None = None
@@ -56,14 +89,10 @@ def check_regular(path: Path) -> None:
         raise InputRefused(path, "is larger than 2 GiB", "cut out the range you need")
 
 
-def _head_and_sum(path: Path) -> tuple[bytes, str]:
-    digest = hashlib.sha256()
+def _head_and_sum(path: Path) -> tuple[bytes, Checksum]:
     with open(path, "rb") as handle:
         head = handle.read(_CHUNK)
-        digest.update(head)
-        while chunk := handle.read(_CHUNK):
-            digest.update(chunk)
-    return head, digest.hexdigest()
+    return head, Checksum(path, os.stat(path).st_size > _APART)
 
 
 def _decoded(path: Path, head: bytes) -> tuple[bytes | None, str]:

@@ -121,8 +121,7 @@ def _highest(raw: Raw) -> float:
     for segment in raw.segments:
         with np.errstate(all="ignore"):
             wave = raw.unit.to_angstrom(np.asarray(segment.wave, dtype=float))
-        wave = wave[np.isfinite(wave)]
-        highest = max(highest, float(wave.max())) if wave.size else highest
+        highest = max(highest, float(np.max(wave, initial=0.0, where=np.isfinite(wave))))
     return highest
 
 
@@ -204,7 +203,7 @@ def read_spectrum(path, **choices: Unpack[Choices]) -> Spectrum:
                      "table use --features")
     spectrum = Spectrum(
         segments, known.medium, known.medium_from, known.frame, known.frame_from,
-        raw.flux_unit, raw.name, str(opened.path), opened.sha256,
+        raw.flux_unit, raw.name, str(opened.path), opened.checksum.hex(),
         raw.layout + (f" ({opened.packing})" if opened.packing else ""),
         known.corrections, (*raw.warnings, *known.warnings, *notes), _resolution(raw),
         {**raw.choices, **{k: v for k, v in given.items() if k not in _MOVES}},

@@ -30,7 +30,7 @@ def _added(view: TableView, info: ColumnInfo, fetch, words: str) -> TableView:
     size = len(view.infos)
     return replace(view, infos=[*view.infos, info],
                    fetch=lambda i: fetch() if i == size else view.fetch(i),
-                   notes=(*view.notes, words))
+                   fetch_many=None, notes=(*view.notes, words))
 
 
 def _cells(view: TableView, flux: int) -> tuple[int, int]:

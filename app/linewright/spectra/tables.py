@@ -35,7 +35,7 @@ def _rows_wanted(view: TableView, wanted: Wanted, what) -> tuple[list[int], str]
 def _vector_rows(view: TableView, roles: Roles, wanted: Wanted, what):
     chosen, words = _rows_wanted(view, wanted, what)
     indices = (roles.wave, roles.flux, roles.err, roles.ivar, roles.mask)
-    columns = [None if i is None else np.asarray(view.fetch(i)) for i in indices]
+    columns = view.columns(indices)
     size = columns[1].reshape(view.rows, -1).shape[1]
     picked = []
     for row in chosen:
@@ -54,7 +54,7 @@ def _samples(view: TableView, roles: Roles, wanted: Wanted, what):
         picked, words = _vector_rows(view, roles, wanted, what)
         return picked, f"vector cells{words}"
     indices = (roles.wave, roles.flux, roles.err, roles.ivar, roles.mask)
-    cells = [None if i is None else np.asarray(view.fetch(i)) for i in indices]
+    cells = view.columns(indices)
     orders = _long_orders(view)
     if len(orders) < 2:
         return [cells], "a sample a row"
