@@ -15,7 +15,7 @@ from common import TABLES, script_arguments
 ORDER = (
     "level_physics", "atomic_lines", "hydrogen_helium", "level_lines", "level_gaps",
     "rare_gases", "nebular_lines",
-    "interstellar_sky", "telluric_lines", "citations",
+    "interstellar_sky", "telluric_lines", "bands", "citations",
 )
 
 

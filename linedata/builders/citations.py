@@ -33,11 +33,22 @@ ARTICLES = {
         "Bi\\'emont, E. and Hansen, J. E. and Quinet, P. and Zeippen, C. J.", 1995,
         "Astronomy and Astrophysics Supplement", "111", "333", "",
     ),
+    "Brooke2014": (
+        "Brooke, J. S. A. and Ram, R. S. and Western, C. M. and others", 2014,
+        "The Astrophysical Journal Supplement", "210", "23",
+        "Einstein A Coefficients and Oscillator Strengths for the A-X (Red) and B-X (Violet) "
+        "Systems and Rovibrational Transitions in the X State of CN",
+    ),
     "Chen2000": (
         "Chen, G. X. and Pradhan, A. K.", 2000, "Astronomy and Astrophysics Supplement", "147",
         "111", "",
     ),
     "Deb2009": ("Deb, N. C. and Hibbert, A.", 2009, "Journal of Physics B", "42", "065003", ""),
+    "Dulick2003": (
+        "Dulick, M. and Bauschlicher, C. W. and Burrows, A. and others", 2003,
+        "The Astrophysical Journal", "594", "651", "Line Intensities and Molecular Opacities of "
+        "the FeH F-X Transition",
+    ),
     "Ekberg1993": (
         "Ekberg, J. O.", 1993, "Astronomy and Astrophysics Supplement", "101", "1", "",
     ),
@@ -60,14 +71,28 @@ ARTICLES = {
         "Galavis, M. E. and Mendoza, C. and Zeippen, C. J.", 1997,
         "Astronomy and Astrophysics Supplement", "123", "159", "",
     ),
+    "Goorvitch1994": (
+        "Goorvitch, D.", 1994, "The Astrophysical Journal Supplement", "95", "535",
+        "Infrared CO Line List for the X 1Sigma+ State",
+    ),
     "Gredel1993": (
         "Gredel, R. and van Dishoeck, E. F. and Black, J. H.", 1993,
         "Astronomy and Astrophysics", "269", "477", "",
+    ),
+    "Hinkle2013": (
+        "Hinkle, K. H. and Wallace, L. and Ram, R. S. and others", 2013,
+        "The Astrophysical Journal Supplement", "207", "26",
+        "The Magnesium Isotopologues of MgH in the A-X System",
     ),
     "Hobbs2008": (
         "Hobbs, L. M. and York, D. G. and Snow, T. P. and others", 2008,
         "The Astrophysical Journal", "680", "1256", "A Catalog of Diffuse Interstellar Bands in "
         "the Spectrum of HD 204827",
+    ),
+    "Masseron2014": (
+        "Masseron, T. and Plez, B. and Van Eck, S. and others", 2014,
+        "Astronomy and Astrophysics", "571", "A47", "CH in stellar atmospheres: an extensive "
+        "linelist",
     ),
     "Mendoza1982": (
         "Mendoza, C. and Zeippen, C. J.", 1982,
@@ -95,6 +120,9 @@ ARTICLES = {
         "Night-Sky High-Resolution Spectral Atlas of OH and O2 Emission Lines for Echelle "
         "Spectrograph Wavelength Calibration",
     ),
+    "Plez1998": (
+        "Plez, B.", 1998, "Astronomy and Astrophysics", "337", "495", "A new TiO line list",
+    ),
     "Placco2021": (
         "Placco, V. M. and Sneden, C. and Roederer, I. U. and others", 2021,
         "Research Notes of the American Astronomical Society", "5", "92",
@@ -104,6 +132,11 @@ ARTICLES = {
         "Porter, R. L. and Ferland, G. J. and Storey, P. J. and Detisch, M. J.", 2013,
         "Monthly Notices of the Royal Astronomical Society", "433", "L89",
         "Improved He I emissivities in the case B approximation (erratum of 2012, 425, L28)",
+    ),
+    "Ram2014": (
+        "Ram, R. S. and Brooke, J. S. A. and Bernath, P. F. and others", 2014,
+        "The Astrophysical Journal Supplement", "211", "5", "Improved Line Data for the Swan "
+        "System 12C13C Isotopologue",
     ),
     "Rothman2005": (
         "Rothman, L. S. and Jacquemart, D. and Barbe, A. and others", 2005,
@@ -145,6 +178,13 @@ ARTICLES = {
 }
 # key: (citation, BibTeX body)
 OTHERS = {
+    "PearseGaydon1976": (
+        "Pearse, R. W. B. and Gaydon, A. G. 1976, The Identification of Molecular Spectra, 4th "
+        "ed., Chapman and Hall (values recalled from memory)",
+        "@book{PearseGaydon1976,\n  author = {Pearse, R. W. B. and Gaydon, A. G.},\n  title = "
+        "{The Identification of Molecular Spectra},\n  edition = {4},\n  publisher = {Chapman "
+        "and Hall},\n  year = {1976}\n}",
+    ),
     "NIST_ASD": (
         "Kramida, A., Ralchenko, Yu., Reader, J., and NIST ASD Team, NIST Atomic Spectra "
         "Database: energy levels; Ritz wavelengths computed from them",
