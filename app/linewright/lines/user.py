@@ -1,4 +1,4 @@
-"""User catalogues: ECSV or CSV tables of lines, with or instead of the shipped one."""
+"""User catalogues: tables of lines (ECSV, CSV, VOTable, fixed width), with ours or instead."""
 
 from __future__ import annotations
 
@@ -12,11 +12,18 @@ from ..errors import InputRefused
 from ..spectra.medium import from_medium
 from .catalogue import ORIGINS, LineCatalogue
 from .species import parse_species
+from .user_layout import (
+    CURE,
+    OPTIONAL,
+    WAVENUMBERS,
+    Cells,
+    Layout,
+    in_angstrom,
+    in_ev,
+    read_cells,
+)
 
-REQUIRED = ("species", "wave")
-OPTIONAL = ("wave_err", "e_low", "loggf", "loggf_err", "emission", "spread", "j_low", "j_up")
 DEFAULT_ERROR = 0.01  # Angstrom, where the table gives none
-_CURE = "give a CSV or ECSV table with the columns species and wave (Angstrom)"
 
 
 @dataclass(frozen=True)
@@ -30,38 +37,72 @@ class UserCatalogue:
     problems: tuple[str, ...]
 
 
+def questions(path: str | Path, layout: Layout = Layout()) -> tuple[str, ...]:
+    """What the file does not say and should be asked: 'medium', 'unit of wave', 'citation'.
+
+    Raises InputRefused as ``read_user_rows`` for a file that is no table of lines.
+    """
+    cells = read_cells(Path(path), layout)
+    asked = [] if cells.meta.get("medium") in ("air", "vacuum") else ["medium"]
+    if not (layout.units.get("wave") or cells.units.get("wave")):
+        asked.append("unit of wave")
+    if not (layout.citation or cells.meta.get("citation")):
+        asked.append("citation")
+    return tuple(asked)
+
+
 def read_user_rows(
-    path: str | Path, medium: str = "unknown", source: str = "user", origin: str = "stellar"
+    path: str | Path,
+    medium: str = "unknown",
+    source: str = "user",
+    origin: str = "stellar",
+    layout: Layout = Layout(),
 ) -> UserCatalogue:
-    """Usable lines of a CSV or ECSV file, and what is wrong with the other rows.
+    """Usable lines of a CSV, ECSV, VOTable or fixed-width file, and what is wrong with the rest.
 
     medium: 'air' or 'vacuum' of the column ``wave``; 'unknown' asks the file's metadata
-    entry ``medium``. Raises InputRefused where the medium stays unknown, a required column
-    is missing or no row can be used.
+    entry ``medium``. layout: columns, units and citation the file does not give itself (units
+    default to Angstrom and eV; a citation becomes the lines' source instead of ``source``).
+    Raises InputRefused where the medium stays unknown, a required column is missing or no row
+    can be used.
     """
-    table = _read_table(Path(path))
-    medium = _medium(path, medium, table.meta)
+    path = Path(path)
+    cells = read_cells(path, layout)
+    medium = _medium(path, medium, cells.meta)
     if origin not in ORIGINS:
         raise InputRefused(f"origin '{origin}'", "unknown", f"one of {', '.join(ORIGINS)}")
-    good, species, problems = _check_rows(table)
+    good, species, problems = _check_rows(cells)
     if not good:
-        raise InputRefused(path, f"no usable row; {problems[0]}" if problems else "no rows", _CURE)
-    columns = {name: _numbers(table, name)[good] for name in ("wave", *OPTIONAL)}
-    return UserCatalogue(
-        _assemble(columns, species, medium, (source, origin), Path(path)), tuple(problems)
-    )
+        raise InputRefused(path, f"no usable row; {problems[0]}" if problems else "no rows", CURE)
+    columns = {name: cells.numeric(name)[good] for name in ("wave", *OPTIONAL)}
+    units = cells.units | layout.units
+    columns["wave_err"] = _errors(columns["wave"], columns["wave_err"], units)
+    columns["wave"] = in_angstrom(columns["wave"], units.get("wave", ""))
+    columns["e_low"] = in_ev(columns["e_low"], units.get("e_low", ""))
+    key = layout.citation or cells.meta.get("citation", "") or source
+    return UserCatalogue(_assemble(columns, species, medium, (key, origin), path), tuple(problems))
 
 
-def read_user_catalogue(paths, medium: str = "unknown") -> LineCatalogue:
+def _errors(wave: np.ndarray, error: np.ndarray, units: dict[str, str]) -> np.ndarray:
+    """Wavelength errors in Angstrom, given in the unit of the wavelengths or their own."""
+    unit = units.get("wave_err") or units.get("wave", "")
+    if unit.strip().lower() in WAVENUMBERS:
+        return error / wave * (1e8 / wave)
+    return in_angstrom(error, unit)
+
+
+def read_user_catalogue(
+    paths, medium: str = "unknown", layout: Layout = Layout()
+) -> LineCatalogue:
     """The lines of one or several user files as one catalogue.
 
-    paths: a path or a sequence of paths; medium as in ``read_user_rows``. A file with bad
+    paths: a path or a sequence of paths; medium, layout as in ``read_user_rows``. A file with bad
     rows is refused with their numbers (InputRefused), so that none is dropped silently.
     """
     paths = [paths] if isinstance(paths, (str, Path)) else list(paths)
     merged = None
     for path in paths:
-        found = read_user_rows(path, medium, source=f"user:{Path(path).name}")
+        found = read_user_rows(path, medium, f"user:{Path(path).name}", layout=layout)
         if found.problems:
             shown = "; ".join(found.problems[:5])
             more = len(found.problems) - 5
@@ -69,7 +110,7 @@ def read_user_catalogue(paths, medium: str = "unknown") -> LineCatalogue:
             raise InputRefused(path, shown, "correct or delete these rows")
         merged = found.catalogue if merged is None else merge_catalogues(merged, found.catalogue)
     if merged is None:
-        raise InputRefused("catalogue", "no file named", _CURE)
+        raise InputRefused("catalogue", "no file named", CURE)
     return merged
 
 
@@ -101,23 +142,6 @@ def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalog
     )
 
 
-def _read_table(path: Path):
-    from astropy.table import Table
-
-    if not path.is_file():
-        raise InputRefused(path, "no such file", _CURE)
-    format_name = "ascii.ecsv" if path.suffix.lower() == ".ecsv" else "ascii.csv"
-    try:
-        table = Table.read(path, format=format_name)
-    except Exception as error:  # astropy raises many kinds for a malformed table
-        reason = str(error).strip().splitlines()
-        raise InputRefused(path, f"not a table: {reason[0] if reason else error!r}", _CURE) from None
-    missing = [name for name in REQUIRED if name not in table.colnames]
-    if missing:
-        raise InputRefused(path, f"the column {missing[0]} is missing", _CURE)
-    return table
-
-
 def _medium(path, asked: str, meta) -> str:
     found = asked if asked != "unknown" else str(meta.get("medium", "unknown"))
     if found not in ("air", "vacuum"):
@@ -125,45 +149,25 @@ def _medium(path, asked: str, meta) -> str:
     return found
 
 
-def _numbers(table, name: str) -> np.ndarray:
-    """A column as floats; NaN where missing, masked or no number."""
-    if name not in table.colnames:
-        return np.full(len(table), np.nan)
-    cells = table[name].tolist()
-    values = np.full(len(cells), np.nan)
-    for k, cell in enumerate(cells):
-        try:
-            values[k] = np.nan if cell is None else float(cell)
-        except (TypeError, ValueError):
-            continue
-    return values
-
-
-def _given(table, name: str) -> np.ndarray:
-    """Where a column holds anything at all."""
-    if name not in table.colnames:
-        return np.zeros(len(table), bool)
-    return np.array([c is not None and str(c).strip() != "" for c in table[name].tolist()], bool)
-
-
-def _check_rows(table) -> tuple[list[int], list[str], list[str]]:
+def _check_rows(cells: Cells) -> tuple[list[int], list[str], list[str]]:
     """Usable rows, their species, and what is wrong with the others."""
-    wave = _numbers(table, "wave")
+    wave = cells.numeric("wave")
     bad_number = {
-        name: _given(table, name) & ~np.isfinite(_numbers(table, name)) for name in OPTIONAL
+        name: cells.given(name) & ~np.isfinite(cells.numeric(name)) for name in OPTIONAL
     }
     good, species, problems = [], [], []
-    for k, text in enumerate(table["species"].tolist()):
+    for k, text in enumerate(cells.columns["species"]):
+        number = cells.numbers[k]
         try:
             name = str(parse_species("" if text is None else str(text)))
         except InputRefused as refusal:
-            problems.append(f"row {k + 1}: {refusal}")
+            problems.append(f"row {number}: {refusal}")
             continue
         wrong = [column for column, flags in bad_number.items() if flags[k]]
         if not (np.isfinite(wave[k]) and wave[k] > 0):
-            problems.append(f"row {k + 1}: wave is not a positive number")
+            problems.append(f"row {number}: wave is not a positive number")
         elif wrong:
-            problems.append(f"row {k + 1}: {wrong[0]} is not a number")
+            problems.append(f"row {number}: {wrong[0]} is not a number")
         else:
             good.append(k)
             species.append(name)
