@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from .change import Change, change_between
 from .model import Session
 
 Watcher = Callable[[Session, Session], None]
@@ -13,15 +14,15 @@ Watcher = Callable[[Session, Session], None]
 @dataclass(frozen=True)
 class _Step:
     label: str
-    before: Session
-    after: Session
+    back: Change
+    on: Change
 
 
 class Document:
     """Holds one Session at a time and the way back.
 
-    Snapshots share their unchanged parts, so a step costs little; the oldest of more than
-    ``depth`` steps are forgotten. Callbacks given to ``subscribe`` get (old, new) after
+    A step holds only what it changed, both ways, so memory grows with the acts and not with
+    the size of the session; the oldest of more than ``depth`` steps are forgotten. Callbacks given to ``subscribe`` get (old, new) after
     every change, undo and redo included.
     """
 
@@ -54,7 +55,8 @@ class Document:
         """Make ``new`` the session as one step of undo, such as the result of a solve."""
         old = self._session
         if new is not old:
-            self._done.append(_Step(label, old, new))
+            step = _Step(label, change_between(new, old), change_between(old, new))
+            self._done.append(step)
             del self._done[: -self._depth]
             self._undone.clear()
             self._show(new)
@@ -89,7 +91,7 @@ class Document:
             return False
         step = self._done.pop()
         self._undone.append(step)
-        self._show(step.before)
+        self._show(step.back.apply(self._session))
         return True
 
     def redo(self) -> bool:
@@ -98,7 +100,7 @@ class Document:
             return False
         step = self._undone.pop()
         self._done.append(step)
-        self._show(step.after)
+        self._show(step.on.apply(self._session))
         return True
 
     @property
