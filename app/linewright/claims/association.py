@@ -12,6 +12,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+NEGLIGIBLE = 1e-5  # odds below which a pair cannot sway any other
+
 
 @dataclass(frozen=True, eq=False)
 class Marginals:
@@ -23,7 +25,7 @@ class Marginals:
     missing: np.ndarray
 
 
-def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1e-6) -> Marginals:
+def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1e-4) -> Marginals:
     """Marginals from pair odds.
 
     feature, line: int arrays (p,), the pairs; odds: (p,) likelihood that the line made the
@@ -32,6 +34,9 @@ def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1
     n_feature, n_line = sizes
     if len(odds) == 0:
         return Marginals(np.zeros(0), np.ones(n_feature), np.ones(n_line))
+    everything = (feature, line, odds)
+    weighty = odds > NEGLIGIBLE
+    feature, line, odds = feature[weighty], line[weighty], odds[weighty]
     open_line = np.ones_like(odds)
     for _ in range(rounds):
         offer = odds * open_line
@@ -43,7 +48,9 @@ def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1
         open_line = updated
         if change < tolerance:
             break
-    offer = odds * open_line
+    feature, line, odds = everything
+    offer = odds.copy()
+    offer[weighty] *= open_line
     norm = 1.0 + np.bincount(feature, offer, n_feature)
     pair = offer / norm[feature]
     missing = np.clip(1.0 - np.bincount(line, pair, n_line), 0.0, 1.0)

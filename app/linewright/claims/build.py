@@ -39,12 +39,28 @@ def build_claims(solution: Solution, catalogue, components) -> tuple[Claim, ...]
     )
 
 
+def _predicted_depths(solution: Solution):
+    """Central depth the learned relation predicts for each entry's group; NaN where the
+    population's depths are not predicted or no depth was measured."""
+    e = solution.problem.entries
+    depth = np.full(len(e), np.nan)
+    if not np.any(np.isfinite(solution.problem.features.strength)):
+        return depth
+    for k, relation in enumerate(solution.state.relation):
+        if k not in UNGRADED and SIGNS[k] > 0:
+            here = e.population == k
+            depth[here] = 1.0 / (1.0 + 10.0 ** (-relation(solution.groups.total[here])))
+    return depth
+
+
 class _Builder:
     """Turns the sorted pairs of one feature into its claim."""
 
     def __init__(self, solution: Solution, catalogue, components, species_p):
         self.s, self.catalogue, self.components = solution, catalogue, components
         self.species_p = species_p
+        self.certainty = np.array([c.certainty for c in components])
+        self.depth = _predicted_depths(solution)
 
     def claim(self, feature: int, pairs) -> Claim:
         unlisted = float(self.s.unlisted[feature])
@@ -87,10 +103,9 @@ class _Builder:
 
     def _certainty(self, pairs) -> float:
         """Certainty of the components behind a feature's pairs, weighted by probability."""
-        if len(pairs) == 0:
+        if len(pairs) == 0 or np.all(self.certainty == 1.0):
             return 1.0
-        component = self.s.problem.entries.component[self.s.entry[pairs]]
-        certain = np.array([c.certainty for c in self.components])[component]
+        certain = self.certainty[self.s.problem.entries.component[self.s.entry[pairs]]]
         weight = self.s.probability[pairs] + 1e-12
         return float(np.sum(weight * certain) / np.sum(weight))
 
@@ -110,19 +125,9 @@ class _Builder:
             probability=float(min(self.s.probability[pair], 1.0)) * sure,
             share=float(self.s.groups.share[entry]),
             offset_sigma=float(self.s.offset_sigma[pair]),
-            depth_predicted=self._depth(entry),
+            depth_predicted=float(self.depth[entry]),
             source=cat.source_keys[int(cat.source[row])],
         )
-
-    def _depth(self, entry: int) -> float:
-        """Central depth the learned relation predicts for the entry's group."""
-        population = int(self.s.problem.entries.population[entry])
-        if population in UNGRADED or SIGNS[population] < 0:
-            return float("nan")
-        if not np.any(np.isfinite(self.s.problem.features.strength)):
-            return float("nan")
-        m = float(self.s.state.relation[population](self.s.groups.total[entry]))
-        return float(1.0 / (1.0 + 10.0 ** (-m)))
 
     def _blend(self, pair: int) -> tuple[tuple[str, float, float], ...]:
         """Other lines of the best line's group that carry a share of at least a fifth."""

@@ -79,12 +79,13 @@ def _main(setting, star: Vote, nebula: Vote):
     """The vote that speaks for the object: the clearer of absorption and emission."""
     o = setting.options
     if o.velocity is not None:
-        vote = star if star.margin >= nebula.margin else nebula
+        vote = _clearer(star, nebula)
         given = VelocityResult(
             float(o.velocity), 0.0, vote.margin, True, vote.rivals, vote.grid, vote.score, "given"
         )
         return given, "given"
-    chosen, how = (star, "absorption") if star.margin >= nebula.margin else (nebula, "emission")
+    chosen = _clearer(star, nebula)
+    how = "emission" if chosen is nebula else "absorption"
     result = VelocityResult(
         chosen.velocity,
         chosen.error,
@@ -96,6 +97,15 @@ def _main(setting, star: Vote, nebula: Vote):
         "voting",
     )
     return result, how
+
+
+def _clearer(star: Vote, nebula: Vote) -> Vote:
+    """The vote with the larger margin among those that had voters."""
+    if not np.isfinite(nebula.velocity):
+        return star
+    if not np.isfinite(star.velocity):
+        return nebula
+    return star if star.margin >= nebula.margin else nebula
 
 
 def _emission_velocity(nebula: Vote, main: VelocityResult) -> float:

@@ -15,7 +15,7 @@ from .association import Marginals, associate
 from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_relation
 from .curves import first_relation, threshold_form
 from .entries import Groups, group
-from .offsets import best_offsets, detection_log_likelihood, strength_log_likelihood
+from .offsets import SCALE, best_offsets, detection_log_likelihood, strength_log_likelihood
 from .problem import Problem, find_pairs, inside
 from .unlisted import Null, learn_null
 
@@ -232,38 +232,47 @@ def _species_scatter(problem, pairs, step: _Step):
 
 
 def _learn_offsets(problem, pairs, step: _Step, state: State) -> State:
-    e = problem.entries
+    """Each population's species have a block of indices of their own."""
+    block = problem.species // problem.populations
+    mean, error = np.zeros(problem.species), np.full(problem.species, SCALE)
     p = step.marginals.pair
-    seen = np.bincount(pairs.entry, p, len(e))
-    share = step.groups.share
-    exposure = share * pairs.covered if problem.complete else seen
-    table = np.zeros((problem.species, 1))
-    for k in range(problem.populations):
-        here = e.population == k
-        value = detection_log_likelihood(
-            e.strength[here],
-            (seen * share)[here],
-            (exposure * share)[here],
-            e.species[here],
-            problem.species,
-            state.detection[k],
-        )
-        table = table + value
-        if k in problem.ungraded:
-            continue
-        mine = (e.population[pairs.entry] == k) & np.isfinite(pairs.m) & (p > 0.05)
-        who = pairs.entry[mine]
-        relation = state.relation[k]
-        table = table + strength_log_likelihood(
-            pairs.m[mine] - relation(e.strength[who]),
-            relation.slope(step.strength[who]),
-            max(relation.scatter, 0.2),
-            p[mine] * share[who],
-            e.species[who],
-            problem.species,
-        )
-    mean, error = best_offsets(table)
+    seen = np.bincount(pairs.entry, p, len(problem.entries))
+    for k in np.unique(problem.entries.population):
+        table = _offset_evidence(problem, pairs, step, state, (int(k), block, seen))
+        mine = slice(k * block, (k + 1) * block)
+        mean[mine], error[mine] = best_offsets(table)
     return replace(state, offsets=mean, offset_errors=error)
+
+
+def _offset_evidence(problem, pairs, step: _Step, state: State, which):
+    """Log-likelihood of the offsets of one population's species.
+
+    which: (population, species per population, P(seen) per entry).
+    """
+    k, block, seen = which
+    e, p, share = problem.entries, step.marginals.pair, step.groups.share
+    here = np.nonzero(e.population == k)[0]
+    exposure = share * pairs.covered if problem.complete else seen
+    table = detection_log_likelihood(
+        e.strength[here],
+        (seen * share)[here],
+        (exposure * share)[here],
+        e.species[here] - k * block,
+        block,
+        state.detection[k],
+    )
+    if k in problem.ungraded:
+        return table
+    mine = (e.population[pairs.entry] == k) & np.isfinite(pairs.m) & (p > 0.05)
+    who, relation = pairs.entry[mine], state.relation[k]
+    return table + strength_log_likelihood(
+        pairs.m[mine] - relation(e.strength[who]),
+        relation.slope(step.strength[who]),
+        max(relation.scatter, 0.2),
+        p[mine] * share[who],
+        e.species[who] - k * block,
+        block,
+    )
 
 
 def _finish(problem, pairs, step: _Step, state: State) -> Solution:
