@@ -13,10 +13,11 @@ import numpy as np
 from common import (
     EV_PER_CM, ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, source_file, write_table,
 )
+from components import of_groups, pack
 from decays import radiative_widths
 from level_gaps import allowed
 from nist_levels import read_levels
-from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_far, match_lines, sort_levels
+from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_far, match_lines, match_shifted, sort_levels
 from symbols import ELEMENTS, ROMAN
 
 KEYS = ["Placco2021", "NIST_ASD"]
@@ -120,6 +121,7 @@ def matched(levels, lines: dict[str, np.ndarray]):
         return bool(allowed(levels, low, up))
 
     match_far(levels, lines["wave"], lines["e_low"], lines["loggf"], found, permitted)
+    match_shifted(levels, lines["wave"], lines["e_low"], found)
     return found
 
 
@@ -139,7 +141,8 @@ def without_levels(ion: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
 
 def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
     """Lines of an ion, those with a level pair at their Ritz wavelengths."""
-    lines = collapse(ion, groups_of(ion, matched(levels, ion)))
+    groups = groups_of(ion, matched(levels, ion))
+    lines = collapse(ion, groups)
     found = matched(levels, lines)
     listed, ritz = lines["wave"], found.low >= 0
     shift = np.where(ritz, listed - found.wave, np.nan)
@@ -150,6 +153,7 @@ def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
         ritz, np.maximum(found.error, np.abs(shift) / 3.0), scatter * listed / 5000.0
     )
     lines["wave"] = found.wave
+    lines["components"] = of_groups(ion, groups, found.wave)
     energy = levels.energy[found.low] * EV_PER_CM
     lines["e_low"] = np.where(ritz, energy, lines["e_low"] * E_LOW_SCALE)
     lines["gamma_rad"] = radiative_widths(levels, found, lines)
@@ -171,10 +175,10 @@ def finish(ion: dict[str, np.ndarray], levels, hyperfine: float) -> dict[str, np
     return lines
 
 
-def build(source: Path) -> tuple[dict, list[str], list[str]]:
-    """All ions, ready to pack: columns, species names, source keys."""
+def build(source: Path) -> tuple[dict, list[str], list[tuple[str, dict]]]:
+    """All ions, ready to pack: columns, species names, components by species."""
     rows = read_list(source)
-    parts, names = [], []
+    parts, names, components = [], [], []
     for code in np.unique(rows["z"] * 10 + rows["stage"]):
         z, stage = divmod(int(code), 10)
         if stage > 2:
@@ -186,17 +190,19 @@ def build(source: Path) -> tuple[dict, list[str], list[str]]:
         lines = finish(ion, sort_levels(levels) if levels else None, hyperfine)
         lines["species"] = np.full(len(lines["wave"]), len(names))
         names.append(f"{ELEMENTS[z - 1]} {ROMAN[stage - 1]}")
+        components.append((names[-1], lines.pop("components", {"parent": ()})))
         parts.append(lines)
     common = [key for key in parts[0] if all(key in part for part in parts)]
     merged = {key: np.concatenate([part[key] for part in parts]) for key in common}
     merged["origin"] = np.full(len(merged["wave"]), ORIGIN_CODE["stellar"])
-    return merged, names, KEYS
+    return merged, names, components
 
 
 def main() -> None:
     arguments = script_arguments(__doc__.splitlines()[0])
-    lines, names, keys = build(arguments.source_dir)
-    write_table("atomic_lines", pack_lines(lines, names, keys), arguments.out)
+    lines, names, components = build(arguments.source_dir)
+    write_table("atomic_lines", pack_lines(lines, names, KEYS), arguments.out)
+    write_table("atomic_components", pack(components), arguments.out)
     share = np.mean(lines["source"] == 1)
     print(f"{len(lines['wave'])} lines of {len(names)} ions; {share:.1%} with Ritz wavelengths")
 

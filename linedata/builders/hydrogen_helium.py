@@ -8,8 +8,9 @@ from __future__ import annotations
 import numpy as np
 
 from common import ORIGIN_CODE, pack_lines, script_arguments, write_table
+from components import of_patterns, pack
 from helium import line_pairs
-from hydrogenic import HELIUM_II, HYDROGEN, centroid, centroid_error
+from hydrogenic import HELIUM_II, HYDROGEN, centroid, centroid_error, components
 
 NAMES = ["H I", "He I", "He II"]
 KEYS = ["Hydrogenic", "NIST_ASD"]
@@ -34,6 +35,14 @@ def formula_lines(ion) -> list[dict[str, float]]:
     return lines
 
 
+def patterns(ion, lines: list[dict]):
+    """(centroid, component waves, component gf) of the lines between lower shells to 4."""
+    for line in lines:
+        low, up = (int(line[key][2:-1]) for key in ("term_low", "term_up"))
+        if low <= 4 and up <= 20:
+            yield line["wave"], *components(ion, low, up)
+
+
 def main() -> None:
     arguments = script_arguments(__doc__.splitlines()[0])
     groups = [formula_lines(HYDROGEN), line_pairs(arguments.source_dir), formula_lines(HELIUM_II)]
@@ -46,6 +55,11 @@ def main() -> None:
     lines["source"] = np.repeat([0, 1, 0], sizes)
     lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
     write_table("hydrogen_helium", pack_lines(lines, NAMES, KEYS), arguments.out)
+    kept = [
+        (ion.name, of_patterns(patterns(ion, group)))
+        for ion, group in ((HYDROGEN, groups[0]), (HELIUM_II, groups[2]))
+    ]
+    write_table("hydrogen_components", pack(kept), arguments.out)
     print(dict(zip(NAMES, sizes, strict=True)))
 
 

@@ -141,6 +141,19 @@ def _is_new(line: dict, known: dict) -> bool:
     return not np.any(near & (np.abs(known["e_low"] - line["e_low"]) < SAME_ENERGY))
 
 
+def _without_twins(lines: list[dict]) -> list[dict]:
+    """One line where two labels of one level give the same line."""
+    kept: list[dict] = []
+    for line in lines:
+        twin = any(
+            abs(k["wave"] - line["wave"]) < 0.02 and abs(k["e_low"] - line["e_low"]) < 1e-4
+            for k in kept
+        )
+        if not twin:
+            kept.append(line)
+    return kept
+
+
 def known_lines(folder: Path, name: str) -> dict[str, np.ndarray]:
     """wave, e_low, loggf of one species in the finished tables of permitted lines."""
     parts = []
@@ -163,6 +176,7 @@ def main() -> None:
         limit = energies[ELEMENTS.index(element), stage - 1]
         found = gap_lines(arguments.source_dir, (element, stage), known, limit)
         found = [line | {"species": len(names)} for line in found if _is_new(line, known)]
+        found = _without_twins(found)
         rows += found
         names.append(name)
         print(name, len(found))

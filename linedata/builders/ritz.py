@@ -17,6 +17,8 @@ WAVENUMBER_TOLERANCE = 0.5  # cm-1
 WAVE_TOLERANCE = 0.05  # Angstrom
 # Second look at lines left without a pair: levels and lines both free, one electron's jump.
 FAR_WAVE, FAR_WAVENUMBER, FAR_RIVAL = 0.12, 1.5, 0.25  # Angstrom at 5000 A, cm-1, Angstrom
+# Third look: upper levels the list has elsewhere, told by lines that all miss alike.
+SHIFT_REACH, SHIFT_WIDTH, SHIFT_LINES = 1.5, 0.04, 4  # cm-1, cm-1, lines
 RIVAL_RATIO = 3.0  # a second pair must miss by this factor more, and by 0.02 A at least
 FLOOR = 4e-7  # relative: 0.002 A at 5000 A
 
@@ -77,6 +79,44 @@ def match_lines(levels: Levels, wave: np.ndarray, e_low_ev: np.ndarray) -> Match
         _, low, up = found[0]
         _enter(levels, result, k, low, up)
     return result
+
+
+def match_shifted(levels: Levels, wave, e_low_ev, matches: Matches) -> None:
+    """Adds lines of upper levels whose energy in the list differs from the level file's.
+
+    At least SHIFT_LINES unmatched lines, of different lower levels, must miss the level by the
+    same wavenumber; and twice as many as at any other miss.
+    """
+    taken = {(a, b) for a, b in zip(matches.low, matches.up, strict=True) if a >= 0}
+    misses: dict[int, list[tuple[float, int, int]]] = {}
+    for k in np.flatnonzero(matches.low < 0):
+        for _, low, up in _candidates(levels, wave[k], e_low_ev[k], SHIFT_REACH * wave[k] ** 2 * 1e-8):
+            if (low, up) not in taken:
+                miss = 1e8 / wave[k] - (levels.energy[up] - levels.energy[low])
+                misses.setdefault(up, []).append((miss, low, int(k)))
+    for up, found in sorted(misses.items()):
+        chosen = _alike(sorted(found))
+        for _, low, k in chosen:
+            if matches.low[k] < 0 and (low, up) not in taken:
+                taken.add((low, up))
+                _enter(levels, matches, k, low, up)
+
+
+def _alike(found: list[tuple[float, int, int]]) -> list[tuple[float, int, int]]:
+    """The entries of the fullest window of misses; [] where it does not stand out."""
+    groups = [
+        [entry for entry in found if first[0] <= entry[0] < first[0] + SHIFT_WIDTH]
+        for first in found
+    ]
+    sizes = [len({low for _, low, _ in group}) for group in groups]
+    best = int(np.argmax(sizes))
+    apart = [
+        size for size, first in zip(sizes, found, strict=True)
+        if abs(first[0] - found[best][0]) > SHIFT_WIDTH
+    ]
+    if sizes[best] < SHIFT_LINES or sizes[best] < 2 * max(apart, default=0):
+        return []
+    return groups[best]
 
 
 def _enter(levels: Levels, result: Matches, k: int, low: int, up: int) -> None:

@@ -1,0 +1,97 @@
+"""Predicted depths and coverage against the predicted masks of arve 0.8.3. Run by hand.
+
+    python tests/studies/lines_masks.py FOLDER_OF_arve-0.8.3 [K5 F5 | G2]
+
+The masks (MIT; line data extracted from VALD: test-only, never shipped) give vacuum wavelength
+and central depth of the lines of dwarfs. Tuned on K5 and F5; G2 is scored with the conditions
+interpolated between theirs. Spearman over lines deeper than 0.1 that have a counterpart (same
+species within 0.02 A, the deepest predicted one); counterparts over lines deeper than 0.2,
+3000-12000 A, atoms only: among the lines alone, and among the lines and the fine-structure,
+hyperfine and isotopic components kept with them (the masks list H I by components).
+"""
+
+from __future__ import annotations
+
+import csv
+import io
+import sys
+import zipfile
+from collections import Counter
+from pathlib import Path
+
+import numpy as np
+
+ROOT = Path(__file__).resolve().parents[2]
+sys.path.insert(0, str(ROOT / "app"))
+
+from linewright.errors import InputRefused  # noqa: E402
+from linewright.lines.components import component_waves  # noqa: E402
+from linewright.lines.depths import catalogue_depths  # noqa: E402
+from linewright.lines.loading import load_catalogue  # noqa: E402
+from linewright.lines.species import normal_name  # noqa: E402
+
+# mask: excitation temperature (0.86, 0.85 and 0.83 of 4400, 5770 and 6500 K), log10 of electron
+# pressure (dyn cm-2); G2 lies between the two it was tuned on.
+CONDITIONS = {"K5": (3785.0, -0.35), "G2": (4905.0, 0.15), "F5": (5380.0, 0.35)}
+RANGE = (3000.0, 12000.0)
+REACH = 0.02
+
+
+def read_mask(folder: Path, name: str) -> list[tuple[str, float, float]]:
+    """(species, vacuum wavelength, depth) of the atoms of a mask."""
+    path = folder / "arve" / "aux_data" / "masks" / f"{name}.csv.zip"
+    rows = []
+    with zipfile.ZipFile(path) as archive:
+        member = next(n for n in archive.namelist() if not n.startswith("__"))
+        for row in csv.DictReader(io.StringIO(archive.read(member).decode())):
+            wave, depth = float(row["wave_vald"]), float(row["depth_vald"])
+            try:
+                species = normal_name(row["species"])
+            except InputRefused:
+                continue  # molecules written as 'OH 1'
+            if RANGE[0] < wave < RANGE[1]:
+                rows.append((species, wave, depth))
+    return rows
+
+
+def has_component(species: str, wave: float) -> bool:
+    waves = component_waves(species)
+    return bool(len(waves)) and float(np.min(np.abs(waves - wave))) < REACH
+
+
+def score(folder: Path, name: str, catalogue) -> tuple[float, float, float]:
+    """(Spearman, share with a line, share with a line or component); prints what is missing."""
+    from scipy.stats import spearmanr
+
+    depth = catalogue_depths(catalogue, *CONDITIONS[name])
+    codes = {species: k for k, species in enumerate(catalogue.species_names)}
+    seen, predicted, missing, total = [], [], [], 0
+    for species, wave, published in read_mask(folder, name):
+        first, last = np.searchsorted(catalogue.wave, [wave - REACH, wave + REACH])
+        rows = first + np.flatnonzero(catalogue.species[first:last] == codes.get(species, -1))
+        total += published > 0.2
+        if not len(rows):
+            if published > 0.2:
+                missing.append((species, wave, published))
+        elif published > 0.1:
+            seen.append(published)
+            predicted.append(np.nanmax(depth[rows]))
+    correlation = float(spearmanr(seen, predicted)[0])
+    share = 1.0 - len(missing) / total
+    still = [row for row in missing if not has_component(*row[:2])]
+    with_components = 1.0 - len(still) / total
+    print(f"{name}: Spearman {correlation:.4f} ({len(seen)} lines deeper than 0.1); counterparts "
+          f"{total - len(missing)} of {total} deeper than 0.2: {share:.4f}, with components {with_components:.4f}")
+    print("   missing:", Counter(species for species, _, _ in still).most_common(12))
+    return correlation, share, with_components
+
+
+def main() -> None:
+    folder, names = Path(sys.argv[1]), sys.argv[2:] or ["K5", "F5"]
+    catalogue = load_catalogue(origins="stellar")
+    for name in names:
+        score(folder, name, catalogue)
+
+
+if __name__ == "__main__":
+    main()
