@@ -44,9 +44,10 @@ def find_components(setting, progress) -> Found:
     warnings = _doubts(main, how)
     components = []
     sure = _certainty(main)
+    starry = sure if how != "emission" else _certainty_at(star, main.velocity)
     if np.any(f.sign > 0):
-        components.append(Component(STELLAR, main.velocity, certainty=sure))
-        components.append(Component(HYDROGEN, main.velocity, certainty=sure))
+        components.append(Component(STELLAR, main.velocity, certainty=starry))
+        components.append(Component(HYDROGEN, main.velocity, certainty=starry))
     if np.any(f.sign < 0):
         certain = max(sure, nebula.certainty)
         components.append(Component(NEBULAR, _emission_velocity(nebula, main), certainty=certain))
@@ -55,7 +56,9 @@ def find_components(setting, progress) -> Found:
     # A table without coverage cannot refute telluric lines: only a clear vote brings them in.
     if np.isfinite(telluric.velocity) and (o.complete or telluric.declared):
         components.append(_telluric(telluric, o.frame, typical_width(f)))
-    has_star = bool(components) and components[0].population == STELLAR
+    has_star = bool(components) and components[0].population == STELLAR and starry > 0.5
+    if not has_star:
+        warnings += ("no stellar absorption spectrum seen: the temperature is nominal",)
     return Found(tuple(components), main, temperature, has_star, warnings)
 
 
@@ -130,6 +133,16 @@ def _certainty(main: VelocityResult) -> float:
     if main.declared or main.how == "given":
         return 1.0
     return float(1.0 - np.exp(-0.5 * max(main.margin, 0.0)))
+
+
+def _certainty_at(vote: Vote, velocity: float) -> float:
+    """Certainty that the voters' lines stand at a velocity known from elsewhere: their
+    log-likelihood there over chance, with no trials to pay for."""
+    if not np.isfinite(vote.velocity):
+        return 0.0
+    near = np.abs(vote.grid - velocity) <= 2 * max(vote.width, vote.grid[1] - vote.grid[0])
+    gain = float(np.max(vote.score[near], initial=0.0))
+    return 1.0 if gain >= DECLARE_MARGIN else float(1.0 - np.exp(-0.5 * max(gain, 0.0)))
 
 
 def _doubts(main: VelocityResult, how: str) -> tuple[str, ...]:

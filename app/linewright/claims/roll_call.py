@@ -16,7 +16,7 @@ from .model import RollRow
 
 LISTED = 60  # strongest predicted lines of a species that are called
 SHIFTS = 40  # displaced lists per side that measure the chance rate
-EXPECTED = 0.5  # a line is expected where the learned curve gives at least this
+EXPECTED = 0.5  # a line is expected where the learned curve gives this, or where it is seen
 PRESENT, POSSIBLE = 0.002, 0.05
 
 
@@ -65,13 +65,13 @@ class _Count:
 
 
 def _row(name: str, count: _Count, state, species: int) -> RollRow:
-    likely = count.shows >= EXPECTED
-    expected, number = int(np.sum(likely)), int(np.sum(count.seen > 0.5))
+    seen = count.seen > 0.5
+    expected, number = int(np.sum((count.shows >= EXPECTED) | seen)), int(np.sum(seen))
     return RollRow(
         name,
         expected,
         number,
-        expected - int(np.sum(count.seen[likely] > 0.5)),
+        expected - number,
         count.p_chance,
         float(state.offsets[species]),
         float(state.offset_errors[species]),
