@@ -58,8 +58,8 @@ def _matches(features, catalogue, kind: str, centre: float):
     nearest = np.where(np.abs(expected[at] - features.wave[rows])
                        < np.abs(expected[at - 1] - features.wave[rows]), at, at - 1)
     velocity = C_KM_S * (features.wave[rows] / lines[nearest] - 1.0)
-    close = np.abs(velocity - centre) < 0.5 * width
     error = C_KM_S * features.wave_err[rows] / features.wave[rows]
+    close = (np.abs(velocity - centre) < 0.5 * width) & np.isfinite(error)
     return velocity[close], np.maximum(error[close], 0.02)
 
 

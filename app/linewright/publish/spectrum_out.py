@@ -8,6 +8,7 @@ known, ``segment`` where there are several. Keywords say medium, frame and corre
 from __future__ import annotations
 
 import io
+import re
 import warnings
 from pathlib import Path
 
@@ -55,17 +56,25 @@ def _columns(spectrum: Spectrum) -> dict[str, np.ndarray]:
     return columns
 
 
+def _spelt(text: str) -> str:
+    """The unit as astropy spells it: '1E-17 erg/cm^2/s/Ang' is 10**-17 erg/cm^2/s/Angstrom."""
+    text = re.sub(r"^\s*1?\.?0*[eE]([-+]?\d+)\s*\*?\s*", r"10**\1 ", text)
+    text = re.sub(r"^\s*10\^?\(?([-+]\d+)\)?\s*\*?\s*", r"10**\1 ", text)
+    text = re.sub(r"\bAng(?:s|stroms?|str)?\b|\bAA\b", "Angstrom", text)
+    return re.sub(r"\bFLAM\b", "erg / (s cm2 Angstrom)", text)
+
+
 def _flux_unit(text: str):
     """(astropy unit or None, words for a comment) of the file's own spelling."""
     from astropy import units as u
 
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
-        for known in (text, text.replace("Ang ", "Angstrom "), text.lower()):
+        for known in (text, _spelt(text), text.lower()):
             try:
                 unit = u.Unit(known)
                 unit.to_string("fits")
-                return unit, ""
+                return (unit, "") if known.strip() else (None, "")
             except (ValueError, TypeError):
                 continue
     return None, text
