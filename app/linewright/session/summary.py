@@ -22,11 +22,20 @@ def velocity_words(session: Session) -> str:
 
 
 def summary(session: Session) -> str:
-    """Features by standing, velocity and temperature, one a line."""
+    """Features by standing, velocities, temperature and the significance cut, one a line."""
     counts = Counter(claim.standing for claim in session.claims)
     standings = ", ".join(f"{counts[s]} {s}" for s in STANDINGS if counts[s])
     lines = [f"{len(session.features)} features" + (f": {standings}" if standings else "")]
     lines.append(velocity_words(session))
+    lines += _second_star(session)
     if math.isfinite(session.temperature_k):
         lines.append(f"excitation temperature {session.temperature_k:.0f} K")
+    cut, false = (session.measurement.get(k) for k in ("threshold", "expected_false"))
+    if cut is not None:
+        lines.append(f"significance cut {cut:.2f}: {false:.1f} false features expected")
     return "\n".join(lines)
+
+
+def _second_star(session: Session) -> list[str]:
+    stars = [(v, e) for origin, v, e in session.components if origin == "stellar"]
+    return [f"second star at {v:+.3f} +- {e:.3f} km/s" for v, e in stars[1:]]
