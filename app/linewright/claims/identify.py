@@ -56,6 +56,7 @@ class Setting:
     """The fixed part of an identification: features, catalogue rows in reach, options."""
 
     def __init__(self, features, catalogue, coverage, options: ClaimOptions):
+        self.said = None
         self.features, self.options = features, options
         self.segments = overlapping_segments(features)
         self.data = feature_data(features, len(self.segments) > 1)
@@ -98,6 +99,7 @@ class Setting:
             len(POPULATIONS),
             len(POPULATIONS) * len(self.catalogue.species_names),
             UNGRADED,
+            self.said,
         )
 
     def _width_at(self, wave):
@@ -134,16 +136,20 @@ def _allowed(catalogue, species):
     return catalogue.take(np.isin(catalogue.species, wanted))
 
 
-def identify(features, coverage, catalogue, options=ClaimOptions(), progress=None):
-    """Weigh every feature against every predicted line in reach: an Identification.
+def identify(
+    features, coverage, catalogue, options=ClaimOptions(), progress=None, said=None
+) -> Identification:
+    """Weigh every feature against every predicted line in reach.
 
     features: FeatureTable; coverage: searched vacuum ranges [(low, high), ...] in the
-    spectrum's frame; catalogue: LineCatalogue; options: ClaimOptions.
+    spectrum's frame; catalogue: LineCatalogue; options: ClaimOptions; said: a person's
+    words per feature, (f,) species name indices, NOT_SAID or SET_ASIDE (problem.py).
     """
     progress = progress or Progress()
     if len(features) == 0:
         return _nothing(options)
     setting = Setting(features, catalogue, coverage, options)
+    setting.said = said
     found = find_components(setting, progress.part(0.0, 0.3))
     temperature = _temperature(setting, found, progress.part(0.3, 0.6))
     solution = solve_mixture(

@@ -16,13 +16,14 @@ from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_rel
 from .curves import first_relation, threshold_form
 from .entries import Groups, group
 from .offsets import SCALE, best_offsets, detection_log_likelihood, strength_log_likelihood
-from .problem import Problem, find_pairs, inside
+from .problem import NOT_SAID, Problem, find_pairs, inside
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
 TAIL_SHARE, TAIL_FACTOR, TAIL_FLOOR = 0.04, 3.5, 0.02  # heavy tail of position errors
 ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
 STRENGTH_TAIL, STRENGTH_RANGE = 0.03, 8.0  # share and width (dex) of strengths gone wrong
+DOUBT_A_PERSON = 1e-6  # factor on the null of a feature that a person has named
 OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid
 LIST_SCATTER = 0.002  # Angstrom: position scatter of a species' lines before it is learned
 SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom
@@ -120,11 +121,24 @@ def _expect(problem: Problem, pairs: _Pairs, state: State) -> _Step:
     strengths = _strength_likelihood(problem, pairs, state, groups, p0)
     likelihood = shows[pairs.entry] * position * strengths
     absent = 1.0 - shows[pairs.entry] * pairs.covered[pairs.entry] if problem.complete else 1.0
+    density, likelihood = _as_said(problem, pairs, density, likelihood)
     odds = likelihood / (absent * (density * p0)[pairs.feature])
     marginals = associate(pairs.feature, pairs.entry, odds, (len(f), len(e)))
     total = np.bincount(pairs.feature, likelihood, len(f)) + density * p0
     value = float(np.sum(np.log(total))) - float(np.sum(shows * pairs.covered))
     return _Step(groups, strength, marginals, sigma, offset, value)
+
+
+def _as_said(problem: Problem, pairs: _Pairs, density, likelihood):
+    """A person's word is data: a feature they named has no other source, one they set aside
+    has none in the list."""
+    if problem.said is None:
+        return density, likelihood
+    block = problem.species // problem.populations
+    said = problem.said[pairs.feature]
+    name = problem.entries.species[pairs.entry] % block
+    allowed = (said == NOT_SAID) | (said == name)
+    return np.where(problem.said >= 0, density * DOUBT_A_PERSON, density), likelihood * allowed
 
 
 def _per_population(population, value, curves):

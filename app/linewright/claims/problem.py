@@ -8,6 +8,8 @@ import numpy as np
 
 from .entries import Entries
 
+NOT_SAID, SET_ASIDE = -1, -2
+
 
 @dataclass(frozen=True, eq=False)
 class FeatureData:
@@ -44,6 +46,7 @@ class Problem:
     group_half_width: lines closer than this make one feature, Angstrom, per entry
     populations: number of strength populations; species: number of species indices
     ungraded: populations whose depths are not predicted
+    said: per feature the species name index a person gave, NOT_SAID, or SET_ASIDE
     """
 
     features: FeatureData
@@ -54,6 +57,7 @@ class Problem:
     populations: int
     species: int
     ungraded: tuple[int, ...] = ()
+    said: np.ndarray | None = None
 
     def length(self) -> float:
         return float(np.sum(self.coverage[:, 1] - self.coverage[:, 0]))
