@@ -6,6 +6,8 @@ import json
 
 from .reading_options import add_reading_options, read
 
+SHOWN = 12  # choices listed in words
+
 
 def configure(parser) -> None:
     parser.add_argument("spectrum", metavar="SPECTRUM")
@@ -14,11 +16,25 @@ def configure(parser) -> None:
 
 
 def run(options) -> int:
+    from ..spectra.contents import as_data, contents
     from ..spectra.describe import describe, in_words
 
     spectrum = read(options)
+    offers = contents(options.spectrum)
     if options.json:
-        print(json.dumps(describe(spectrum), indent=1, allow_nan=False))
+        facts = {**describe(spectrum), "contents": as_data(offers)}
+        print(json.dumps(facts, indent=1, allow_nan=False))
     else:
-        print(in_words(spectrum))
+        print("\n".join([in_words(spectrum), *_choices(offers)]))
     return 0
+
+
+def _choices(offers) -> list[str]:
+    """One line for each other spectrum in the file, where there is a choice."""
+    if len(offers) < 2 and all(offer.rows == 1 for offer in offers):
+        return []
+    lines = [f"choice:      {o.words}, {o.samples} samples"
+             + (f", rows 1 to {o.rows} (--row)" if o.rows > 1 else "")
+             + ("" if o.hdu is None else f" (--hdu {o.hdu})") for o in offers[:SHOWN]]
+    more = len(offers) - SHOWN
+    return lines + ([f"choice:      and {more} more (--json lists all)"] if more > 0 else [])

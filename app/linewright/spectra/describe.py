@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 
 import numpy as np
@@ -43,7 +44,42 @@ def describe(spectrum: Spectrum) -> dict:
         "masked": masked_count(spectrum),
         "gaps": own_gaps(spectrum),
         "warnings": list(spectrum.warnings),
+        "read_options": _plain(spectrum.read_options),
+        "observer_velocity": None if np.isnan(spectrum.observer_velocity)
+        else spectrum.observer_velocity,
+        "observation": _observation(spectrum.observation),
     }
+
+
+def _plain(options: dict) -> dict:
+    return {k: list(v) if isinstance(v, tuple) else v for k, v in options.items()}
+
+
+def _observation(seen) -> dict | None:
+    """Place, star and time as plain values; None where nothing is known."""
+    if seen is None or not seen.sources:
+        return None
+    site, known = seen.site, math.isfinite(seen.ra)
+    return {
+        "site": None if site is None else site.in_words(),
+        "ra": seen.ra if known else None,
+        "dec": seen.dec if known else None,
+        "jd": None if seen.time is None else seen.time[0] + seen.time[1],
+        "time_scale": seen.scale,
+        "sources": list(seen.sources),
+        "missing": list(seen.missing()),
+    }
+
+
+def _earth_words(spectrum: Spectrum) -> str:
+    """What is known of the observer's motion: the number applied, or what one would need."""
+    if np.isfinite(spectrum.observer_velocity):
+        return f"telluric and sky lines must stand at {spectrum.observer_velocity:+.2f} km/s"
+    if spectrum.frame in ("topocentric", "geocentric"):
+        missing = spectrum.observation.missing() if spectrum.observation else ("everything",)
+        return "telluric and sky lines must stand at 0 km/s; 'linewright correct' " + (
+            "knows the correction" if not missing else f"still needs {', '.join(missing)}")
+    return "where telluric lines must stand is not known"
 
 
 def _gap_words(found: list[list[float]]) -> str:
@@ -66,6 +102,7 @@ def in_words(spectrum: Spectrum) -> str:
         ("medium", f"{facts['medium']} ({facts['medium_from']})"),
         ("frame", f"{facts['frame']} ({facts['frame_from']})"),
         ("corrections", "; ".join(facts["corrections"]) or "none known"),
+        ("Earth", _earth_words(spectrum)),
         ("flux unit", facts["flux_unit"] or "not stated"),
         ("uncertainty", facts["uncertainty"]),
         ("masked", f"{facts['masked']} samples"),

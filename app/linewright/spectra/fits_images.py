@@ -78,6 +78,11 @@ def _row_names(header, count: int) -> list[str]:
     return [""] * count
 
 
+def named_rows(header, count: int) -> bool:
+    """Whether the header calls one of the rows flux."""
+    return any(role_of_words(name) == "flux" for name in _row_names(header, count))
+
+
 def _uncertainty(role: str, data) -> np.ndarray:
     if role == "ivar":
         return sigma_from_ivar(data)

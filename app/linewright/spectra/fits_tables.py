@@ -39,7 +39,8 @@ def _lengths(hdu) -> list[int]:
     return lengths
 
 
-def _infos(hdu) -> list[ColumnInfo]:
+def column_infos(hdu) -> list[ColumnInfo]:
+    """What the header of a table HDU says of each column; no data are read."""
     header, infos = hdu.header, []
     text = hdu.header.get("XTENSION", "").strip() == "TABLE"
     lengths = [1] * len(hdu.columns) if text else _lengths(hdu)
@@ -91,7 +92,7 @@ class FitsColumns:
 def table_view(hdus, index: int, opened: Opened, cards) -> TableView:
     """The table HDU ``index``; cards: header statements that speak about it."""
     hdu = hdus[index]
-    header, infos, fetch = hdu.header, _infos(hdu), FitsColumns(hdu, opened)
+    header, infos, fetch = hdu.header, column_infos(hdu), FitsColumns(hdu, opened)
     name = f" '{hdu.name}'" if hdu.name else ""
     model = str(header.get("VOCLASS", "") or hdus[0].header.get("VOCLASS", "")).upper()
     utypes = any("spectralaxis" in info.utype.lower() for info in infos)
