@@ -54,6 +54,11 @@ def parent_term(core: str) -> str:
     return found[-1][0] if found else ""
 
 
+def _bare_core(configuration: str) -> str:
+    """A configuration without parent terms and without the 1s2 some level files write."""
+    return re.sub(r"\(.*?\)\.?", "", configuration).rstrip(".").removeprefix("1s2.")
+
+
 def _half(text: str) -> float:
     return int(text[:-2]) / 2.0 if text.endswith("/2") else float(text)
 
@@ -95,7 +100,7 @@ def _parent_energies(source: Path, element: str, stage: int) -> dict[tuple[str, 
         term = re.search(r"\d+[A-Z]", levels.term[k])
         if term and np.isfinite(levels.j[k]):
             weight = 2 * levels.j[k] + 1
-            key = (re.sub(r"\(.*?\)\.?", "", levels.configuration[k]).rstrip("."), term[0])
+            key = (_bare_core(levels.configuration[k]), term[0])
             total = sums.setdefault(key, [0.0, 0.0])
             if total[1] == 0.0 or abs(total[0] / total[1] - levels.energy[k]) < 3000.0:
                 total[0] += weight * levels.energy[k]
@@ -105,7 +110,7 @@ def _parent_energies(source: Path, element: str, stage: int) -> dict[tuple[str, 
 
 def _series_limit(source: Path, element: str, stage: int, core: str, limit: float) -> float:
     """Energy (cm-1) at which the outer electron of this core is free."""
-    bare = re.sub(r"\(.*?\)\.?", "", core).rstrip(".")
+    bare = _bare_core(core)
     energies = _parent_energies(source, element, stage)
     term = parent_term(core)
     if not term:

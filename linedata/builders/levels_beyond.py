@@ -1,4 +1,4 @@
-"""Energy levels of Ni I, Si I and Na I above the end of the level files.
+"""Energy levels of Ni I, Si I and Na I above the end of the level files, and O II 3d' 2G.
 
 Values: NIST ASD (2013-10-01 copies of Ni I, Si I and Na I), after Litzen, Brault & Thorne 1993
 (Phys. Scr. 47, 628; Ni I), Martin & Zalubas 1983 (J. Phys. Chem. Ref. Data 12, 323; Si I) and
@@ -169,7 +169,12 @@ SODIUM = """
 2p6.12s | 2S | 1/2 40482.236
 2p6.11d | 2D | 5/2 40540.093, 3/2 40540.095
 """
-BEYOND = {("Ni", 1): NICKEL, ("Si", 1): SILICON, ("Na", 1): SODIUM}
+# O II 3d' 2G, missing in the file: from the observed 4185.440 and 4189.788 A (Wenaker 1990, Phys.
+# Scr. 42, 667; from memory).
+OXYGEN = """
+2s2.2p2.(1D).3d | 2G | 7/2 252609.46, 9/2 252608.28
+"""
+BEYOND = {("Ni", 1): NICKEL, ("Si", 1): SILICON, ("Na", 1): SODIUM, ("O", 2): OXYGEN}
 
 
 def beyond(element: str, stage: int) -> list[tuple[str, str, str, str]]:

@@ -84,7 +84,7 @@ def read_levels(source: Path, element: str, stage: int) -> Levels | None:
     top = max(row[0] for row in rows)
     for configuration, term, j, text in beyond(element, stage):
         level = _energy(text)
-        if level[0] > top:
+        if level[0] > top or element == "O":
             rows.append((*level, _spin(j), "*" in term, configuration, term))
     energy, error, j, odd, conf, terms = zip(*rows, strict=True)
     return Levels(

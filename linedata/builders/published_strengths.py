@@ -1,7 +1,7 @@
 """Published log gf of lines: core-changing ones that no one-electron model gives, and Li I 6708.
 
-(air wavelength, E_low in eV, log gf); Fe III: Ekberg 1993 A&AS 101, 1 and Kurucz 2010;
-Al II: NIST ASD (Kelleher & Podobedova 2008); Li I: Yan & Drake 1995, PRA 52, R4316.
+(air wavelength, E_low in eV, log gf), from memory; Fe III: Ekberg 1993 A&AS 101, 1 and Kurucz 2010;
+Al II, Si II: NIST ASD (Kelleher & Podobedova 2008); Li I: Yan & Drake 1995, PRA 52, R4316.
 """
 
 # Bibliographic key of the log gf of an ion; others: NIST_ASD.
@@ -21,5 +21,10 @@ PUBLISHED = {
         (5156.111, 8.641, -2.018),
     ],
     ("Li", 1): [(6707.756, 0.0, -0.002), (6707.909, 0.0, -0.303)],
+    ("Si", 2): [
+        (3853.665, 6.857, -1.341), (3856.018, 6.859, -0.406), (3862.595, 6.857, -0.757),
+        (4128.054, 9.837, 0.359), (4130.894, 9.839, 0.552), (5041.024, 10.066, 0.029),
+        (5055.984, 10.074, 0.523),
+    ],
     ("Al", 2): [(4663.056, 10.598, -0.284)],
 }

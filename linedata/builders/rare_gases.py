@@ -4,7 +4,8 @@ Usage: python linedata/builders/rare_gases.py SOURCE_DIR [--out FOLDER]
 
 Ne I, Ar I: wavelengths and transition probabilities of NIST ASD (read from rascal 0.3.11,
 arc_lines/all_nist.csv). The list has J but no levels: a line belongs to the lower level of its J
-for which the upper level it implies is reached by a second line from another lower level. Lower
+for which the upper level it implies is reached by a second line from another lower level, or,
+for J = 2 - 3, lies among the np levels (only the J = 2 level can be meant). Lower
 levels: NIST ASD (Saloman & Sansonetti 2004, J. Phys. Chem. Ref. Data 33, 1113; Saloman 2010,
 39, 033101), from memory. C IV, N V: one-electron formula for l >= 3 (polarisation left out: the
 wavelengths err by up to 0.5 A).
@@ -29,6 +30,7 @@ ACCURACY = {"AAA": 0.002, "AA": 0.005, "A+": 0.01, "A": 0.015, "B+": 0.03, "B": 
             "C": 0.11, "D+": 0.18, "D": 0.22, "E": 0.4}
 GF_FROM_A = 1.499194e-16
 SAME_LEVEL = 0.15  # cm-1
+P_LEVELS = {"Ne": (148200.0, 153000.0), "Ar": (104000.0, 108800.0)}  # cm-1
 RANGE = (3000.0, 12000.0)
 KEYS = ["NIST_ASD", "Hydrogenic"]
 NAMES = ["Ne I", "Ar I", "C IV", "N V"]
@@ -67,7 +69,8 @@ def neutral_lines(source: Path, element: str) -> list[dict]:
             other for m, other, top in pairs
             if other != low and abs(top - up) < SAME_LEVEL and listed[m]["j_up"] == line["j_up"]
         ]
-        if not partners:
+        lone = (line["j_low"], line["j_up"]) == (2, 3)
+        if not partners and not (lone and P_LEVELS[element][0] < up < P_LEVELS[element][1]):
             continue
         gf = GF_FROM_A * (2 * line["j_up"] + 1) * line["a"] * line["wave"] ** 2
         rows.append({
