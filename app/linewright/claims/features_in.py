@@ -32,6 +32,7 @@ def feature_data(features, overlapping: bool = False) -> FeatureData:
     strength_err = np.where(line, absorption_err, emission_err)
     usual = usual_width(features.wave, features.fwhm, strength, features.sign)
     surplus = np.maximum(features.fwhm**2 - (BROAD * usual) ** 2, 0.0)
+    surplus = np.minimum(surplus, usual**2)  # beyond that it is a band, not a blend of two
     return FeatureData(
         features.wave,
         position_error(features),
