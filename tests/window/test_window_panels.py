@@ -155,7 +155,7 @@ def test_evidence_ranks_candidates_with_reasons(solved):
     first, second = evidence.rows[0], evidence.rows[1]
     assert first.name.text().startswith(claim.candidates[0].species)
     assert "offset +6.3 σ" in second.detail.text()
-    assert "+ as deep as predicted" in first.why.text()
+    assert first.why.text().startswith("+ stands where it should; as deep as predicted")
     assert not first.why.isHidden() and second.why.isHidden()
     second.chosen.emit(1)
     assert "− stands too far from its place" in second.why.text()

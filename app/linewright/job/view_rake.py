@@ -11,21 +11,25 @@ from ..session.model import Session
 from ..spectra.medium import to_medium
 
 
+FOREGROUND = ("telluric", "sky")
+
+
 def most_claimed(session: Session, low: float, high: float, count: int = 5) -> tuple[str, ...]:
     """Species most often claimed for features between low and high, own-medium Angstrom.
 
-    Only standings from tentative up count; ties go by name.
+    Only standings from tentative up count. Species of the air and sky come after those of
+    the object; ties go by name.
     """
     wave = to_medium(session.features.wave, session.spectrum.medium)
     inside = np.nonzero((wave >= low) & (wave <= high))[0]
     tally = Counter(
-        session.claims[i].species
+        (session.claims[i].origin in FOREGROUND, session.claims[i].species)
         for i in inside
         if session.claims[i].species and session.claims[i].standing in (
             "firm", "likely", "tentative")
     )
-    ranked = sorted(tally.items(), key=lambda item: (-item[1], item[0]))
-    return tuple(name for name, _n in ranked[:count])
+    ranked = sorted(tally.items(), key=lambda item: (item[0][0], -item[1], item[0][1]))
+    return tuple(dict.fromkeys(name for (_air, name), _n in ranked))[:count]
 
 
 def rake_columns(

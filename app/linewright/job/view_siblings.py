@@ -12,6 +12,8 @@ from ..spectra.medium import C_KM_S, to_medium
 from ..spectra.spectrum import Spectrum
 
 COUNT = 6
+LEAST_SIGMA = 3.0
+MAD_TO_SIGMA = 1.4826  # of a normal distribution
 
 
 @dataclass(frozen=True, eq=False)
@@ -41,7 +43,8 @@ def sibling_strips(
 
     predicted: catalogue and the predicted depth of each of its lines, shape (n,)
     candidate: the line on trial, which is no sibling of itself
-    Lines outside the samples, or where most samples are masked, are passed over.
+    Lines outside the samples, where most samples are masked, or too faint for the noise
+    there, are passed over.
     """
     (catalogue, depth), species = predicted, candidate.species
     if species not in catalogue.species_names:
@@ -57,7 +60,7 @@ def sibling_strips(
         if any(abs(wave - other) / wave * C_KM_S < half / 2 for other in taken):
             continue
         cut = _cut(spectrum, session, wave, velocity, half)
-        if cut is not None:
+        if cut is not None and _would_show(cut[1], float(depth[row])):
             strips.append((wave, *cut, float(depth[row])))
             taken.append(wave)
         if len(strips) == COUNT:
@@ -100,6 +103,15 @@ def _cut(spectrum, session, wave, velocity, half):
         flux = np.where(good, segment.flux[first:last], np.nan) / _level(session, k, x, segment)
         return C_KM_S * (x / centre - 1.0), flux
     return None
+
+
+def _would_show(flux: np.ndarray, depth: float) -> bool:
+    """False where a line of this depth would drown in the scatter of neighbouring samples."""
+    steps = np.abs(np.diff(flux[np.isfinite(flux)]))
+    if not len(steps) or not np.isfinite(depth):
+        return True
+    sigma = float(np.median(steps)) * MAD_TO_SIGMA / np.sqrt(2.0)
+    return abs(depth) > LEAST_SIGMA * sigma
 
 
 def _level(session: Session, k: int, x: np.ndarray, segment) -> np.ndarray:

@@ -60,6 +60,10 @@ def has_spectrum(bench) -> bool:
     return bench.spectrum is not None
 
 
+def has_view(bench) -> bool:
+    return bench.drawn is not None
+
+
 def has_session(bench) -> bool:
     return bench.session is not None
 
@@ -219,24 +223,24 @@ def _view() -> list[Command]:
                   lambda b: b.window.choose_theme(name), f"Colours: {title.lower()}", group=3,
                   checked=lambda b: b.window is not None and b.window.theme_choice == name)
     return [
-        _c("view.whole", "Whole spectrum", "Ctrl+0", "View", has_spectrum,
+        _c("view.whole", "Whole spectrum", "Ctrl+0", "View", has_view,
            lambda b: b.window.spectrum_view.zoom_all(), "Show all of it"),
-        _c("view.in", "Zoom in", "Ctrl++ | Ctrl+=", "View", has_spectrum,
+        _c("view.in", "Zoom in", "Ctrl++ | Ctrl+=", "View", has_view,
            lambda b: b.window.spectrum_view.zoom(2.0), "Half the range (or turn the wheel)"),
-        _c("view.out", "Zoom out", "Ctrl+-", "View", has_spectrum,
+        _c("view.out", "Zoom out", "Ctrl+-", "View", has_view,
            lambda b: b.window.spectrum_view.zoom(0.5), "Twice the range"),
-        _c("view.left", "Towards shorter wavelengths", "Alt+Left", "View", has_spectrum,
+        _c("view.left", "Towards shorter wavelengths", "Alt+Left", "View", has_view,
            lambda b: b.window.spectrum_view.step(-0.25), "Move by a quarter of the view"),
-        _c("view.right", "Towards longer wavelengths", "Alt+Right", "View", has_spectrum,
+        _c("view.right", "Towards longer wavelengths", "Alt+Right", "View", has_view,
            lambda b: b.window.spectrum_view.step(0.25), "Move by a quarter of the view"),
-        _c("view.goto", "Go to wavelength…", "Ctrl+G", "View", has_spectrum,
+        _c("view.goto", "Go to wavelength…", "Ctrl+G", "View", has_view,
            lambda b: b.window.ask_wavelength(), "Type 5183.6, or a range 5160:5200", group=1),
         _c("view.selected", "Go to the selected feature", "Ctrl+J", "View", has_feature,
            view.look_at_selected, "Centre the view on it", group=1),
-        _c("view.flux", "Automatic flux scale", "Ctrl+Shift+0", "View", has_spectrum,
+        _c("view.flux", "Automatic flux scale", "Ctrl+Shift+0", "View", has_view,
            lambda b: b.window.spectrum_view.auto_flux(),
            "Scale the flux to what is in view (Shift and wheel set it by hand)", group=1),
-        _c("view.rake_auto", "Rake: most claimed in view", "Ctrl+Shift+R", "View", has_spectrum,
+        _c("view.rake_auto", "Rake: most claimed in view", "Ctrl+Shift+R", "View", has_view,
            lambda b: b.view.change(rake=None), "Let the rake choose its species", group=1,
            checked=lambda b: b.view.now.rake is None),
         _c("view.rake_this", "Rake: add or remove this species", "Ctrl+T", "View",

@@ -64,11 +64,11 @@ class RakeKeeper(QObject):
 
     def refresh(self) -> None:
         bench = self._bench
-        if bench.catalogue is None or bench.depth is None or bench.spectrum is None:
+        if bench.catalogue is None or bench.depth is None or bench.drawn is None:
             self._put((), None)
             return
         species = self._wanted()
-        low, high = bench.spectrum.own_range()
+        low, high = bench.drawn.own_range()
         drawn = (species, id(bench.depth), low, high, bench.medium)
         if drawn == self._drawn:
             return
@@ -88,7 +88,7 @@ class RakeKeeper(QObject):
         chosen = bench.view.now.rake
         if chosen is not None:
             return chosen
-        low, high = bench.view.now.span or bench.spectrum.own_range()
+        low, high = bench.view.now.span or bench.drawn.own_range()
         names = most_claimed(bench.session, low, high, MOST)
         if not names and not len(bench.session.features):
             names = tuple(n for n in UNSOLVED if n in bench.catalogue.species_names)

@@ -20,7 +20,7 @@ class Refresher:
 
     def __init__(self, bench, space):
         self._bench, self._space = bench, space
-        self._spectrum = self._session = None
+        self._spectrum = self._session = self._desk = None
         self._steps = Steps(space)
         self._ours = False  # while the window itself moves the view
         self.rake = RakeKeeper(bench, space.spectrum_view.set_rake, space)
@@ -48,7 +48,7 @@ class Refresher:
             return
         if not opening.spectrum_matches(bench.desk):
             opening.follow_medium(bench.desk)
-        self._show_spectrum(bench.spectrum)
+        self._show_spectrum(bench.drawn)
         if new is self._session:
             return
         many = len(new.features) > MANY and (
@@ -77,11 +77,17 @@ class Refresher:
     def _show_spectrum(self, spectrum) -> None:
         if spectrum is self._spectrum:
             return
-        self._spectrum, self._session = spectrum, None
-        self._space.spectrum_view.set_spectrum(spectrum)
-        if spectrum is not None:
-            self._bench.view.change(span=tuple(self._space.spectrum_view.view()))
-            self._space.catalogue.show_catalogue()
+        before, self._session = self._desk, None
+        self._spectrum, self._desk = spectrum, self._bench.desk
+        view = self._space.spectrum_view
+        span = view.view()
+        view.set_spectrum(spectrum)
+        if spectrum is None:
+            return
+        if self._bench.spectrum is None and before is self._bench.desk:
+            view.set_view(*span)  # sticks of an edited table: the view stays
+        self._bench.view.change(span=tuple(view.view()))
+        self._space.catalogue.show_catalogue()
 
     def _show_track(self, session) -> None:
         track, result = self._space.track, session.velocity

@@ -41,11 +41,23 @@ class Desk:
     span: tuple[float, float] | None = None
     velocity: float = 0.0
     selected: int | None = None
+    _sticks: tuple = (None, None)
 
     @property
     def name(self) -> str:
         reference = self.document.session.spectrum
         return Path(reference.path).name or reference.name or "spectrum"
+
+    @property
+    def drawn(self) -> Spectrum | None:
+        if self.spectrum is not None:
+            return self.spectrum
+        features = self.document.session.features
+        if self._sticks[0] is not features:
+            from ..job.view_sticks import stick_spectrum
+
+            self._sticks = features, stick_spectrum(self.document.session)
+        return self._sticks[1]
 
     @property
     def saved(self) -> bool:
@@ -79,6 +91,11 @@ class Workbench:
     @property
     def spectrum(self) -> Spectrum | None:
         return self.desk.spectrum if self.desk else None
+
+    @property
+    def drawn(self) -> Spectrum | None:
+        """What the plot shows: the spectrum, or sticks for features without one."""
+        return self.desk.drawn if self.desk else None
 
     @property
     def medium(self) -> str:

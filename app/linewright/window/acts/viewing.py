@@ -12,10 +12,10 @@ from .claiming import known_name
 
 def look_at(bench, wave: float, width: float | None = None) -> None:
     """Centres the view on an own-medium wavelength, keeping its width when it is narrow."""
-    if bench.spectrum is None:
+    if bench.drawn is None:
         return
-    low, high = bench.view.now.span or bench.spectrum.own_range()
-    whole = bench.spectrum.own_range()
+    low, high = bench.view.now.span or bench.drawn.own_range()
+    whole = bench.drawn.own_range()
     if width is None:
         narrow = (whole[1] - whole[0]) / 20.0
         width = high - low if high - low <= narrow else min(narrow, wave * 0.006)
@@ -24,11 +24,11 @@ def look_at(bench, wave: float, width: float | None = None) -> None:
 
 def look_at_line(bench, row: int) -> None:
     """A catalogue line at the velocity of the rake; its feature is selected when claimed."""
-    if bench.spectrum is None:
+    if bench.drawn is None:
         return
     expected = float(bench.catalogue.wave[row]) * (1.0 + bench.view.now.velocity / C_KM_S)
     own = float(to_medium(expected, bench.medium))
-    low, high = bench.spectrum.own_range()
+    low, high = bench.drawn.own_range()
     if not low <= own <= high:
         bench.notify(Notice(f"{own:.3f} Å lies outside this spectrum", "note", seconds=5,
                             topic="outside"))

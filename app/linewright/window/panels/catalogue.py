@@ -97,7 +97,7 @@ class CataloguePanel(TablePanel):
 
     def _filter(self) -> CatalogueFilter:
         bench = self._workbench
-        own = bench.spectrum.own_range() if bench.spectrum is not None else None
+        own = bench.drawn.own_range() if bench.drawn is not None else None
         low, high = ranges_of(self.range.text(), own, bench.view.now.span)
         names = tuple(n.strip().lower() for n in self.species.text().split(",") if n.strip())
         return CatalogueFilter(names, low, high, self.text.text().strip().lower(),

@@ -22,9 +22,17 @@ def heading(session: Session, row: int) -> str:
     f = session.features
     wave = float(to_medium(f.wave[row], session.spectrum.medium))
     depth = words.number(f.depth[row], 2 if abs(f.depth[row]) < 10 else 0)
-    ew = words.number(f.ew[row], 0 if abs(f.ew[row]) >= 30 else 1)
-    parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", f"EW {ew} mÅ" if ew else ""]
+    parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", _width(float(f.ew[row]))]
     return "   ".join(p for p in parts if p)
+
+
+def _width(ew: float) -> str:
+    """In mÅ; in Å where a strong line over a weak continuum would need seven figures."""
+    if not math.isfinite(ew):
+        return ""
+    if abs(ew) >= 1e5:
+        return f"EW {words.number(ew / 1000, 0)} Å"
+    return f"EW {words.number(ew, 0 if abs(ew) >= 30 else 1)} mÅ"
 
 
 def verdict(claim: Claim) -> str:
@@ -70,6 +78,6 @@ def line_facts(candidate: Candidate) -> str:
 
 
 def why(reasons: Reasons) -> str:
-    """One line a reason; + speaks for the candidate, − against it."""
-    lines = [f"+ {r}" for r in reasons.for_it] + [f"− {r}" for r in reasons.against]
-    return "\n".join(lines)
+    """One line a side; + speaks for the candidate, − against it."""
+    sides = (("+", reasons.for_it), ("−", reasons.against))
+    return "\n".join(f"{sign} {'; '.join(said)}" for sign, said in sides if said)

@@ -35,7 +35,10 @@ def depth(value: float) -> str:
 
 
 def width(value: float, error: float = math.nan) -> str:
-    """An equivalent width in milliangstrom: one decimal below 1000."""
+    """An equivalent width in milliangstrom: one decimal below 1000; in Å, and saying so,
+    from 100 Å up."""
+    if math.isfinite(value) and abs(value) >= 1e5:
+        return with_error(value / 1000, error / 1000, 1 if abs(value) < 1e6 else 0) + " Å"
     return with_error(value, error, 1 if abs(value) < 1000 else 0)
 
 

@@ -8,17 +8,16 @@ from PySide6.QtGui import QColor, QMouseEvent, QPainter, QPen, QPixmap
 
 from .extremes import PixelScale
 from .feature_marks import FeatureMarks, no_marks
-from .geometry import LEFT, RIGHT, Frame
+from .geometry import LEFT, RIGHT
 from .lane import Lane
 from .safe_paint import painting
 from .spectrum_item import SpectrumItem
+from .strip_frame import strip_frame
 
-HEIGHT = 62
+HEIGHT, LOWEST = 62, 44
 _HEAT = 5
 _GRIP = 6
 _SMALLEST = 8
-# Bright lines may leave the strip: what is between them matters more here.
-_RANGES = 3.0
 
 
 class ContextStrip(Lane):
@@ -99,11 +98,8 @@ class ContextStrip(Lane):
 
     def _paint_whole(self, painter: QPainter, scale: PixelScale, ratio: float) -> None:
         reduced = self.item.reduce(scale)
-        limits = self.item.flux_limits(reduced, _RANGES) or (0.0, 1.0)
-        low, high = min(limits[0], max(0.0, 0.8 * limits[0])), limits[1]
-        high = high if high > low else low + 1.0
         foot = (self.height() - _HEAT - 6) * ratio
-        frame = Frame(scale, 5 * ratio, foot, low, high, ratio)
+        frame = strip_frame(self.item, reduced, (scale, 5 * ratio, foot, ratio))
         self.item.paint(painter, frame, reduced, self.state.theme.faint)
 
     def _paint_heat(self, painter: QPainter, scale: PixelScale, ratio: float) -> None:
@@ -115,7 +111,7 @@ class ContextStrip(Lane):
             return
         count, _ = np.histogram(scale.pixels(self.marks.wave), bins)
         density = np.convolve(count, np.array([1.0, 2.0, 1.0]) / 4, mode="same")
-        density = np.sqrt(density / max(density.max(), 1e-9))
+        density = _contrast(density)
         top = (self.height() - _HEAT) * ratio
         colour = QColor(self.state.theme.profile)
         for x, strength in zip(bins, density):
@@ -171,3 +167,12 @@ class ContextStrip(Lane):
         scale = self.whole_scale()
         return scale.low + (x - scale.origin) * scale.per_pixel
 
+
+def _contrast(density: np.ndarray) -> np.ndarray:
+    """Opacity 0-1: the emptiest occupied places faint, the most crowded full."""
+    occupied = density[density > 0]
+    if not len(occupied):
+        return density
+    low, high = np.percentile(occupied, (5, 99))
+    share = (density - low) / max(high - low, 1e-9)
+    return np.where(density > 0, 0.12 + 0.88 * np.clip(share, 0, 1), 0.0)

@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from ...session.model import STANDINGS, Claim, Session
 from ...spectra.medium import to_medium
 
+_CODE = {name: code for code, name in enumerate(STANDINGS)}
 FIRM, LIKELY, TENTATIVE, UNCLAIMED, SET_ASIDE = range(len(STANDINGS))
 _WEIGHT = np.array([2.0, 1.0, 0.0, -9.0, -9.0])
+_FEW = 100  # changed claims that are taken over one by one
 
 
 @dataclass(frozen=True, eq=False)
@@ -21,6 +23,7 @@ class FeatureMarks:
     species, origin: of the claim; text: label, empty where nothing is claimed; short: the
         label without its wavelength
     importance: orders labels that compete for room
+    source: (features, claims, order, medium) these were made of
     """
 
     wave: np.ndarray
@@ -31,6 +34,7 @@ class FeatureMarks:
     text: tuple[str, ...]
     short: tuple[str, ...]
     importance: np.ndarray
+    source: tuple = (None, (), None, "")
 
     def __len__(self) -> int:
         return len(self.wave)
@@ -60,20 +64,70 @@ def marks_of(session: Session | None, medium: str) -> FeatureMarks:
         return no_marks()
     features = session.features
     order = np.argsort(features.wave, kind="stable")
-    claims = [session.claims[i] for i in order]
-    standing = np.array([STANDINGS.index(c.standing) for c in claims])
-    significance = np.nan_to_num(np.abs(features.significance[order]), nan=1.0)
-    shown = _shown_waves(claims, features.wave[order], medium)
+    claims = [session.claims[i] for i in order.tolist()]
+    standing = np.array([_CODE[c.standing] for c in claims])
+    wave = features.wave[order]
+    shown = _shown_waves(claims, wave, medium)
     return FeatureMarks(
-        wave=to_medium(features.wave[order], medium),
+        wave=to_medium(wave, medium),
         number=features.number[order],
         standing=standing,
         species=tuple(c.species for c in claims),
         origin=tuple(c.origin for c in claims),
         text=tuple(_text(claim, wave) for claim, wave in zip(claims, shown)),
         short=tuple(_text(claim, None) for claim in claims),
-        importance=np.log10(np.maximum(significance, 1.0)) + _WEIGHT[standing],
+        importance=_importance(features.significance[order], standing),
+        source=(features, session.claims, order, medium),
     )
+
+
+def marks_after(
+    old: FeatureMarks, session: Session | None, medium: str
+) -> tuple[FeatureMarks, np.ndarray | None]:
+    """(marks of ``session``, their rows that differ from ``old``; None when all may).
+
+    After an edit of a few claims only those are made anew.
+    """
+    features, claims, order, known = old.source
+    if session is None or features is not session.features or known != medium:
+        return marks_of(session, medium), None
+    changed = [k for k, (a, b) in enumerate(zip(claims, session.claims)) if a is not b]
+    if len(changed) > _FEW:
+        return marks_of(session, medium), None
+    rows = np.nonzero(np.isin(order, changed))[0]
+    return _with_claims(old, session, rows), rows
+
+
+def _with_claims(old: FeatureMarks, session: Session, rows: np.ndarray) -> FeatureMarks:
+    features, _claims, order, medium = old.source
+    source = (features, session.claims, order, medium)
+    if not len(rows):
+        return replace(old, source=source)
+    at = order[rows]
+    claims = [session.claims[i] for i in at.tolist()]
+    standing, importance = old.standing.copy(), old.importance.copy()
+    standing[rows] = [_CODE[c.standing] for c in claims]
+    importance[rows] = _importance(features.significance[at], standing[rows])
+    shown = _shown_waves(claims, features.wave[at], medium)
+    return replace(
+        old, standing=standing, importance=importance, source=source,
+        species=_put(old.species, rows, (c.species for c in claims)),
+        origin=_put(old.origin, rows, (c.origin for c in claims)),
+        text=_put(old.text, rows, map(_text, claims, shown)),
+        short=_put(old.short, rows, (_text(c, None) for c in claims)),
+    )
+
+
+def _put(old: tuple[str, ...], rows: np.ndarray, new) -> tuple[str, ...]:
+    words = list(old)
+    for row, word in zip(rows.tolist(), new):
+        words[row] = word
+    return tuple(words)
+
+
+def _importance(significance: np.ndarray, standing: np.ndarray) -> np.ndarray:
+    size = np.nan_to_num(np.abs(significance), nan=1.0)
+    return np.log10(np.maximum(size, 1.0)) + _WEIGHT[standing]
 
 
 def _shown_waves(claims: list[Claim], wave: np.ndarray, medium: str) -> list[float]:

@@ -48,16 +48,20 @@ def draw_flux_axis(painter: QPainter, rect, span: tuple[float, float], plot) -> 
         y = bottom + (value - low) * (top - bottom) / (high - low)
         texts.draw(f"{value + 0.0:.{decimals}f}", LEFT - 9, y - metrics.height() / 2, 1.0)
     painter.setPen(QColor(theme.ink))
-    _draw_title(painter, rect, span, flux_title(power, plot.flux_unit))
+    titles = flux_title(power, plot.flux_unit), flux_title(power, "")  # the unit where it fits
+    _draw_title(painter, rect, span, titles)
 
 
-def _draw_title(painter: QPainter, rect, span, title: str) -> None:
+def _draw_title(painter: QPainter, rect, span, titles: tuple[str, ...]) -> None:
     top, bottom = span
     metrics = painter.fontMetrics()
     painter.save()
     painter.translate(rect.left() + 2, bottom)
     painter.rotate(-90)
-    shown = metrics.elidedText(title, Qt.TextElideMode.ElideRight, int(bottom - top))
+    room = int(bottom - top)
+    fitting = [t for t in titles if metrics.horizontalAdvance(t) <= room]
+    shown = fitting[0] if fitting else metrics.elidedText(
+        titles[-1], Qt.TextElideMode.ElideRight, room)
     painter.drawText(
         QRectF(0, 0, bottom - top, metrics.height()), int(Qt.AlignmentFlag.AlignCenter), shown
     )

@@ -65,6 +65,10 @@ class LabelAtlas:
             self._chosen = row
         return self.slots
 
+    def forget_chosen(self) -> None:
+        """The selected label's text or colour may have changed."""
+        self._chosen = None
+
     def marker_kind(self, key: tuple, make) -> int:
         """Place of a marker; ``make()`` gives its picture when it is new."""
         if key not in self._kinds:

@@ -66,10 +66,18 @@ class LabelLayer:
         self._slot_of = self._kind_of = np.zeros(0, dtype=int)
         self._ticks: TickStrokes | None = None
 
-    def set_marks(self, marks: FeatureMarks) -> None:
+    def set_marks(self, marks: FeatureMarks, rows: np.ndarray | None = None) -> None:
+        """rows: which differ from the marks before; None when all may."""
         self.marks = marks
-        self._ticks = None
-        self._atlas = ((), None)
+        if rows is None:
+            self._ticks = None
+            self._atlas = ((), None)
+            return
+        if self._ticks is not None:
+            self._ticks.follow(marks, rows)
+        if self._atlas[1] is not None:
+            self._slot_of[rows] = -1
+            self._atlas[1].forget_chosen()
 
     def fit(self, height: float) -> None:
         """Choose how much text a lane of this height has room for."""

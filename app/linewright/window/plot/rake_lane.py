@@ -28,7 +28,7 @@ class RakeLane(NavigableLane):
 
     def __init__(self, state, parent=None):
         super().__init__(state, parent)
-        self.teeth = RakeTeeth(RakeData.empty())
+        self.teeth, self._pitch = RakeTeeth(RakeData.empty()), ROW
         self.setAccessibleName("Rake: predicted lines of the chosen species")
         self._fit()
 
@@ -37,6 +37,13 @@ class RakeLane(NavigableLane):
         self._fit()
         self.update()
 
+    def set_pitch(self, room: int) -> None:
+        """Row height there is room for, kept between the smallest and the usual."""
+        pitch = min(max(room, SMALLEST_ROW), ROW)
+        if pitch != self._pitch:
+            self._pitch = pitch
+            self._fit()
+
     @property
     def shown_rows(self) -> int:
         return min(len(self.teeth.names), MOST_ROWS)
@@ -44,7 +51,7 @@ class RakeLane(NavigableLane):
     @property
     def row_height(self) -> int:
         rows = max(self.shown_rows, 1)
-        return int(max(SMALLEST_ROW, min(ROW, TALLEST // rows)))
+        return int(max(SMALLEST_ROW, min(self._pitch, TALLEST // rows)))
 
     def _fit(self) -> None:
         self.setFixedHeight(max(self.shown_rows, 1) * self.row_height + _HEAD + 3)

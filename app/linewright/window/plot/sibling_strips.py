@@ -116,9 +116,7 @@ class SiblingStrips(QWidget):
         line = painter.fontMetrics().height()
         top = cell.top() + line + 4
         body = QRectF(cell.left() + _PAD, top, cell.width() - 2 * _PAD, cell.bottom() - top - 4)
-        painter.setPen(QColor(theme.ink))
-        title = QRectF(cell.left() + 2, cell.top() + 2, cell.width() - 4, line)
-        painter.drawText(title, int(Qt.AlignmentFlag.AlignHCenter), strip.title)
+        self._draw_title(painter, strip, QRectF(body.left(), cell.top() + 2, body.width(), line))
         low, high = self.velocity_range()
         scale = PixelScale(low, high, body.left(), body.width())
         painter.setPen(QPen(QColor(self._colour), 1.6))
@@ -126,13 +124,24 @@ class SiblingStrips(QWidget):
         draw_lines(painter, np.array([[zero, body.top(), zero, body.bottom()]]))
         if len(self._parts[index].x):
             self._draw_flux(painter, self._parts[index], scale, body)
-        if strip.note:
-            painter.setPen(QColor(theme.muted))
-            flags = int(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignBottom)
-            painter.drawText(body, flags, strip.note)
         if index == self.current:
             painter.setPen(QPen(QColor(theme.accent), 2 if self.hasFocus() else 1))
             painter.drawRect(cell.adjusted(2, 1, -2, -1))
+
+    def _draw_title(self, painter: QPainter, strip: Strip, room: QRectF) -> None:
+        """Wavelength and note in one line above the strip, clear of the curve."""
+        metrics = painter.fontMetrics()
+        gap, first = metrics.horizontalAdvance("  "), metrics.horizontalAdvance(strip.title)
+        note = metrics.elidedText(
+            strip.note, Qt.TextElideMode.ElideRight, int(max(room.width() - first - gap, 0)))
+        whole = first + (gap + metrics.horizontalAdvance(note) if note else 0)
+        left = room.left() + max(0.0, (room.width() - whole) / 2)
+        flags = int(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
+        painter.setPen(QColor(self._theme.ink))
+        painter.drawText(QRectF(left, room.top(), first + 2, room.height()), flags, strip.title)
+        painter.setPen(QColor(self._theme.muted))
+        place = QRectF(left + first + gap, room.top(), room.right() - left, room.height())
+        painter.drawText(place, flags, note)
 
     def _draw_flux(self, painter: QPainter, part: Extremes, scale, body: QRectF) -> None:
         finite = part.y[np.isfinite(part.y)]
@@ -159,7 +168,8 @@ class SiblingStrips(QWidget):
         low, high = self.velocity_range()
         scale = PixelScale(low, high, cell.left() + _PAD, cell.width() - 2 * _PAD)
         top = self.height() - self._axis_height() + 2.0
-        major, minor, decimals = nice_ticks(low, high, max(2, int(scale.width // 26)))
+        widest = painter.fontMetrics().horizontalAdvance(f"−{abs(high):.0f}") + 10
+        major, minor, decimals = nice_ticks(low, high, max(2, int(scale.width // widest)))
         painter.setPen(QPen(QColor(theme.faint), 0))
         draw_lines(painter, np.array([[scale.origin, top, scale.origin + scale.width, top]]))
         for ticks, length in ((minor, 2.0), (major, 5.0)):

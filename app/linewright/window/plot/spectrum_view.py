@@ -11,8 +11,10 @@ from ...session.model import Session
 from ...spectra.medium import from_medium, to_medium
 from ...spectra.spectrum import Spectrum
 from ..theme import Theme
+from .context_strip import HEIGHT as STRIP
+from .context_strip import LOWEST as LOW_STRIP
 from .context_strip import ContextStrip
-from .feature_marks import marks_of
+from .feature_marks import marks_after
 from .rake_data import RakeData
 from .rake_lane import RakeLane
 from .spectrum_item import SpectrumItem
@@ -48,7 +50,13 @@ class SpectrumView(QWidget):
         self.state.moved.connect(self.viewChanged)
         self.plot.featureClicked.connect(self.featureClicked)
         self.plot.pickRequested.connect(self._pick)
-        self._session: Session | None = None
+        self._continuum: tuple = ((), "")
+
+    def resizeEvent(self, event) -> None:
+        """On a low window strip and Rake leave the spectrum its share."""
+        super().resizeEvent(event)
+        self.strip.setFixedHeight(int(np.clip(self.height() // 8, LOW_STRIP, STRIP)))
+        self.rake.set_pitch(self.height() // 25)
 
     @staticmethod
     def prepare(spectrum: Spectrum) -> SpectrumItem:
@@ -79,17 +87,21 @@ class SpectrumView(QWidget):
         The selection stays where the session still has that feature.
         """
         medium = self.state.medium
-        marks = marks_of(session, medium)
-        self._session = session
-        self.plot.labels.set_marks(marks)
+        marks, rows = marks_after(self.plot.labels.marks, session, medium)
+        self.plot.labels.set_marks(marks, rows)
         if marks.row_of(self.plot.labels.selected) is None:
             self.plot.labels.selected = None
-        nodes = () if session is None else session.continuum
-        self.plot.continuum = [
-            (to_medium(n.wave, medium), np.asarray(n.value, dtype=float)) for n in nodes
-        ]
-        self.strip.set_marks(marks)
+        self._show_continuum(() if session is None else session.continuum, medium)
+        if rows is None:
+            self.strip.set_marks(marks)
         self.plot.update()
+
+    def _show_continuum(self, nodes, medium: str) -> None:
+        if (nodes, medium) != self._continuum:
+            self._continuum = (nodes, medium)
+            self.plot.continuum = [
+                (to_medium(n.wave, medium), np.asarray(n.value, dtype=float)) for n in nodes
+            ]
 
     def set_rake(self, rake: RakeData) -> None:
         """Replace the teeth; the velocity stays."""

@@ -24,18 +24,35 @@ class TickStrokes:
 
     def __init__(self, marks: FeatureMarks, theme: Theme):
         self.theme = theme
-        rows: dict[str, list[int]] = {}
-        for row, standing in enumerate(marks.standing.tolist()):
-            plain = standing in (UNCLAIMED, SET_ASIDE)
-            colour = theme.faint if plain else theme.colour(marks.species[row], marks.origin[row])
-            rows.setdefault(colour, []).append(row)
-        self._groups = [
-            (colour, *_strokes(marks, np.array(members))) for colour, members in rows.items()
-        ]
+        self._codes: dict[str, int] = {}  # of colours
+        self._known: dict[tuple, int] = {}
+        self._code = np.array([self._code_of(marks, k) for k in range(len(marks))], dtype=int)
+        self._groups: dict[int, tuple[np.ndarray, np.ndarray]] = {}
+        self._make(marks, set(self._codes.values()))
+
+    def _code_of(self, marks: FeatureMarks, row: int) -> int:
+        plain = int(marks.standing[row]) in (UNCLAIMED, SET_ASIDE)
+        who = () if plain else (marks.species[row], marks.origin[row])
+        if who not in self._known:
+            colour = self.theme.colour(*who) if who else self.theme.faint
+            self._known[who] = self._codes.setdefault(colour, len(self._codes))
+        return self._known[who]
+
+    def _make(self, marks: FeatureMarks, codes) -> None:
+        for code in codes:
+            self._groups[code] = _strokes(marks, np.nonzero(self._code == code)[0])
+
+    def follow(self, marks: FeatureMarks, rows: np.ndarray) -> None:
+        """Rows of the same features whose claims changed: only their colours are redone."""
+        touched = set(self._code[rows].tolist())
+        for row in rows.tolist():
+            self._code[row] = self._code_of(marks, row)
+        self._make(marks, touched | set(self._code[rows].tolist()))
 
     def lines(self, scale: PixelScale, foot: float):
         """(colour, line rows) of what is in view, ticks ending at ``foot``."""
-        for colour, wave, shape in self._groups:
+        for colour, code in self._codes.items():
+            wave, shape = self._groups[code]
             first, last = np.searchsorted(wave, [scale.low, scale.high])
             if last > first:
                 lines = shape[first:last].copy()
@@ -46,9 +63,11 @@ class TickStrokes:
 
 def _strokes(marks: FeatureMarks, rows: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     """(wave, shape) of every stroke of these rows, in order of wavelength."""
-    owner, shape = [], []
-    for row in rows.tolist():
-        for stroke in STROKES[int(marks.standing[row])]:
-            owner.append(row)
-            shape.append(stroke)
-    return marks.wave[owner], np.array(shape, dtype=float)
+    owners, shapes = [np.zeros(0, dtype=int)], [np.zeros((0, 4))]
+    for standing, strokes in STROKES.items():
+        mine = rows[marks.standing[rows] == standing]
+        owners.append(np.repeat(mine, len(strokes)))
+        shapes.append(np.tile(np.array(strokes, dtype=float), (len(mine), 1)))
+    owner, shape = np.concatenate(owners), np.concatenate(shapes)
+    order = np.argsort(owner, kind="stable")
+    return marks.wave[owner[order]], shape[order]
