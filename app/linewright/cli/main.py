@@ -14,6 +14,8 @@ COMMANDS = {
     "inspect": "say what was understood of a spectrum",
     "correct": "show and apply the barycentric correction and a wavelength zero point",
     "convert": "write a spectrum as standard FITS or ECSV",
+    "send": "offer a spectrum to other programs through a SAMP hub",
+    "receive": "take a spectrum another program sends, with consent",
     "solve": "find and identify the lines of a spectrum or a feature table",
     "table": "write the Ledger, the Roll call or the Orphans of a session",
     "figure": "draw a session's spectrum with its lines named",
