@@ -12,6 +12,7 @@ from ..spectra.medium import C_KM_S, to_medium
 from ..spectra.spectrum import Spectrum
 
 COUNT = 6
+WIDEST = 3000.0  # km/s: the wings of hydrogen in a hot star
 LEAST_SIGMA = 3.0
 MAD_TO_SIGMA = 1.4826  # of a normal distribution
 
@@ -38,11 +39,13 @@ def sibling_strips(
     predicted: tuple[LineCatalogue, np.ndarray],
     candidate: Candidate,
     velocity: float,
+    fwhm: float = float("nan"),
 ) -> list[SiblingStrip]:
     """Up to COUNT strips, strongest predicted lines first chosen, shown by wavelength.
 
     predicted: catalogue and the predicted depth of each of its lines, shape (n,)
     candidate: the line on trial, which is no sibling of itself
+    fwhm: of the feature on trial, Angstrom, where it is wider than most
     Lines outside the samples, where most samples are masked, or too faint for the noise
     there, are passed over.
     """
@@ -53,6 +56,8 @@ def sibling_strips(
     rows = _within(spectrum, catalogue, np.nonzero(catalogue.species == code)[0], velocity)
     strength = np.nan_to_num(np.asarray(depth)[rows], nan=0.0)
     half = half_width(session, float(np.median(catalogue.wave[rows])) if len(rows) else 5000.0)
+    if fwhm > 0:
+        half = min(max(half, 1.5 * fwhm / candidate.wave * C_KM_S), WIDEST)
     strips: list[tuple] = []
     taken = [candidate.wave]
     for row in rows[np.argsort(-strength, kind="stable")]:

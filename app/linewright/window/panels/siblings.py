@@ -9,7 +9,8 @@ from ..plot import SiblingStrips, Strip
 
 TIP = (
     "If the candidate is right, its strongest other lines must be in the spectrum as well. "
-    "Each strip is centred on where one is expected; click it to go there."
+    "Each strip is centred on where one is expected, with a bar at the depth predicted; click "
+    "it to go there."
 )
 
 
@@ -42,19 +43,21 @@ class SiblingsBox(QWidget):
         if not ready or bench.spectrum is None:
             self.clear()
             return
-        shown = (candidate.species, candidate.wave, bench.view.now.velocity, id(session), id(bench.depth),
-                 bench.theme.name)
+        shown = (candidate.species, candidate.wave, bench.view.now.velocity, id(session),
+                 id(bench.depth), bench.theme.name, bench.view.now.selected)
         if shown == self._shown:
             return
         self._shown = shown
         velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
+        fwhm = float(session.features.fwhm[bench.selected_row()])
         self._found = sibling_strips(
-            bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity)
+            bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity, fwhm)
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
-        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species))
-                  for s in self._found]
+        absorbs = candidate.depth_predicted > 0  # emission has no predicted profile
+        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species),
+                        s.predicted if absorbs else float("nan")) for s in self._found]
         self.strips.set_strips(strips, bench.theme.colour(candidate.species, candidate.origin))
 
     def _go(self, index: int) -> None:

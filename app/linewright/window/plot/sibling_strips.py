@@ -28,12 +28,14 @@ class Strip:
 
     title: what stands above it (its wavelength); note: a word below ('seen', 'in a gap')
     velocity: km/s about the expected place, ascending; flux: divided by the continuum
+    predicted: depth in absorption, marked by a short bar; NaN for none
     """
 
     title: str
     velocity: np.ndarray
     flux: np.ndarray
     note: str = ""
+    predicted: float = float("nan")
 
 
 class SiblingStrips(QWidget):
@@ -123,7 +125,7 @@ class SiblingStrips(QWidget):
         zero = float(np.floor(scale.pixels(0.0))) + 0.5
         draw_lines(painter, np.array([[zero, body.top(), zero, body.bottom()]]))
         if len(self._parts[index].x):
-            self._draw_flux(painter, self._parts[index], scale, body)
+            self._draw_flux(painter, index, scale, body)
         if index == self.current:
             painter.setPen(QPen(QColor(theme.accent), 2 if self.hasFocus() else 1))
             painter.drawRect(cell.adjusted(2, 1, -2, -1))
@@ -143,7 +145,8 @@ class SiblingStrips(QWidget):
         place = QRectF(left + first + gap, room.top(), room.right() - left, room.height())
         painter.drawText(place, flags, note)
 
-    def _draw_flux(self, painter: QPainter, part: Extremes, scale, body: QRectF) -> None:
+    def _draw_flux(self, painter: QPainter, index: int, scale, body: QRectF) -> None:
+        strip, part = self.strips[index], self._parts[index]
         finite = part.y[np.isfinite(part.y)]
         if len(finite) == 0:
             return
@@ -151,6 +154,10 @@ class SiblingStrips(QWidget):
         if finite.max() < 1.6 and finite.min() > 0.75:
             low = 0.6
         frame = Frame(scale, body.top(), body.bottom(), low, high, 1.0)
+        if strip.predicted == strip.predicted:
+            x, y = float(scale.pixels(0.0)), float(frame.y(1.0 - strip.predicted))
+            painter.setPen(QPen(QColor(self._colour), 1.6))
+            draw_lines(painter, np.array([[x - 6, y, x + 6, y]]))
         painter.setPen(QPen(QColor(self._theme.ink), 0))
         reduced = reduce_part(part, scale, raw=_RAW)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, reduced.smooth)
@@ -180,7 +187,9 @@ class SiblingStrips(QWidget):
         line = painter.fontMetrics().height()
         for value, x in zip(major, scale.pixels(major)):
             text = f"{value + 0.0:.{decimals}f}".replace("-", "−")
-            box = QRectF(float(x) - 30, top + 5, 60, line)
+            half = painter.fontMetrics().horizontalAdvance(text) / 2 + 1
+            middle = min(max(float(x), cell.left() + half), cell.right() - half)
+            box = QRectF(middle - 30, top + 5, 60, line)
             painter.drawText(box, int(Qt.AlignmentFlag.AlignHCenter), text)
         painter.setPen(QColor(theme.muted))
         title = QRectF(cell.left(), top + 5 + line, cell.width(), line)

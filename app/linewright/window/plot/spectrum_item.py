@@ -12,6 +12,7 @@ from ...spectra.spectrum import Segment, Spectrum
 from .extremes import PYRAMID_ABOVE, Columns, Extremes, PixelScale
 from .geometry import Frame
 from .primitives import draw_lines, draw_polyline
+from .spikes import top_without_spikes
 
 # Up to this many samples per pixel the samples themselves are drawn.
 RAW_PER_PIXEL = 4
@@ -75,11 +76,12 @@ class SpectrumItem:
         return [reduce_part(part, scale) for part in self.parts]
 
     def flux_limits(
-        self, reduced: list[Reduced], ranges: float = OUTLIER_RANGES
+        self, reduced: list[Reduced], scale: PixelScale
     ) -> tuple[float, float] | None:
         """(lowest, highest) flux in view; None with nothing in view.
 
-        What lies more than ``ranges`` bulk ranges from the median is left out.
+        Spikes of one sample are left out, as is what lies more than OUTLIER_RANGES bulk
+        ranges from the median.
         """
         pairs = [part.extremes() for part in reduced]
         lows = np.concatenate([pair[0] for pair in pairs])
@@ -89,8 +91,12 @@ class SpectrumItem:
         values = np.concatenate([lows, highs])
         order = [int(share * (len(values) - 1)) for share in (0.02, 0.5, 0.98)]
         bottom, middle, top = np.partition(values, order)[order].tolist()
-        reach = ranges * max(top - bottom, 1e-300)
-        return max(float(lows.min()), middle - reach), min(float(highs.max()), middle + reach)
+        bulk = max(top - bottom, 1e-300)
+        reach, most = OUTLIER_RANGES * bulk, float(highs.max())
+        if most > top + bulk:
+            level = middle, top + bulk
+            most = min(most, top_without_spikes(self.parts, reduced, scale, level))
+        return max(float(lows.min()), middle - reach), min(most, middle + reach)
 
     def paint(self, painter: QPainter, frame: Frame, reduced: list[Reduced], ink: str) -> None:
         """Draw with a pen of one device pixel; the painter is in device pixels."""

@@ -7,6 +7,7 @@ from PySide6.QtCore import QPointF, QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QPainter, QPen
 
 from .caret import outline, turning_points
+from .extremes import PixelScale
 from .flux_axis import draw_flux_axis
 from .geometry import LEFT, RIGHT, Frame, to_device
 from .label_layer import LabelLayer
@@ -63,7 +64,7 @@ class SpectrumPlot(NavigableLane):
         x, y, ratio = to_device(painter)
         scale = self.scale((x, ratio))
         reduced = self.item.reduce(scale)
-        low, high = self._flux_range(reduced)
+        low, high = self._flux_range(reduced, scale)
         frame = Frame(scale, y + top * ratio, y + (self.height() - _FOOT) * ratio, low, high, ratio)
         painter.setClipRect(
             QRectF(scale.origin, frame.top, scale.width, frame.bottom - frame.top + _FOOT * ratio)
@@ -128,12 +129,12 @@ class SpectrumPlot(NavigableLane):
                 x, y = x[keep], y[keep]
             draw_polyline(painter, x, y)
 
-    def _flux_range(self, reduced: list[Reduced]) -> tuple[float, float]:
+    def _flux_range(self, reduced: list[Reduced], scale: PixelScale) -> tuple[float, float]:
         """The user's range, or a calm automatic one: kept while the data still suit it."""
         if self.state.flux is not None:
             self.flux_shown = self.state.flux
             return self.flux_shown
-        limits = self.item.flux_limits(reduced)
+        limits = self.item.flux_limits(reduced, scale)
         if limits is not None:
             low, high = _with_headroom(*limits)
             shown_low, shown_high = self.flux_shown

@@ -9,6 +9,7 @@ import numpy as np
 from .extremes import PixelScale
 from .geometry import Frame
 from .primitives import FAR
+from .spikes import top_without_spikes
 
 _TOWERING = 6.0  # bulk ranges above the middle from which linear would hide all else
 _ROOM = 0.12  # of the height for what lies below the middle
@@ -36,9 +37,13 @@ def strip_frame(item, reduced, place: tuple[PixelScale, float, float, float]) ->
     if not len(values):
         return Frame(scale, top, bottom, 0.0, 1.0, ratio)
     low, middle, high = np.percentile(values, (2, 50, 90))
-    most, bulk = float(values.max()), max(float(high - low), 1e-300)
+    bulk = max(float(high - low), 1e-300)
+    most = float(values.max())
+    if most > high + bulk:
+        level = float(middle), float(high + bulk)
+        most = min(most, top_without_spikes(item.parts, reduced, scale, level))
     if most - middle > _TOWERING * bulk:
-        knee = max(float(np.percentile(values, 75) - low), 1e-3 * (most - middle))
+        knee = max(bulk / 4, 2e-4 * (most - middle))
         return CompressedFrame(scale, top, bottom, float(low), most, ratio, float(middle), knee)
     least = float(values.min())
     foot = min(least, max(0.0, 0.8 * least))
