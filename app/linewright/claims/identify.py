@@ -11,6 +11,7 @@ from ..progress import Progress
 from ..spectra.medium import C_KM_S
 from .build import build_claims
 from .components import Found, find_components, refined, settled
+from .consistency import drift_warning, flagged
 from .entries import group_half_width
 from .features_in import feature_data
 from .mixture import solve_mixture
@@ -162,7 +163,7 @@ def identify(
     if any(c.log_ratio for c in found.components):
         found = settled(found, solution)
         solution = solve_mixture(setting.problem(found.components, temperature))
-    claims = build_claims(solution, setting.catalogue, found.components)
+    claims = flagged(build_claims(solution, setting.catalogue, found.components), solution)
     progress.report("calling the roll", 0.95)
     return Identification(
         claims,
@@ -172,7 +173,7 @@ def identify(
         electron_pressure(temperature) if options.log_pe is None else options.log_pe,
         call_roll(solution, setting.catalogue),
         rank_orphans(features, claims, solution, setting.catalogue),
-        found.warnings,
+        found.warnings + drift_warning(solution, found.components),
         solution,
     )
 

@@ -10,7 +10,7 @@ from .populations import INTERSTELLAR, Component
 
 MAX_CLOUDS = 3
 MIN_LINES = 2
-CHANCE = 0.02  # expected chance coincidences a cloud must beat
+CHANCE = 0.003  # expected chance coincidences a cloud must beat
 SPAN = 250.0  # km/s about the spectrum's zero
 NARROW = 0.1  # Angstrom: lines with worse positions (diffuse bands) do not vote
 

@@ -8,7 +8,7 @@ from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
 from .features_in import position_error
 from .problem import inside
-from .voting import Vote, line_weights, summarise, vote
+from .voting import OUTLIER_SHARE, Vote, line_weights, summarise, vote
 
 VOTERS = 240  # strongest features that vote
 TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: required lists)
@@ -25,6 +25,7 @@ TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: requir
     ]
 )
 ORDINARY_SHIFT = 33.0  # km/s: the largest barycentric correction, with the Earth's rotation
+MOSTLY_STELLAR = 0.8  # share of the features in telluric bands that are the star's
 UNUSUAL = 40.0  # log-likelihood an extraordinary shift must make up for
 FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0,
                "barycentric": 33.0}
@@ -63,7 +64,7 @@ def stellar_vote(features, catalogue, strength, velocity_range, behind: int = 0)
     rows = strongest(features, 1, where=outside)
     if len(rows) < 3:
         rows = strongest(features, 1)
-    return _vote(features, rows, catalogue, strength, velocity_range, behind)
+    return _vote(features, rows, catalogue, strength, velocity_range, behind=behind)
 
 
 def emission_vote(features, catalogue, velocity_range) -> Vote:
@@ -81,7 +82,8 @@ def telluric_vote(features, catalogue, frame: str, velocity_range) -> Vote:
     strength = np.where(
         catalogue.origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref), np.nan
     )
-    return _near_observer(_vote(features, rows, catalogue, strength, span), limit)
+    result = _vote(features, rows, catalogue, strength, span, outliers=MOSTLY_STELLAR)
+    return _near_observer(result, limit)
 
 
 def _near_observer(result: Vote, limit: float | None) -> Vote:
@@ -93,7 +95,7 @@ def _near_observer(result: Vote, limit: float | None) -> Vote:
     return summarise(result.grid, result.score - penalty, result.width)
 
 
-def _vote(features, rows, catalogue, strength, velocity_range, behind: int = 0) -> Vote:
+def _vote(features, rows, catalogue, strength, velocity_range, **how) -> Vote:
     usable = np.nonzero(np.isfinite(strength))[0]
     if len(rows) == 0 or len(usable) == 0:
         nothing = np.array([velocity_range[0], velocity_range[1]], dtype=float)
@@ -101,7 +103,7 @@ def _vote(features, rows, catalogue, strength, velocity_range, behind: int = 0) 
     low = features.wave[rows].min() / (1 + velocity_range[1] / C_KM_S) - 1.0
     high = features.wave[rows].max() / (1 + velocity_range[0] / C_KM_S) + 1.0
     usable = usable[(catalogue.wave[usable] >= low) & (catalogue.wave[usable] <= high)]
-    weight = line_weights(strength[usable], max(1.5 * len(rows), behind))
+    weight = line_weights(strength[usable], max(1.5 * len(rows), how.get("behind", 0)))
     keep = weight > 0.01
     return vote(
         features.wave[rows],
@@ -109,6 +111,7 @@ def _vote(features, rows, catalogue, strength, velocity_range, behind: int = 0) 
         catalogue.wave[usable][keep],
         weight[keep],
         velocity_range,
+        how.get("outliers", OUTLIER_SHARE),
     )
 
 

@@ -47,25 +47,26 @@ def line_weights(strength, expected: float):
     return 0.9 / (1.0 + (rank / max(expected, 1.0)) ** 2.0)
 
 
-def vote(wave, sigma, line_wave, weight, velocity_range, step=None) -> Vote:
+def vote(wave, sigma, line_wave, weight, velocity_range, outliers=OUTLIER_SHARE) -> Vote:
     """Score every velocity in ``velocity_range`` (km/s).
 
     wave, sigma: feature vacuum wavelengths and errors, Angstrom, (f,);
-    line_wave: catalogue vacuum wavelengths, ascending, (n,); weight: (n,) prior of showing.
+    line_wave: catalogue vacuum wavelengths, ascending, (n,); weight: (n,) prior of showing;
+    outliers: prior share of features the list does not explain.
     """
     low, high = velocity_range
     width = np.maximum(C_KM_S * np.asarray(sigma) / np.asarray(wave), 0.05)
-    if step is None:
-        step = float(np.clip(np.percentile(width, 20) / 2.0, 0.05, 20.0))
+    step = float(np.clip(np.percentile(width, 20) / 2.0, 0.05, 20.0))
     grid = np.arange(low, high + step, step)
     score = np.zeros(len(grid))
     for x, w in zip(np.asarray(wave, float), width, strict=True):
-        score += _feature_score(x, w, line_wave, weight, grid)
+        density = _feature_density(x, w, line_wave, weight, grid)
+        score += np.log(outliers + (1 - outliers) * density)
     return summarise(grid, score, float(np.median(width)))
 
 
-def _feature_score(x, width, line_wave, weight, grid):
-    """log of (outlier + line explanation over chance) for one feature, over the grid."""
+def _feature_density(x, width, line_wave, weight, grid):
+    """Density of line explanations of one feature over the grid, relative to chance."""
     first, last = np.searchsorted(
         line_wave, [x / (1 + grid[-1] / C_KM_S), x / (1 + grid[0] / C_KM_S)]
     )
@@ -82,8 +83,8 @@ def _feature_score(x, width, line_wave, weight, grid):
     np.add.at(density, index[inside], kernel[inside])
     mean = float(np.sum(weight[first:last])) / (grid[-1] - grid[0])
     if mean <= 0:
-        return np.zeros(len(grid))
-    return np.log(OUTLIER_SHARE + (1 - OUTLIER_SHARE) * density / mean)
+        return np.ones(len(grid))
+    return density / mean
 
 
 def summarise(grid, score, width: float) -> Vote:
