@@ -24,6 +24,10 @@ def configure(parser) -> None:
     parser.add_argument("session", metavar="SESSION")
     parser.add_argument("--script", required=True, metavar="EDITS.jsonl")
     parser.add_argument("-o", "--output", required=True, metavar="OUT", help="session to write")
+    parser.add_argument(
+        "--reweigh", action="store_true",
+        help="then weigh the machine's claims again: a person's firm word is data",
+    )  # fmt: skip
     parser.add_argument("--force", action="store_true", help="overwrite an existing file")
 
 
@@ -35,6 +39,15 @@ def run(options) -> int:
     check_writable(options.output, options.force)
     session = load_session(options.session)
     commands = read_script(options.script)
-    save_session(apply_script(session, commands, options.script), options.output, options.force)
+    edited = apply_script(session, commands, options.script)
+    changes = ()
+    if options.reweigh:
+        from ..job.reweigh import reweigh
+
+        edited, changes = reweigh(edited)
+    save_session(edited, options.output, options.force)
     print(f"{len(commands)} edits applied: {options.output}")
+    for change in changes:
+        before, after = (" ".join(x).strip() for x in (change.before, change.after))
+        print(f"  feature {change.feature}: {before} -> {after}")
     return 0
