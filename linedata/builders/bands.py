@@ -15,7 +15,7 @@ from pathlib import Path
 
 import numpy as np
 
-from common import TABLES, enter_in_manifest, script_arguments, source_file
+from common import TABLES, enter_in_manifest, replace_bytes, script_arguments, source_file
 
 # molecule: (list of lines, code of the molecule, temperature in K, bibliographic key)
 LISTS = {
@@ -147,7 +147,8 @@ def main() -> None:
         rows += molecule_bands(arguments.source_dir, molecule)
     rows.sort(key=lambda row: (row["air"], row["molecule"]))
     path = (arguments.out or TABLES) / "bands.json"
-    path.write_text("[\n" + ",\n".join(json.dumps(row) for row in rows) + "\n]\n")
+    text = "[\n" + ",\n".join(json.dumps(row) for row in rows) + "\n]\n"
+    replace_bytes(path, text.encode())
     enter_in_manifest(path)
     print(len(rows), "bands,", sum(not row["from_memory"] for row in rows), "with computed heads")
 

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import json
 
-from common import TABLES, enter_in_manifest, script_arguments
+from common import TABLES, enter_in_manifest, replace_bytes, script_arguments
 
 # key: authors (BibTeX), year, journal, volume, page, title
 ARTICLES = {
@@ -226,7 +226,7 @@ def main() -> None:
         entries[key] = {"citation": citation, "bibtex": bibtex}
     path = (arguments.out or TABLES) / "citations.json"
     text = json.dumps(entries, indent=1, sort_keys=True, ensure_ascii=False)
-    path.write_text(text + "\n", encoding="utf-8")
+    replace_bytes(path, (text + "\n").encode())
     enter_in_manifest(path)
     print(len(entries), "citations")
 

@@ -6,6 +6,7 @@ import argparse
 import hashlib
 import io
 import json
+import os
 import sys
 import zipfile
 from pathlib import Path
@@ -40,7 +41,8 @@ def write_table(name: str, columns: dict[str, np.ndarray], out: Path | None = No
     folder = Path(out) if out else TABLES
     folder.mkdir(parents=True, exist_ok=True)
     path = folder / f"{name}.npz"
-    with zipfile.ZipFile(path, "w", zipfile.ZIP_STORED) as archive:
+    stored = io.BytesIO()
+    with zipfile.ZipFile(stored, "w", zipfile.ZIP_STORED) as archive:
         for key in sorted(columns):
             buffer = io.BytesIO()
             np.lib.format.write_array(buffer, np.ascontiguousarray(columns[key]), version=(1, 0))
@@ -48,8 +50,16 @@ def write_table(name: str, columns: dict[str, np.ndarray], out: Path | None = No
             entry.external_attr = 0o644 << 16
             entry.create_system = 3
             archive.writestr(entry, buffer.getvalue())
+    replace_bytes(path, stored.getvalue())
     enter_in_manifest(path)
     return path
+
+
+def replace_bytes(path: Path, data: bytes) -> None:
+    """Writes beside the file and moves into place: a reader never meets half a table."""
+    beside = path.with_name(f".{path.name}.new")
+    beside.write_bytes(data)
+    os.replace(beside, path)
 
 
 def enter_in_manifest(path: Path) -> None:
@@ -58,7 +68,7 @@ def enter_in_manifest(path: Path) -> None:
     entries = json.loads(manifest.read_text()) if manifest.is_file() else {}
     data = path.read_bytes()
     entries[path.name] = {"bytes": len(data), "sha256": hashlib.sha256(data).hexdigest()}
-    manifest.write_text(json.dumps(entries, indent=1, sort_keys=True) + "\n")
+    replace_bytes(manifest, (json.dumps(entries, indent=1, sort_keys=True) + "\n").encode())
 
 
 def script_arguments(description: str) -> argparse.Namespace:
