@@ -78,6 +78,11 @@ def _read_raw(opened: Opened, wanted: Wanted) -> Raw:
     from .astropy_tables import is_ecsv
 
     if opened.kind == "fits":
+        from .plain_fits import read_plain
+
+        raw = read_plain(opened, wanted)
+        if raw is not None:
+            return raw
         from .fits_files import read_fits
 
         return read_fits(opened, wanted)
