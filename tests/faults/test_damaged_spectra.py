@@ -171,7 +171,7 @@ def test_a_gzip_bomb_stops_at_the_cap(tmp_path, monkeypatch):
 
     monkeypatch.setattr(opening, "DECODED_CAP", 1 << 20)
     path = tmp_path / "bomb.gz"
-    path.write_bytes(gzip.compress(b"\0" * (8 << 20)))
+    path.write_bytes(gzip.compress(_fits_bytes("image")[:2880] + b"\0" * (8 << 20)))
     assert "unpacks to more" in outcome(path)
 
 

@@ -79,3 +79,48 @@ def test_an_external_entity_is_refused(tmp_path):
     path.write_text('<?xml version="1.0"?><!DOCTYPE VOTABLE [<!ENTITY x SYSTEM "file:///etc/hosts">]>'
                     "<VOTABLE><DESCRIPTION>&x;</DESCRIPTION></VOTABLE>")
     assert "entity declarations" in outcome(path)
+
+
+def _many_hdus() -> bytes:
+    import io
+
+    stream = io.BytesIO()
+    fits.HDUList([fits.PrimaryHDU()] + [fits.ImageHDU(np.zeros(2))] * 1500).writeto(stream)
+    return stream.getvalue()
+
+
+def _many_columns() -> bytes:
+    import io
+
+    columns = [fits.Column(f"c{i}", "D", array=np.zeros(10)) for i in range(998)]
+    stream = io.BytesIO()
+    fits.HDUList([fits.PrimaryHDU(), fits.BinTableHDU.from_columns(columns)]).writeto(stream)
+    return stream.getvalue()
+
+
+def _zipped(data: bytes) -> bytes:
+    import gzip
+
+    return gzip.compress(data, 1)
+
+
+SLOW = {
+    "not a number, line after line": lambda: b"nan nan\n" * 200_000,
+    "words, line after line": lambda: b"hello world again\n" * 200_000,
+    "every second line words": lambda: b"5000 1\nsome words\n" * 100_000,
+    "one endless line": lambda: b"5000 " * 2_000_000,
+    "1,500 HDUs": _many_hdus,
+    "998 columns": _many_columns,
+    "zeros, packed": lambda: _zipped(b"\0" * 50_000_000),
+    "200 MB of text, packed": lambda: _zipped(b"5000 1\n" * 28_000_000),
+    "XML without end": lambda: b'<?xml version="1.0"?><VOTABLE>' + b"<RESOURCE>" * 100_000,
+    "a thousand columns of one name": lambda: (
+        b"# %ECSV 1.0\n# ---\n# datatype:\n" + b"# - {name: a, datatype: float64}\n" * 1000 + b"a\n"),
+}
+
+
+@pytest.mark.parametrize("name", SLOW)
+def test_files_made_to_be_slow_are_refused_in_time(tmp_path, name):
+    path = tmp_path / "slow"
+    path.write_bytes(SLOW[name]())
+    assert outcome(path) != "spectrum"

@@ -160,3 +160,29 @@ def test_a_file_offers_its_spectra(tmp_path, columns):
     for choice in found:
         assert read_spectrum(path, medium="air", hdu=choice.hdu, row=choice.rows if
                              choice.rows > 1 else None).samples == choice.samples
+
+
+def test_the_lines_are_asked_when_wanted(capsys):
+    """A sample of our own, its vacuum or air stated; then as text that states nothing."""
+    from linewright.resources import samples_dir
+
+    star = samples_dir() / "g_dwarf.fits"
+    assert main(["inspect", str(star), "--lines", "--json"]) == 0
+    told = json.loads(capsys.readouterr().out)
+    assert told["medium_odds"] is None and len(told["lines_say"]) >= 1
+    assert main(["inspect", str(star)]) == 0 and "lines:" not in capsys.readouterr().out
+
+
+def test_the_odds_of_a_spectrum_that_does_not_say(tmp_path, capsys):
+    from linewright.resources import samples_dir
+    from linewright.spectra.medium import to_medium
+
+    star = read_spectrum(samples_dir() / "g_dwarf.fits")
+    rows = np.concatenate([np.column_stack([to_medium(s.wave, star.medium), s.flux])[~s.mask]
+                           for s in star.segments])
+    np.savetxt(tmp_path / "star.txt", rows, fmt="%.5f")
+    assert main(["inspect", str(tmp_path / "star.txt"), "--lines", "--json"]) == 0
+    told = json.loads(capsys.readouterr().out)
+    odds = told["medium_odds"]
+    assert odds["air"] + odds["vacuum"] == pytest.approx(1.0)
+    assert odds[star.medium] > 0.5 and "calibration tilt" in told["lines_say"][0]

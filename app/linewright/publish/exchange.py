@@ -93,8 +93,10 @@ class Exchange:
     def _noted(self, _key, sender, mtype, params, _extra) -> None:
         self.offers.put(self._offered(sender, mtype, params))
 
-    def _called(self, _key, sender, message_id, mtype, params, _extra) -> None:
-        """Answered before it is told on: who waits for an offer may leave at once."""
+    def _called(self, *arrived) -> None:
+        """arrived: key, sender, message id, type, parameters, extra. Answered before it is told
+        on: who waits for an offer may leave at once."""
+        _, sender, message_id, mtype, params, _ = arrived
         offer = self._offered(sender, mtype, params)
         self._client.ereply(message_id, "samp.ok", result={})
         self.offers.put(offer)

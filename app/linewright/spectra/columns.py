@@ -177,7 +177,7 @@ def choose(infos: list[ColumnInfo], wanted: dict | None, what: str) -> Roles | N
             found[role] = index
     if "wave" not in found:
         for index, info in enumerate(infos):
-            if info.numeric and index not in found.values() and wave_unit(info.unit or "?"):
+            if info.numeric and info.unit and index not in found.values() and wave_unit(info.unit):
                 found["wave"] = index
                 break
     wanted = wanted or {}

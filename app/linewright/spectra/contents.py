@@ -11,11 +11,10 @@ from dataclasses import asdict, dataclass
 from ..errors import InputRefused, LinewrightError
 from .axis import header_axis
 from .columns import ColumnInfo, choose, role_of, scale_columns
+from .fits_files import loaded
 from .fits_images import images_of, named_rows
 from .fits_tables import column_infos
 from .opening import Opened, open_checked
-
-MOST = 400
 
 
 @dataclass(frozen=True)
@@ -55,9 +54,10 @@ def _fits(opened: Opened) -> tuple[Offer, ...]:
     offers: list[Offer] = []
     with warnings.catch_warnings(), opened.stream() as stream:
         warnings.simplefilter("ignore")
-        with fits.open(stream, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
+        with fits.open(stream, memmap=opened.data is None) as whole:
+            hdus = loaded(whole)
             images = images_of(hdus)
-            for index, hdu in enumerate(hdus[:MOST]):
+            for index, hdu in enumerate(hdus):
                 offer = _table(hdu, index) if getattr(hdu, "columns", None) is not None and not (
                     hdu.is_image) else _image(images, index, opened)
                 if offer is not None:

@@ -17,6 +17,9 @@ from .raw import Card, Raw, Wanted
 from .tables import raw_from_table
 
 
+MOST_HDUS = 400
+
+
 def _cards(header) -> list[Card]:
     """Every statement that can be parsed; a damaged card of no concern stops nothing."""
     from astropy.io.fits import VerifyError
@@ -129,6 +132,19 @@ def _check_hdu(hdus, hdu: int | None, what) -> None:
                            "choose with --hdu")
 
 
+def loaded(whole):
+    """The first MOST_HDUS HDUs of an open file: a file of thousands must not hang us."""
+    from astropy.io import fits
+
+    hdus = []
+    for index in range(MOST_HDUS):
+        try:
+            hdus.append(whole[index])
+        except IndexError:
+            break
+    return fits.HDUList(hdus)
+
+
 def read_fits(opened: Opened, wanted: Wanted) -> Raw:
     """The spectrum of a FITS file (arrays copied, the file closed).
 
@@ -139,7 +155,8 @@ def read_fits(opened: Opened, wanted: Wanted) -> Raw:
 
     with warnings.catch_warnings(), opened.stream() as stream:
         warnings.simplefilter("ignore")
-        with fits.open(stream, memmap=opened.data is None, lazy_load_hdus=False) as hdus:
+        with fits.open(stream, memmap=opened.data is None) as whole:
+            hdus = loaded(whole)
             _check_hdu(hdus, wanted.hdu, opened.path)
             index, raw = _first(hdus, wanted, opened)
             others = _others(hdus, index)

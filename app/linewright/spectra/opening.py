@@ -16,6 +16,8 @@ from pathlib import Path
 from ..errors import InputRefused
 
 DECODED_CAP = 2 * 1024**3  # bytes; larger decoded files are refused, not read
+TEXT_CAP = 128 * 1024**2  # bytes of text, which is read line by line
+BOMB_BYTES, BOMB_RATIO = 256 * 1024**2, 200  # unpacking further than this is refused
 _CHUNK = 1 << 20
 _APART = 1 << 24  # bytes from which the checksum is computed beside the reading
 
@@ -102,14 +104,18 @@ def _decoded(path: Path, head: bytes) -> tuple[bytes | None, str]:
         opener, packing = bz2.open, "bzip2"
     else:
         return None, ""
-    parts, total = [], 0
+    parts, total, limit = [], 0, max(BOMB_BYTES, BOMB_RATIO * os.stat(path).st_size)
+    limit = min(limit, DECODED_CAP)
     try:
         with opener(path, "rb") as handle:
             while chunk := handle.read(_CHUNK):
+                if not parts and _kind(chunk, path) != "fits":
+                    limit = min(limit, TEXT_CAP)
                 total += len(chunk)
-                if total > DECODED_CAP:
-                    raise InputRefused(path, f"unpacks to more than 2 GiB ({packing})",
-                                       "unpack it and cut out the range you need")
+                if total > limit:
+                    raise InputRefused(
+                        path, f"unpacks to more than {limit >> 20} MiB ({packing})",
+                        "unpack it and cut out the range you need")
                 parts.append(chunk)
     except (EOFError, OSError, zlib.error, ValueError) as problem:
         raise InputRefused(path, f"damaged {packing} data ({problem})",
@@ -156,7 +162,11 @@ def open_checked(path) -> Opened:
             raise InputRefused(path, f"holds nothing ({packing})", "fetch the file again")
         head = data[:_CHUNK]
     size = stamp[0] if data is None else len(data)
-    return Opened(path, _kind(head, path), checksum, size, stamp, data, packing)
+    kind = _kind(head, path)
+    if kind != "fits" and size > TEXT_CAP:
+        raise InputRefused(path, f"is text of more than {TEXT_CAP >> 20} MiB",
+                           "save it as a FITS table, or cut out the range you need")
+    return Opened(path, kind, checksum, size, stamp, data, packing)
 
 
 def check_fits_header(opened: Opened) -> None:

@@ -13,6 +13,8 @@ from .opening import Opened
 
 _COMMENTS = ("#", ";", "!", "%", "//", "\\", "|")
 _HEAD_BYTES = 1 << 20
+LONGEST_LINE = 20_000  # characters; a longer one is no row of a spectrum
+MOST_HEADER_LINES = 5000
 
 
 def _number(token: str) -> float | None:
@@ -58,12 +60,14 @@ class Layout:
                 self.comments.append(bare.lstrip("#;!%/\\| "))
                 continue
             delimiter = _delimiter(bare)
-            if _is_data(_split(bare, delimiter)):
+            if len(bare) <= LONGEST_LINE and _is_data(_split(bare, delimiter)):
                 self.skip, self.delimiter = index, delimiter
                 self.width = len(_split(bare, delimiter))
                 break
             header = bare
             self.comments.append(bare)
+            if len(bare) > LONGEST_LINE or len(self.comments) > MOST_HEADER_LINES:
+                break
         if self.skip is None:
             raise InputRefused(what, "is text without rows of numbers",
                                "a spectrum needs a wavelength and a flux in each row")
@@ -116,6 +120,8 @@ def _tolerant(lines: list[str], layout: Layout) -> tuple[np.ndarray, int]:
         values = [_number(t) for t in _split(bare, layout.delimiter)]
         if len(values) != layout.width or None in values:
             skipped += 1
+            if skipped > 500 and 4 * skipped > len(rows):
+                break
             continue
         rows.append(values)
     return np.array(rows, dtype=float).reshape(len(rows), layout.width), skipped
@@ -146,8 +152,8 @@ def read_table(opened: Opened):
     data, skipped, notes = _fast(opened, layout), 0, []
     if data is None or data.shape[1] != layout.width:
         data, skipped = _tolerant(_decoded(opened).splitlines(), layout)
-    if skipped > max(10, len(data)):
-        raise InputRefused(opened.path, f"{skipped} of its lines are no rows of numbers",
+    if skipped > max(10, len(data)) or (skipped > 500 and 4 * skipped > len(data)):
+        raise InputRefused(opened.path, f"{skipped} or more of its lines are no rows of numbers",
                            "a spectrum needs a wavelength and a flux in each row")
     if skipped:
         notes.append(f"{skipped} lines that are no rows of {layout.width} numbers left out")

@@ -6,6 +6,7 @@ quantities: lambda = c/nu = hc/E = 1/wavenumber (CODATA 2018 exact constants).
 
 from __future__ import annotations
 
+import functools
 import re
 import warnings
 from collections.abc import Callable
@@ -91,6 +92,7 @@ def _spellings() -> dict[str, WaveUnit]:
 _TABLE = _spellings()
 
 
+@functools.lru_cache(maxsize=2000)
 def wave_unit(text: str) -> WaveUnit | None:
     """The unit a file's spelling means; None when it is no spectral unit."""
     word = " ".join(str(text).split())
