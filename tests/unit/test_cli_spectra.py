@@ -186,3 +186,16 @@ def test_the_odds_of_a_spectrum_that_does_not_say(tmp_path, capsys):
     odds = told["medium_odds"]
     assert odds["air"] + odds["vacuum"] == pytest.approx(1.0)
     assert odds[star.medium] > 0.5 and "calibration tilt" in told["lines_say"][0]
+
+
+def test_a_session_reads_the_corrected_spectrum_again(observed, tmp_path):
+    from linewright.job.view_session import unsolved_session
+    from linewright.session.file import load_session, save_session
+    from linewright.session.reopen import reopen_spectrum
+
+    choices = {"barycentric": 15.4, "zero_point": (0.2, 0.05)}
+    moved = read_spectrum(observed, **choices)
+    save_session(unsolved_session(moved), tmp_path / "a.linewright.json")
+    again = reopen_spectrum(load_session(tmp_path / "a.linewright.json"))
+    assert np.array_equal(again.segments[0].wave, moved.segments[0].wave)
+    assert (again.frame, again.corrections) == ("barycentric", moved.corrections)

@@ -148,3 +148,24 @@ def test_an_unknown_flux_unit_is_kept_as_a_comment(tmp_path):
     write_spectrum(spectrum, tmp_path / "out.fits")
     table = Table.read(tmp_path / "out.fits")
     assert table["flux"].unit is None and "Relative Flux" in str(table.meta["comments"])
+
+
+@pytest.mark.parametrize("suffix", [".fits", ".ecsv"])
+def test_what_was_done_is_read_again(tmp_path, suffix):
+    from linewright.spectra.earth_motion import corrected, zero_point_removed
+
+    done = at_rest(corrected(zero_point_removed(_spectrum(), 0.1, 0.02), -12.5), 40.0)
+    write_spectrum(done, tmp_path / f"out{suffix}")
+    again = read_spectrum(tmp_path / f"out{suffix}")
+    told = " | ".join(again.corrections)
+    assert "zero point +0.1000 +- 0.0200 km/s removed" in told
+    assert "barycentric correction -12.5000 km/s applied" in told
+    assert "brought to rest from +40.0000 km/s" in told and again.frame == "rest"
+
+
+def test_an_applied_correction_is_no_longer_offered():
+    from linewright.spectra.earth_motion import corrected
+
+    spectrum = _spectrum(warnings=("the header gives a correction of -12.50 km/s (BERV): not "
+                                   "applied", "other"))
+    assert corrected(spectrum, -12.5).warnings == ("other",)

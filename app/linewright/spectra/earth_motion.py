@@ -123,7 +123,8 @@ def corrected(spectrum: Spectrum, velocity: float, kind: str = "barycentric") ->
                            f"moves ({LARGEST:.0f} km/s)", "check the number and its unit (km/s)")
     done = f"{kind} correction {velocity:+.4f} km/s applied here: lambda (1 + v/c)"
     moved = shift(spectrum, velocity)
-    return replace(moved, frame=kind, frame_from="corrected by the user",
+    said = tuple(w for w in spectrum.warnings if not w.startswith("the header gives a correction"))
+    return replace(moved, warnings=said, frame=kind, frame_from="corrected by the user",
                    corrections=(*spectrum.corrections, done), observer_velocity=float(velocity),
                    read_options={**spectrum.read_options, kind: float(velocity)})
 

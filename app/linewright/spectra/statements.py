@@ -176,12 +176,20 @@ def find_corrections(raw: Raw, frame: str, notes: list[str]) -> tuple[tuple[str,
     if applied:
         velocity, key = applied[0]
         text = f"{frame} correction {velocity:+.2f} km/s ({key}) already applied"
-        return (text,), velocity
+        return (text, *_own_history(raw.cards, frame)), velocity
     if stated:
         state = "not applied" if frame == "topocentric" else "whether applied is not said"
         notes.append(f"the header gives a correction of {stated[0][0]:+.2f} km/s "
                      f"({stated[0][1]}): {state}")
-    return (), float("nan")
+    return _own_history(raw.cards, ""), float("nan")
+
+
+def _own_history(cards: tuple[Card, ...], known: str) -> tuple[str, ...]:
+    """What our own writing said it did, but for the correction already told of."""
+    lines = (str(c.value) for c in cards if c.key.upper() in ("HISTORY", "CORRECTIONS"))
+    found = (re.match(r"(.* (?:applied|removed) here|brought to rest from .*)", x) for x in lines)
+    words = (f.group(1).replace(" here", "") for f in found if f)
+    return tuple(w for w in dict.fromkeys(words) if not known or not w.startswith(known))
 
 
 def known_of(raw: Raw) -> Known:
