@@ -65,7 +65,7 @@ def sibling_strips(
         if any(abs(wave - other) / wave * C_KM_S < half / 2 for other in taken):
             continue
         cut = _cut(spectrum, session, wave, velocity, half)
-        if cut is not None and _would_show(cut[1], float(depth[row])):
+        if cut is not None and (_emits(candidate) or _would_show(cut[1], float(depth[row]))):
             strips.append((wave, *cut, float(depth[row])))
             taken.append(wave)
         if len(strips) == COUNT:
@@ -108,6 +108,11 @@ def _cut(spectrum, session, wave, velocity, half):
         flux = np.where(good, segment.flux[first:last], np.nan) / _level(session, k, x, segment)
         return C_KM_S * (x / centre - 1.0), flux
     return None
+
+
+def _emits(candidate: Candidate) -> bool:
+    """Emission has no predicted depth to weigh against the noise."""
+    return not candidate.depth_predicted > 0
 
 
 def _would_show(flux: np.ndarray, depth: float) -> bool:

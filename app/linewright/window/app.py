@@ -28,14 +28,10 @@ def run(files: list[str]) -> int:
 
 def application(arguments: list[str]):
     """The QApplication with readable fonts on any machine."""
-    from PySide6.QtCore import Qt
-    from PySide6.QtGui import QGuiApplication
     from PySide6.QtWidgets import QApplication
 
     from .theme import ensure_fonts
 
-    QGuiApplication.setHighDpiScaleFactorRoundingPolicy(
-        Qt.HighDpiScaleFactorRoundingPolicy.PassThrough)
     app = QApplication.instance() or QApplication(["linewright", *arguments])
     app.setApplicationName("Linewright")
     app.setOrganizationName("Linewright")

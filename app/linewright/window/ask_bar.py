@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QLineEdit
 
 
@@ -27,6 +27,8 @@ class AskBar(QFrame):
         self.hide()
 
     def ask(self, question: str, text: str, hint: str, then: Callable[[str], None]) -> None:
+        from PySide6.QtCore import Qt
+
         self.label.setText(question)
         self.edit.setText(text)
         self.edit.setPlaceholderText(hint)
@@ -42,6 +44,8 @@ class AskBar(QFrame):
         self._then(self.edit.text())
 
     def keyPressEvent(self, event) -> None:
+        from PySide6.QtCore import Qt
+
         if event.key() == Qt.Key.Key_Escape:
             self.hide()
         else:

@@ -4,8 +4,6 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtWidgets import QFileDialog
-
 from . import layout_memory as memory
 from .commands import claim as claiming
 from .commands import opening, saving
@@ -22,6 +20,8 @@ class Questions:
     """Part of the main window: asks, then calls the act."""
 
     def ask_open(self) -> None:
+        from PySide6.QtWidgets import QFileDialog
+
         names, _kind = QFileDialog.getOpenFileNames(
             self, "Open spectrum or session", str(memory.recall("folder", "")), SPECTRA)
         if names:
@@ -29,6 +29,8 @@ class Questions:
             opening.open_files(self.bench, names)
 
     def _ask_path(self, title: str, suggestion: str, kinds: str) -> Path | None:
+        from PySide6.QtWidgets import QFileDialog
+
         name, _kind = QFileDialog.getSaveFileName(self, title, suggestion, kinds)
         if not name:
             return None

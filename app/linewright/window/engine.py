@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 import os
-import pickle
-import subprocess
 import sys
 import threading
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from ..errors import Cancelled, LinewrightError
 from ..progress import Progress
+
+if TYPE_CHECKING:
+    from subprocess import Popen
 
 _PACKAGE_PARENT = str(Path(__file__).resolve().parents[2])
 _START = "from linewright.window.engine_child import serve; serve()"
@@ -24,14 +26,16 @@ class Engine:
     """One child process, started when first needed and again after a stop."""
 
     def __init__(self):
-        self._child: subprocess.Popen | None = None
+        self._child: Popen | None = None
         self._turn = threading.Lock()  # one call at a time
         self._stopped = False
 
-    def _alive(self) -> subprocess.Popen:
+    def _alive(self) -> Popen:
         if self._child is not None and self._child.poll() is not None:
             self._reap(self._child)
         if self._child is None:
+            import subprocess
+
             paths = [_PACKAGE_PARENT, *filter(None, [os.environ.get("PYTHONPATH", "")])]
             self._child = subprocess.Popen(
                 [sys.executable, "-c", _START],
@@ -46,6 +50,8 @@ class Engine:
         Raises what the function raises, Cancelled after ``stop``, EngineLost when the
         process died.
         """
+        import pickle
+
         from .parcels import packed
 
         with self._turn:
@@ -64,6 +70,8 @@ class Engine:
                 raise self._ending() from broken
 
     def _await(self, child, progress: Progress | None):
+        import pickle
+
         from .parcels import unpacked
 
         while True:

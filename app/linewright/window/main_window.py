@@ -159,8 +159,8 @@ class MainWindow(Questions, Showing, QMainWindow):
         """'system', 'light' or 'dark'."""
         self.theme_choice = name if name in ("light", "dark") else "system"
         memory.keep("theme", self.theme_choice)
-        scheme = QGuiApplication.styleHints().colorScheme()
-        system = "dark" if scheme == scheme.Dark else "light"
+        ground = QGuiApplication.palette().window().color()  # the desktop's, not our sheet's
+        system = "dark" if ground.lightness() < 128 else "light"
         chosen = system if self.theme_choice == "system" else self.theme_choice
         theme = self.bench.theme = theme_named(chosen)
         sheet, app = theme.style_sheet() + style_of(theme), QApplication.instance()

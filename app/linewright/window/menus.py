@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import sys
+
 from PySide6.QtGui import QAction, QKeySequence
 
 from . import layout_memory as memory
@@ -34,7 +36,8 @@ class Menus:
         action.setToolTip(command.full_tip)
         action.setStatusTip("")
         action.setCheckable(command.checked is not None)
-        action.setMenuRole(QAction.MenuRole.NoRole)
+        if sys.platform == "darwin":  # elsewhere there are no roles
+            action.setMenuRole(QAction.MenuRole.NoRole)
         action.triggered.connect(lambda: self._run(command.id))
         self.actions[command.id] = action
         return action

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import ctypes
 import os
 import sys
 from collections.abc import Callable, Mapping
@@ -32,9 +31,11 @@ def uses_x11(environment: Mapping[str, str]) -> bool:
 
 
 def missing_packages(
-    environment: Mapping[str, str], load: Callable[[str], object] = ctypes.CDLL
+    environment: Mapping[str, str], load: Callable[[str], object] | None = None
 ) -> list[str]:
     """Names of the system packages that are not installed, in the order they are listed."""
+    if load is None:
+        from ctypes import CDLL as load
     wanted = dict(ALWAYS)
     if uses_x11(environment):
         wanted.update(FOR_X11)
@@ -51,7 +52,7 @@ def _loads(library: str, load: Callable[[str], object]) -> bool:
 
 def complaint(
     environment: Mapping[str, str] | None = None,
-    load: Callable[[str], object] = ctypes.CDLL,
+    load: Callable[[str], object] | None = None,
 ) -> str:
     """One line saying what keeps the window from opening; empty when nothing does."""
     if not sys.platform.startswith("linux"):

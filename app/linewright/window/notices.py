@@ -5,8 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from PySide6.QtCore import Qt, QTimer, Signal
-from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QToolButton
+from PySide6.QtCore import QTimer, Signal
+from PySide6.QtWidgets import QFrame, QHBoxLayout, QPushButton
 
 GLYPHS = {"note": "i", "warning": "!", "refused": "×"}
 
@@ -36,6 +36,15 @@ class NoticeBar(QFrame):
         self.setObjectName("noticeBar")
         self.setAccessibleName("Notice")
         self._waiting: list[Notice] = []
+        self._buttons: list[QPushButton] = []
+        self._row = self._timer = None
+        self.hide()
+
+    def _furnish(self) -> None:
+        """Made when the first notice comes: the welcome page should not wait for it."""
+        from PySide6.QtCore import Qt
+        from PySide6.QtWidgets import QLabel, QSizePolicy, QToolButton
+
         self._row = QHBoxLayout(self)
         self._row.setContentsMargins(10, 3, 4, 3)
         self._glyph, self._text = QLabel(self), QLabel(self)
@@ -52,11 +61,9 @@ class NoticeBar(QFrame):
         self._close.clicked.connect(self.dismiss)
         for widget in (self._glyph, self._text, self._close):
             self._row.addWidget(widget)
-        self._buttons: list[QPushButton] = []
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
         self._timer.timeout.connect(self.dismiss)
-        self.hide()
 
     @property
     def current(self) -> Notice | None:
@@ -75,10 +82,13 @@ class NoticeBar(QFrame):
 
     def withdraw(self, topic: str) -> None:
         """Removes what was said on a topic that is settled."""
-        self._waiting = [n for n in self._waiting if n.topic != topic]
-        self._present()
+        if any(n.topic == topic for n in self._waiting):
+            self._waiting = [n for n in self._waiting if n.topic != topic]
+            self._present()
 
     def _present(self) -> None:
+        if self._row is None:
+            self._furnish()
         self._timer.stop()
         for button in self._buttons:
             self._row.removeWidget(button)

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLineEdit
 
 
 class Showing:
@@ -34,6 +32,8 @@ class Showing:
 
     def focus_filter(self) -> None:
         """The filter field of the table in front."""
+        from PySide6.QtCore import Qt
+
         self.space.tables.show()
         panel = self.space.tables.currentWidget()
         field = panel.text if panel is not self.space.catalogue else panel.species
@@ -48,6 +48,9 @@ class Showing:
         ledger.filter_now()
 
     def focus_velocity(self) -> None:
+        from PySide6.QtCore import Qt
+        from PySide6.QtWidgets import QLineEdit
+
         self.space.track.show()
         field = self.space.track.findChild(QLineEdit)
         (field or self.space.track).setFocus(Qt.FocusReason.ShortcutFocusReason)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from PySide6.QtCore import QObject, QRunnable, Qt, QThreadPool, Signal, Slot
+from PySide6.QtCore import QObject, QRunnable, QThreadPool, Signal, Slot
 
 from ..errors import Cancelled
 from ..progress import Progress
@@ -64,7 +64,7 @@ class Tasks(QObject):
         self._current: dict[str, _Run] = {}
         self._alive: set[_Run] = set()
         self._serial = 0
-        self.finished.connect(self._receive, Qt.ConnectionType.QueuedConnection)
+        self.finished.connect(self._receive)  # queued: it is emitted in the pool's threads
 
     def start(self, request: Request) -> None:
         self.cancel(request.key)

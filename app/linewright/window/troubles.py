@@ -3,20 +3,21 @@
 from __future__ import annotations
 
 import sys
-import traceback
-from datetime import UTC, datetime
 from pathlib import Path
-
-from PySide6.QtCore import QStandardPaths
 
 
 def log_path() -> Path:
+    from PySide6.QtCore import QStandardPaths
+
     folder = QStandardPaths.writableLocation(QStandardPaths.StandardLocation.AppLocalDataLocation)
     return Path(folder) / "troubles.log"
 
 
 def log_trouble(error: BaseException) -> Path:
     """Appends the traceback to the log; a log that cannot be written is no second trouble."""
+    import traceback
+    from datetime import UTC, datetime
+
     path = log_path()
     text = "".join(traceback.format_exception(error))
     try:

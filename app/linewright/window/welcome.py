@@ -6,7 +6,7 @@ import json
 from dataclasses import dataclass
 from pathlib import Path
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Signal
 from PySide6.QtWidgets import (
     QFrame,
     QHBoxLayout,
@@ -122,4 +122,3 @@ def _centre(page: QWidget, inside: QWidget) -> None:
     box = QVBoxLayout(page)
     box.setContentsMargins(24, 0, 24, 0)
     box.addWidget(area)
-    area.setAlignment(Qt.AlignmentFlag.AlignCenter)

@@ -70,8 +70,12 @@ class SiblingStrips(QWidget):
         self.update()
 
     def sizeHint(self) -> QSize:
-        rows = max(1, -(-len(self.strips) // _COLUMNS))
+        rows = max(1, -(-len(self.strips) // self._columns))
         return QSize(300, rows * _PREFERRED_ROW + self._axis_height())
+
+    @property
+    def _columns(self) -> int:
+        return max(1, min(_COLUMNS, len(self.strips)))
 
     def _axis_height(self) -> int:
         return self.fontMetrics().height() * 2 + 10
@@ -86,10 +90,10 @@ class SiblingStrips(QWidget):
 
     def cell(self, index: int) -> QRectF:
         """Place of a strip with its title."""
-        rows = max(1, -(-len(self.strips) // _COLUMNS))
-        width = self.width() / _COLUMNS
+        rows = max(1, -(-len(self.strips) // self._columns))
+        width = self.width() / self._columns
         height = (self.height() - self._axis_height()) / rows
-        row, column = divmod(index, _COLUMNS)
+        row, column = divmod(index, self._columns)
         return QRectF(column * width, row * height, width, height)
 
     def paintEvent(self, _event) -> None:
@@ -107,7 +111,7 @@ class SiblingStrips(QWidget):
             return
         for index in range(len(self.strips)):
             self._draw_strip(painter, index)
-        for column in range(min(_COLUMNS, len(self.strips))):
+        for column in range(self._columns):
             self._draw_axis(painter, column)
         if self.hasFocus() and self.current < 0:
             painter.setPen(QPen(QColor(self._theme.accent), 2))
@@ -210,7 +214,7 @@ class SiblingStrips(QWidget):
         key = Qt.Key(event.key())
         shift = {
             Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1,
-            Qt.Key.Key_Up: -_COLUMNS, Qt.Key.Key_Down: _COLUMNS,
+            Qt.Key.Key_Up: -self._columns, Qt.Key.Key_Down: self._columns,
         }.get(key)
         if shift is not None:
             self._go(self.current + shift if self.current >= 0 else 0)
