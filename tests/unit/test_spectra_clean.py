@@ -139,3 +139,34 @@ def test_overlapping_segments_unite():
     a, b = _spectrum(5000.0 + np.arange(100)), _spectrum(5090.0 + np.arange(100))
     both = Spectrum(a.segments + b.segments, medium="vacuum")
     assert coverage(both) == ((5000.0, 5189.0),)
+
+
+@pytest.mark.parametrize("sigma", [True, False])
+def test_the_quick_look_changes_nothing(monkeypatch, sigma):
+    """What passes the quick look comes out as the full repair would leave it."""
+    import linewright.spectra.clean as clean
+
+    rng = np.random.default_rng(3)
+    wave = 5000 + np.cumsum(rng.uniform(0.01, 0.02, 100_000))
+    raw = RawSegment(wave, rng.normal(1, 0.1, len(wave)),
+                     rng.uniform(0.05, 0.2, len(wave)) if sigma else None)
+    quick = clean.clean_segments((raw,), ANGSTROM, "air", "x")
+    monkeypatch.setattr(clean, "spotless", lambda *_: False)
+    full = clean.clean_segments((raw,), ANGSTROM, "air", "x")
+    assert quick[1] == full[1] == []
+    for name in ("wave", "flux", "uncertainty", "mask"):
+        assert np.array_equal(getattr(quick[0][0], name), getattr(full[0][0], name)), name
+
+
+@pytest.mark.parametrize(("what", "at", "value"), [
+    ("wave", 40_000, 5000.0), ("wave", 0, -1.0), ("wave", 99_999, np.inf), ("wave", 50, np.nan),
+    ("flux", 70_000, np.nan), ("flux", 3, 0.0), ("flux", 32_768, np.inf), ("sigma", 9, 0.0),
+    ("sigma", 65_535, np.nan), ("sigma", 99_999, 1e9), ("mask", 5, True)])
+def test_the_quick_look_sees_every_blemish(what, at, value):
+    from linewright.spectra.spotless import spotless
+
+    arrays = {"wave": 5000 + 0.01 * np.arange(100_000), "flux": np.ones(100_000),
+              "sigma": np.full(100_000, 0.1), "mask": np.zeros(100_000, bool)}
+    assert spotless(*arrays.values())
+    arrays[what][at] = value
+    assert not spotless(*arrays.values())

@@ -18,6 +18,7 @@ from ..errors import InputRefused
 from .medium import from_medium
 from .raw import RawSegment
 from .spectrum import Segment
+from .spotless import spotless
 from .uncertainty import bad_uncertainty
 
 ZERO_RUN = 5
@@ -134,6 +135,22 @@ def _one(wave, columns, medium: str, notes: list[str]) -> Segment:
                    None if sigma is None else np.ascontiguousarray(sigma), mask)
 
 
+def _as_it_is(wave, raw: RawSegment, medium: str) -> Segment:
+    def whole(array):
+        return None if array is None else np.ascontiguousarray(array, dtype=float)
+
+    return Segment(np.ascontiguousarray(from_medium(wave, medium)), whole(raw.flux),
+                   whole(raw.uncertainty), np.zeros(len(wave), dtype=bool))
+
+
+def _usable(segment: Segment) -> bool:
+    """Whether any sample can be used; the first ones nearly always tell."""
+    for part in (slice(0, 1000), slice(1000, None)):
+        if (np.isfinite(segment.flux[part]) & ~segment.mask[part]).any():
+            return True
+    return False
+
+
 def _check_range(wave: np.ndarray, what) -> None:
     low, high = WAVE_LIMITS
     if len(wave) < MIN_SAMPLES:
@@ -151,6 +168,10 @@ def clean_segments(raws, unit, medium: str, what) -> tuple[tuple[Segment, ...], 
     segments, notes = [], []
     for raw in raws:
         wave = np.asarray(unit.to_angstrom(raw.wave), dtype=float)
+        if spotless(wave, raw.flux, raw.uncertainty, raw.mask):
+            _check_range(wave, what)
+            segments.append(_as_it_is(wave, raw, medium))
+            continue
         flux, sigma, mask = _arrays(raw)
         good = np.isfinite(wave) & (wave > 0)
         if not good.all():
@@ -161,7 +182,7 @@ def clean_segments(raws, unit, medium: str, what) -> tuple[tuple[Segment, ...], 
         for part in split_stretches(wave) or [slice(None)]:
             columns = [None if c is None else c[part] for c in (flux, sigma, mask)]
             segments.append(_one(wave[part], columns, medium, notes))
-    if all((s.mask | ~np.isfinite(s.flux)).all() for s in segments):
+    if not any(_usable(s) for s in segments):
         raise InputRefused(what, "no sample has a usable flux", "choose other columns or HDU")
     segments.sort(key=lambda s: float(s.wave[0]))
     return tuple(segments), list(dict.fromkeys(_summed(notes)))

@@ -24,13 +24,13 @@ def bad_uncertainty(sigma: np.ndarray, flux: np.ndarray) -> np.ndarray:
         bad = ~np.isfinite(sigma)
         bad |= sigma <= 0
         if not bad.all():
-            huge = np.flatnonzero(sigma > PLACEHOLDER * _usual(sigma, bad))
+            huge = np.flatnonzero(sigma > PLACEHOLDER * usual(sigma, bad))
             bad[huge[(sigma[huge] > 100 * np.abs(flux[huge]))]] = True
     return bad
 
 
-def _usual(sigma: np.ndarray, bad: np.ndarray) -> float:
-    """Median of the good ones; of long arrays a regular sample does."""
+def usual(sigma: np.ndarray, bad: np.ndarray) -> float:
+    """Median of the good ones (``bad`` False); of long arrays a regular sample does."""
     step = max(1, len(sigma) // 200_000)
     sample = sigma[::step][~bad[::step]]
     if not len(sample):
