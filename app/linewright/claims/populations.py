@@ -53,7 +53,7 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     origin = catalogue.origin
     nothing = np.full(len(catalogue), np.nan)
     if population in (STELLAR, HYDROGEN):
-        broad = np.isin(catalogue.species, _broad_indices(catalogue))
+        broad = np.isin(catalogue.species, broad_species(catalogue))
         wanted = broad == (population == HYDROGEN)
         return np.where((origin == ORIGINS.index("stellar")) & wanted, absorption, nothing)
     if population == TELLURIC:
@@ -69,7 +69,7 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     return np.where(here, np.nan_to_num(catalogue.loggf) - 0.5, nothing)
 
 
-def _broad_indices(catalogue) -> list[int]:
+def broad_species(catalogue) -> list[int]:
     return [i for i, name in enumerate(catalogue.species_names) if name in BROAD_SPECIES]
 
 

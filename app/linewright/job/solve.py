@@ -25,6 +25,7 @@ from ..spectra.spectrum import Spectrum
 from .feature_file import read_feature_file
 from .observer_frame import frame_doubts
 from .options import SolveOptions
+from .template import at_velocity, disagreement, template_velocity
 
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
 
@@ -45,13 +46,7 @@ def solve(
     )
     if spectrum.medium == "unknown":
         raise _medium_unknown(spectrum, measurement, catalogue, options)
-    found = identify(
-        measurement.features,
-        measurement.coverage,
-        catalogue,
-        _claim_options(options, spectrum.frame, True),
-        progress.part(0.5, 1.0),
-    )
+    found = _identified(spectrum, measurement, catalogue, options, progress.part(0.5, 1.0))
     reference = _reference(spectrum, measurement)
     session = _session(reference, measurement.features, found, options, catalogue)
     progress.report("done", 1.0)
@@ -65,6 +60,22 @@ def solve(
             frame_doubts(spectrum, measurement.features, catalogue),
             found.warnings,
         ),
+    )
+
+
+def _identified(spectrum, measurement, catalogue, options, progress) -> Identification:
+    """Identification at the voted velocity, or at the template's where lines blend."""
+    wanted = _claim_options(options, spectrum.frame, True)
+    features, coverage = measurement.features, measurement.coverage
+    found = identify(features, coverage, catalogue, wanted, progress)
+    better = template_velocity(spectrum, measurement, catalogue, found, options)
+    if better is None:
+        return found
+    again = identify(features, coverage, catalogue, at_velocity(wanted, better), progress)
+    return replace(
+        again,
+        velocity=better,
+        warnings=_join(again.warnings, disagreement(found.velocity, better)),
     )
 
 

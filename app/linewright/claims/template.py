@@ -1,0 +1,100 @@
+"""Velocity by cross-correlation with a template of the predicted lines.
+
+Where features blend (R below about 7,000) single features no longer stand at the places of
+single lines; the whole spectrum does. The log-likelihood of a shift is -N/2 ln(1 - C^2),
+and its curvature gives the error: Zucker 2003, MNRAS 342, 1291.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..spectra.medium import C_KM_S
+from .populations import broad_species
+from .problem import inside
+from .velocity import TELLURIC_RANGES
+from .voting import Vote, summarise
+
+SAMPLES = 6.0  # grid samples per FWHM
+SMOOTH = 40.0  # FWHM: slower structure is continuum, not lines
+SATURATED_LINES = 0.25  # lines per Angstrom that are about saturated: sets tau = 1
+EVIDENCE = 0.5  # independent samples are counted so: the template's misfit is shared
+MASKED_SHARE = 0.5
+
+
+def template_vote(pieces, catalogue, strength, fwhm: float, velocity_range) -> Vote:
+    """Log-likelihood over velocity of all pieces of a spectrum together.
+
+    pieces: (wave, depth) arrays of continuum-normalised absorption (1 - flux/continuum,
+    NaN where masked) in vacuum Angstrom; strength: per catalogue row, NaN elsewhere;
+    fwhm: line width, km/s; velocity_range: km/s. The error comes from the curvature.
+    """
+    step = fwhm / SAMPLES / C_KM_S
+    low, high = velocity_range
+    lags = np.arange(int(np.floor(low / C_KM_S / step)), int(np.ceil(high / C_KM_S / step)) + 1)
+    grid = C_KM_S * (np.expm1(lags * step))
+    cross, own, model_own, number = np.zeros(len(lags)), 0.0, 0.0, 0
+    for wave, depth in pieces:
+        made = _piece(wave, depth, catalogue, strength, (step, lags, fwhm))
+        if made is None:
+            continue
+        cross, own = cross + made[0], own + made[1]
+        model_own, number = model_own + made[2], number + made[3]
+    if number < 30 or own <= 0 or model_own <= 0:
+        return Vote(float("nan"), float("nan"), 0.0, (), grid, np.zeros(len(grid)))
+    correlation = np.clip(cross / np.sqrt(own * model_own), 0.0, 0.999)
+    score = -0.5 * EVIDENCE * (number / SAMPLES) * np.log1p(-(correlation**2))
+    return summarise(grid, score, fwhm / 2.0)
+
+
+def _piece(wave, depth, catalogue, strength, setting):
+    """(cross-correlation at the lags, power of data, of template, samples) of one piece."""
+    step, lags, fwhm = setting
+    good = np.isfinite(depth)
+    if np.sum(good) < 20:
+        return None
+    x = np.arange(np.log(wave[0]), np.log(wave[-1]), step)
+    data = np.interp(x, np.log(wave[good]), depth[good])
+    weight = np.interp(x, np.log(wave), good.astype(float)) > 1 - MASKED_SHARE
+    weight &= ~inside(np.exp(x), TELLURIC_RANGES)
+    if np.sum(weight) < 20:
+        return None
+    margin = int(max(abs(lags[0]), abs(lags[-1])))
+    wide = np.concatenate((x[0] + step * np.arange(-margin, 0), x,
+                           x[-1] + step * np.arange(1, margin + 1)))  # fmt: skip
+    model = _template(wide, catalogue, strength, fwhm / C_KM_S)
+    size = int(SMOOTH * SAMPLES)
+    data = _high_pass(data, weight, size) * weight
+    model = _high_pass(model, np.ones(len(model), bool), size)
+    cross = np.array([model[margin - k : margin - k + len(x)] @ data for k in lags])
+    middle = model[margin : margin + len(x)]
+    return cross, float(data @ data), float((middle * weight) @ middle), int(np.sum(weight))
+
+
+def _template(x, catalogue, strength, fwhm):
+    """Summed absorption on the ln(wavelength) grid ``x``: saturating lines, Gaussian width."""
+    usable = np.isfinite(strength) & ~np.isin(catalogue.species, broad_species(catalogue))
+    place, power = np.log(catalogue.wave[usable]), strength[usable]
+    near = (place > x[0]) & (place < x[-1])
+    place, power = place[near], power[near]
+    if len(place) == 0:
+        return np.zeros(len(x))
+    count = int(SATURATED_LINES * (np.exp(x[-1]) - np.exp(x[0])))
+    ranked = np.sort(power)[::-1]
+    tau = 10.0 ** np.clip(power - ranked[min(count, len(ranked) - 1)], -4, 4)
+    width = tau / (1.0 + tau) ** 0.75  # linear, then slow growth
+    step = x[1] - x[0]
+    comb = np.bincount(np.clip(((place - x[0]) / step + 0.5).astype(int), 0, len(x) - 1),
+                       width, len(x))  # fmt: skip
+    sigma = fwhm / 2.3548 / step
+    reach = np.arange(-int(4 * sigma) - 1, int(4 * sigma) + 2)
+    kernel = np.exp(-0.5 * (reach / sigma) ** 2)
+    return np.convolve(comb, kernel / kernel.sum(), mode="same")[: len(x)]
+
+
+def _high_pass(values, weight, size: int):
+    """Values less their weighted running mean over ``size`` samples."""
+    kernel = np.ones(min(size, max(len(values) // 2, 1)))
+    total = np.convolve(values * weight, kernel, mode="same")
+    mass = np.convolve(weight.astype(float), kernel, mode="same")
+    return values - total[: len(values)] / np.maximum(mass[: len(values)], 1.0)
