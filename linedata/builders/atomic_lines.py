@@ -6,6 +6,7 @@ Usage: python linedata/builders/atomic_lines.py SOURCE_DIR [--out FOLDER]
 from __future__ import annotations
 
 import gzip
+from functools import partial
 from pathlib import Path
 
 import numpy as np
@@ -14,6 +15,7 @@ from common import (
     EV_PER_CM, ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, source_file, write_table,
 )
 from components import of_groups, pack
+from damping import van_der_waals
 from decays import radiative_widths
 from level_gaps import allowed
 from nist_levels import read_levels
@@ -134,14 +136,17 @@ def without_levels(ion: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     lines["listed"] = lines["wave"]
     lines["error"] = DEFAULT_SCATTER * lines["wave"] / 5000.0
     lines["ritz"] = np.zeros(n, bool)
-    for key in ("j_low", "j_up", "alt_shift", "gamma_rad"):
+    for key in ("j_low", "j_up", "alt_shift", "gamma_rad", "gamma_waals"):
         lines[key] = np.full(n, np.nan)
     lines["term_low"] = lines["term_up"] = np.full(n, "", dtype=object)
     return lines
 
 
-def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
-    """Lines of an ion, those with a level pair at their Ritz wavelengths."""
+def with_levels(ion: dict[str, np.ndarray], levels, damped) -> dict[str, np.ndarray]:
+    """Lines of an ion, those with a level pair at their Ritz wavelengths.
+
+    damped(levels, matches): van der Waals damping of the lines.
+    """
     groups = groups_of(ion, matched(levels, ion))
     lines = collapse(ion, groups)
     found = matched(levels, lines)
@@ -158,6 +163,7 @@ def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
     energy = levels.energy[found.low] * EV_PER_CM
     lines["e_low"] = np.where(ritz, energy, lines["e_low"] * E_LOW_SCALE)
     lines["gamma_rad"] = radiative_widths(levels, found, lines)
+    lines["gamma_waals"] = damped(levels, found)
     for side, rows in (("low", found.low), ("up", found.up)):
         lines[f"j_{side}"] = np.where(ritz, levels.j[rows], np.nan)
         names = [levels.label(row) if row >= 0 else "" for row in rows]
@@ -165,9 +171,9 @@ def with_levels(ion: dict[str, np.ndarray], levels) -> dict[str, np.ndarray]:
     return lines
 
 
-def finish(ion: dict[str, np.ndarray], levels, hyperfine: float) -> dict[str, np.ndarray]:
+def finish(ion: dict[str, np.ndarray], levels, hyperfine: float, damped) -> dict:
     """Lines of one ion with Ritz wavelengths, errors, J and terms where levels allow."""
-    lines = with_levels(ion, levels) if levels else without_levels(ion)
+    lines = with_levels(ion, levels, damped) if levels else without_levels(ion)
     shift = hyperfine * lines["listed"] / 5000.0
     lines["wave_err"] = np.sqrt(lines["error"] ** 2 + lines["spread"] ** 2 + shift**2)
     lines["source"] = lines["ritz"].astype(int)
@@ -188,7 +194,8 @@ def build(source: Path) -> tuple[dict, list[str], list[tuple[str, dict]]]:
         ion = without_repeats({key: values[mine] for key, values in rows.items()})
         levels = read_levels(source, ELEMENTS[z - 1], stage)
         hyperfine = HYPERFINE.get(ELEMENTS[z - 1], 0.0)
-        lines = finish(ion, sort_levels(levels) if levels else None, hyperfine)
+        damped = partial(van_der_waals, source, (ELEMENTS[z - 1], stage))
+        lines = finish(ion, sort_levels(levels) if levels else None, hyperfine, damped)
         lines["species"] = np.full(len(lines["wave"]), len(names))
         names.append(f"{ELEMENTS[z - 1]} {ROMAN[stage - 1]}")
         components.append((names[-1], lines.pop("components", {"parent": ()})))

@@ -14,6 +14,7 @@ FLAG_NONLTE, FLAG_NOMINAL, FLAG_COLLAPSED = 1, 2, 4
 _FLOATS = {
     "e_low": "<f4", "loggf": "<f4", "loggf_err": "<f2", "emission": "<f2", "depth_ref": "<f4",
     "spread": "<f2", "alt_shift": "<f2", "gamma_rad": "<f2",
+    "gamma_waals": "<f2",
 }
 
 

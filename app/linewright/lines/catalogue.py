@@ -18,6 +18,7 @@ EV_ANGSTROM = 12398.41984  # h c, CODATA 2022
 OPTIONAL_COLUMNS = {
     "wave_alt": (np.nan, np.float64), "source_alt": (-1, np.int32), "grade": (0, np.uint8),
     "flags": (0, np.uint8), "gamma_rad": (np.nan, np.float32),
+    "gamma_waals": (np.nan, np.float32),
     "term_low": (0, np.int32), "term_up": (0, np.int32),
 }
 
@@ -43,6 +44,7 @@ class LineCatalogue:
         (NaN, -1 without one); within three ``wave_err`` of ``wave``
     grade: index into GRADES; flags: bits NONLTE, NOMINAL, COLLAPSED
     gamma_rad: log10 of the radiative damping constant, rad/s (NaN unknown)
+    gamma_waals: log10 of van der Waals damping per hydrogen atom at 10,000 K, rad/s cm3
     term_low, term_up: index into ``term_names`` ('configuration|term', entry 0 '' unknown)
     """
 
@@ -67,6 +69,7 @@ class LineCatalogue:
     grade: np.ndarray | None = None
     flags: np.ndarray | None = None
     gamma_rad: np.ndarray | None = None
+    gamma_waals: np.ndarray | None = None
     term_low: np.ndarray | None = None
     term_up: np.ndarray | None = None
     term_names: tuple[str, ...] = ("",)

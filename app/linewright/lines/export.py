@@ -35,13 +35,14 @@ _COLUMNS = (
     ("term_up", None, "configuration and term of the upper level"),
     ("wave_alt", "Angstrom", "wavelength of the second source"),
     ("gamma_rad", None, "log10 of the radiative damping constant, rad/s"),
+    ("gamma_waals", None, "log10 of van der Waals damping per hydrogen atom, 10,000 K, rad/s cm3"),
     ("flags", None, "non-LTE, nominal strength, components collapsed"),
 )
 
 # Decimals written.
 _DIGITS = {
     "wave": 4, "wave_err": 4, "e_low": 4, "loggf": 3, "loggf_err": 2, "spread": 4, "emission": 2,
-    "depth_ref": 5, "depth": 3, "e_up": 4, "wave_alt": 4, "gamma_rad": 2,
+    "depth_ref": 5, "depth": 3, "e_up": 4, "wave_alt": 4, "gamma_rad": 2, "gamma_waals": 2,
 }
 
 

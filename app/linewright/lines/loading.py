@@ -119,7 +119,7 @@ def _joined(tables: list[dict], order: np.ndarray) -> dict[str, np.ndarray]:
     joined["j_low"] = _spin(column("j_low2", -1, np.int8, np.int8))
     joined["j_up"] = _spin(column("j_up2", -1, np.int8, np.int8))
     joined["origin"] = column("origin", 0, np.int8, np.int8)
-    for key in ("grade", "flags", "gamma_rad"):
+    for key in ("grade", "flags", "gamma_rad", "gamma_waals"):
         unknown, dtype = OPTIONAL_COLUMNS[key]
         joined[key] = column(key, unknown, dtype, dtype)
     joined["wave_alt"] = joined["wave"] + column("alt_shift", np.nan, np.float16, np.float64)

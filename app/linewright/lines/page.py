@@ -116,6 +116,7 @@ def _entries(catalogue: LineCatalogue, row: int, air: float) -> list[tuple[str, 
         ("log emissivity (H beta = 2)", _text(c.emission[row], 2), ""),
         ("optical depth, air mass 1", _text(c.depth_ref[row], 4), ""),
         ("log radiative damping", _text(c.gamma_rad[row], 2), "rad/s"),
+        ("log van der Waals damping", _text(c.gamma_waals[row], 2), "rad/s cm3"),
         ("spread of components", _text(c.spread[row] or np.nan, 4), "Angstrom"),
         ("flags", ", ".join(flags), ""),
     ]
