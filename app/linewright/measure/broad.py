@@ -60,6 +60,7 @@ def _area(trace, tame, index, sign, fwhm, limits):
     reach = int(FARTHEST * fwhm / step)
     foot = max(FAINT * abs(tame[index]), 2.0 * trace.noise[index] / 3.0)
     z = sign * tame
+    index = int(np.clip(index, limits[0], limits[1] - 1))  # a fit may end beyond the stretch
     left = _foot(z[max(limits[0], index - reach) : index + 1][::-1], foot)
     right = _foot(z[index : min(limits[1], index + reach)], foot)
     span = slice(index - left, index + right + 1)

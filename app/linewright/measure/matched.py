@@ -26,7 +26,7 @@ def curvature_kernel(fwhm: float) -> np.ndarray:
 
 def noise_gain(kernel: np.ndarray, correlation: np.ndarray) -> float:
     """Standard deviation of filtered unit noise with the given autocorrelation."""
-    return float(np.sqrt(filtered_correlation(kernel, correlation, 0)))
+    return float(np.sqrt(max(filtered_correlation(kernel, correlation, 0), 1e-12)))
 
 
 def filtered_correlation(kernel, correlation, lag: int) -> float:

@@ -38,11 +38,13 @@ def second_difference(flux: np.ndarray, lag: int) -> np.ndarray:
 
 @dataclass(frozen=True, eq=False)
 class Noise:
-    """sigma: one sigma per sample, shape (n,); correlation: r_0 = 1, r_1, ...; lag: plateau."""
+    """sigma: one sigma per sample, shape (n,); correlation: r_0 = 1, r_1, ...; lag: plateau;
+    like: False where the quietest stretches have not the tails of noise."""
 
     sigma: np.ndarray
     correlation: np.ndarray
     lag: int
+    like: bool = True
 
 
 def _differences(flux, good, runs, lag):
@@ -91,6 +93,8 @@ def quiet_profile(flux, good, runs, share: float = 0.25) -> np.ndarray:
     if not np.any(np.isfinite(rank)):
         return np.full(len(LAGS), np.nan)
     rank = np.where(np.isfinite(table).all(axis=0), rank, np.inf)
+    if not np.any(np.isfinite(rank)):
+        return np.full(len(LAGS), np.nan)
     keep = np.argsort(rank)[: max(1, int(np.isfinite(rank).sum() * share))]
     # ratios, so that a quiet block of low flux does not rule the others
     relative = table[:, keep] / rank[keep]
@@ -102,8 +106,11 @@ def plateau(profile: np.ndarray, longest: float) -> int:
     for i, lag in enumerate(LAGS):
         if lag > longest:
             break
-        later = [d for k, d in zip(LAGS, profile) if lag < k <= max(2 * lag, lag + 1)]
-        if later and profile[i] >= PLATEAU * np.nanmax(later):
+        later = [
+            d for k, d in zip(LAGS, profile)
+            if lag < k <= max(2 * lag, lag + 1) and np.isfinite(d)
+        ]
+        if later and profile[i] >= PLATEAU * max(later):
             return lag
     return 1
 
@@ -165,8 +172,8 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> No
         profile = quiet_profile(flux, good, runs)
         free = good
     lag = plateau(profile, longest)
-    if lag > 1 and not sure and not _like_noise(flux, free, runs, lag):
-        lag = 1
+    like = lag == 1 or sure or _like_noise(flux, free, runs, lag)
+    lag = lag if like else 1
     if sure:
         lag = settled(profile, lag, longest)
     correlation = correlation_from(profile, lag)
@@ -177,7 +184,7 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> No
         short = _differences(flux, good, runs, 1) / np.sqrt((6 - 8 * r[1] + 2 * r[2]) / 6)
         bound = _local(short, flux, lag)
         sigma = np.where(np.isfinite(sigma), np.minimum(sigma, 1.5 * bound), bound)
-    return Noise(sigma, correlation, lag)
+    return Noise(sigma, correlation, lag, like)
 
 
 def _values(flux, free, runs, lag, profile):

@@ -50,6 +50,24 @@ def fitted_table(trace, nodes, found, fitted, segment: int) -> FeatureTable:
     )
 
 
+def spike_table(trace, nodes, spikes, segment: int) -> FeatureTable:
+    """Rows, flagged 'spike', of hits that no line of the instrument's width could make.
+
+    depth: the excess of the worst sample; fwhm: of the samples hit; ew: the excess as one
+    sample's area. Nothing is fitted: a hit has no profile.
+    """
+    at, m = spikes.index, len(spikes.index)
+    step, noise = np.gradient(trace.wave)[at], trace.noise[at]
+    return FeatureTable(
+        number=np.arange(1, m + 1), segment=np.full(m, segment),
+        component=np.zeros(m, dtype=int), sign=np.where(spikes.excess > 0, 1, -1),
+        wave=trace.wave[at], wave_err=step / np.sqrt(12.0), significance=spikes.significance,
+        depth=spikes.excess, depth_err=noise, fwhm=step, fwhm_err=np.full(m, np.nan),
+        ew=1e3 * spikes.excess * step, ew_err=1e3 * noise * step,
+        continuum=nodes.continuum_at(trace.wave[at]), flags=("spike",) * m,
+    )
+
+
 def _components(group) -> np.ndarray:
     """0 for a lone feature, 1, 2, ... along a fitted blend, shape (m,)."""
     if not len(group):

@@ -1,0 +1,78 @@
+"""Noise at the highest frequencies, where no line of a sampled spectrum reaches.
+
+A Gaussian line of sigma s samples falls off as exp(-(s w)^2 / 2) towards the Nyquist
+frequency w = pi: at three samples per FWHM a ten-thousandth is left there. White noise has
+the same power everywhere. So narrow bands, one at pi and others below it, that scatter
+alike show the noise itself however crowded the lines are; a fall towards pi tells of
+correlated samples (or of lines too narrow for their samples), and then nothing is said.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+MAD = 1.482602
+SPREAD = 2.5  # samples: sigma of the bands' envelope
+BANDS = (1.0, 0.86, 0.72)  # of pi
+ALIKE = 0.06  # difference of the two bands that white noise may show beside chance
+SLIGHT = 0.6  # ratio of the first two bands that lines two samples wide may bring
+SHARE = 0.08  # independent values of |band| per sample, as its median's scatter has it
+LEAST = 150  # samples below which no verdict is reached
+BLOCK = 1500
+
+
+@dataclass(frozen=True, eq=False)
+class Floor:
+    """sigma: noise at the highest frequencies at every sample, (n,); white: whether that
+    is the noise as a whole; flat: whether the third band agrees too (sure of it);
+    bound: whether the fall is so slight that lines may cause it, not only correlation."""
+
+    sigma: np.ndarray
+    white: bool
+    flat: bool
+    bound: bool
+
+
+def band_kernel(place: float) -> np.ndarray:
+    """Cosine of frequency ``place`` pi under a Gaussian envelope, zero sum, unit noise gain."""
+    j = np.arange(-12, 13)
+    envelope = np.exp(-0.5 * (j / SPREAD) ** 2)
+    kernel = np.cos(place * np.pi * j) * envelope
+    kernel -= envelope * kernel.sum() / envelope.sum()
+    return kernel / np.sqrt(np.sum(kernel**2))
+
+
+def band_scatter(flux, good, runs, place: float) -> np.ndarray:
+    """|band| * MAD at every sample with usable surroundings, NaN elsewhere, (n,)."""
+    kernel = band_kernel(place)
+    half = len(kernel) // 2
+    out = np.full(len(flux), np.nan)
+    for run in runs:
+        if run.stop - run.start <= len(kernel):
+            continue
+        value = np.abs(np.convolve(flux[run], kernel, "valid")) * MAD
+        holes = np.convolve(~good[run], np.ones(len(kernel)), "valid") > 0.5
+        out[run.start + half : run.stop - half] = np.where(holes, np.nan, value)
+    return out
+
+
+def noise_floor(flux, good, runs) -> Floor | None:
+    """Floor of one segment, or None where it is too short to tell.
+
+    flux: any unit, (n,); good: usable samples; runs: slices without gaps.
+    """
+    bands = np.array([band_scatter(flux, good, runs, place) for place in BANDS])
+    fine = np.flatnonzero(np.isfinite(bands).all(axis=0))
+    if len(fine) < LEAST:
+        return None
+    blocks = np.array_split(fine, max(1, round(len(fine) / BLOCK)))
+    at = np.array([b.mean() for b in blocks])
+    level = np.array([np.median(bands[:, b], axis=1) for b in blocks])
+    if not np.all(level > 0):
+        return None
+    ratio = np.median(level[:, 0] / level[:, 1:].T, axis=1)
+    alike = np.abs(ratio - 1.0) < ALIKE + 3.0 / np.sqrt(SHARE * len(fine))
+    sigma = np.interp(np.arange(len(flux)), at, level[:, 0])
+    return Floor(sigma, bool(alike[0]), bool(alike.all()), bool(ratio[0] > SLIGHT))

@@ -1,0 +1,251 @@
+"""Noise, continuum, line width and spikes of one segment, ready for detection."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from .continuum import Spacing, fit_continuum, smooth_run
+from .detect import run_filters
+from .floor import Floor, noise_floor
+from .given import scale_of
+from .groups import Trace
+from .noise import Noise, estimate_noise
+from .options import MeasureOptions, SegmentMeasure
+from .spikes import (
+    UNSURE, Spikes, bridged, few, find_spikes, in_absorption, joined, none_found, upward,
+)
+from .stretches import stretches, usable
+from .veil import veil
+from .width import measure_width
+
+AGREE = (0.9, 1.15)  # noise over its floor that sure noise may have
+
+
+@dataclass(frozen=True, eq=False)
+class Prepared:
+    """A segment with all that detection needs."""
+
+    trace: Trace
+    runs: list
+    nodes: SegmentMeasure
+    fwhm_pixels: np.ndarray
+    spikes: Spikes
+
+
+def _chosen(segment, ranges):
+    good = usable(segment)
+    if ranges:
+        inside = np.zeros(len(good), dtype=bool)
+        for low, high in ranges:
+            inside |= (segment.wave >= low) & (segment.wave <= high)
+        good &= inside
+    return good
+
+
+@dataclass(frozen=True, eq=False)
+class Raw:
+    """Samples of a segment with holes bridged, (n,); runs: stretches of 30 samples or more;
+    given: the uncertainty array or None; floor: noise at the highest frequencies."""
+
+    wave: np.ndarray
+    flux: np.ndarray
+    good: np.ndarray
+    runs: list
+    given: np.ndarray | None
+    floor: Floor | None
+
+
+@dataclass(frozen=True, eq=False)
+class Level:
+    """Continuum nodes (centre, level, relative error), the run of it, y and its noise, the
+    line width in Angstrom."""
+
+    centre: np.ndarray
+    level: np.ndarray
+    error: np.ndarray
+    run: np.ndarray
+    y: np.ndarray
+    noise: np.ndarray
+    width: np.ndarray
+
+
+def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None:
+    """Noise, continuum and width of one segment; None when it holds too little."""
+    raw = _raw(segment, options)
+    if raw is None:
+        return None
+    step = np.gradient(raw.wave)
+    noise = bounded(estimate_noise(raw.flux, raw.good, raw.runs), raw)
+    width = _assumed_width(raw.wave, noise.lag, options)
+    first = _level(raw, believed(raw, noise, width / step, False)[0], width, noise, options)
+    noise, sure = _second_noise(raw, first, noise)
+    sigma, note = believed(raw, noise, first.width / step, sure)
+    warnings += note
+    last = _level(raw, sigma, first.width, noise, options)
+    spikes = _spikes(raw, last, noise, options)
+    good = raw.good & ~spikes.hit
+    pixels = last.width / step
+    trace = Trace(raw.wave, last.y, last.noise, good, last.width,
+                  np.interp(raw.wave, last.centre, last.error), noise.correlation,
+                  _veil(last.y, last.noise, raw.runs, pixels, _length(noise)))
+    nodes = _nodes(trace, last.centre, last.level, last.error, pixels)
+    return Prepared(trace, raw.runs, nodes, pixels, spikes)
+
+
+def _raw(segment, options) -> Raw | None:
+    good = _chosen(segment, options.ranges)
+    runs = [r for r in stretches(segment.wave, good) if good[r].sum() >= 30]
+    if not runs:
+        return None
+    keep = np.zeros(len(good), dtype=bool)
+    for r in runs:
+        keep[r] = good[r]
+    index = np.arange(len(keep))
+    flux = np.interp(index, index[keep], segment.flux[keep])
+    given = None
+    if segment.uncertainty is not None:
+        given = np.interp(index, index[keep], segment.uncertainty[keep])
+    return Raw(segment.wave, flux, keep, runs, given, noise_floor(flux, keep, runs))
+
+
+def _level(raw, sigma, width, noise, options) -> Level:
+    """Continuum under the noise ``sigma`` (flux units), and the line width above it."""
+    spacing = Spacing(_node_distance(raw.wave, raw.good, width), _length(noise))
+    centre, level, error = fit_continuum(raw.wave, raw.flux, raw.good, sigma, spacing)
+    run = smooth_run(raw.wave, centre, level)
+    y, relative = 1.0 - raw.flux / run, sigma / run
+    width = _width(raw, y, relative, noise, options)
+    return Level(centre, level, error, run, y, relative, width)
+
+
+def _second_noise(raw, first: Level, noise) -> tuple[Noise, bool]:
+    """(noise of the samples between the features, whether most samples lie there)."""
+    pixels = first.width / np.gradient(raw.wave)
+    quiet = _quiet(first.y, first.noise, raw.good, raw.runs, pixels, noise)
+    sure = bool(quiet[raw.good].mean() > 0.6)
+    longest = max(1.0, float(np.median(pixels[raw.good])) * (0.85 if sure else 0.33))
+    noise = estimate_noise(first.y, raw.good, raw.runs, quiet, longest, sure)
+    return bounded(replace(noise, sigma=noise.sigma * first.run), raw, sure), sure
+
+
+def bounded(noise: Noise, raw: Raw, sure: bool = False) -> Noise:
+    """``noise``, or its floor at the highest frequencies where lines have raised it.
+
+    White noise is no larger than at the highest frequencies. Where few samples are free
+    of lines the floor is the better estimate; else only where the two disagree. Where lines
+    may reach those frequencies the floor is a bound from above. sure: most samples are
+    free of lines.
+    """
+    floor = raw.floor
+    if floor is None:
+        return noise
+    if not floor.flat:
+        crowded = not sure and not noise.like and (floor.white or floor.bound)
+        least = np.minimum(noise.sigma, floor.sigma)
+        return replace(noise, sigma=least) if crowded else noise
+    ratio = float(np.median(noise.sigma[raw.good] / floor.sigma[raw.good]))
+    if sure and AGREE[0] < ratio < AGREE[1]:
+        return noise
+    return Noise(floor.sigma, np.array([1.0]), 1, noise.like)
+
+
+def believed(raw: Raw, noise: Noise, pixels, sure: bool) -> tuple[np.ndarray, list[str]]:
+    """(noise in flux units, words): the uncertainty array unless the samples refute it."""
+    if raw.given is None:
+        return noise.sigma, []
+    typical = float(np.median(pixels[raw.good]))
+    scale, evidence = scale_of(raw.given, noise, raw.floor, typical, sure, raw.good)
+    if scale == 1.0:
+        return raw.given, []
+    return raw.given * scale, [
+        f"the uncertainty array is off by a factor {scale:.2f} against the {evidence} "
+        "and was rescaled"
+    ]
+
+
+def _spikes(raw, last: Level, noise, options) -> Spikes:
+    """Hits narrower than the instrument, or than three samples where it is not known; in a
+    spectrum of absorption lines also peaks narrower than those."""
+    step = np.gradient(raw.wave)
+    measured = float(np.quantile((last.width / step)[raw.good], 0.05))
+    limit = UNSURE
+    if options.resolution:
+        limit = float(np.median((raw.wave / step)[raw.good])) / options.resolution
+    seen = (last.noise, raw.good, raw.runs)
+    peaks = none_found(len(last.y))
+    absorbed = in_absorption(last.y, last.noise, raw.good)
+    if noise.lag > 2 or not absorbed and not options.resolution:
+        return peaks  # samples smeared by resampling; narrow peaks that may be lines
+    if absorbed:
+        peaks = find_spikes(last.y, *seen, measured, noise.correlation)
+        peaks = few(upward(peaks, last.y, last.noise))
+    rest = bridged(last.y, peaks.hit)
+    narrow = few(find_spikes(rest, *seen, min(measured, limit), noise.correlation))
+    return joined(peaks, narrow)
+
+
+def _veil(y, noise, runs, pixels, length):
+    under = np.zeros(len(y))
+    for r in runs:
+        under[r] = veil(y[r], noise[r], pixels[r], length)
+        under[r] -= veil(-y[r], noise[r], pixels[r], length)
+    return under
+
+
+def _length(noise) -> float:
+    return float(1.0 + 2.0 * noise.correlation[1:].sum())
+
+
+def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
+    at = np.unique(np.linspace(0, len(trace.wave) - 1, 200).astype(int))
+    count = 16 * max(len(centre) - 1, 1) + 1
+    dense = np.interp(np.linspace(0, len(centre) - 1, count), np.arange(len(centre)), centre)
+    dense = np.unique(np.r_[trace.wave[0], dense, trace.wave[-1]])
+    return SegmentMeasure(
+        node_wave=dense, node_flux=smooth_run(dense, centre, level),
+        node_err=np.interp(dense, centre, error),
+        noise_wave=trace.wave[at], noise=trace.noise[at], correlation=trace.correlation,
+        width_wave=trace.wave[at], width=trace.width[at], width_pixels=pixels[at],
+    )
+
+
+def _assumed_width(wave, lag, options):
+    if options.resolution:
+        return wave / options.resolution
+    return np.gradient(wave) * max(3.0, 3.0 * lag)
+
+
+def _node_distance(wave, good, width):
+    """150 line widths, at most a 25th of the range, but 15 widths, 60 samples
+    and a 300th of the range at least."""
+    typical = float(np.median(width[good]))
+    step = float(np.median(np.gradient(wave)[good]))
+    span = float(wave[good][-1] - wave[good][0])
+    return max(
+        min(150.0 * typical, span / 25.0), 15.0 * typical, min(60 * step, span / 12.0),
+        span / 300.0,
+    )
+
+
+def _width(raw, y, noise, model, options):
+    """Line width in Angstrom at every sample, no less than the instrument's; three
+    independent samples where there are neither lines nor a known instrument."""
+    measured = measure_width(raw.wave, y, noise, raw.good, raw.runs, model.correlation)
+    if options.resolution:
+        instrument = raw.wave / options.resolution
+        return instrument if measured is None else np.maximum(instrument, measured)
+    return 3.0 * model.lag * np.gradient(raw.wave) if measured is None else measured
+
+
+def _quiet(y, noise, good, runs, pixels, model):
+    """True where neither filter sees a feature within 1.5 widths."""
+    quiet = good.copy()
+    for r in runs:
+        f = run_filters(y[r], noise[r], good[r], pixels[r], model.correlation)
+        busy = (np.abs(f.level) > 5.0) | (np.abs(f.curve) > 4.0)
+        reach = int(1.5 * np.median(pixels[r])) + 1
+        near = np.convolve(busy, np.ones(2 * reach + 1), mode="full")[reach : reach + len(busy)]
+        quiet[r] &= near < 0.5
+    return quiet
