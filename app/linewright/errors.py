@@ -15,6 +15,10 @@ class LinewrightError(Exception):
             text += f"; {cure}"
         super().__init__(" ".join(text.split()))
 
+    def __reduce__(self):
+        """Errors cross from a worker process whole."""
+        return type(self), (self.what, self.cause, self.cure)
+
 
 class InputRefused(LinewrightError):
     """A file or option whose content cannot be used (exit status 1)."""
