@@ -91,3 +91,11 @@ def test_where_nothing_tells_nothing_is_measured():
     assert observer_lines(features, CATALOGUE) is None
     with pytest.raises(InputRefused, match="no clear telluric or sky lines"):
         measured_zero_point(star, features, CATALOGUE)
+
+
+def test_low_resolution_blends_bands_and_is_not_asked():
+    """At R 2,000 the band's lines blend: an answer would be tens of km/s off (+30 is stated)."""
+    star = read_spectrum(SHARED / "gdwarf_r2000_18hdu.fits")
+    features = measure_spectrum(star).features
+    assert observer_lines(features, CATALOGUE) is None
+    assert frame_doubts(star, features, CATALOGUE) == ()

@@ -14,17 +14,17 @@ from ..claims.problem import inside
 from ..claims.velocity import (
     TELLURIC_RANGES,
     strongest,
-    telluric_vote,
     typical_width,
     vote_sigma,
 )
-from ..claims.voting import Vote, vote
+from ..claims.voting import Vote, line_weights, vote
 from ..errors import InputRefused
 from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
 
 SPAN = (-130.0, 130.0)  # km/s: Earth's motion and the air-vacuum difference together
 CLEAR = 8.0  # log-likelihood by which one shift must beat another
+BROADEST = 33.0  # km/s FWHM: broader lines blend whole bands, and the answer is biased
 MEDIUM_KMS = 82.6  # air against vacuum, 5900-9300 A
 
 
@@ -79,10 +79,25 @@ def _clear(found: Vote) -> bool:
     return bool(np.isfinite(found.velocity) and found.rivals and found.rivals[0][1] >= CLEAR)
 
 
+def _telluric_vote(features, catalogue) -> Vote:
+    """Features in telluric bands against the telluric list; every shift is as likely, since a
+    wrong medium puts the lines 83 km/s off."""
+    rows = strongest(features, 1, 400, where=inside(features.wave, TELLURIC_RANGES))
+    listed = catalogue.take(np.flatnonzero(catalogue.origin == ORIGINS.index("telluric")))
+    if len(rows) < 5 or len(listed) < 5 or typical_width(features) > BROADEST:
+        return Vote(float("nan"), float("nan"), 0.0, (), np.zeros(2), np.zeros(2))
+    reach = 1 + 1.1 * SPAN[1] / C_KM_S
+    wave = features.wave[rows]
+    near = listed.between(wave.min() / reach, wave.max() * reach)
+    weight = line_weights(np.log10(near.depth_ref), 1.5 * len(rows))
+    keep = weight > 0.01
+    return vote(wave, vote_sigma(features, rows), near.wave[keep], weight[keep], SPAN)
+
+
 def _sky_vote(features, catalogue) -> Vote:
     lines = np.sort(catalogue.wave[catalogue.origin == ORIGINS.index("sky")])
     rows = strongest(features, -1, 100)
-    if len(rows) < 5 or len(lines) < 5:
+    if len(rows) < 5 or len(lines) < 5 or typical_width(features) > BROADEST:
         return Vote(float("nan"), float("nan"), 0.0, (), np.zeros(2), np.zeros(2))
     weight = np.full(len(lines), 0.5)
     return vote(features.wave[rows], vote_sigma(features, rows), lines, weight, SPAN)
@@ -90,7 +105,7 @@ def _sky_vote(features, catalogue) -> Vote:
 
 def observer_lines(features, catalogue) -> ZeroPoint | None:
     """Where telluric absorption stands, else night-sky emission; None when neither is clear."""
-    votes = (("telluric", lambda: telluric_vote(features, catalogue, "unknown", SPAN)),
+    votes = (("telluric", lambda: _telluric_vote(features, catalogue)),
              ("sky", lambda: _sky_vote(features, catalogue)))
     for kind, cast in votes:
         found = cast()
@@ -134,7 +149,7 @@ def frame_doubts(spectrum, features, catalogue) -> tuple[str, ...]:
     corrected = spectrum.frame in ("heliocentric", "barycentric")
     if expected is None and not corrected and spectrum.frame != "unknown":
         return ()
-    found = telluric_vote(features, catalogue, "unknown", SPAN)
+    found = _telluric_vote(features, catalogue)
     if not _clear(found):
         return ()
     return tuple(_doubt(spectrum, found, expected, max(1.0, 0.1 * typical_width(features))))
