@@ -7,7 +7,6 @@ quantum numbers of the jumping electron; one electron outside the lowest term of
 
 from __future__ import annotations
 
-import re
 from functools import lru_cache
 from math import gamma
 from pathlib import Path
