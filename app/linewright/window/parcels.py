@@ -4,6 +4,7 @@ them would hold the interpreter, and so the window, for a tenth of a second."""
 from __future__ import annotations
 
 import pickle
+import time
 from dataclasses import dataclass, replace
 
 from ..session.model import Session
@@ -40,6 +41,7 @@ def _without_claims(part, pieces: list[bytes]):
         first = len(pieces)
         for k in range(0, len(part.claims), PIECE):
             pieces.append(_pickle(part.claims[k : k + PIECE]))
+            time.sleep(0)  # the window's thread comes first
         return _Place(replace(part, claims=()), first, len(pieces))
     if type(part) in (tuple, list):
         return type(part)(_without_claims(p, pieces) for p in part)
@@ -51,6 +53,7 @@ def _with_claims(part, pieces: list[bytes]):
         claims: list = []
         for piece in pieces[part.first : part.last]:
             claims.extend(pickle.loads(piece))
+            time.sleep(0)
         return replace(part.session, claims=tuple(claims))
     if type(part) in (tuple, list):
         return type(part)(_with_claims(p, pieces) for p in part)

@@ -130,8 +130,9 @@ class Refresher:
             self._show_velocity()
             self._calm.start()
         if (new.selected, new.candidate) != (old.selected, old.candidate):
-            self._show_selected()
-            self.rake.refresh()
+            if not self._steps.pending:  # else among the steps
+                self._show_selected()
+                self.rake.refresh()
         if new.rake != old.rake:
             self.rake.refresh()
             space.catalogue.show_rake(new.rake)

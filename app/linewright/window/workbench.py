@@ -81,6 +81,7 @@ class Workbench:
         self.withdraw: Callable[[str], None] = lambda topic: None
         self.commands: dict = {}
         self.window = None
+        self.weighing: set[int] = set()  # features whose claim is on its way
         self.asked_file: Path | None = None
         self._listeners: list[Callable[[Session | None, Session | None], None]] = []
 

@@ -23,11 +23,13 @@ def pick(bench, wave: float) -> None:
     low, high = bench.view.now.span or bench.spectrum.own_range()
     arguments = (*about, wave, (high - low) * 0.01)
     engine = _free_engine(bench)
+    bench.window.spectrum_view.show_pointed(wave)
     bench.tasks.start(Request(
         key="pick", title="Measuring", shown=False,
         work=lambda progress: _call(engine, "pick", arguments),
         done=lambda row: _add(bench, desk, row),
-        failed=lambda error: _failed(bench, error),
+        failed=lambda error: (bench.window.spectrum_view.show_pointed(None),
+                              _failed(bench, error)),
     ))
 
 
@@ -47,6 +49,7 @@ def _call(engine, name: str, arguments):
 def _add(bench, desk, row) -> None:
     if desk is not bench.desk:
         return
+    bench.window.spectrum_view.show_pointed(None)
     if row is None:
         bench.notify(Notice("Nothing stands out of the noise there. Zoom in and click nearer to "
                             "its centre.", "note", seconds=6, topic="pick"))
@@ -69,24 +72,28 @@ def _weigh(bench, desk, before, row, number: int) -> None:
 
     if not can_weigh(before):
         return
+    bench.weighing.add(number)
     engine, arguments = _free_engine(bench), (without_claims(before), row, before.spectrum.frame)
     bench.tasks.start(Request(
         key=f"weigh {number}", title="Weighing", shown=False,
         work=lambda progress: _call(engine, "weighed", arguments),
         done=lambda claim: _weighed(bench, desk, number, claim),
-        failed=lambda error: _failed(bench, error),
+        failed=lambda error: (bench.weighing.discard(number), _failed(bench, error)),
     ))
+    bench.window.space.evidence.refresh()
 
 
 def _weighed(bench, desk, number: int, claim) -> None:
     """Part of the pick's own step where nothing was done since, else a step of its own."""
     from ...job.view_pick import with_claim
 
+    bench.weighing.discard(number)
     session = desk.document.session
     if number not in session.features.number:
         return
     new = with_claim(session, number, claim)
     if new is session:
+        bench.window.space.evidence.refresh()
         return
     selected = bench.view.now.selected
     still_last = session.history[-1].action == "add_feature"

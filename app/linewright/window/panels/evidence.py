@@ -142,7 +142,9 @@ class EvidencePanel(QWidget):
     def _show_candidates(self, session, row: int, claim) -> None:
         chosen = min(self._workbench.view.now.candidate, max(len(claim.candidates) - 1, 0))
         hand = "hand" in session.features.flags[row].split()
-        self.none_near.setText(say.HAND_PICKED if hand else say.NO_CANDIDATES)
+        coming = int(session.features.number[row]) in self._workbench.weighing
+        self.none_near.setText(
+            say.WEIGHING if coming else say.HAND_PICKED if hand else say.NO_CANDIDATES)
         self.none_near.setVisible(not claim.candidates)
         for rank, widget in enumerate(self.rows):
             known = rank < _listed(claim)

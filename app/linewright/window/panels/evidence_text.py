@@ -15,6 +15,7 @@ EMPTY = (
     "peak measures it."
 )
 NO_CANDIDATES = "No catalogue line comes near this feature at the present velocity."
+WEIGHING = "Picked by hand: unclaimed until its candidates are weighed, in a second or two."
 HAND_PICKED = "Picked by hand. Press F5 to solve and weigh its candidates."
 
 

@@ -24,6 +24,7 @@ from .tick_strokes import TICK, TickStrokes
 _STANDING_FILL = {FIRM: FILL["firm"], LIKELY: FILL["likely"], TENTATIVE: FILL["tentative"]}
 _LEADER, _MARKER, _GAP = 12, 9, 5
 _FULL_FROM, _SHORT_FROM = 250, 150
+_NEW_PER_PAINT = 48  # labels rendered in one paint: the others come with the next
 
 
 @dataclass(frozen=True, eq=False)
@@ -61,7 +62,7 @@ class LabelLayer:
         self.marks = no_marks()
         self.selected: int | None = None
         self.mode = "full"
-        self.placed = Placed()
+        self.placed, self.unfinished = Placed(), False
         self._atlas: tuple[tuple, LabelAtlas | None] = ((), None)
         self._slot_of = self._kind_of = np.zeros(0, dtype=int)
         self._ticks: TickStrokes | None = None
@@ -95,7 +96,7 @@ class LabelLayer:
 
     def paint(self, painter: QPainter, scale: PixelScale, theme: Theme) -> None:
         """``scale`` in logical pixels of the widget; the painter likewise."""
-        self.placed = Placed()
+        self.placed, self.unfinished = Placed(), False
         first, last = np.searchsorted(self.marks.wave, [scale.low, scale.high])
         if last <= first:
             return
@@ -140,6 +141,9 @@ class LabelLayer:
         rows, x, places = found
         atlas = self._atlas_for(theme, painter.device().devicePixelRatioF())
         slots = self._slots(atlas, rows, theme)
+        ready = slots >= 0
+        self.unfinished = not ready.all()
+        rows, x, places, slots = rows[ready], x[ready], places[ready], slots[ready]
         painter.save()
         left, top, ratio = to_device(painter)
         atlas.blit_labels(painter, slots, np.floor(left + places * ratio), round(top + 4 * ratio))
@@ -148,14 +152,17 @@ class LabelLayer:
         painter.restore()
 
     def _slots(self, atlas: LabelAtlas, rows: np.ndarray, theme: Theme) -> np.ndarray:
-        """Slot of each row, rendered where it is new; the selected row has one of its own."""
+        """Slot of each row, rendered where it is new; the selected row has one of its own.
+
+        -1 for those that must wait for the next paint.
+        """
         slots = self._slot_of[rows]
         new = np.count_nonzero(slots < 0)
         if atlas.used + new + 1 > atlas.slots:
             atlas.used = 0
             self._slot_of[:] = -1
             slots = self._slot_of[rows]
-        for index in np.nonzero(slots < 0)[0].tolist():
+        for index in np.nonzero(slots < 0)[0][:_NEW_PER_PAINT].tolist():
             row = int(rows[index])
             slots[index] = self._slot_of[row] = atlas.add(self._content(row, theme, False))
             self._kind_of[row] = self._marker_kind(atlas, row, theme)

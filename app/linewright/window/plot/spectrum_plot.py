@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, Qt, Signal
+from PySide6.QtCore import QPointF, QRectF, Qt, QTimer, Signal
 from PySide6.QtGui import QColor, QPainter, QPen
 
 from .caret import outline, turning_points
@@ -38,6 +38,7 @@ class SpectrumPlot(NavigableLane):
         self.flux_unit = ""
         self.flux_shown = (0.0, 1.0)
         self.caret: float | None = None
+        self.pointed: float | None = None  # clicked and not yet measured
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setMinimumHeight(120)
         self.setAccessibleName("Spectrum")
@@ -75,6 +76,8 @@ class SpectrumPlot(NavigableLane):
         painter.setClipRect(QRectF(LEFT - 8, 0, self.width() - LEFT - RIGHT + 16, self.height()))
         self.labels.paint(painter, self.scale(), self.state.theme)
         painter.restore()
+        if self.labels.unfinished:
+            QTimer.singleShot(0, self.update)
         draw_flux_axis(painter, self.rect(), (top, self.height() - _FOOT), self)
 
     def _draw_empty(self, painter: QPainter) -> None:
@@ -99,6 +102,8 @@ class SpectrumPlot(NavigableLane):
             pixels = np.clip(frame.scale.pixels(wave), -3e4, 3e4)
             draw_polyline(painter, pixels, frame.y(flux))
             painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+        if self.pointed is not None:
+            self._draw_upright(painter, frame, self.pointed, QColor(theme.accent))
         if self.caret is not None:
             self._draw_upright(painter, frame, self.caret, QColor(theme.profile))
 

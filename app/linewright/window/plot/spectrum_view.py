@@ -117,6 +117,7 @@ class SpectrumView(QWidget):
         labels = self.plot.labels
         row = labels.marks.row_of(number)
         labels.selected = None if row is None else number
+        self.plot.pointed = None
         if row is not None:
             wave = float(labels.marks.wave[row])
             low, high = self.view()
@@ -213,6 +214,11 @@ class SpectrumView(QWidget):
         else:
             act()
             event.accept()
+
+    def show_pointed(self, wave: float | None) -> None:
+        """Mark a clicked place (vacuum Angstrom) while it is being measured; None removes it."""
+        self.plot.pointed = None if wave is None else float(to_medium(wave, self.state.medium))
+        self.plot.update()
 
     def _pick(self, own_wave: float) -> None:
         self.pickRequested.emit(float(from_medium(own_wave, self.state.medium)))
