@@ -40,7 +40,8 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
     for i, (ready, runs) in enumerate(zip(prepared, filtered)):
         progress.report("finding and fitting features", 0.6 + 0.4 * i / len(prepared))
         if ready is not None:
-            tables.append(segment_features(ready, runs, threshold, i))
+            table, prepared[i] = segment_features(ready, runs, threshold, i)
+            tables.append(table)
             tables.append(spike_table(ready.trace, ready.nodes, ready.spikes, i))
     progress.report("measured", 1.0)
     return Measurement(

@@ -2,19 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from .detect import find_extrema, run_filters
-from .features import FeatureTable
 from .gauss import FWHM_PER_SIGMA
 from .groups import BROAD, Fitted, backgrounds, fit_features, group_features
 from .guess import first_guess
+from .relevel import relevelled
 from .table import fitted_table
 from .veil import owners, running_min
 
 MISFIT = 0.12  # residuals below this share of a neighbour's depth may be its own misfit
+RELEVEL = 3  # times at most that the continuum is set again
 LEAST_DEPTH = 3.0  # sigmas of depth below which a feature found in residuals is dropped
 
 
@@ -53,18 +54,24 @@ def filter_runs(ready):
     ]
 
 
-def segment_features(ready, filtered, threshold: float, segment: int) -> FeatureTable:
-    """All features of one segment as a table."""
+def segment_features(ready, filtered, threshold: float, segment: int):
+    """(all features of one segment as a table, the segment under its final continuum)."""
     found = _first(ready, filtered, threshold)
     fitted = _fit(ready, found)
+    for _ in range(RELEVEL):
+        better = relevelled(ready, found, fitted)
+        if better is None:
+            break
+        ready = better
+        found = replace(found, start=fitted.params)
+        fitted = _fit(ready, found)
     more = _second(ready, filtered, threshold, found, fitted)
     if len(more.index):
-        start = Found(found.index, found.sign, found.significance, found.limits, found.own,
-                      found.late, fitted.params)
-        found = start.joined(more)
+        found = replace(found, start=fitted.params).joined(more)
         fitted = _fit(ready, found)
     keep = _trusted(found, fitted)
-    return fitted_table(ready.trace, ready.nodes, found.take(keep), fitted.take(keep), segment)
+    table = fitted_table(ready.trace, ready.nodes, found.take(keep), fitted.take(keep), segment)
+    return table, ready
 
 
 def _collect(ready, outputs, threshold):

@@ -23,17 +23,6 @@ from .width import measure_width
 AGREE = (0.9, 1.15)  # noise over its floor that sure noise may have
 
 
-@dataclass(frozen=True, eq=False)
-class Prepared:
-    """A segment with all that detection needs."""
-
-    trace: Trace
-    runs: list
-    nodes: SegmentMeasure
-    fwhm_pixels: np.ndarray
-    spikes: Spikes
-
-
 def _chosen(segment, ranges):
     good = usable(segment)
     if ranges:
@@ -71,6 +60,19 @@ class Level:
     width: np.ndarray
 
 
+@dataclass(frozen=True, eq=False)
+class Prepared:
+    """A segment with all that detection needs."""
+
+    trace: Trace
+    runs: list
+    nodes: SegmentMeasure
+    fwhm_pixels: np.ndarray
+    spikes: Spikes
+    level: Level
+    raw: Raw
+
+
 def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None:
     """Noise, continuum and width of one segment; None when it holds too little."""
     raw = _raw(segment, options)
@@ -85,13 +87,11 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     warnings += note
     last = _level(raw, sigma, first.width, noise, options)
     spikes = _spikes(raw, last, noise, options)
-    good = raw.good & ~spikes.hit
     pixels = last.width / step
-    trace = Trace(raw.wave, last.y, last.noise, good, last.width,
+    trace = Trace(raw.wave, last.y, last.noise, raw.good & ~spikes.hit, last.width,
                   np.interp(raw.wave, last.centre, last.error), noise.correlation,
                   _veil(last.y, last.noise, raw.runs, pixels, _length(noise)))
-    nodes = _nodes(trace, last.centre, last.level, last.error, pixels)
-    return Prepared(trace, raw.runs, nodes, pixels, spikes)
+    return Prepared(trace, raw.runs, nodes_of(trace, last), pixels, spikes, last, raw)
 
 
 def _raw(segment, options) -> Raw | None:
@@ -198,14 +198,16 @@ def _length(noise) -> float:
     return float(1.0 + 2.0 * noise.correlation[1:].sum())
 
 
-def _nodes(trace, centre, level, error, pixels) -> SegmentMeasure:
+def nodes_of(trace, last: Level) -> SegmentMeasure:
+    """Continuum, noise and width of a segment as nodes for linear interpolation."""
     at = np.unique(np.linspace(0, len(trace.wave) - 1, 200).astype(int))
+    centre, pixels = last.centre, trace.width / np.gradient(trace.wave)
     count = 16 * max(len(centre) - 1, 1) + 1
     dense = np.interp(np.linspace(0, len(centre) - 1, count), np.arange(len(centre)), centre)
     dense = np.unique(np.r_[trace.wave[0], dense, trace.wave[-1]])
     return SegmentMeasure(
-        node_wave=dense, node_flux=smooth_run(dense, centre, level),
-        node_err=np.interp(dense, centre, error),
+        node_wave=dense, node_flux=smooth_run(dense, centre, last.level),
+        node_err=np.interp(dense, centre, last.error),
         noise_wave=trace.wave[at], noise=trace.noise[at], correlation=trace.correlation,
         width_wave=trace.wave[at], width=trace.width[at], width_pixels=pixels[at],
     )
