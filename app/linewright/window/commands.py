@@ -250,6 +250,9 @@ def _view() -> list[Command]:
         panel("evidence", "Evidence", "Ctrl+Alt+1"),
         panel("tables", "Tables", "Ctrl+Alt+2"),
         panel("track", "Velocity track", "Ctrl+Alt+3"),
+        _c("view.residuals", "Velocity residuals…", "Ctrl+Alt+4", "View", has_features,
+           lambda b: b.window.show_residuals(), "Offsets of confident claims against "
+           "wavelength and lower-level energy", group=2),
         _c("view.uncertainty", "Uncertainty band", "Ctrl+Alt+U", "View", has_spectrum,
            lambda b: b.window.toggle_uncertainty(), "Show one sigma about the flux", group=2,
            checked=lambda b: b.window is not None and b.window.uncertainty_shown),

@@ -30,7 +30,7 @@ class MainWindow(Questions, Showing, QMainWindow):
         self.tasks = Tasks(self)
         self.bench = Workbench(self.tasks)
         self.bench.window, self.bench.commands = self, command_table()
-        self.space = self.refresher = None
+        self.space = self.refresher = self.residuals = None
         self.theme_choice, self.uncertainty_shown = "system", False
         self._leaving = False
         self._build()
@@ -168,6 +168,8 @@ class MainWindow(Questions, Showing, QMainWindow):
             app.setStyleSheet(sheet)
         if self.refresher is not None:
             self.refresher.theme_changed()
+        if self.residuals is not None:
+            self.residuals.refresh()
         self.menus.refresh()
 
     def report_unexpected(self, error: BaseException) -> None:
@@ -198,6 +200,8 @@ class MainWindow(Questions, Showing, QMainWindow):
         self.tasks.close()
         self.bench.engine.close()
         self.bench.export_engine.close()
+        if self.residuals is not None:
+            self.residuals.close()
         event.accept()
 
     def _ask_leave(self, unsaved) -> None:

@@ -68,6 +68,13 @@ class Showing:
             self._choices = ChoicesPanel(self.bench, self)
         self._choices.open()
 
+    def show_residuals(self) -> None:
+        from .residuals import ResidualsWindow
+
+        if self.residuals is None:
+            self.residuals = ResidualsWindow(self.bench, self)
+        self.residuals.open()
+
     def show_palette(self) -> None:
         from .palette import Palette
 
