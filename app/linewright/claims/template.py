@@ -20,6 +20,8 @@ SMOOTH = 40.0  # FWHM: slower structure is continuum, not lines
 SATURATED_LINES = 0.25  # lines per Angstrom that are about saturated: sets tau = 1
 EVIDENCE = 0.5  # independent samples are counted so: the template's misfit is shared
 MASKED_SHARE = 0.5
+H_WINGS = 1500.0  # km/s left out about hydrogen lines
+PASCHEN, FAINT_H = 12.2, -1.8  # eV and log gf: Balmer and Paschen lines that show wings
 
 
 def template_vote(pieces, catalogue, strength, fwhm: float, velocity_range) -> Vote:
@@ -56,7 +58,7 @@ def _piece(wave, depth, catalogue, strength, setting):
     x = np.arange(np.log(wave[0]), np.log(wave[-1]), step)
     data = np.interp(x, np.log(wave[good]), depth[good])
     weight = np.interp(x, np.log(wave), good.astype(float)) > 1 - MASKED_SHARE
-    weight &= ~inside(np.exp(x), TELLURIC_RANGES)
+    weight &= ~inside(np.exp(x), TELLURIC_RANGES) & ~_near_hydrogen(x, catalogue)
     if np.sum(weight) < 20:
         return None
     margin = int(max(abs(lags[0]), abs(lags[-1])))
@@ -69,6 +71,16 @@ def _piece(wave, depth, catalogue, strength, setting):
     cross = np.array([model[margin - k : margin - k + len(x)] @ data for k in lags])
     middle = model[margin : margin + len(x)]
     return cross, float(data @ data), float((middle * weight) @ middle), int(np.sum(weight))
+
+
+def _near_hydrogen(x, catalogue):
+    """True near Balmer and Paschen lines, whose wings no narrow template fits."""
+    name = catalogue.species_names.index("H I") if "H I" in catalogue.species_names else -1
+    rows = (catalogue.species == name) & (catalogue.e_low < PASCHEN) & (catalogue.loggf > FAINT_H)
+    near = np.zeros(len(x), dtype=bool)
+    for place in np.log(catalogue.wave[rows]):
+        near |= np.abs(x - place) < H_WINGS / C_KM_S
+    return near
 
 
 def _template(x, catalogue, strength, fwhm):

@@ -124,9 +124,18 @@ def solve_features(
 
 def _measure_options(spectrum: Spectrum, options: SolveOptions) -> MeasureOptions:
     return MeasureOptions(
-        resolution=options.resolution or spectrum.resolution,
+        resolution=_effective_resolution(options.resolution or spectrum.resolution, options.vsini),
         ranges=_to_vacuum(options.ranges, spectrum.medium),
     )
+
+
+def _effective_resolution(resolution: float | None, vsini: float | None) -> float | None:
+    """Resolving power with rotation folded in: a rotation profile is about 1.5 v sin i wide
+    (FWHM; Gray 2005, The Observation and Analysis of Stellar Photospheres)."""
+    if not vsini:
+        return resolution
+    instrument = C_KM_S / resolution if resolution else 0.0
+    return float(C_KM_S / np.hypot(instrument, 1.5 * vsini))
 
 
 def _claim_options(options: SolveOptions, frame: str, complete: bool) -> ClaimOptions:
