@@ -108,6 +108,8 @@ if ! have test && ! { [ "$job" = run ] && have run; }; then
 fi
 
 if [ "$job" = test ]; then
+    # The whole suite runs on every core, a file at a time; a chosen part runs plainly.
+    [ "$#" -gt 0 ] || set -- -n auto --dist loadfile
     exec .venv/bin/python -m pytest "$@"
 fi
 
