@@ -29,8 +29,9 @@ def measure_at(spectrum, measurement, wave_vac: float, kind: str | None = None):
     'absorption', 'emission' or None for the nearer extremum. Raises InputRefused where
     the spectrum has no usable samples.
     """
-    number = _segment_at(spectrum, measurement, wave_vac)
-    trace, limits = _local_trace(spectrum.segments[number], measurement.segments[number], wave_vac)
+    number = segment_at(spectrum, measurement, wave_vac)
+    trace = local_trace(spectrum.segments[number], measurement.segments[number], wave_vac)
+    limits = np.array([[0, len(trace.wave)]])
     pixels = trace.width / np.gradient(trace.wave)
     smooth = int(max(1, np.round(0.3 * np.median(pixels))))
     index, sign = _snap(trace, wave_vac, SIGNS.get(kind), smooth)
@@ -69,7 +70,8 @@ def fit_profile(features, row: int, points: int = 121, neighbours: bool = False)
     return wave, features.continuum[row] * (1.0 - component_sum(wave, params))
 
 
-def _segment_at(spectrum, measurement, wave: float) -> int:
+def segment_at(spectrum, measurement, wave: float) -> int:
+    """Segment that shows a vacuum wavelength best; InputRefused where none does."""
     inside = [
         i for i, (s, m) in enumerate(zip(spectrum.segments, measurement.segments, strict=True))
         if m is not None and s.wave[0] <= wave <= s.wave[-1]
@@ -84,9 +86,9 @@ def _segment_at(spectrum, measurement, wave: float) -> int:
                                          spectrum.segments[i].wave[-1] - wave))
 
 
-def _local_trace(segment, nodes, wave: float):
-    """The samples around a pick as a Trace, and the stretch limits (1, 2)."""
-    reach = AROUND * float(nodes.width_at(wave))
+def local_trace(segment, nodes, wave: float, least: float = 0.0) -> Trace:
+    """The samples around a pick as a Trace, ``least`` Angstrom to either side or more."""
+    reach = max(AROUND * float(nodes.width_at(wave)), 1.2 * least)
     a, b = np.searchsorted(segment.wave, [wave - reach, wave + reach])
     part = slice(max(0, a), b)
     good = usable(segment)[part]
@@ -102,8 +104,7 @@ def _local_trace(segment, nodes, wave: float):
     pixels = width / np.gradient(w)
     length = nodes.correlation_length
     under = veil(y, noise, pixels, length) - veil(-y, noise, pixels, length)
-    trace = Trace(w, y, noise, good, width, nodes.continuum_err_at(w), nodes.correlation, under)
-    return trace, np.array([[0, len(w)]])
+    return Trace(w, y, noise, good, width, nodes.continuum_err_at(w), nodes.correlation, under)
 
 
 def _snap(trace, wave: float, sign: int | None, smooth: int) -> tuple[int, int]:

@@ -58,7 +58,7 @@ def segment_features(ready, filtered, threshold: float, segment: int):
     """(all features of one segment as a table, the segment under its final continuum)."""
     found = _first(ready, filtered, threshold)
     fitted = _fit(ready, found)
-    for _ in range(RELEVEL):
+    for _ in range(RELEVEL if ready.moves else 0):
         better = relevelled(ready, found, fitted)
         if better is None:
             break

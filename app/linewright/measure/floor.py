@@ -13,11 +13,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .matched import noise_gain
+
 MAD = 1.482602
 SPREAD = 2.5  # samples: sigma of the bands' envelope
 BANDS = (1.0, 0.86, 0.72)  # of pi
 ALIKE = 0.06  # difference of the two bands that white noise may show beside chance
-SLIGHT = 0.6  # ratio of the first two bands that lines two samples wide may bring
+SLIGHT = 0.63  # ratio of the first two bands that lines two samples wide may bring
 SHARE = 0.08  # independent values of |band| per sample, as its median's scatter has it
 LEAST = 150  # samples below which no verdict is reached
 BLOCK = 1500
@@ -25,11 +27,13 @@ BLOCK = 1500
 
 @dataclass(frozen=True, eq=False)
 class Floor:
-    """sigma: noise at the highest frequencies at every sample, (n,); white: whether that
+    """sigma: noise at the highest frequencies at every sample, (n,); fall: scatter there over
+    that of the next band; white: whether that
     is the noise as a whole; flat: whether the third band agrees too (sure of it);
     bound: whether the fall is so slight that lines may cause it, not only correlation."""
 
     sigma: np.ndarray
+    fall: float
     white: bool
     flat: bool
     bound: bool
@@ -75,4 +79,31 @@ def noise_floor(flux, good, runs) -> Floor | None:
     ratio = np.median(level[:, 0] / level[:, 1:].T, axis=1)
     alike = np.abs(ratio - 1.0) < ALIKE + 3.0 / np.sqrt(SHARE * len(fine))
     sigma = np.interp(np.arange(len(flux)), at, level[:, 0])
-    return Floor(sigma, bool(alike[0]), bool(alike.all()), bool(ratio[0] > SLIGHT))
+    return Floor(sigma, float(ratio[0]), bool(alike[0]), bool(alike.all()), bool(ratio[0] > SLIGHT))
+
+
+def blur_of(floor: Floor, sigma: np.ndarray) -> float:
+    """Sigma in samples of the Gaussian that smoothed the noise; 0 where that explains nothing.
+
+    sigma: the whole noise, (n,). The level at the highest frequencies and its fall towards
+    them each give a sigma, which must agree.
+    """
+    level = float(np.median(floor.sigma / sigma))
+    if floor.flat or level > 0.85 or not 0.0 < floor.fall < 1.0:
+        return 0.0
+    grid = np.linspace(0.3, 2.5, 45)
+    top, below = np.array([[_passed(place, b) for b in grid] for place in BANDS[:2]])
+    by_level = float(np.interp(-level, -top, grid))
+    by_fall = float(np.interp(-floor.fall, -np.minimum.accumulate(top / below), grid))
+    return by_level if 1 / 1.5 < by_level / by_fall < 1.5 else 0.0
+
+
+def _passed(place: float, b: float) -> float:
+    """Scatter in a band of unit noise smoothed by a Gaussian of sigma b samples."""
+    return noise_gain(band_kernel(place), blurred(b))
+
+
+def blurred(b: float) -> np.ndarray:
+    """Autocorrelation r_0, r_1, ... of white noise smoothed by a Gaussian of sigma b samples."""
+    lags = np.arange(int(np.ceil(8.0 * b)) + 1)
+    return np.exp(-0.25 * (lags / b) ** 2)

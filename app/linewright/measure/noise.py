@@ -17,6 +17,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .floor import noise_floor
+
 MAD = 1.482602
 LAGS = tuple(range(1, 17))
 PLATEAU = 0.9
@@ -133,6 +135,12 @@ def _like_noise(flux, good, runs, lag: int) -> bool:
     return bool(TAILS[0] < tail < TAILS[1])
 
 
+def _steep(flux, good, runs) -> bool:
+    """Whether the highest frequencies lack what only correlation takes from them."""
+    floor = noise_floor(flux, good, runs)
+    return floor is not None and not floor.bound
+
+
 def settled(profile: np.ndarray, lag: int, longest: float) -> int:
     """Up to twice the plateau's first lag, where samples are surely independent.
 
@@ -172,7 +180,7 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> No
         profile = quiet_profile(flux, good, runs)
         free = good
     lag = plateau(profile, longest)
-    like = lag == 1 or sure or _like_noise(flux, free, runs, lag)
+    like = lag == 1 or sure or _like_noise(flux, free, runs, lag) or _steep(flux, good, runs)
     lag = lag if like else 1
     if sure:
         lag = settled(profile, lag, longest)

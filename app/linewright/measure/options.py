@@ -17,11 +17,13 @@ class MeasureOptions:
     threshold: least matched-filter signal-to-noise of a feature; None takes the value at
         which one false feature is expected in the whole spectrum
     ranges: vacuum Angstrom ranges to search; empty searches everything
+    continuum: method of the pseudo-continuum: levels, quantile, clipped or asymmetric
     """
 
     resolution: float | None = None
     threshold: float | None = None
     ranges: tuple[tuple[float, float], ...] = ()
+    continuum: str = "levels"
 
 
 @dataclass(frozen=True, eq=False)

@@ -6,11 +6,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .continuum import Spacing, fit_continuum, smooth_run
+from .continuum import Spacing, smooth_run
 from .detect import run_filters
-from .floor import Floor, noise_floor
+from .floor import Floor, blur_of, blurred, noise_floor
 from .given import scale_of
 from .groups import Trace
+from .methods import method_of
 from .noise import Noise, estimate_noise
 from .options import MeasureOptions, SegmentMeasure
 from .spikes import (
@@ -70,7 +71,7 @@ class Prepared:
     fwhm_pixels: np.ndarray
     spikes: Spikes
     level: Level
-    raw: Raw
+    moves: bool  # whether the continuum may be set again after the fits
 
 
 def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None:
@@ -85,13 +86,16 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     noise, sure = _second_noise(raw, first, noise)
     sigma, note = believed(raw, noise, first.width / step, sure)
     warnings += note
+    if raw.given is not None and noise.lag == 1 and not sure:
+        noise = _smoothed(noise, raw, sigma)
     last = _level(raw, sigma, first.width, noise, options)
     spikes = _spikes(raw, last, noise, options)
     pixels = last.width / step
     trace = Trace(raw.wave, last.y, last.noise, raw.good & ~spikes.hit, last.width,
                   np.interp(raw.wave, last.centre, last.error), noise.correlation,
                   _veil(last.y, last.noise, raw.runs, pixels, _length(noise)))
-    return Prepared(trace, raw.runs, nodes_of(trace, last), pixels, spikes, last, raw)
+    return Prepared(trace, raw.runs, nodes_of(trace, last), pixels, spikes, last,
+                    options.continuum == "levels")
 
 
 def _raw(segment, options) -> Raw | None:
@@ -113,7 +117,8 @@ def _raw(segment, options) -> Raw | None:
 def _level(raw, sigma, width, noise, options) -> Level:
     """Continuum under the noise ``sigma`` (flux units), and the line width above it."""
     spacing = Spacing(_node_distance(raw.wave, raw.good, width), _length(noise))
-    centre, level, error = fit_continuum(raw.wave, raw.flux, raw.good, sigma, spacing)
+    fit = method_of(options.continuum)
+    centre, level, error = fit(raw.wave, raw.flux, raw.good, sigma, spacing)
     run = smooth_run(raw.wave, centre, level)
     y, relative = 1.0 - raw.flux / run, sigma / run
     width = _width(raw, y, relative, noise, options)
@@ -163,6 +168,12 @@ def believed(raw: Raw, noise: Noise, pixels, sure: bool) -> tuple[np.ndarray, li
         f"the uncertainty array is off by a factor {scale:.2f} against the {evidence} "
         "and was rescaled"
     ]
+
+
+def _smoothed(noise: Noise, raw: Raw, sigma) -> Noise:
+    """In crowds that hide it: the correlation that a known noise must have at its floor."""
+    blur = 0.0 if raw.floor is None else blur_of(raw.floor, sigma)
+    return noise if blur == 0.0 else replace(noise, correlation=blurred(blur))
 
 
 def _spikes(raw, last: Level, noise, options) -> Spikes:
