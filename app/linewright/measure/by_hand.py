@@ -7,6 +7,7 @@ from dataclasses import replace
 import numpy as np
 
 from ..errors import InputRefused
+from ..spectra.spectrum import Segment
 from .detect import run_filters
 from .finding import Found
 from .gauss import FWHM_PER_SIGMA
@@ -91,7 +92,10 @@ def local_trace(segment, nodes, wave: float, least: float = 0.0) -> Trace:
     reach = max(AROUND * float(nodes.width_at(wave)), 1.2 * least)
     a, b = np.searchsorted(segment.wave, [wave - reach, wave + reach])
     part = slice(max(0, a), b)
-    good = usable(segment)[part]
+    good = usable(Segment(
+        segment.wave[part], segment.flux[part],
+        None if segment.uncertainty is None else segment.uncertainty[part], segment.mask[part],
+    ))
     if good.sum() < 8:
         raise InputRefused(
             f"{wave:.3f} A (vacuum)", "has no usable samples around it",

@@ -26,8 +26,8 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
     warnings: list[str] = []
     prepared = []
     for i, segment in enumerate(spectrum.segments):
-        progress.report("measuring noise and continuum", 0.5 * i / len(spectrum.segments))
-        prepared.append(prepare(segment, options, warnings))
+        tick = _ticker(progress, "measuring noise and continuum", 0.5, i, len(spectrum.segments))
+        prepared.append(prepare(segment, options, warnings, tick))
     if all(p is None for p in prepared):
         raise InputRefused(
             spectrum.name or "spectrum", "no stretch of 30 usable samples in it",
@@ -38,9 +38,9 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
     threshold = options.threshold or threshold_for(pieces)
     tables = []
     for i, (ready, runs) in enumerate(zip(prepared, filtered)):
-        progress.report("finding and fitting features", 0.6 + 0.4 * i / len(prepared))
+        tick = _ticker(progress, "finding and fitting features", 0.4, i, len(prepared), 0.6)
         if ready is not None:
-            table, prepared[i] = segment_features(ready, runs, threshold, i)
+            table, prepared[i] = segment_features(ready, runs, threshold, i, tick)
             tables.append(table)
             tables.append(spike_table(ready.trace, ready.nodes, ready.spikes, i))
     progress.report("measured", 1.0)
@@ -53,6 +53,18 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
         coverage=_coverage(prepared),
         warnings=tuple(dict.fromkeys(warnings)),
     )
+
+
+def _ticker(progress, stage: str, share: float, i: int, of: int, begin: float = 0.0):
+    """Reports within the i-th of ``of`` equal parts, ever smaller steps towards its end."""
+    steps = iter(range(1, 10_000))
+
+    def tick():
+        done = i + 1.0 - 0.75 ** next(steps)
+        progress.report(stage, begin + share * done / of)
+
+    progress.report(stage, begin + share * i / of)
+    return tick
 
 
 def filtered_runs_of(spectrum, options: MeasureOptions):

@@ -54,18 +54,22 @@ def filter_runs(ready):
     ]
 
 
-def segment_features(ready, filtered, threshold: float, segment: int):
+def segment_features(ready, filtered, threshold: float, segment: int, tick=lambda: None):
     """(all features of one segment as a table, the segment under its final continuum)."""
     found = _first(ready, filtered, threshold)
+    tick()
     fitted = _fit(ready, found)
     for _ in range(RELEVEL if ready.moves else 0):
+        tick()
         better = relevelled(ready, found, fitted)
         if better is None:
             break
         ready = better
         found = replace(found, start=fitted.params)
         fitted = _fit(ready, found)
+    tick()
     more = _second(ready, filtered, threshold, found, fitted)
+    tick()
     if len(more.index):
         found = replace(found, start=fitted.params).joined(more)
         fitted = _fit(ready, found)

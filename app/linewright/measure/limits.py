@@ -80,7 +80,8 @@ def equivalent_width(spectrum, measurement, row: int) -> EquivalentWidth:
     order = np.r_[np.flatnonzero(mine), np.flatnonzero(close & ~mine)]
     inside = t.good & (np.abs(t.wave - centre) < AROUND * fwhm)
     photon, continuum = _area_errors(t, inside, params[order[:1]])
-    whole, _ = _area_errors(t, inside, params[order])
+    together = t.good & np.any([np.abs(t.wave - c) < AROUND * fwhm for c in params[order, 1]], 0)
+    whole, _ = _area_errors(t, together, params[order])
     dx = np.gradient(t.wave)[inside]
     rest = t.y - component_sum(t.wave, params[~mine]) - (1.0 - base)
     scatter = np.sqrt(nodes.correlation_length * np.sum((t.noise[inside] * dx) ** 2))

@@ -74,8 +74,11 @@ class Prepared:
     moves: bool  # whether the continuum may be set again after the fits
 
 
-def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None:
-    """Noise, continuum and width of one segment; None when it holds too little."""
+def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None):
+    """Noise, continuum and width of one segment: Prepared, None when it holds too little.
+
+    tick: called between steps, so that a window can go on and a cancel is heeded.
+    """
     raw = _raw(segment, options)
     if raw is None:
         return None
@@ -83,13 +86,17 @@ def prepare(segment, options: MeasureOptions, warnings: list) -> Prepared | None
     noise = bounded(estimate_noise(raw.flux, raw.good, raw.runs), raw)
     width = _assumed_width(raw.wave, noise.lag, options)
     first = _level(raw, believed(raw, noise, width / step, False)[0], width, noise, options)
+    tick()
     noise, sure = _second_noise(raw, first, noise)
+    tick()
     sigma, note = believed(raw, noise, first.width / step, sure)
     warnings += note
     if raw.given is not None and noise.lag == 1 and not sure:
         noise = _smoothed(noise, raw, sigma)
     last = _level(raw, sigma, first.width, noise, options)
+    tick()
     spikes = _spikes(raw, last, noise, options)
+    tick()
     pixels = last.width / step
     trace = Trace(raw.wave, last.y, last.noise, raw.good & ~spikes.hit, last.width,
                   np.interp(raw.wave, last.centre, last.error), noise.correlation,

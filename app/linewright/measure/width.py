@@ -12,7 +12,7 @@ from __future__ import annotations
 import numpy as np
 
 FWHM_PER_SIGMA = 2.3548200450309493
-LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30)
+LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30, 45, 70, 100)
 BLUNT = 0.7  # sigma in lags below which a block's ratio says little
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
