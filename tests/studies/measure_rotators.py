@@ -4,9 +4,9 @@
 
 Invented: the lines of the sample A star's truth table (stellar ones; velocity taken off),
 broadened by rotation (limb darkening 0.6) at R 30,000, S/N 150. 'Named' lines are those
-deeper than 0.1 alone which, after rotation, still stand for two thirds of the absorption
-within half a rotation width; a feature within 0.2 of that width counts as found. Only
-lines that would reach eight sigmas are asked for.
+that would reach eight sigmas alone and stand for two thirds of the absorption within one
+rotational FWHM (1.6 v sin i) on either side, the others being members of blends; found is
+what has a feature within a fifth of that FWHM.
 """
 
 from __future__ import annotations
@@ -67,7 +67,7 @@ def main(seed: int = 0):
         reach = centre * vsini / C
         named = []
         for i in np.argsort(-height):
-            near = np.abs(centre - centre[i]) < reach[i]
+            near = np.abs(centre - centre[i]) < 1.6 * reach[i]
             pixels = 2 * reach[i] / (centre[i] / RESOLUTION / 3.0)
             strong = height[i] * SNR * np.sqrt(0.6 * pixels) >= 8
             if strong and height[i] > 0.667 * height[near].sum():

@@ -13,6 +13,7 @@ import numpy as np
 
 FWHM_PER_SIGMA = 2.3548200450309493
 LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30, 45, 70, 100)
+COARSE = 8  # samples
 BLUNT = 0.7  # sigma in lags below which a block's ratio says little
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
@@ -84,12 +85,29 @@ def _mean_square(values, ok):
     return np.sum(np.where(ok, values * values, 0.0), axis=1) / np.maximum(ok.sum(axis=1), 1)
 
 
-def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray:
+def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray | None:
     """FWHM of the narrowest lines in Angstrom at every sample, shape (n,), or None.
 
     Constant resolving power or constant FWHM, whichever the blocks follow better.
-    None when fewer than three blocks hold lines.
+    None when fewer than three blocks hold lines, nor do means of COARSE samples: the lines
+    of a fast rotator are shallow, and only many samples together show them.
     """
+    width = _one_width(wave, y, noise, good, runs, correlation)
+    count = len(wave) // COARSE
+    if width is not None or len(runs) > 1 or count < 400:
+        return width
+    cut = slice(0, count * COARSE)
+
+    def means(values):
+        return values[cut].reshape(count, COARSE).mean(axis=1)
+
+    length = min(1.0 + 2.0 * float(np.sum(correlation[1:])), COARSE)
+    rough = _one_width(means(wave), means(y), means(noise) * np.sqrt(length / COARSE),
+                       means(good) > 0.7, [slice(0, count)], np.array([1.0]))
+    return None if rough is None else np.interp(wave, means(wave), rough)
+
+
+def _one_width(wave, y, noise, good, runs, correlation):
     step = np.gradient(wave)
     tables = []
     lags = [lag for lag in LAGS if lag >= len(correlation)]  # nearer samples share noise
