@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from PySide6.QtCore import QObject, QRunnable, QThreadPool, Signal, Slot
+from PySide6.QtCore import QObject, QThreadPool, Signal, Slot
 
 from ..errors import Cancelled
 from ..progress import Progress
@@ -28,10 +28,10 @@ class Request:
     stop: Callable[[], None] | None = None
 
 
-class _Run(QRunnable):
+class _Run:
+    """No QRunnable: the binding never lets go of one, nor of the spectra its request holds."""
+
     def __init__(self, tasks: Tasks, serial: int, request: Request):
-        super().__init__()
-        self.setAutoDelete(False)
         self.request, self.serial, self._tasks = request, serial, tasks
         self.progress = Progress(self._report)
         self.stage, self.fraction = "", 0.0
@@ -72,7 +72,7 @@ class Tasks(QObject):
         run = _Run(self, self._serial, request)
         self._current[request.key] = run
         self._alive.add(run)
-        self._pool.start(run)
+        self._pool.start(run.run)
         if request.shown:
             self.started.emit()
 
