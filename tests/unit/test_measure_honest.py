@@ -124,3 +124,14 @@ def test_odd_little_spectra_raise_no_numpy_warnings():
             wave = 6000 + 0.5 * np.arange(n)
             measure_spectrum(spectrum_of(wave, 3 + 0.1 * rng.standard_normal(n)))
             measure_spectrum(spectrum_of(wave, 3 + 1e-9 * rng.standard_normal(n), np.ones(n)))
+
+
+@pytest.mark.parametrize("resolution", [50_000, None])
+def test_few_shallow_lines_are_searched_for_at_their_own_width(resolution):
+    """Lines of eight sigmas, seen singly by no block, must not pass for broad ones."""
+    lines = Lines(3.0, 0.0533, 100.0, 100, 25.0, seed=1)
+    spectrum, centres = lines.build(with_errors=True)
+    measured = measure_spectrum(spectrum, MeasureOptions(threshold=4.0, resolution=resolution))
+    assert np.median(measured.segments[0].width_pixels) == pytest.approx(3.0, rel=0.25)
+    f = measured.features
+    assert np.mean([np.min(np.abs(f.wave - c)) < 0.7 * lines.fwhm for c in centres]) >= 0.97

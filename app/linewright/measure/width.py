@@ -14,6 +14,7 @@ import numpy as np
 FWHM_PER_SIGMA = 2.3548200450309493
 LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30, 45, 70, 100)
 COARSE = 8  # samples
+RESOLVED = 3.5  # means per FWHM that a line must span to be measured on means
 BLUNT = 0.7  # sigma in lags below which a block's ratio says little
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
@@ -104,7 +105,9 @@ def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray | None:
     length = min(1.0 + 2.0 * float(np.sum(correlation[1:])), COARSE)
     rough = _one_width(means(wave), means(y), means(noise) * np.sqrt(length / COARSE),
                        means(good) > 0.7, [slice(0, count)], np.array([1.0]))
-    return None if rough is None else np.interp(wave, means(wave), rough)
+    if rough is None or np.median(rough / np.gradient(means(wave))) < RESOLVED:
+        return None  # sharp lines, smeared by the means
+    return np.interp(wave, means(wave), rough)
 
 
 def _one_width(wave, y, noise, good, runs, correlation):
