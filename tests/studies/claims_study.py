@@ -1,6 +1,7 @@
 """How far claims can be trusted, measured on published truths. Slow: run by hand.
 
-    python tests/studies/claims_study.py kgiant|scattered|decoys|shifts|nebula|telluric|velocity
+    python tests/studies/claims_study.py kgiant|scattered|decoys|shifts|nebula|telluric|velocity|scrambled
+    (kgiant=6 runs 6 seeds instead of 30)
 
 Truths and their sources: see tests/truths.py. The last recorded results stand in
 tests/studies/RESULTS.md.
@@ -173,6 +174,78 @@ def telluric():
     for i in np.nonzero((air > 6276) & (air < 6320))[0]:
         c, f = session.claims[i], session.features
         print(f"{air[i]:.3f} depth {f.depth[i]:.3f} {c.species:6s} {c.origin:9s} P {c.probability:.3f}")
+
+
+AREAS = {"lv6": 2, "lv1": 3, "hh-203": 4, "big-arc": 6, "orion-s": 7}
+
+
+def nebula_list(strongest_class):
+    """(ion, air wavelength) of the data authors' identifications in emission, without
+    unidentified rows and diffuse bands."""
+    lines = []
+    for line in (SPECTRA / "nebula" / "basic-line-list.tab").read_text().splitlines()[1:]:
+        cells = line.split("\t")
+        named = "XXX" not in cells[0] and "DIB" not in cells[0].upper()
+        if named and 0 < float(cells[3]) <= strongest_class:
+            lines.append((cells[0].strip(), float(cells[2])))
+    return lines
+
+
+def nebula():
+    """Detected listed features of five areas of an H II region, by class of strength."""
+    path = SPECTRA / "nebula" / "full-spectrum-by-area.tab"
+    tally = {k: np.zeros(5, int) for k in (3, 4, 5)}
+    for column in AREAS.values():
+        session = solve(read_spectrum(path, medium="air", columns=f"wave=11,flux={column}"))
+        rest = vacuum_to_air(session.features.wave / (1 + session.velocity.velocity / C_KM_S))
+        for k in tally:
+            tally[k] += nebula_score(session, rest, nebula_list(k))
+    for k, (listed, found, right, sure, both) in tally.items():
+        print(
+            f"classes 1-{k}: listed {listed}, found {found}, named right {right / found:.3f}, "
+            f"confident {sure / found:.3f}, agreement {both / sure:.4f}"
+        )
+
+
+def nebula_score(session, rest, lines):
+    """Counts listed, found, right, confident, confident and right."""
+    places, emission = np.array([w for _, w in lines]), session.features.sign < 0
+    out = np.zeros(5, int)
+    for ion, wave in lines:
+        out[0] += 1
+        distance = np.where(emission, np.abs(rest - wave), np.inf)
+        i = int(np.argmin(distance))
+        if distance[i] > 1.0 or places[np.argmin(np.abs(places - rest[i]))] != wave:
+            continue
+        claim = session.claims[i]
+        right = claim.species == ion or any(b[0] == ion for b in claim.blend)
+        sure = claim.probability >= 0.95
+        out[1:] += (1, right, sure, right and sure)
+    return out
+
+
+def scrambled(seeds=50):
+    """The Sun's features at random places: species called present, confident claims."""
+    from dataclasses import replace
+
+    session, catalogue = solve(sun()), load_catalogue()
+    coverage, f = session.spectrum.coverage, session.features
+    present = species = sure = total = 0
+    for seed in range(seeds):
+        rng = np.random.default_rng(seed)
+        places = np.sort(
+            np.concatenate([rng.uniform(a, b, int(0.45 * (b - a))) for a, b in coverage])
+        )
+        rows = np.sort(rng.permutation(len(f))[: len(places)])
+        table = replace(f.take(rows), wave=places[: len(rows)])
+        found = identify(
+            table, coverage, catalogue, ClaimOptions(velocity=0.0, temperature=5200.0)
+        )
+        species += len(found.roll_call)
+        present += sum(r.verdict == "present" for r in found.roll_call)
+        total += len(found.claims)
+        sure += sum(c.probability >= 0.95 for c in found.claims)
+    print("species called present", rate(present, species), "; claims made confident", rate(sure, total))
 
 
 def velocity(trials=500):
