@@ -155,12 +155,20 @@ def bounded(noise: Noise, raw: Raw, sure: bool = False) -> Noise:
         return noise
     if not floor.flat:
         crowded = not sure and not noise.like and (floor.white or floor.bound)
+        crowded = crowded and not _in_emission(raw)
         least = np.minimum(noise.sigma, floor.sigma)
         return replace(noise, sigma=least) if crowded else noise
     ratio = float(np.median(noise.sigma[raw.good] / floor.sigma[raw.good]))
     if sure and AGREE[0] < ratio < AGREE[1]:
         return noise
     return Noise(floor.sigma, np.array([1.0]), 1, noise.like)
+
+
+def _in_emission(raw: Raw) -> bool:
+    """Whether the highest samples stand out far more than the lowest: bright lines, between
+    which the samples speak for themselves."""
+    low, middle, high = np.quantile(raw.flux[raw.good], [0.002, 0.5, 0.998])
+    return bool(high - middle > 5.0 * (middle - low))
 
 
 def believed(raw: Raw, noise: Noise, pixels, sure: bool) -> tuple[np.ndarray, list[str]]:
