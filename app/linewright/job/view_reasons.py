@@ -31,7 +31,8 @@ def reasons(
     if roll is not None:
         _siblings(roll, good, bad)
     if claim.p_unlisted > 0.2:
-        bad.append(f"no listed line made it, with probability {claim.p_unlisted:.2f}")
+        chance = "more than 0.99" if claim.p_unlisted > 0.995 else f"{claim.p_unlisted:.2f}"
+        bad.append(f"no listed line made it, with probability {chance}")
     return Reasons(tuple(good), tuple(bad))
 
 

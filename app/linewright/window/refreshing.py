@@ -98,6 +98,7 @@ class Refresher:
         track.set_range(min(low, velocity - 10.0), max(high, velocity + 10.0))
         track.set_curve(result.grid, result.score)
         track.set_rivals(result.rivals)
+        track.set_busy(self._bench.spectrum is None)  # a table of features has nothing to solve
         self._show_velocity()
 
     def _show_velocity(self) -> None:

@@ -53,7 +53,7 @@ class ResidualsWindow(QWidget):
             points.sigClicked.connect(self._clicked)
             mark = pyqtgraph.ScatterPlotItem(size=15, pxMode=True, brush=None)
             line = pyqtgraph.PlotCurveItem()
-            for item in (line, points, mark):
+            for item in (points, line, mark):
                 plot.addItem(item)
             self.points.append(points)
             self.marks.append(mark)
@@ -110,7 +110,7 @@ class ResidualsWindow(QWidget):
                            brush=[brushes[k] for k in keep], pen=None,
                            symbol=[symbols[k] for k in keep])
             start, slope, error = trend(x, found.offset)
-            line.setPen(theme.continuum, width=1)
+            line.setPen(theme.profile, width=2)
             ends = np.array([x[known].min(), x[known].max()]) if keep else np.zeros(0)
             line.setData(ends, start + slope * ends)
             said.append(_signed(slope, error, *unit))

@@ -19,7 +19,8 @@ def description(bench) -> str:
     known = "in emission" if conditions(session).emission else (
         f"T {conditions(session).temperature:,.0f} K" + ("" if len(session.features) else " assumed"))
     saved = "saved" if bench.desk.path and bench.desk.document.saved else "not saved"
-    return " · ".join([bench.desk.name, medium, frame, f"{s.samples:,} samples", known, saved])
+    what = "a table of features" if s.from_features else f"{s.samples:,} samples"
+    return " · ".join([bench.desk.name, medium, frame, what, known, saved])
 
 
 def provenance(bench) -> str:

@@ -6,6 +6,7 @@ from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
 from ...job.view_siblings import sibling_strips
 from ..plot import SiblingStrips, Strip
+from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
 
 TIP = (
     "If the candidate is right, its strongest other lines must be in the spectrum as well. "
@@ -40,6 +41,7 @@ class SiblingsBox(QWidget):
     def show_candidate(self, session, candidate) -> None:
         bench = self._workbench
         ready = candidate is not None and bench.catalogue is not None and bench.depth is not None
+        self.strips.hint = NO_SPECTRUM if bench.spectrum is None else NONE_EXPECTED
         if not ready or bench.spectrum is None:
             self.clear()
             return

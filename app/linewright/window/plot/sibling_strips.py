@@ -16,6 +16,8 @@ from .primitives import draw_lines
 from .safe_paint import paint_safely
 from .spectrum_item import column_lines, draw_run, reduce_part
 
+NONE_EXPECTED = "No siblings: no other line of this species is expected here"
+NO_SPECTRUM = "Siblings are cut out of a spectrum, and this session has none"
 _COLUMNS = 2
 _PAD = 10
 _PREFERRED_ROW = 104
@@ -47,7 +49,7 @@ class SiblingStrips(QWidget):
         super().__init__(parent)
         self.strips: list[Strip] = []
         self.current = -1
-        self.hint = "No siblings: no other line of this species is expected here"
+        self.hint = NONE_EXPECTED
         self._parts: list[Extremes] = []
         self._colour = LIGHT.accent
         self._theme: Theme = LIGHT
