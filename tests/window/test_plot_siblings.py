@@ -68,3 +68,30 @@ def test_strips_outside_the_data_and_none_at_all(widget):
 def test_theme(widget):
     widget.set_theme(DARK)
     assert np.array_equal(scenes.pixels(widget)[0, 0], scenes.rgb(DARK.base))
+
+
+@pytest.mark.parametrize("reach", [45.0, 85.0, 240.0, 600.0, 1500.0])
+def test_numbers_of_the_axis_do_not_touch(qtbot, monkeypatch, reach):
+    """At every width of strip at least three velocities are written, none over another."""
+    from PySide6.QtGui import QPainter
+
+    widget = SiblingStrips()
+    qtbot.addWidget(widget)
+    widget.resize(280, 200)
+    velocity = np.linspace(-reach, reach, 50)
+    widget.set_strips([Strip("5183.60", velocity, np.ones(50)) for _ in range(2)], "#0072b2")
+    written = []
+    original = QPainter.drawText
+    monkeypatch.setattr(QPainter, "drawText", lambda self, box, flags, text: (
+        written.append((box, text)), original(self, box, flags, text))[1])
+    with qtbot.waitExposed(widget):
+        widget.show()
+    written.clear()
+    widget.repaint()
+    metrics = widget.fontMetrics()
+    numbers = sorted((box.center().x(), text) for box, text in written
+                     if text.replace("−", "").isdigit())
+    assert len(numbers) >= 6
+    for (x1, one), (x2, other) in zip(numbers, numbers[1:]):
+        halves = 0.5 * (metrics.horizontalAdvance(one) + metrics.horizontalAdvance(other))
+        assert x2 - x1 >= 0.9 * halves

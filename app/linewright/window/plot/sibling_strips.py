@@ -182,7 +182,9 @@ class SiblingStrips(QWidget):
         scale = PixelScale(low, high, cell.left() + _PAD, cell.width() - 2 * _PAD)
         top = self.height() - self._axis_height() + 2.0
         widest = painter.fontMetrics().horizontalAdvance(f"−{abs(high):.0f}") + 10
-        major, minor, decimals = nice_ticks(low, high, max(2, int(scale.width // widest)))
+        major, minor, decimals = nice_ticks(low, high, 6)
+        if len(major) * widest > scale.width or len(major) < 3:
+            major = _three(high)
         painter.setPen(QPen(QColor(theme.faint), 0))
         draw_lines(painter, np.array([[scale.origin, top, scale.origin + scale.width, top]]))
         for ticks, length in ((minor, 2.0), (major, 5.0)):
@@ -224,3 +226,10 @@ class SiblingStrips(QWidget):
             self.stripActivated.emit(self.current)
         else:
             super().keyPressEvent(event)
+
+
+def _three(reach: float) -> np.ndarray:
+    """Zero and the largest 1, 2 or 5 x 10^n inside on either side of it."""
+    power = 10.0 ** np.floor(np.log10(reach))
+    step = power * max(f for f in (1, 2, 5) if f * power <= reach)
+    return np.array([-step, 0.0, step])
