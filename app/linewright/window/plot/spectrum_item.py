@@ -94,8 +94,8 @@ class SpectrumItem:
         bulk = max(top - bottom, 1e-300)
         reach, most = OUTLIER_RANGES * bulk, float(highs.max())
         if most > top + bulk:
-            level = middle, top + bulk
-            most = min(most, top_without_spikes(self.parts, reduced, scale, level))
+            lines = top_without_spikes(self.parts, reduced, scale, (middle, top + bulk))
+            most = min(most, max(lines, float(highs[highs <= top + bulk].max())))
         return max(float(lows.min()), middle - reach), min(most, middle + reach)
 
     def paint(self, painter: QPainter, frame: Frame, reduced: list[Reduced], ink: str) -> None:

@@ -13,7 +13,7 @@ SPILL = 0.55
 
 
 def top_without_spikes(parts, reduced, scale: PixelScale, level: tuple[float, float]) -> float:
-    """Highest flux in view that is no spike; at least ``level[1]``.
+    """Highest flux in view that is no spike, of what rises above ``level[1]``; -inf for none.
 
     parts, reduced: Extremes of the segments and what each draws; level: (middle of the
     flux, height from which peaks are looked at)
@@ -24,7 +24,7 @@ def top_without_spikes(parts, reduced, scale: PixelScale, level: tuple[float, fl
     if len(places) > MOST:
         return np.inf
     heights = [float(part.y[k]) for part, k in places if not is_spike(part.y, k, middle)]
-    return max([threshold, *heights])
+    return max(heights, default=-np.inf)
 
 
 def is_spike(flux: np.ndarray, k: int, middle: float) -> bool:

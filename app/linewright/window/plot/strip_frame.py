@@ -41,7 +41,8 @@ def strip_frame(item, reduced, place: tuple[PixelScale, float, float, float]) ->
     most = float(values.max())
     if most > high + bulk:
         level = float(middle), float(high + bulk)
-        most = min(most, top_without_spikes(item.parts, reduced, scale, level))
+        lines = top_without_spikes(item.parts, reduced, scale, level)
+        most = min(most, max(lines, float(values[values <= level[1]].max())))
     if most - middle > _TOWERING * bulk:
         knee = max(bulk / 4, 2e-4 * (most - middle))
         return CompressedFrame(scale, top, bottom, float(low), most, ratio, float(middle), knee)
