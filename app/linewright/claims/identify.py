@@ -11,6 +11,7 @@ from ..progress import Progress
 from ..spectra.medium import C_KM_S
 from .build import build_claims
 from .components import Found, find_components, refined, settled
+from .artefacts import spikes_aside, with_spikes
 from .consistency import drift_warning, flagged
 from .entries import group_half_width
 from .features_in import feature_data
@@ -150,7 +151,7 @@ def identify(
     if len(features) == 0:
         return _nothing(options)
     setting = Setting(features, catalogue, coverage, options)
-    setting.said = said
+    setting.said = with_spikes(features, said)
     found = find_components(setting, progress.part(0.0, 0.3))
     temperature = _temperature(setting, found, progress.part(0.3, 0.6))
     solution = solve_mixture(
@@ -164,6 +165,7 @@ def identify(
         found = settled(found, solution)
         solution = solve_mixture(setting.problem(found.components, temperature))
     claims = flagged(build_claims(solution, setting.catalogue, found.components), solution)
+    claims = spikes_aside(features, claims)
     progress.report("calling the roll", 0.95)
     return Identification(
         claims,
