@@ -10,7 +10,6 @@ from ..lines.catalogue import LineCatalogue
 from ..session.model import Session
 from ..spectra.medium import to_medium
 
-
 FOREGROUND = ("telluric", "sky")
 
 

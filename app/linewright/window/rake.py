@@ -25,6 +25,7 @@ class RakeKeeper(QObject):
         self.species: tuple[str, ...] = ()
         self._drawn: tuple | None = None
         self._known: tuple | None = None
+        self._counted: tuple = (None, 0.0, 0.0, ())
         self._later = QTimer(self)
         self._later.setSingleShot(True)
         self._later.setInterval(80)
@@ -89,13 +90,20 @@ class RakeKeeper(QObject):
         if chosen is not None:
             return chosen
         low, high = bench.view.now.span or bench.drawn.own_range()
-        names = most_claimed(bench.session, low, high, MOST)
+        names = self._most_claimed(bench.session, low, high)
         if not names and not len(bench.session.features):
             names = tuple(n for n in UNSOLVED if n in bench.catalogue.species_names)
         candidate = bench.candidate()
         if candidate is not None and candidate.species and candidate.species not in names:
             names = (*names, candidate.species)
         return names
+
+    def _most_claimed(self, session, low: float, high: float) -> tuple[str, ...]:
+        """Counted again only when claims or view changed, not with every selection."""
+        counted = (session.claims, low, high)
+        if self._counted[0] is not counted[0] or self._counted[1:3] != counted[1:]:
+            self._counted = (*counted, most_claimed(session, low, high, MOST))
+        return self._counted[3]
 
 
 class _Prediction:
