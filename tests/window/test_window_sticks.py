@@ -82,3 +82,27 @@ def test_marks_after_an_edit_equal_marks_made_anew(solved):
     for colour, lines in TickStrokes(fresh, theme).lines(scale, 50.0):
         assert np.array_equal(said.pop(colour), lines)
     assert not said
+
+
+def test_siblings_follow_an_edit_without_new_cuts(solved, monkeypatch):
+    """After a claim changes the strips say so, and equal strips made anew."""
+    from linewright.job import view_siblings
+    from linewright.window.panels import siblings
+
+    bench, box = solved.bench, solved.space.evidence.siblings
+    session = bench.session
+    row = next(k for k, c in enumerate(session.claims) if c.standing == "firm")
+    bench.view.select(int(session.features.number[row]))
+    sibling = next(s for s in box._found if s.said == session.claims[row].species)
+    made = []
+    monkeypatch.setattr(siblings, "sibling_strips", lambda *a: made.append(a))
+    changed = edits.set_species(bench.session, sibling.feature, "Eu II")
+    bench.desk.document.replace(changed, "test")
+    assert not made
+    said = {s.wave: s.said for s in box._found}
+    assert said[sibling.wave] == "Eu II"
+    fresh = view_siblings.sibling_strips(
+        bench.spectrum, bench.session, (bench.catalogue, bench.depth), bench.candidate(),
+        bench.view.now.velocity, float(session.features.fwhm[row]))
+    assert [(s.wave, s.feature, s.said) for s in fresh] == [
+        (s.wave, s.feature, s.said) for s in box._found]

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from ..lines.catalogue import LineCatalogue
 from ..session.model import Candidate, Session
-from ..spectra.medium import C_KM_S, to_medium
+from ..spectra.medium import C_KM_S, from_medium, to_medium
 from ..spectra.spectrum import Spectrum
 
 COUNT = 6
@@ -138,6 +138,16 @@ def _finished(spectrum, session, strip, velocity, species) -> SiblingStrip:
     own = float(to_medium(wave, spectrum.medium))
     number, said = _feature_there(session, wave * (1.0 + velocity / C_KM_S), species)
     return SiblingStrip(own, v, flux, number, said, predicted)
+
+
+def said_now(
+    strips: list[SiblingStrip], session: Session, velocity: float, species: str
+) -> list[SiblingStrip]:
+    """The same strips with what the session now says of the features in them."""
+    medium = session.spectrum.medium
+    expected = [float(from_medium(s.wave, medium)) * (1.0 + velocity / C_KM_S) for s in strips]
+    there = [_feature_there(session, wave, species) for wave in expected]
+    return [replace(s, feature=n, said=said) for s, (n, said) in zip(strips, there)]
 
 
 def _feature_there(session: Session, expected: float, species: str) -> tuple[int | None, str]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
-from ...job.view_siblings import sibling_strips
+from ...job.view_siblings import said_now, sibling_strips
 from ..plot import SiblingStrips, Strip
 from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
 
@@ -20,7 +20,8 @@ class SiblingsBox(QWidget):
 
     def __init__(self, workbench, parent=None):
         super().__init__(parent)
-        self._workbench, self._found, self._shown = workbench, [], None
+        self._workbench, self._found = workbench, []
+        self._forget()
         self.title, self.strips = QLabel("Siblings"), SiblingStrips()
         self.title.setObjectName("heading")
         self.title.setToolTip(TIP)
@@ -33,8 +34,12 @@ class SiblingsBox(QWidget):
         box.addWidget(self.strips, 1)
         self.strips.stripActivated.connect(self._go)
 
+    def _forget(self) -> None:
+        self._key, self._made_of, self._said = None, (None,) * 4, None
+
     def clear(self) -> None:
-        self._found, self._shown = [], None
+        self._found = []
+        self._forget()
         self.title.setText("Siblings")
         self.strips.set_strips([], self._workbench.theme.accent)
 
@@ -45,22 +50,30 @@ class SiblingsBox(QWidget):
         if not ready or bench.spectrum is None:
             self.clear()
             return
-        shown = (candidate.species, candidate.wave, bench.view.now.velocity, id(session),
-                 id(bench.depth), bench.theme.name, bench.view.now.selected)
-        if shown == self._shown:
-            return
-        self._shown = shown
         velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
         fwhm = float(session.features.fwhm[bench.selected_row()])
-        self._found = sibling_strips(
-            bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity, fwhm)
+        made_of = (session.features, session.continuum, bench.depth, bench.spectrum)
+        key = (candidate.species, candidate.wave, velocity, fwhm)
+        if key != self._key or any(a is not b for a, b in zip(made_of, self._made_of)):
+            self._key, self._made_of = key, made_of
+            self._found = sibling_strips(
+                bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity, fwhm)
+        elif self._said == (session.claims, bench.theme.name):
+            return
+        else:
+            self._found = said_now(self._found, session, velocity, candidate.species)
+        self._said = (session.claims, bench.theme.name)
+        self._show(candidate)
+
+    def _show(self, candidate) -> None:
+        theme = self._workbench.theme
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
         absorbs = candidate.depth_predicted > 0  # emission has no predicted profile
         strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species),
                         s.predicted if absorbs else float("nan")) for s in self._found]
-        self.strips.set_strips(strips, bench.theme.colour(candidate.species, candidate.origin))
+        self.strips.set_strips(strips, theme.colour(candidate.species, candidate.origin))
 
     def _go(self, index: int) -> None:
         strip = self._found[index]
