@@ -7,7 +7,7 @@ import re
 
 import pytest
 
-from linewright.window.plot.families import FAMILIES, FOREIGN, family_of
+from linewright.publish.families import FAMILIES, FOREIGN, family_of
 from linewright.window.plot.marks import FILL, MARKERS, marker_polygon
 from linewright.window.plot.tick_strokes import STROKES
 from linewright.window.theme import (

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from string import Template
 
-from .plot.families import family_of
+from ..publish.families import family_of
 
 TEXT_CONTRAST = 4.5
 
