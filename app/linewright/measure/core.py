@@ -30,7 +30,7 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
         prepared.append(prepare(segment, options, warnings, tick))
     if all(p is None for p in prepared):
         raise InputRefused(
-            spectrum.name or "spectrum", "no stretch of 30 usable samples in it",
+            spectrum.path or spectrum.name or "spectrum", "no stretch of 30 usable samples in it",
             "check the mask, the flux column and the ranges asked for",
         )
     filtered = [filter_runs(p) if p is not None else [] for p in prepared]
