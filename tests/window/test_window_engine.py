@@ -71,6 +71,20 @@ def test_stopping_is_immediate_and_the_next_call_works(engine, invented):
     assert engine.call("lines.species:normal_name", "fe1") == "Fe I"
 
 
+def test_a_call_given_up_half_way_never_answers_the_next(engine, invented):
+    """A cancelled progress ends the call at its next report, before or without a stop."""
+    import window_builders as build
+
+    from linewright.job.options import SolveOptions
+
+    spectrum = build.spectrum_of(build.catalogue_of(60))
+    progress = Progress(lambda stage, fraction: fraction > 0.0 and progress.cancel())
+    with pytest.raises(Cancelled):
+        engine.call("job.solve:solve", spectrum, None, SolveOptions(), progress=progress)
+    assert engine.call("lines.species:normal_name", "fe1") == "Fe I"
+    assert engine.call("lines.species:normal_name", "ti2") == "Ti II"
+
+
 def test_a_process_that_dies_is_said_and_replaced(engine):
     engine.call("lines.species:normal_name", "fe1")
     engine._child.kill()

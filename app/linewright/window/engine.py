@@ -28,7 +28,7 @@ class Engine:
     def __init__(self):
         self._child: Popen | None = None
         self._turn = threading.Lock()  # one call at a time
-        self._stopped = False
+        self._stopped, self._target = False, ""
 
     def _alive(self) -> Popen:
         if self._child is not None and self._child.poll() is not None:
@@ -55,7 +55,7 @@ class Engine:
         from .parcels import packed
 
         with self._turn:
-            self._stopped = False
+            self._stopped, self._target = False, target
             if progress is not None:
                 progress.report("starting", 0.0)
                 keywords["report"] = True
@@ -64,10 +64,14 @@ class Engine:
                 pickle.dump(packed((target, arguments, keywords)), child.stdin,
                             protocol=pickle.HIGHEST_PROTOCOL)
                 child.stdin.flush()
-                return self._await(child, progress)
+                kind, content = self._await(child, progress)
             except (EOFError, OSError, pickle.UnpicklingError) as broken:
                 self._reap(child)
                 raise self._ending() from broken
+            except BaseException:  # given up half way, such as by a cancelled progress: what
+                self._reap(child)  # the child still says must not answer the next call
+                raise
+        return _outcome(kind, content)
 
     def _await(self, child, progress: Progress | None):
         import pickle
@@ -76,13 +80,8 @@ class Engine:
 
         while True:
             kind, *content = unpacked(pickle.load(child.stdout))
-            if kind == "done":
-                return content[0]
-            if kind == "refused":
-                refusal, *words = content[0]
-                raise refusal(*words)
-            if kind == "failed":
-                raise content[0]
+            if kind != "progress":
+                return kind, content[0]
             if progress is not None:
                 progress.report(*content)
 
@@ -103,8 +102,13 @@ class Engine:
         if self._child is child:
             self._child = None
 
-    def stop(self) -> None:
-        """Ends the call under way at once; the next call starts a new process."""
+    def stop(self, target: str | None = None) -> None:
+        """Ends the call under way at once; the next call starts a new process.
+
+        target: only if this function is what is being called
+        """
+        if target not in (None, self._target):
+            return
         self._stopped = True
         child = self._child
         if child is not None and self._turn.locked():
@@ -116,3 +120,13 @@ class Engine:
         with self._turn:
             if self._child is not None:
                 self._reap(self._child)
+
+
+def _outcome(kind: str, content):
+    """The result, or what the function raised."""
+    if kind == "refused":
+        refusal, *words = content
+        raise refusal(*words)
+    if kind == "failed":
+        raise content
+    return content

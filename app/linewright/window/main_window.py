@@ -140,7 +140,8 @@ class MainWindow(Questions, Showing, QMainWindow):
             text = desk.name + ("" if desk.saved else " *")
             if k == bar.count():
                 bar.addTab(text)
-            bar.setTabText(k, text)
+            if bar.tabText(k) != text:
+                bar.setTabText(k, text)
         if self.bench.desk in desks:
             bar.setCurrentIndex(desks.index(self.bench.desk))
         bar.setVisible(len(desks) > 1)

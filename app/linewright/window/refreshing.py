@@ -21,7 +21,7 @@ class Refresher:
     def __init__(self, bench, space):
         self._bench, self._space = bench, space
         self._spectrum = self._session = self._desk = None
-        self._steps = Steps(space)
+        self._steps, self._track_shown = Steps(space), (None,) * 4
         self._ours = False  # while the window itself moves the view
         self.rake = RakeKeeper(bench, space.spectrum_view.set_rake, space)
         self._calm = QTimer(space)
@@ -90,6 +90,11 @@ class Refresher:
         self._space.catalogue.show_catalogue()
 
     def _show_track(self, session) -> None:
+        shown = (session.velocity, self._bench.view.now.velocity, self._bench.spectrum,
+                 self._bench.desk.options)
+        if all(a is b for a, b in zip(shown, self._track_shown)):
+            return
+        self._track_shown = shown
         track, result = self._space.track, session.velocity
         low, high = self._bench.desk.options.velocity_range
         if len(result.grid):

@@ -64,7 +64,9 @@ class Workspace(QWidget):
         names = ("Ledger", "Roll call", "Catalogue", "Orphans")
         for k, (name, count) in enumerate(zip(
                 names, (features, species, lines, orphans), strict=True)):
-            self.tables.setTabText(k, f"{name}  {count:,}" if count else name)
+            text = f"{name}  {count:,}" if count else name
+            if self.tables.tabText(k) != text:  # setting it lays the tabs out again
+                self.tables.setTabText(k, text)
 
     def remember(self) -> None:
         memory.keep_bytes("across", self.across.saveState())

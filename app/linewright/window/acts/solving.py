@@ -8,6 +8,8 @@ from ..notices import Notice
 from ..tasks import Request
 from . import opening
 
+SOLVE = "job.solve:solve"
+
 
 def solve(bench) -> None:
     """Solves the shown spectrum as it stands now; editing goes on meanwhile."""
@@ -21,12 +23,12 @@ def solve(bench) -> None:
         work=lambda progress: _solved(engine, spectrum, options, progress),
         done=lambda session: _take(bench, desk, spectrum, session),
         failed=lambda error: _failed(bench, error),
-        stop=engine.stop,
+        stop=lambda: engine.stop(SOLVE),
     ))
 
 
 def _solved(engine, spectrum, options, progress):
-    return engine.call("job.solve:solve", spectrum, None, options, progress=progress)
+    return engine.call(SOLVE, spectrum, None, options, progress=progress)
 
 
 def _take(bench, desk, spectrum, session) -> None:
