@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from importlib import import_module
+
 from PySide6.QtCore import QTimer
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import QApplication, QMainWindow, QStackedWidget, QVBoxLayout, QWidget
@@ -88,10 +90,13 @@ class MainWindow(Questions, Showing, QMainWindow):
         return self.space
 
     def _warm_engine(self) -> None:
-        """The first solve should not wait for imports and catalogue."""
+        """The first solve should not wait for imports and catalogue, nor the first pick."""
+        def work(_progress):
+            import_module("..job.view_pick", __package__)
+            return self.bench.engine.call("window.engine_child:warm")
+
         self.tasks.start(Request(
-            key="warm", title="", shown=False,
-            work=lambda progress: self.bench.engine.call("window.engine_child:warm"),
+            key="warm", title="", shown=False, work=work,
             done=lambda _ready: None, failed=lambda _error: None))
 
     @property
