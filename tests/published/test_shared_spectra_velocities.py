@@ -39,6 +39,9 @@ def test_solved_velocity(name, choices, ranges, stated, tolerance):
     session = solve(read_spectrum(SHARED / name, **choices), options=SolveOptions(ranges=ranges))
     assert session.velocity.declared
     assert session.velocity.velocity == pytest.approx(stated, abs=tolerance)
+    if session.velocity.how == "template":
+        assert session.velocity.error < 10.0
+        assert abs(session.velocity.velocity - stated) < 2.5 * session.velocity.error
 
 
 def centroid(spectrum, rest_vacuum: float, reach: float, core: float) -> float:

@@ -98,7 +98,7 @@ def summarise(grid, score, width: float) -> Vote:
     rivals = far[np.argsort(-score[far], kind="stable")][:5]
     outside = np.abs(grid - grid[best]) > exclusion
     rival_level = float(np.max(score[outside])) if np.any(outside) else -np.inf
-    velocity, error = _refine(grid, score, best)
+    velocity, error = refined_peak(grid, score, best)
     return Vote(
         velocity,
         error,
@@ -115,7 +115,7 @@ def _peaks(score):
     return np.nonzero(np.concatenate(([True], inner, [True])))[0]
 
 
-def _refine(grid, score, best) -> tuple[float, float]:
+def refined_peak(grid, score, best) -> tuple[float, float]:
     """Parabola through the peak; its curvature is the statistical error."""
     if best in (0, len(grid) - 1):
         return float(grid[best]), float(grid[1] - grid[0])

@@ -12,7 +12,7 @@ from ..claims.temperature import COARSE, electron_pressure
 from ..claims.velocity import typical_width
 from ..lines.strengths import absorption_strength
 
-WIDTHS = (0.5, 0.7, 1.0)  # of the typical width: features that blend are broader than lines
+WIDTH = 0.63  # of the typical width: features that blend are broader than lines
 DEEPEST = 0.3  # deeper absorption counts as this: strong broad lines must not decide alone
 BLENDED = 40.0  # km/s: lines broader than this are blends (R below about 7,500)
 
@@ -30,17 +30,13 @@ def template_velocity(spectrum, measurement, catalogue, found, options) -> Veloc
     low = min(p[0][0] for p in pieces) * 0.995
     near = catalogue.between(low, max(p[0][-1] for p in pieces) * 1.005)
     tried = (found.temperature,) if found.velocity.declared else COARSE
-    votes, span = [], options.velocity_range
+    votes = []
     for t in tried:
         strength = absorption_strength(
             near, t, electron_pressure(t), options.metallicity, dict(options.abundances)
         )
-        votes += [
-            (share * width, template_vote(pieces, near, strength, share * width, span))
-            for share in WIDTHS
-        ]
-    # A narrower template has more samples: scores are compared per independent sample.
-    vote = max(votes, key=lambda v: v[0] * float(np.max(v[1].score)))[1]
+        votes.append(template_vote(pieces, near, strength, WIDTH * width, options.velocity_range))
+    vote = max(votes, key=lambda v: float(np.max(v.score)))
     if not vote.declared:
         return None
     return VelocityResult(
