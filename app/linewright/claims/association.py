@@ -34,24 +34,47 @@ def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1
     n_feature, n_line = sizes
     if len(odds) == 0:
         return Marginals(np.zeros(0), np.ones(n_feature), np.ones(n_line))
-    everything = (feature, line, odds)
-    weighty = odds > NEGLIGIBLE
-    feature, line, odds = feature[weighty], line[weighty], odds[weighty]
-    open_line = np.ones_like(odds)
-    for _ in range(rounds):
-        offer = odds * open_line
-        total = np.bincount(feature, offer, n_feature)[feature]
-        claim = odds / (1.0 + np.maximum(total - offer, 0.0))
-        wanted = np.bincount(line, claim, n_line)[line]
-        updated = 1.0 / (1.0 + np.maximum(wanted - claim, 0.0))
-        change = float(np.max(np.abs(updated - open_line)))
-        open_line = updated
-        if change < tolerance:
-            break
-    feature, line, odds = everything
-    offer = odds.copy()
-    offer[weighty] *= open_line
+    open_line = _open_lines(feature, line, odds, sizes, (rounds, tolerance))
+    offer = odds * open_line
     norm = 1.0 + np.bincount(feature, offer, n_feature)
     pair = offer / norm[feature]
     missing = np.clip(1.0 - np.bincount(line, pair, n_line), 0.0, 1.0)
     return Marginals(pair, 1.0 / norm, missing)
+
+
+def _open_lines(feature, line, odds, sizes, limits):
+    """Message of each line to each feature, (p,): how free the line is to make it.
+
+    A line wanted by one feature only is free; messages run between the others alone.
+    limits: (most rounds, tolerance of the messages).
+    """
+    n_feature, n_line = sizes
+    message = np.ones_like(odds)
+    weighty = odds > NEGLIGIBLE
+    wanted_by = np.bincount(line[weighty], minlength=n_line)
+    loose = weighty & (wanted_by[line] == 1)
+    edges = np.nonzero(weighty & (wanted_by[line] > 1))[0]
+    if len(edges) == 0:
+        return message
+    fixed = 1.0 + np.bincount(feature[loose], odds[loose], n_feature)
+    (f, n_f), (i, n_i), power = _compact(feature[edges]), _compact(line[edges]), odds[edges]
+    fixed, open_line = fixed[feature[edges]], np.ones(len(edges))
+    for _ in range(limits[0]):
+        offer = power * open_line
+        claim = power / (fixed + np.maximum(np.bincount(f, offer, n_f)[f] - offer, 0.0))
+        wanted = np.bincount(i, claim, n_i)[i]
+        updated = 1.0 / (1.0 + np.maximum(wanted - claim, 0.0))
+        change = float(np.max(np.abs(updated - open_line)))
+        open_line = updated
+        if change < limits[1]:
+            break
+    message[edges] = open_line
+    return message
+
+
+def _compact(index):
+    """(indices from 0 without holes, how many)."""
+    used = np.zeros(int(index.max()) + 1, dtype=np.int64)
+    used[index] = 1
+    renumbered = np.cumsum(used) - 1
+    return renumbered[index], int(renumbered[-1]) + 1

@@ -27,15 +27,46 @@ def species_posteriors(solution: Solution, names):
 
 def build_claims(solution: Solution, catalogue, components) -> tuple[Claim, ...]:
     """One claim per feature, in feature order."""
-    e = solution.problem.entries
-    names = catalogue.species[e.row]
-    species_p = species_posteriors(solution, names)
-    order = np.lexsort((-solution.probability, solution.feature))
+    species_p = species_posteriors(solution, catalogue.species[solution.problem.entries.row])
+    order = np.lexsort((-solution.probability, -species_p, solution.feature))
+    sure = _certainty(solution, components)
+    kept = order[_diverse(solution, catalogue, order)]
+    candidates = _candidates(solution, catalogue, components, (kept, sure))
     count = len(solution.problem.features)
-    starts = np.searchsorted(solution.feature[order], np.arange(count + 1))
-    builder = _Builder(solution, catalogue, components, species_p)
+    bounds = np.searchsorted(solution.feature[kept], np.arange(count + 1))
+    best = kept[bounds[:-1][bounds[1:] > bounds[:-1]]]
+    blends = dict(zip(solution.feature[best].tolist(), _blends(solution, catalogue, best)))
+    probability = dict(
+        zip(solution.feature[best].tolist(), np.minimum(species_p[best], 1.0).tolist())
+    )
+    unlisted = (1.0 - (1.0 - solution.unlisted) * sure).tolist()
+    bounds, sure = bounds.tolist(), sure.tolist()
     return tuple(
-        builder.claim(i, order[starts[i] : starts[i + 1]]) for i in range(count)
+        _claim(
+            candidates[bounds[i] : bounds[i + 1]],
+            probability[i] * sure[i],
+            unlisted[i],
+            blends[i],
+        )
+        if i in blends
+        else Claim(p_unlisted=1.0)
+        for i in range(count)
+    )
+
+
+def _claim(candidates, probability: float, unlisted: float, blend) -> Claim:
+    best = candidates[0]
+    others = (c.species for c in candidates if c.species != best.species)
+    return Claim(
+        species=best.species,
+        probability=probability,
+        p_line=min(best.probability, 1.0),
+        p_unlisted=unlisted,
+        standing=standing_of(probability),
+        origin=best.origin,
+        candidates=candidates,
+        blend=blend,
+        runner_up=next(others, ""),
     )
 
 
@@ -53,99 +84,88 @@ def _predicted_depths(solution: Solution):
     return depth
 
 
-class _Builder:
-    """Turns the sorted pairs of one feature into its claim."""
+def _diverse(solution: Solution, catalogue, order):
+    """Positions in ``order`` (pairs ranked within each feature) of the best lines, at most two
+    of a species, so that rivals stay visible."""
+    feature = solution.feature[order].astype(np.int64)
+    name = catalogue.species[solution.problem.entries.row[solution.entry[order]]]
+    key = feature * (int(name.max(initial=0)) + 1) + name
+    chosen = np.nonzero(_rank_within(key) < 2)[0]
+    return chosen[_rank_within(feature[chosen]) < KEPT]
 
-    def __init__(self, solution: Solution, catalogue, components, species_p):
-        self.s, self.catalogue, self.components = solution, catalogue, components
-        self.species_p = species_p
-        self.certainty = np.array([c.certainty for c in components])
-        self.depth = _predicted_depths(solution)
 
-    def claim(self, feature: int, pairs) -> Claim:
-        unlisted = float(self.s.unlisted[feature])
-        sure = self._certainty(pairs)
-        unlisted = 1.0 - (1.0 - unlisted) * sure
-        if len(pairs) == 0:
-            return Claim(p_unlisted=1.0)
-        best_species = self._species(pairs[np.argmax(self.species_p[pairs])])
-        ranked = sorted(pairs, key=lambda p: (-self.species_p[p], -self.s.probability[p], p))
-        kept = self._diverse(ranked)
-        probability = min(float(self.species_p[kept[0]]), 1.0) * sure
-        candidates = tuple(self._candidate(p, sure) for p in kept)
-        others = [c.species for c in candidates if c.species != best_species]
-        return Claim(
-            species=best_species,
-            probability=probability,
-            p_line=min(candidates[0].probability, 1.0),
-            p_unlisted=unlisted,
-            standing=standing_of(probability),
-            origin=candidates[0].origin,
-            candidates=candidates,
-            blend=self._blend(kept[0]),
-            runner_up=others[0] if others else "",
-        )
+def _rank_within(key):
+    """Running number (from 0) of each row among the rows of its key, in row order."""
+    order = np.argsort(key, kind="stable")
+    ranked = key[order]
+    start = np.nonzero(np.concatenate(([True], ranked[1:] != ranked[:-1])))[0]
+    size = np.diff(np.concatenate((start, [len(key)])))
+    out = np.empty(len(key), dtype=np.int64)
+    out[order] = np.arange(len(key)) - np.repeat(start, size)
+    return out
 
-    def _species(self, pair: int) -> str:
-        return self.catalogue.species_of(self.s.problem.entries.row[self.s.entry[pair]])
 
-    def _diverse(self, ranked) -> list[int]:
-        """The best lines, at most two of a species, so that rivals stay visible."""
-        kept, seen = [], {}
-        for pair in ranked:
-            name = self._species(pair)
-            if seen.get(name, 0) < 2:
-                kept.append(pair)
-                seen[name] = seen.get(name, 0) + 1
-            if len(kept) == KEPT:
-                break
-        return kept
+def _certainty(solution: Solution, components):
+    """Certainty (f,) of the components behind each feature's pairs, weighted by probability."""
+    certain = np.array([c.certainty for c in components])
+    count = len(solution.problem.features)
+    if np.all(certain == 1.0):
+        return np.ones(count)
+    own = certain[solution.problem.entries.component[solution.entry]]
+    weight = solution.probability + 1e-12
+    total = np.bincount(solution.feature, weight, count)
+    mean = np.bincount(solution.feature, weight * own, count) / np.where(total > 0, total, 1.0)
+    return np.where(total > 0, mean, 1.0)
 
-    def _certainty(self, pairs) -> float:
-        """Certainty of the components behind a feature's pairs, weighted by probability."""
-        if len(pairs) == 0 or np.all(self.certainty == 1.0):
-            return 1.0
-        certain = self.certainty[self.s.problem.entries.component[self.s.entry[pairs]]]
-        weight = self.s.probability[pairs] + 1e-12
-        return float(np.sum(weight * certain) / np.sum(weight))
 
-    def _candidate(self, pair: int, sure: float) -> Candidate:
-        e = self.s.problem.entries
-        entry = int(self.s.entry[pair])
-        row, cat = int(e.row[entry]), self.catalogue
-        component = self.components[int(e.component[entry])]
-        return Candidate(
-            species=cat.species_of(row),
-            origin=component.origin,
-            wave=float(cat.wave[row]),
-            wave_err=float(cat.wave_err[row]),
-            e_low=float(cat.e_low[row]),
-            loggf=float(cat.loggf[row]),
-            velocity=float(component.velocity),
-            probability=float(min(self.s.probability[pair], 1.0)) * sure,
-            share=float(self.s.groups.share[entry]),
-            offset_sigma=float(self.s.offset_sigma[pair]),
-            depth_predicted=float(self.depth[entry]),
-            source=cat.source_keys[int(cat.source[row])],
-        )
+def _candidates(solution: Solution, catalogue, components, chosen):
+    """Candidates of the chosen pairs; chosen: (pair indices, certainty per feature)."""
+    pairs, sure = chosen
+    e, entry = solution.problem.entries, solution.entry[pairs]
+    row = e.row[entry]
+    origins = [c.origin for c in components]
+    velocities = np.array([c.velocity for c in components], dtype=float)
+    owner = e.component[entry]
+    probability = np.minimum(solution.probability[pairs], 1.0) * sure[solution.feature[pairs]]
+    columns = (
+        [catalogue.species_names[i] for i in catalogue.species[row].tolist()],
+        [origins[i] for i in owner.tolist()],
+        catalogue.wave[row].tolist(),
+        catalogue.wave_err[row].tolist(),
+        catalogue.e_low[row].tolist(),
+        catalogue.loggf[row].tolist(),
+        velocities[owner].tolist(),
+        probability.tolist(),
+        solution.groups.share[entry].tolist(),
+        solution.offset_sigma[pairs].tolist(),
+        _predicted_depths(solution)[entry].tolist(),
+        [catalogue.source_keys[i] for i in catalogue.source[row].tolist()],
+    )
+    return tuple(map(Candidate, *columns))
 
-    def _blend(self, pair: int) -> tuple[tuple[str, float, float], ...]:
-        """Other lines of the best line's group that carry a share of at least a fifth."""
-        e = self.s.problem.entries
-        best = int(self.s.entry[pair])
-        half = self.s.problem.group_half_width[best]
-        low, high = np.searchsorted(e.wave, [e.wave[best] - half, e.wave[best] + half])
-        near = np.arange(low, high)
-        near = near[(e.population[near] == e.population[best]) & (near != best)]
-        relative = 10.0 ** (SHARE_EXPONENT * (self.s.strength[near] - self.s.strength[best]))
-        share = np.minimum(self.s.groups.share[best] * relative, 1.0)
-        listed = np.nonzero(share >= BLEND_SHARE)[0]
-        listed = listed[np.argsort(-share[listed], kind="stable")]
-        return tuple(
-            (
-                self.catalogue.species_of(int(e.row[near[i]])),
-                float(self.catalogue.wave[e.row[near[i]]]),
-                float(share[i]),
-            )
-            for i in listed
-        )
+
+def _blends(solution: Solution, catalogue, pairs):
+    """Per pair the other lines of its line's group that carry a share of at least a fifth."""
+    e, best = solution.problem.entries, solution.entry[pairs]
+    half = solution.problem.group_half_width[best]
+    low = np.searchsorted(e.wave, e.wave[best] - half)
+    high = np.searchsorted(e.wave, e.wave[best] + half)
+    owner = np.repeat(np.arange(len(best)), high - low)
+    near = np.arange(len(owner)) - np.repeat(np.cumsum(high - low) - high, high - low)
+    mine = best[owner]
+    other = (e.population[near] == e.population[mine]) & (near != mine)
+    owner, near, mine = owner[other], near[other], mine[other]
+    relative = 10.0 ** (SHARE_EXPONENT * (solution.strength[near] - solution.strength[mine]))
+    share = np.minimum(solution.groups.share[mine] * relative, 1.0)
+    listed = np.nonzero(share >= BLEND_SHARE)[0]
+    listed = listed[np.lexsort((-share[listed], owner[listed]))]
+    out: list[tuple] = [()] * len(best)
+    row = e.row[near[listed]]
+    for i, *contributor in zip(
+        owner[listed].tolist(),
+        [catalogue.species_names[k] for k in catalogue.species[row].tolist()],
+        catalogue.wave[row].tolist(),
+        share[listed].tolist(),
+    ):
+        out[i] += (tuple(contributor),)
+    return out

@@ -109,10 +109,9 @@ def learn_relation(strength, measured, weight, previous: StrengthRelation) -> St
     s, m, w = strength[good], measured[good], weight[good]
     index = bin_of(s)
     level, mass = np.array(previous.value), np.full(len(CENTRES), 1e-3)
-    for b in np.unique(index):
-        here = index == b
-        level[b] = _weighted_median(m[here], w[here])
-        mass[b] += np.sum(w[here])
+    mass += np.bincount(index, w, len(CENTRES))
+    used, middle = _medians_by(index, m, w)
+    level[used] = middle
     from scipy.optimize import isotonic_regression
 
     known = mass > 0.5
@@ -138,6 +137,17 @@ def _extend(centres, level, previous, slope: float = 0.4):
     value = np.interp(CENTRES, centres, level)
     value = np.where(CENTRES < centres[0], level[0] + slope * (CENTRES - centres[0]), value)
     return np.where(CENTRES > centres[-1], level[-1] + slope * (CENTRES - centres[-1]), value)
+
+
+def _medians_by(index, values, weights):
+    """(indices that occur, ascending; weighted median of the values of each)."""
+    order = np.lexsort((values, index))
+    index, values, total = index[order], values[order], np.cumsum(weights[order])
+    start = np.nonzero(np.concatenate(([True], index[1:] != index[:-1])))[0]
+    end = np.concatenate((start[1:], [len(index)])) - 1
+    before = np.concatenate(([0.0], total))[start]
+    place = np.searchsorted(total, before + 0.5 * (total[end] - before))
+    return index[start], values[np.clip(place, start, end)]
 
 
 def _weighted_median(values, weights) -> float:

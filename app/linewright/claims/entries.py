@@ -9,6 +9,7 @@ import numpy as np
 ABSORPTION, EMISSION = 1, -1
 MIN_RESOLUTION = 0.04  # Angstrom; lines closer than this are one feature in any spectrum
 RESOLUTION_SHARE = 0.45  # of the FWHM: lines closer than this are one feature
+LN10 = np.log(10.0)
 SHARE_EXPONENT = 1.1  # softens predicted opacities, whose log scatter is 0.2 to 0.3 dex
 
 
@@ -73,27 +74,45 @@ def group(wave, strength, population, half_width) -> Groups:
     All arrays of shape (n,), ``wave`` ascending. Only lines of one population share: the
     strengths of different ones stand on different scales, and they compete as rivals.
     """
-    n = len(wave)
-    share, total, centroid = np.ones(n), np.array(strength, dtype=float), np.array(wave, float)
-    for kind in np.unique(population):
-        rows = np.nonzero(population == kind)[0]
-        w, top = wave[rows], float(np.max(strength[rows]))
-        linear = 10.0 ** (strength[rows] - top)
-        soft = linear**SHARE_EXPONENT
-        first = np.searchsorted(w, w - half_width[rows], side="left")
-        last = np.searchsorted(w, w + half_width[rows], side="right")
-        reference = w[0]
-        sums = [
-            np.concatenate(([0.0], np.cumsum(x)))
-            for x in (soft, linear, linear * (w - reference))
-        ]
-        soft_sum, lin_sum, moment = (x[last] - x[first] for x in sums)
-        share[rows] = np.clip(soft / np.maximum(soft_sum, soft), 0.0, 1.0)
-        lin_sum = np.maximum(lin_sum, linear)
-        total[rows] = top + np.log10(lin_sum)
-        centre = reference + moment / lin_sum
-        alone = (last - first) == 1
-        centroid[rows] = np.where(
-            alone, w, np.clip(centre, w - half_width[rows], w + half_width[rows])
-        )
-    return Groups(share, total, centroid)
+    return Neighbourhood(wave, population, half_width).groups(np.asarray(strength, dtype=float))
+
+
+class Neighbourhood:
+    """Which lines stand within one resolution element of each other: found once, used at
+    every change of the strengths. Arguments as of ``group``."""
+
+    def __init__(self, wave, population, half_width):
+        self.wave = np.asarray(wave, dtype=float)
+        self.blocks = []
+        for kind in np.unique(population):
+            rows = np.nonzero(population == kind)[0]
+            w, half = self.wave[rows], half_width[rows]
+            first = np.searchsorted(w, w - half, side="left")
+            last = np.searchsorted(w, w + half, side="right")
+            crowd = np.nonzero(last - first > 1)[0]
+            self.blocks.append((rows, crowd, first[crowd], last[crowd], half[crowd]))
+
+    def groups(self, strength) -> Groups:
+        """Groups at strengths (n,), log10."""
+        share, total, centroid = np.ones(len(self.wave)), strength.copy(), self.wave.copy()
+        for rows, crowd, first, last, half in self.blocks:
+            if len(crowd) == 0:
+                continue
+            w, here = self.wave[rows], strength[rows]
+            top = float(np.max(here))
+            linear = np.exp(LN10 * (here - top))
+            soft = np.exp((LN10 * SHARE_EXPONENT) * (here - top))
+            soft_sum = _window(soft, first, last)
+            lin_sum = np.maximum(_window(linear, first, last), linear[crowd])
+            moment = _window(linear * (w - w[0]), first, last)
+            chosen, place = rows[crowd], w[crowd]
+            share[chosen] = np.clip(soft[crowd] / np.maximum(soft_sum, soft[crowd]), 0.0, 1.0)
+            total[chosen] = top + np.log10(lin_sum)
+            centroid[chosen] = np.clip(w[0] + moment / lin_sum, place - half, place + half)
+        return Groups(share, total, centroid)
+
+
+def _window(values, first, last):
+    """Sums of values[first:last] per row."""
+    summed = np.concatenate(([0.0], np.cumsum(values)))
+    return summed[last] - summed[first]

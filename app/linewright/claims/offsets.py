@@ -39,10 +39,18 @@ def strength_log_likelihood(residual, slope, scatter, weight, species, count):
     residual: m - h(S without offset), dex; slope: dh/dS; weight: pair probability.
     """
     table = np.zeros((count, len(GRID)))
-    for j, offset in enumerate(GRID):
-        z = (residual - slope * offset) / scatter
-        value = np.log(0.9 * np.exp(-0.5 * np.minimum(z**2, 60.0)) + 0.02)
-        table[:, j] = np.bincount(species, weight * value, count)
+    if len(residual) == 0:
+        return table
+    order = np.argsort(species, kind="stable")
+    # Single precision is plenty for a sum over claims, and several times faster.
+    base = (residual / scatter)[order].astype(np.float32)
+    slant = (slope / scatter)[order].astype(np.float32)
+    z = base[None, :] - GRID.astype(np.float32)[:, None] * slant[None, :]
+    value = np.log(np.float32(0.9) * np.exp(-0.5 * np.minimum(z * z, 60.0)) + np.float32(0.02))
+    value = value * weight[order]
+    named = species[order]
+    start = np.nonzero(np.concatenate(([True], named[1:] != named[:-1])))[0]
+    table[named[start]] = np.add.reduceat(value, start, axis=1).T
     return table
 
 

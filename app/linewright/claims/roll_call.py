@@ -114,16 +114,19 @@ class _Coincidences:
 
     def _open(self, rows):
         """P(no other species made the feature), in wavelength order."""
-        mine = np.isin(self.s.entry, rows)
+        chosen = np.zeros(len(self.names), dtype=bool)
+        chosen[rows] = True
+        mine = chosen[self.s.entry]
         own = np.bincount(self.s.feature[mine], self.s.probability[mine], len(self.total))
         return np.clip(1.0 - (self.total - own), 0.0, 1.0)[self.order]
 
     def _hits(self, wave, sign, error, openness):
-        index = np.clip(np.searchsorted(self.wave, wave), 1, max(len(self.wave) - 1, 1))
-        best = np.zeros(len(wave))
-        for i in (index - 1, np.minimum(index, len(self.wave) - 1)):
-            near = np.abs(self.wave[i] - wave) <= 2.5 * np.hypot(self.sigma[i], error)
-            best = np.maximum(best, near * openness[i] * (self.sign[i] == sign))
+        index = np.searchsorted(self.wave, wave)
+        best = np.zeros(wave.shape)
+        for i in (np.maximum(index - 1, 0), np.minimum(index, len(self.wave) - 1)):
+            spread = 2.5 * np.sqrt(self.sigma[i] ** 2 + error**2)
+            near = (np.abs(self.wave[i] - wave) <= spread) & (self.sign[i] == sign)
+            best = np.maximum(best, near * openness[i])
         return best
 
     def _rates(self, ranked, openness):
@@ -131,9 +134,9 @@ class _Coincidences:
         e = self.s.problem.entries
         width = np.maximum(0.3, 8 * np.median(self.sigma))
         shifts = width * (1.0 + 0.37 * np.arange(SHIFTS))
-        rate = np.zeros(len(ranked))
-        for shift in np.concatenate((-shifts, shifts)):
-            rate += self._hits(e.wave[ranked] + shift, e.sign[ranked], e.error[ranked], openness)
+        shifts = np.concatenate((-shifts, shifts))[:, None]
+        hits = self._hits(e.wave[ranked] + shifts, e.sign[ranked], e.error[ranked], openness)
+        rate = np.sum(hits, axis=0)
         pooled = np.mean(rate) / (2 * SHIFTS)
         return 0.5 * rate / (2 * SHIFTS) + 0.5 * pooled
 

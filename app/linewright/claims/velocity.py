@@ -40,11 +40,17 @@ def typical_width(features) -> float:
 
 
 def strongest(features, sign: int, count: int = VOTERS, where=None):
-    """Row indices of the ``count`` most significant features of one sign."""
+    """Row indices of the ``count`` most significant features of one sign: by equivalent
+    width, else by depth; spread evenly over the table where neither is measured."""
     rows = np.nonzero((features.sign == sign) if where is None else (features.sign == sign) & where)[0]
-    weight = np.abs(np.nan_to_num(features.ew[rows])) + 1e-3 * np.nan_to_num(
-        features.significance[rows]
-    )
+    if len(rows) <= count:
+        return rows
+    weight = np.abs(np.nan_to_num(features.ew[rows]))
+    if not np.any(weight):
+        weight = np.abs(np.nan_to_num(features.depth[rows]))
+    weight = weight + 1e-3 * np.nan_to_num(features.significance[rows])
+    if not np.any(weight):
+        return rows[(np.arange(count) * len(rows)) // count]
     return np.sort(rows[np.argsort(-weight, kind="stable")[:count]])
 
 

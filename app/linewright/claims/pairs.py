@@ -1,0 +1,69 @@
+"""Which features and lines stand near enough to be matched, and what of that stays fixed
+while the engine learns."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .entries import Neighbourhood
+from .problem import Problem, find_pairs, inside
+from .unlisted import StrengthBins
+
+TAIL_FACTOR, TAIL_FLOOR = 3.5, 0.02  # heavy tail of position errors: widening, Angstrom
+CENTRING = 0.03  # of the FWHM: asymmetries and blends limit any centroid
+
+
+@dataclass(frozen=True, eq=False)
+class Block:
+    """One population's part of a problem.
+
+    entries, pairs: row indices; graded: those of its pairs with a measured strength, empty
+    where the population's depths are not predicted
+    names: species index of each of its entries from 0 without holes; species: the indices
+    these stand for, in the problem's numbering
+    """
+
+    population: int
+    entries: np.ndarray
+    pairs: np.ndarray
+    graded: np.ndarray
+    covered: np.ndarray
+    names: np.ndarray
+    species: np.ndarray
+
+
+class Pairs:
+    """Pairs (p,) of a problem with everything that stays fixed over the rounds."""
+
+    def __init__(self, problem: Problem):
+        f, e = problem.features, problem.entries
+        self.base = np.sqrt(
+            f.error**2 + (CENTRING * np.nan_to_num(f.fwhm)) ** 2 + f.excess**2
+        )
+        reach = 3.5 * np.maximum(TAIL_FACTOR * 1.5 * self.base, TAIL_FLOOR)
+        self.feature, self.entry = find_pairs(f, e, np.minimum(reach, 12 * self.base + 0.25))
+        self.covered = inside(e.wave, problem.coverage).astype(float)
+        self.near = Neighbourhood(e.wave, e.population, problem.group_half_width)
+        self.bins = StrengthBins(f.sign, f.strength)
+        self.m = f.strength[self.feature]
+        self.m_variance = np.nan_to_num(f.strength_err[self.feature]) ** 2
+        self.wave = f.wave[self.feature]
+        self.own = self.wave - e.wave[self.entry]
+        self.crowded = f.crowded[self.feature].astype(int)
+        self.base_variance = self.base[self.feature] ** 2
+        self.species = e.species[self.entry]
+        self.blocks = tuple(self._block(problem, int(k)) for k in np.unique(e.population))
+
+    def _block(self, problem: Problem, population: int) -> Block:
+        e = problem.entries
+        entries = np.nonzero(e.population == population)[0]
+        pairs = np.nonzero(e.population[self.entry] == population)[0]
+        graded = pairs[np.isfinite(self.m[pairs])]
+        if population in problem.ungraded:
+            graded = graded[:0]
+        used = np.bincount(e.species[entries], minlength=problem.species) > 0
+        species, names = np.nonzero(used)[0], (np.cumsum(used) - 1)[e.species[entries]]
+        covered = np.nonzero(self.covered[entries] > 0)[0]
+        return Block(population, entries, pairs, graded, covered, names, species)
