@@ -105,49 +105,6 @@ def test_the_rake_shows_the_most_claimed_in_view_and_the_candidate(solved, qtbot
     assert session.claims[0].species in solved.rake.species
 
 
-def test_catalogue_filters_species_range_depth_and_text(solved, invented):
-    panel, bench = solved.space.catalogue, solved.bench
-    panel.species.setText("fe i")
-    panel.filter_now()
-    assert set(shown_texts(panel, 1)) == {"Fe I"}
-    panel.species.setText("t")
-    panel.filter_now()
-    assert set(shown_texts(panel, 1)) == {"Ti II"}
-    panel.species.clear()
-    panel.range.setText("5200:5210")
-    panel.filter_now()
-    wave = to_medium(invented.wave, "air")
-    assert panel.model.rowCount() == np.sum((wave >= 5200) & (wave <= 5210)) > 0
-    panel.range.setText("all")
-    panel.depth.setText("0.5")
-    panel.filter_now()
-    assert panel.model.rowCount() == np.sum(bench.depth >= 0.5)
-    panel.text.setText("nothing like it")
-    panel.filter_now()
-    assert panel.model.rowCount() == 0
-    assert "passes this filter" in panel.empty.text()
-
-
-def test_a_catalogue_line_is_shown_and_its_species_put_on_the_rake(solved, invented, qtbot):
-    panel, bench = solved.space.catalogue, solved.bench
-    solved.space.tables.setCurrentWidget(panel)
-    row = panel.model.row_showing(100)
-    panel.table.setCurrentIndex(panel.model.index(row, 0))
-    low, high = bench.view.now.span
-    shift = 1 + bench.view.now.velocity / 299792.458
-    assert low < to_medium(invented.wave[100] * shift, "air") < high
-    assert bench.session.claims[bench.selected_row()].species == invented.species_of(100)
-    bench.view.change(rake=())
-    qtbot.mouseClick(panel.to_rake, Qt.MouseButton.LeftButton)
-    assert bench.view.now.rake == (invented.species_of(100),)
-    panel.rake.setText("Mg I, fe i")
-    panel.rake.editingFinished.emit()
-    assert bench.view.now.rake == ("Mg I", "Fe I")
-    panel.rake.clear()
-    panel.rake.editingFinished.emit()
-    assert bench.view.now.rake is None
-
-
 def test_evidence_ranks_candidates_with_reasons(solved):
     bench, evidence = solved.bench, solved.space.evidence
     bench.view.select(int(bench.session.features.number[12]))
@@ -193,22 +150,3 @@ def test_empty_panels_say_what_will_be_there(window, invented, qtbot):
     for panel in (window.ledger, window.space.roll_call, window.space.orphans):
         assert "F5" in panel.empty.text()
     assert window.space.evidence._pages.currentIndex() == 0
-
-
-def test_the_catalogue_model_serves_any_row_of_a_quarter_million(qtbot):
-    import time
-
-    import window_builders as build
-
-    from linewright.window.panels.catalogue_model import CatalogueModel, catalogue_columns
-
-    catalogue = build.catalogue_of(300000, low=3000.0, high=10000.0)
-    model = CatalogueModel()
-    model.show_rows(catalogue_columns(catalogue, None, "air"), np.arange(len(catalogue)))
-    assert model.rowCount() > 250000
-    start = time.perf_counter()
-    for row in range(0, model.rowCount(), 1000):
-        for column in range(7):
-            model.index(row, column).data()
-    per_screen = (time.perf_counter() - start) / (model.rowCount() / 1000) * 20
-    assert per_screen < 0.02, f"{per_screen * 1000:.1f} ms for twenty rows"

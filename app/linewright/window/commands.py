@@ -26,7 +26,7 @@ class _Acts:
 claim, opening, saving, solving, view = (
     _Acts(name) for name in ("claiming", "opening", "saving", "solving", "viewing"))
 
-MENUS = ("File", "Edit", "Spectrum", "Claims", "View", "Help")
+MENUS = ("File", "Edit", "Spectrum", "Claims", "Lines", "View", "Help")
 
 
 @dataclass(frozen=True)
@@ -274,5 +274,7 @@ def _help() -> list[Command]:
 
 def command_table() -> dict[str, Command]:
     """All commands by id, in menu order."""
-    rows = [*_file(), *_edit(), *_spectrum(), *_claims(), *_view(), *_help()]
+    from .line_commands import line_commands
+
+    rows = [*_file(), *_edit(), *_spectrum(), *_claims(), *line_commands(), *_view(), *_help()]
     return {row.id: row for row in rows}

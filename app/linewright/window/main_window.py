@@ -123,7 +123,7 @@ class MainWindow(Questions, Showing, QMainWindow):
     def _view_changed(self, old, new) -> None:
         if self.refresher is not None:
             self.refresher.view_changed(old, new)
-        if (old.selected, old.candidate, old.rake) != (new.selected, new.candidate, new.rake):
+        if old.pointed_at() != new.pointed_at():
             self.menus.refresh()
 
     def catalogue_changed(self) -> None:

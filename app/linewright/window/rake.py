@@ -93,10 +93,10 @@ class RakeKeeper(QObject):
         names = self._most_claimed(bench.session, low, high)
         if not names and not len(bench.session.features):
             names = tuple(n for n in UNSOLVED if n in bench.catalogue.species_names)
-        candidate = bench.candidate()
-        if candidate is not None and candidate.species and candidate.species not in names:
-            names = (*names, candidate.species)
-        return names
+        candidate, line = bench.candidate(), bench.view.now.line
+        looked = [candidate.species] if candidate is not None else []
+        looked += [bench.catalogue.species_of(line)] if line is not None else []
+        return tuple(dict.fromkeys([*names, *filter(None, looked)]))
 
     def _most_claimed(self, session, low: float, high: float) -> tuple[str, ...]:
         """Counted again only when claims or view changed, not with every selection."""

@@ -124,6 +124,7 @@ class Refresher:
         view.show_profile(*(profile or (None, None)))
         self._space.ledger.show_selection(number)
         self._space.orphans.show_selection(number)
+        self._space.catalogue.follow_selection()
         self._space.evidence.refresh()
 
     def view_changed(self, old, new) -> None:
@@ -142,6 +143,17 @@ class Refresher:
         if new.rake != old.rake:
             self.rake.refresh()
             space.catalogue.show_rake(new.rake)
+        if new.line != old.line:
+            self._show_line(new.line)
+
+    def _show_line(self, row: int | None) -> None:
+        """The catalogue line looked at: its page, and its tooth marked on the rake."""
+        bench, marked = self._bench, None
+        if row is not None and bench.catalogue is not None and row < len(bench.catalogue):
+            marked = float(bench.catalogue.wave[row]), bench.catalogue.species_of(row)
+        self._space.catalogue.show_line(row)
+        self._space.spectrum_view.rake.set_marked(marked)
+        self.rake.refresh()
 
     def _show_span(self, span) -> None:
         view = self._space.spectrum_view
@@ -170,4 +182,5 @@ class Refresher:
                      self._space.evidence.siblings.strips):
             part.set_theme(self._bench.theme)
         self._space.ledger.show_theme(self._bench.theme)
+        self._space.catalogue.show_theme()
         self._space.evidence.refresh()

@@ -36,7 +36,7 @@ class Showing:
 
         self.space.tables.show()
         panel = self.space.tables.currentWidget()
-        field = panel.text if panel is not self.space.catalogue else panel.species
+        field = panel.text
         field.setFocus(Qt.FocusReason.ShortcutFocusReason)
         field.selectAll()
 

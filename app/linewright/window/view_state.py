@@ -11,6 +11,7 @@ class View:
     """selected: permanent number of a feature; candidate: row in its ranked candidates
     span: own-medium Angstrom shown; velocity: of the rake, km/s
     rake: species chosen for the rake, None for the most claimed in view
+    line: row of the catalogue line looked at
     """
 
     selected: int | None = None
@@ -18,6 +19,11 @@ class View:
     span: tuple[float, float] | None = None
     velocity: float = 0.0
     rake: tuple[str, ...] | None = None
+    line: int | None = None
+
+    def pointed_at(self) -> tuple:
+        """What decides which commands are possible."""
+        return self.selected, self.candidate, self.rake, self.line
 
 
 class ViewState:

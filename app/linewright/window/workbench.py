@@ -119,7 +119,7 @@ class Workbench:
         old = self.session
         self._remember()
         self.desk = desk
-        self.view.change(selected=None, candidate=0, span=None, rake=None,
+        self.view.change(selected=None, candidate=0, span=None, rake=None, line=None,
                          velocity=desk.velocity if desk else 0.0)
         self.tell(old, self.session)
         if desk is not None and desk.span is not None:
@@ -149,6 +149,19 @@ class Workbench:
             return None
         at = (self.session.features.number == number).nonzero()[0]
         return int(at[0]) if len(at) else None
+
+    def about_selected(self) -> tuple[float, float] | None:
+        """A few widths about the selected feature, own-medium Angstrom."""
+        from .acts import viewing
+
+        return viewing.about_selected(self)
+
+    def vacuum_range(self) -> tuple[float, float] | None:
+        """Of what is drawn, vacuum Angstrom."""
+        if self.drawn is None:
+            return None
+        segments = self.drawn.segments
+        return (float(min(s.wave[0] for s in segments)), float(max(s.wave[-1] for s in segments)))
 
     def candidate(self) -> Candidate | None:
         """The candidate under consideration in Evidence."""

@@ -22,8 +22,27 @@ def look_at(bench, wave: float, width: float | None = None) -> None:
     bench.view.change(span=(wave - width / 2, wave + width / 2))
 
 
+HERE = 2.5  # widths about the selected feature
+NEAR = 2e-5  # of the wavelength: a claimed feature this near a line's place is the line's
+
+
+def about_selected(bench) -> tuple[float, float] | None:
+    """A few widths about the selected feature, at least a few of its errors; own medium."""
+    row = bench.selected_row()
+    if row is None:
+        return None
+    f = bench.session.features
+    half = max(HERE * np.nan_to_num(f.fwhm[row]), HERE * np.nan_to_num(f.wave_err[row]), 0.1)
+    ends = np.array([f.wave[row] - half, f.wave[row] + half])
+    return tuple(float(w) for w in to_medium(ends, bench.session.spectrum.medium))
+
+
 def look_at_line(bench, row: int) -> None:
-    """A catalogue line at the velocity of the rake; its feature is selected when claimed."""
+    """A catalogue line at the velocity of the rake; its feature is selected when claimed.
+
+    A selected feature that stands there already stays selected: it may be claimed with it.
+    """
+    bench.view.change(line=row)
     if bench.drawn is None:
         return
     expected = float(bench.catalogue.wave[row]) * (1.0 + bench.view.now.velocity / C_KM_S)
@@ -34,9 +53,12 @@ def look_at_line(bench, row: int) -> None:
                             topic="outside"))
         return
     look_at(bench, own)
+    about = about_selected(bench)
+    if about is not None and about[0] <= own <= about[1]:
+        return
     name = bench.catalogue.species_of(row)
     claims, f = bench.session.claims, bench.session.features
-    near = [i for i in np.nonzero(np.abs(f.wave - expected) < expected * 2e-5)[0]
+    near = [i for i in np.nonzero(np.abs(f.wave - expected) < expected * NEAR)[0]
             if claims[i].species == name]
     if near:
         bench.view.select(int(f.number[near[0]]))

@@ -8,7 +8,8 @@ from PySide6.QtWidgets import (
     QHBoxLayout,
     QLabel,
     QLineEdit,
-    QStackedLayout,
+    QSplitter,
+    QStackedWidget,
     QTableView,
     QVBoxLayout,
     QWidget,
@@ -18,7 +19,10 @@ from .column_model import ColumnModel
 
 
 class TablePanel(QWidget):
-    """Table, filter row and empty sentence; ``acted`` when a row is chosen by a person."""
+    """Table, filter row and empty sentence; ``acted`` when a row is chosen by a person.
+
+    body: holds the table; what a panel adds stands beside it
+    """
 
     acted = Signal(int)
     filtered = Signal()
@@ -34,14 +38,16 @@ class TablePanel(QWidget):
         self.empty.setObjectName("emptyState")
         self.empty.setAlignment(Qt.AlignmentFlag.AlignCenter)
         self.empty.setWordWrap(True)
-        self._stack = QStackedLayout()
+        self._stack, self.body = QStackedWidget(), QSplitter(Qt.Orientation.Horizontal)
         self._stack.addWidget(self.table)
         self._stack.addWidget(self.empty)
+        self.body.setChildrenCollapsible(False)
+        self.body.addWidget(self._stack)
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 0, 0, 0)
         box.setSpacing(0)
         box.addLayout(self.filters)
-        box.addLayout(self._stack, 1)
+        box.addWidget(self.body, 1)
         self._later = QTimer(self)
         self._later.setSingleShot(True)
         self._later.setInterval(120)

@@ -61,3 +61,55 @@ def probability(value: float) -> str:
     if 0.995 <= value < 1.0:
         return "> 0.99"
     return "< 0.01" if 0.0 < value < 0.005 else f"{value:.2f}"
+
+
+GRADES = {
+    "A": "0.05 dex or better", "B": "0.12 dex or better", "C": "0.25 dex or better",
+    "D": "0.5 dex or better", "E": "worse than 0.5 dex, or nominal",
+}
+GRADE_TIP = "How good the strength is, by its stated error: " + "; ".join(
+    f"{letter} {meaning}" for letter, meaning in GRADES.items())
+LINE_FLAGS = {
+    "non-LTE": "its levels depart from the populations of the temperature, so that it may be "
+               "much stronger or weaker than predicted",
+    "nominal strength": "no published strength: one was assumed, good for a place and not for a "
+                        "depth",
+    "components collapsed": "hyperfine, isotopic or fine components are listed as one line; the "
+                            "spread says how far they lie apart",
+}
+FLAGS = {
+    # of a measurement
+    "blend": "measured together with neighbours it runs into",
+    "integrated": "equivalent width from the samples themselves: no profile fits it well",
+    "wing": "stands in the wing of a stronger line",
+    "saturated": "deeper than 0.9: its strength hardly grows any more",
+    "edge": "touches a gap or the end of the spectrum",
+    "fallback": "the fit did not settle: the numbers are rough",
+    "hand": "picked or fitted by a person",
+    "spike": "sharper than the instrument can make a line: a particle hit or a bad sample",
+    "voigt": "fitted with a Voigt profile",
+    "rotational": "fitted with a profile broadened by rotation",
+    "core-wings": "fitted with a core and wide wings",
+    # of a claim
+    "off-velocity": "stands off the velocity of its like by more than 3.5 sigma",
+    "broad": "wider than lines of its strength are here: a blend, or another claim is right",
+    "narrow": "narrower than lines of its strength are here: perhaps telluric, interstellar or "
+              "an artefact",
+    "artefact": "set aside as no spectral line",
+    "cosmic-ray": "set aside as a particle hit",
+    "gap-edge": "set aside as made by a gap or the end of the spectrum",
+}
+
+
+def grade(letter: str) -> str:
+    return f"grade {letter}: strength {GRADES[letter]}" if letter in GRADES else ""
+
+
+def flag(word: str) -> str:
+    """What a flag means; the word alone where it is a person's own reason."""
+    return f"{word}: {FLAGS[word]}" if word in FLAGS else f"{word}: said by a person"
+
+
+def flags(text: str) -> str:
+    """All flags of a row explained, one a line."""
+    return "\n".join(flag(word) for word in dict.fromkeys(text.split()))

@@ -12,6 +12,7 @@ from .geometry import LEFT, RIGHT, to_device
 from .marks import marker_pixmap
 from .navigation import NavigableLane
 from .rake_data import RakeData
+from .rake_mark import draw_marked
 from .rake_teeth import RakeTeeth
 
 ROW = 22
@@ -29,12 +30,18 @@ class RakeLane(NavigableLane):
     def __init__(self, state, parent=None):
         super().__init__(state, parent)
         self.teeth, self._pitch = RakeTeeth(RakeData.empty()), ROW
+        self.marked: tuple[float, str] | None = None
         self.setAccessibleName("Rake: predicted lines of the chosen species")
         self._fit()
 
     def set_rake(self, rake: RakeData) -> None:
         self.teeth = RakeTeeth(rake)
         self._fit()
+        self.update()
+
+    def set_marked(self, marked: tuple[float, str] | None) -> None:
+        """Frame the tooth of one line: (vacuum wavelength at rest, species); None for none."""
+        self.marked = marked
         self.update()
 
     def set_pitch(self, room: int) -> None:
@@ -52,6 +59,13 @@ class RakeLane(NavigableLane):
     def row_height(self) -> int:
         rows = max(self.shown_rows, 1)
         return int(max(SMALLEST_ROW, min(self._pitch, TALLEST // rows)))
+
+    head = _HEAD  # logical pixels above the first row
+
+    def row_of(self, species: str) -> int | None:
+        """The row of a species that is shown."""
+        shown = self.teeth.names[: self.shown_rows]
+        return shown.index(species) if species in shown else None
 
     def _fit(self) -> None:
         self.setFixedHeight(max(self.shown_rows, 1) * self.row_height + _HEAD + 3)
@@ -97,6 +111,8 @@ class RakeLane(NavigableLane):
         picture = QImage(pixels.data, wide, tall, 4 * wide, QImage.Format.Format_RGB32)
         painter.drawImage(QPointF(scale.first_column(), y), picture)
         self._draw_missing(painter, scale, (y, ratio))
+        if self.marked is not None:
+            draw_marked(painter, self, scale, (y, ratio))
 
     def _draw_empty(self, painter: QPainter) -> None:
         painter.setPen(QColor(self.state.theme.muted))
