@@ -69,7 +69,7 @@ def wheel(tmp_path_factory) -> Path:
 
 def missing_from(names: list[str]) -> list[str]:
     """What a wheel must carry and does not."""
-    wanted = ["linewright/spectra/reading.py", "linewright/session/schema_v1.json",
+    wanted = ["linewright/spectra/reading.py", "linewright/session/schema_v2.json",
               "linewright/linedata/tables/manifest.json", "linewright/sample_spectra/g_dwarf.fits"]
     wanted += [f"linewright/linedata/tables/{p.name}"
                for p in (ROOT / "linedata/tables").glob("*.npz")]

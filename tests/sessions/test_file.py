@@ -182,7 +182,7 @@ def test_a_tampered_file_is_refused(saved, name):
         (b'{"format": "other"}', "not a session"),
         (b'{"format": "linewright-session"}', "no version"),
         (b'{"format": "linewright-session", "version": true}', "no version"),
-        (b'{"format": "linewright-session", "version": 2}', "newer than this program"),
+        (b'{"format": "linewright-session", "version": 3}', "newer than this program"),
         (b'{"format": "linewright-session", "version": 1}', "damaged"),
         (b'{"format": "linewright-session", "version": NaN}', "broken or no JSON"),
         (b'{"version": 1, "version": 1}', "broken or no JSON"),

@@ -15,6 +15,18 @@ vacuum Angstrom. All edits are applied, or none.
   {"edit": "replace_feature", "feature": 12, "row": {"wave": 5188.7, "sign": 1}}
   {"edit": "remove_feature", "feature": 12}
   {"edit": "set_velocity", "km_s": -33.2}
+
+These are measured on the session's spectrum, which must be where it was (or in --spectra):
+
+  {"edit": "split_feature", "feature": 12, "parts": 2}
+  {"edit": "merge_features", "features": [12, 13]}
+  {"edit": "fit_features", "features": [12], "limits": [5187.2, 5188.1], "profile": "voigt"}
+  {"edit": "add_anchor", "wave": 5187.2, "value": 1.01, "segment": 0}
+  {"edit": "move_anchor", "wave": 5187.2, "to": 5187.9, "value": 1.02}
+  {"edit": "remove_anchor", "wave": 5187.9}
+  {"edit": "clear_anchors"}
+
+Profiles: gaussian, voigt, rotational, core-wings, double-peaked, p-cygni.
 """
 
 from __future__ import annotations
@@ -28,7 +40,23 @@ def configure(parser) -> None:
         "--reweigh", action="store_true",
         help="then weigh the machine's claims again: a person's firm word is data",
     )  # fmt: skip
+    parser.add_argument(
+        "--spectra", action="append", default=[], metavar="FOLDER",
+        help="look here too for the session's spectrum (may be repeated)",
+    )  # fmt: skip
     parser.add_argument("--force", action="store_true", help="overwrite an existing file")
+
+
+def _measurer(session, options):
+    """Opens the spectrum when an edit first needs it; beside the session is looked as well."""
+    from functools import cache
+    from pathlib import Path
+
+    from ..job.hand_edits import script_measurer
+    from ..session.reopen import reopen_spectrum
+
+    folders = (*options.spectra, Path(options.session).absolute().parent)
+    return script_measurer(cache(lambda: reopen_spectrum(session, folders)))
 
 
 def run(options) -> int:
@@ -39,7 +67,7 @@ def run(options) -> int:
     check_writable(options.output, options.force)
     session = load_session(options.session)
     commands = read_script(options.script)
-    edited = apply_script(session, commands, options.script)
+    edited = apply_script(session, commands, options.script, _measurer(session, options))
     changes = ()
     if options.reweigh:
         from ..job.reweigh import reweigh

@@ -66,10 +66,14 @@ def measure_again(features: FeatureTable, spectrum, velocity: float = 0.0, optio
     return Differences(table, **columns), measured
 
 
-def remeasured(spectrum, measurement, features: FeatureTable, segments) -> FeatureTable:
+def remeasured(
+    spectrum, measurement, features: FeatureTable, segments, veil_held=None
+) -> FeatureTable:
     """``features`` (sorted by segment, then wavelength) fitted again in ``segments``.
 
-    Continuum, noise and width are the measurement's. Numbers and hand marks stay.
+    Continuum, noise and width are the measurement's. Numbers and hand marks stay. veil_held:
+    the veil at every sample of the only segment, where it is not to be found anew: a
+    continuum that a person raised is not to be taken for broad absorption.
     """
     out = features
     for i in segments:
@@ -77,13 +81,15 @@ def remeasured(spectrum, measurement, features: FeatureTable, segments) -> Featu
                               & np.isfinite(features.fwhm) & (features.fwhm > 0))
         rows = rows[["spike" not in features.flags[r].split() for r in rows]]
         if len(rows):
-            fresh = _fitted(spectrum.segments[i], measurement.segments[i], features.take(rows), i)
+            fresh = _fitted((spectrum.segments[i], measurement.segments[i], veil_held),
+                            features.take(rows), i)
             out = _put(out, rows, fresh)
     return out
 
 
-def trace_of(segment, nodes) -> tuple[Trace, list]:
-    """(Trace of a whole segment under given nodes, its stretches)."""
+def trace_of(segment, nodes, veil_held=None) -> tuple[Trace, list]:
+    """(Trace of a whole segment under given nodes, its stretches); the veil found in it, or
+    the one given."""
     good = usable(segment)
     runs = [r for r in stretches(segment.wave, good) if good[r].sum() >= 8]
     index = np.arange(len(good))
@@ -92,15 +98,17 @@ def trace_of(segment, nodes) -> tuple[Trace, list]:
     noise, width = nodes.noise_at(segment.wave), nodes.width_at(segment.wave)
     pixels = width / np.gradient(segment.wave)
     under = np.zeros(len(y))
-    for r in runs:
+    for r in runs if veil_held is None else ():
         for sign in (1, -1):
             under[r] += sign * veil(sign * y[r], noise[r], pixels[r], nodes.correlation_length)
+    under = under if veil_held is None else veil_held
     return Trace(segment.wave, y, noise, good, width, nodes.continuum_err_at(segment.wave),
                  nodes.correlation, under), runs
 
 
-def _fitted(segment, nodes, features: FeatureTable, number: int) -> FeatureTable:
-    trace, runs = trace_of(segment, nodes)
+def _fitted(where, features: FeatureTable, number: int) -> FeatureTable:
+    segment, nodes, veil_held = where
+    trace, runs = trace_of(segment, nodes, veil_held)
     index = np.clip(np.searchsorted(trace.wave, features.wave), 0, len(trace.wave) - 1)
     inside = [next((r for r in runs if r.start <= i < r.stop), None) for i in index]
     there = np.array([r is not None for r in inside])

@@ -7,7 +7,7 @@ information criterion (Schwarz 1978), BIC = chi2 + k ln n with n independent sam
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -39,21 +39,36 @@ def fit_region(spectrum, measurement, limits, centres, shape: str = "gaussian") 
     gaussian, voigt, rotational or core-wings. Raises InputRefused on an unknown shape,
     centres outside, or too few samples for the parameters.
     """
-    if shape not in EXTRA:
-        raise InputRefused(f"profile '{shape}'", "is not known", f"choose {', '.join(EXTRA)}")
     low, high = sorted(limits)
-    centres = np.sort(np.atleast_1d(np.asarray(centres, dtype=float)))
-    if not len(centres) or centres[0] < low or centres[-1] > high:
-        raise InputRefused("region", "a component lies outside its limits", "widen the limits")
     number = segment_at(spectrum, measurement, 0.5 * (low + high))
     nodes = measurement.segments[number]
     trace = local_trace(spectrum.segments[number], nodes, 0.5 * (low + high), 0.5 * (high - low))
+    fit = fit_trace(trace, nodes, (low, high), centres, shape)
+    segment = np.full(len(fit.features), number)
+    return replace(fit, features=replace(fit.features, segment=segment))
+
+
+def fit_trace(trace, nodes, limits, centres, shape: str = "gaussian", signs=None) -> RegionFit:
+    """As ``fit_region``, in a Trace that is at hand; nodes: its SegmentMeasure.
+
+    signs: +1 absorption or -1 emission for each centre, to which its component is held; None
+    leaves them free. The rows' segment is 0.
+    """
+    if shape not in EXTRA:
+        raise InputRefused(f"profile '{shape}'", "is not known", f"choose {', '.join(EXTRA)}")
+    low, high = sorted(limits)
+    centres = np.atleast_1d(np.asarray(centres, dtype=float))
+    order = np.argsort(centres)
+    centres = centres[order]
+    held = np.zeros(len(centres)) if signs is None else np.asarray(signs)[order]
+    if not len(centres) or centres[0] < low or centres[-1] > high:
+        raise InputRefused("region", "a component lies outside its limits", "widen the limits")
     used = np.flatnonzero(trace.good & (trace.wave >= low) & (trace.wave <= high))
     k = 3 + EXTRA[shape]
     if len(used) <= k * len(centres):
         raise InputRefused("region", f"{len(used)} samples for {k * len(centres)} parameters",
                            "widen the limits or take fewer components")
-    return _Region(trace, nodes, used, centres, shape).fit(number)
+    return _Region(trace, nodes, used, centres, shape, held).fit()
 
 
 def choose_region(spectrum, measurement, limits, choices) -> RegionFit:
@@ -69,6 +84,7 @@ class _Region:
     used: np.ndarray
     centres: np.ndarray
     shape: str
+    held: np.ndarray
 
     def start(self):
         t, m = self.trace, len(self.centres)
@@ -77,9 +93,10 @@ class _Region:
         span = float(np.ptp(t.wave[self.used]))
         width = np.minimum(t.width[at], span) / FWHM_PER_SIGMA
         deepest = t.y[at] + np.where(t.y[at] < 0, -1, 1) * 0.5 * t.noise[at]
+        deepest = np.where(self.held * deepest < 0, self.held * t.noise[at], deepest)
         columns = [deepest, self.centres, np.log(width)]
-        low = [np.full(m, -1e4), self.centres - 0.25 * span, np.log(0.3 * width)]
-        high = [np.full(m, 1e4), self.centres + 0.25 * span, np.log(span + width)]
+        low = [np.where(self.held > 0, 0.0, -1e4), self.centres - 0.25 * span, np.log(0.3 * width)]
+        high = [np.where(self.held < 0, 0.0, 1e4), self.centres + 0.25 * span, np.log(span + width)]
         if EXTRA[self.shape]:
             columns.append(np.log(np.full(m, 0.15 * span)))
             low.append(np.log(0.02 * width))
@@ -90,7 +107,7 @@ class _Region:
         parts = [profile(self.shape, x, p) for p in flat.reshape(len(self.centres), -1)]
         return sum(v for v, _ in parts), np.hstack([d for _, d in parts])
 
-    def fit(self, number: int) -> RegionFit:
+    def fit(self) -> RegionFit:
         from scipy.optimize import least_squares
 
         t, u = self.trace, self.used
@@ -107,7 +124,7 @@ class _Region:
         errors = self.covariance(done, weight, max(1.0, chi2 / (len(u) - len(start))))
         wave = t.wave[u]
         flux = self.nodes.continuum_at(wave) * (1.0 - self.model(wave, done.x)[0])
-        table = self.table(done.x, errors, number, "fallback " if at_bound else "")
+        table = self.table(done.x, errors, "fallback " if at_bound else "")
         params = done.x.reshape(len(self.centres), -1)
         return RegionFit(table, self.shape, float(bic), chi2, wave, flux, params)
 
@@ -124,7 +141,7 @@ class _Region:
         moved = inverse @ (z.T @ ((1 - t.y[u]) * weight)) * t.level_err[u].mean()
         return inverse @ (z.T @ smeared) @ inverse * misfit + np.outer(moved, moved)
 
-    def table(self, flat, covariance, number: int, trouble: str) -> FeatureTable:
+    def table(self, flat, covariance, trouble: str) -> FeatureTable:
         params = flat.reshape(len(self.centres), -1)
         params = params[np.argsort(params[:, 1])] if len(params) == 1 else params
         m, k = params.shape
@@ -136,7 +153,7 @@ class _Region:
         strength = np.abs(depth) / noise * np.sqrt(0.7527 * fwhm / step)
         word = "" if self.shape == "gaussian" else f"{self.shape} "
         table = FeatureTable(
-            number=np.arange(1, m + 1), segment=np.full(m, number),
+            number=np.arange(1, m + 1), segment=np.zeros(m, dtype=int),
             component=np.zeros(m, dtype=int) if m == 1 else np.arange(1, m + 1),
             sign=np.where(depth < 0, -1, 1), wave=params[:, 1], wave_err=wave_err,
             significance=strength / np.sqrt(self.nodes.correlation_length), depth=depth,

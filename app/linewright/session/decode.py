@@ -15,6 +15,7 @@ from .model import (
     Candidate,
     Claim,
     ContinuumNodes,
+    HandFit,
     HistoryEntry,
     Orphan,
     RollRow,
@@ -44,6 +45,8 @@ def session_from(parts: dict, folder) -> Session:
         roll_call=tuple(fill(RollRow, r, "roll_call") for r in parts["roll_call"]),
         orphans=tuple(fill(Orphan, o, "orphans") for o in parts["orphans"]),
         continuum=tuple(_nodes(c) for c in parts["continuum"]),
+        anchors=tuple(_nodes(a) for a in parts["anchors"]),
+        fits=_fits(parts["fits"], features),
         measurement=parts["measurement"],
         catalogue_id=parts["catalogue_id"],
         version=parts["linewright_version"],
@@ -120,6 +123,14 @@ def _velocity(part: dict) -> VelocityResult:
     rivals = tuple((real(v), real(d)) for v, d in values.pop("rivals"))
     numbers = {name: real(values.pop(name)) for name in ("velocity", "error", "margin")}
     return VelocityResult(**values, **numbers, rivals=rivals, grid=grid, score=score)
+
+
+def _fits(rows: list, features: FeatureTable) -> tuple[HandFit, ...]:
+    fits = tuple(fill(HandFit, row, "fits") for row in rows)
+    known = set(features.number.tolist())
+    if any(not set(fit.features) <= known for fit in fits):
+        raise ValueError("fits: a component is no feature of the session")
+    return fits
 
 
 def _nodes(part: dict) -> ContinuumNodes:

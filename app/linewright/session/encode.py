@@ -12,7 +12,7 @@ from .model import Candidate, Claim, Session
 from .plain import plain
 
 FORMAT = "linewright-session"
-VERSION = 1
+VERSION = 2
 WAVELENGTHS = "vacuum, Angstrom, in the frame of the spectrum"
 NESTED_CLAIM_FIELDS = ("candidates", "chosen", "blend")
 
@@ -33,6 +33,8 @@ def session_bytes(session: Session, folder) -> bytes:
         "candidates": _candidates(session.claims),
         "velocity": Columns({k: _column_or_plain(v) for k, v in _fields(session.velocity)}),
         "continuum": Rows(plain(c) for c in session.continuum),
+        "anchors": Rows(plain(a) for a in session.anchors),
+        "fits": Rows(plain(fit) for fit in session.fits),
         "history": Rows(plain(h) for h in session.history),
         "roll_call": Rows(plain(r) for r in session.roll_call),
         "orphans": Rows(plain(o) for o in session.orphans),

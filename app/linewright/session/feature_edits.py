@@ -22,7 +22,8 @@ def next_number(session: Session) -> int:
     for entry in session.history:
         detail = entry.detail
         used.append(int(detail.get("feature") or 0))
-        used.append(int((detail.get("row") or {}).get("number") or 0))
+        rows = (detail.get("fit") or {}).get("rows") or ()
+        used += [int(row.get("number") or 0) for row in (detail.get("row") or {}, *rows)]
     return max(used, default=0) + 1
 
 
@@ -30,8 +31,8 @@ def add_feature(session: Session, row: FeatureTable, claim: Claim | None = None)
     """Add the feature of a one-row table; it gets the next number never used before."""
     claim = claim or Claim()
     numbered = _numbered(session, row, next_number(session))
-    table = _joined(session.features, numbered)
-    table, claims = _ordered(table, (*session.claims, claim))
+    table = joined(session.features, numbered)
+    table, claims = ordered(table, (*session.claims, claim))
     detail = {"row": row_to_plain(numbered), "claim": plain(claim)}
     return noted(session, "add_feature", detail, features=table, claims=claims)
 
@@ -47,6 +48,7 @@ def remove_feature(session: Session, number: int) -> Session:
         features=session.features.take(keep),
         claims=session.claims[:row] + session.claims[row + 1 :],
         orphans=tuple(o for o in session.orphans if o.feature != number),
+        fits=_without(session, number),
     )
 
 
@@ -56,10 +58,16 @@ def replace_feature(session: Session, number: int, row: FeatureTable) -> Session
     numbered = _numbered(session, row, number)
     keep = np.arange(len(session.features)) != at
     others = session.claims[:at] + session.claims[at + 1 :]
-    table = _joined(session.features.take(keep), numbered)
-    table, claims = _ordered(table, (*others, session.claims[at]))
+    table = joined(session.features.take(keep), numbered)
+    table, claims = ordered(table, (*others, session.claims[at]))
     detail = {"feature": number, "row": row_to_plain(numbered)}
-    return noted(session, "replace_feature", detail, features=table, claims=claims)
+    return noted(session, "replace_feature", detail, features=table, claims=claims,
+                 fits=_without(session, number))
+
+
+def _without(session: Session, number: int) -> tuple:
+    """The fits by hand this feature is no component of."""
+    return tuple(fit for fit in session.fits if number not in fit.features)
 
 
 def _numbered(session: Session, row: FeatureTable, number: int) -> FeatureTable:
@@ -72,7 +80,8 @@ def _numbered(session: Session, row: FeatureTable, number: int) -> FeatureTable:
     return replace(row, number=np.array([number], dtype=session.features.number.dtype))
 
 
-def _joined(one: FeatureTable, other: FeatureTable) -> FeatureTable:
+def joined(one: FeatureTable, other: FeatureTable) -> FeatureTable:
+    """Rows of both, the first's dtypes."""
     columns = {}
     for name in (f.name for f in fields(FeatureTable) if f.name != "flags"):
         first = getattr(one, name)
@@ -81,6 +90,7 @@ def _joined(one: FeatureTable, other: FeatureTable) -> FeatureTable:
     return FeatureTable(**columns, flags=one.flags + other.flags)
 
 
-def _ordered(table: FeatureTable, claims: tuple) -> tuple[FeatureTable, tuple]:
+def ordered(table: FeatureTable, claims: tuple) -> tuple[FeatureTable, tuple]:
+    """Rows by segment, then wavelength, the claims beside them."""
     order = np.lexsort((table.component, table.wave, table.segment))
     return table.take(order), tuple(claims[i] for i in order)

@@ -21,6 +21,7 @@ __all__ = [
     "Candidate",
     "Claim",
     "ContinuumNodes",
+    "HandFit",
     "HistoryEntry",
     "Orphan",
     "RollRow",
@@ -63,6 +64,20 @@ class ContinuumNodes:
 
 
 @dataclass(frozen=True)
+class HandFit:
+    """A stretch a person had fitted. features: permanent numbers of its components, in order
+    of wavelength; limits: (low, high) vacuum Angstrom; profile: one of
+    ``session.fit_edits.PROFILES``; params: of each component as ``measure.shapes`` has them,
+    relative to the features' own continuum.
+    """
+
+    features: tuple[int, ...]
+    limits: tuple[float, float]
+    profile: str
+    params: tuple[tuple[float, ...], ...]
+
+
+@dataclass(frozen=True)
 class HistoryEntry:
     """One act: ``action`` is the edit's name, ``detail`` its arguments in plain data."""
 
@@ -78,6 +93,8 @@ class Session:
     claims: parallel to ``features``
     components: velocity components as (origin, km/s, km/s error)
     temperature_k, log_pe: as used for the strengths; warnings: for the reader
+    anchors: continuum anchors a person laid, a segment each, without points where none; ()
+        where there are none at all; fits: stretches fitted by hand
     """
 
     spectrum: SpectrumReference
@@ -91,12 +108,18 @@ class Session:
     roll_call: tuple[RollRow, ...] = ()
     orphans: tuple[Orphan, ...] = ()
     continuum: tuple[ContinuumNodes, ...] = ()
+    anchors: tuple[ContinuumNodes, ...] = ()
+    fits: tuple[HandFit, ...] = ()
     measurement: dict = field(default_factory=dict)
     catalogue_id: str = ""
     version: str = ""
     seed: int = 0
     warnings: tuple[str, ...] = ()
     history: tuple[HistoryEntry, ...] = ()
+
+    def fit_of(self, number: int) -> HandFit | None:
+        """The fit by hand this feature is a component of."""
+        return next((fit for fit in self.fits if number in fit.features), None)
 
     def index_of(self, number: int) -> int:
         """Row of the feature with this permanent number; KeyError when absent."""

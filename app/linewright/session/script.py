@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from ..errors import InputRefused
-from . import edits, feature_edits
+from . import edits, feature_edits, fit_edits
 from .model import Session
 from .plain import candidate_from, claim_from, contributors_from, row_from
 
@@ -49,6 +49,24 @@ def _truth(value) -> bool:
     return value
 
 
+def _mapping(value) -> dict:
+    if not isinstance(value, dict):
+        raise TypeError("an object with named fields")
+    return value
+
+
+def _features(value) -> tuple[int, ...]:
+    if not isinstance(value, (list, tuple)):
+        raise TypeError("a list of feature numbers")
+    return tuple(_integer(item) for item in value)
+
+
+def _pairs(value) -> list:
+    if not isinstance(value, (list, tuple)):
+        raise TypeError("a list of [wavelength, flux]")
+    return list(value)
+
+
 _FEATURE = {"feature": _integer}
 
 EDITS: dict[str, EditKind] = {
@@ -68,6 +86,15 @@ EDITS: dict[str, EditKind] = {
     ),
     "remove_feature": EditKind(feature_edits.remove_feature, _FEATURE),
     "replace_feature": EditKind(feature_edits.replace_feature, {**_FEATURE, "row": row_from}),
+    "fit_features": EditKind(
+        fit_edits.fit_features, {"features": _features, "fit": _mapping}),
+    "split_feature": EditKind(
+        fit_edits.split_feature, {**_FEATURE, "parts": _integer, "fit": _mapping}),
+    "merge_features": EditKind(
+        fit_edits.merge_features, {"features": _features, "fit": _mapping}),
+    "set_anchors": EditKind(
+        fit_edits.set_anchors,
+        {"segment": _integer, "anchors": _pairs, "level": _mapping}),
 }
 
 
@@ -136,12 +163,21 @@ def _parsed(line: str, what: str) -> dict:
     return command
 
 
-def apply_script(session: Session, commands: Iterable[dict], what: str = "script") -> Session:
-    """All edits in order, or none: InputRefused names the line of the first that fails."""
+def apply_script(
+    session: Session, commands: Iterable[dict], what: str = "script", completed=None
+) -> Session:
+    """All edits in order, or none: InputRefused names the line of the first that fails.
+
+    completed: makes of (session, command) the command with what must be measured on the
+    spectrum; left out, commands must state it.
+    """
     for count, command in enumerate(commands, start=1):
         at = command.get("at", count)
+        command = {k: v for k, v in command.items() if k != "at"}
         try:
-            session = apply_edit(session, {k: v for k, v in command.items() if k != "at"})
+            if completed is not None:
+                command = completed(session, command)
+            session = apply_edit(session, command)
         except InputRefused as refusal:
             cause = f"{refusal.what}: {refusal.cause}"
             raise InputRefused(f"{what}: line {at}", cause, refusal.cure) from None

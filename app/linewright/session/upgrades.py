@@ -1,14 +1,16 @@
 """Session files of older versions, lifted one version at a time.
 
 ``UPGRADES[n]`` turns the parsed file of version n into one of version n + 1. There is no
-version before 1.
+version before 1. Version 2 brought the fits by hand and the continuum anchors.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
 
-UPGRADES: dict[int, Callable[[dict], dict]] = {}
+UPGRADES: dict[int, Callable[[dict], dict]] = {
+    1: lambda parts: {**parts, "anchors": [], "fits": []},
+}
 
 
 def upgraded(parts: dict, version: int, upgrades: dict | None = None) -> dict:
