@@ -38,9 +38,13 @@ def invented(monkeypatch):
 @pytest.fixture
 def window(qtbot, invented, monkeypatch):
     """A shown window without a spectrum; closed without questions."""
+    from linewright.job.view_reweigh import Weighed
+    from linewright.window.acts import reweighing
     from linewright.window.main_window import MainWindow
 
     monkeypatch.setattr(MainWindow, "_warm_engine", lambda self: None)
+    monkeypatch.setattr(reweighing, "_weighed",
+                        lambda engine, session, progress: Weighed(session, session, ()))
     window = MainWindow()
     qtbot.addWidget(window, before_close_func=lambda w: setattr(w, "_leaving", True))
     window.resize(1440, 860)

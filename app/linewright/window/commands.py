@@ -23,8 +23,8 @@ class _Acts:
             import_module(f".acts.{self._name}", __package__), act)(*arguments, **named)
 
 
-claim, opening, saving, solving, view = (
-    _Acts(name) for name in ("claiming", "opening", "saving", "solving", "viewing"))
+claim, opening, reweighing, saving, solving, view = (_Acts(name) for name in (
+    "claiming", "opening", "reweighing", "saving", "solving", "viewing"))
 
 MENUS = ("File", "Edit", "Spectrum", "Claims", "Lines", "View", "Help")
 
@@ -78,6 +78,14 @@ def can_solve(bench) -> bool:
 
 def has_feature(bench) -> bool:
     return bench.session is not None and claim.has_feature(bench)
+
+
+def can_reweigh(bench) -> bool:
+    import math
+
+    s = bench.session
+    return (has_features(bench) and math.isfinite(s.temperature_k)
+            and math.isfinite(s.velocity.velocity) and not bench.tasks.busy("solve"))
 
 
 def has_candidate(bench) -> bool:
@@ -194,16 +202,22 @@ def _claims() -> list[Command]:
            and b.session.claims[b.selected_row()].locked),
         _c("claim.remove", "Remove feature", "Ctrl+Del", "Claims", has_feature,
            claim.remove, "Take the feature out of the Ledger (undo brings it back)", group=1),
+        _c("claim.reweigh", "Re-weigh the other claims", "F7", "Claims", can_reweigh,
+           reweighing.reweigh, "Your claims count as known: the machine's other claims are "
+           "weighed again; yours and kept ones stay", short="Re-weigh", group=2),
+        _c("claim.changes", "Show what re-weighing changes", "Shift+F7", "Claims",
+           lambda b: b.desk is not None and b.desk.weighed is not None,
+           lambda b: reweighing.show(b), "The list of claims before and after", group=2),
         _c("claim.next", "Next feature", "Alt+Down", "Claims", has_features,
-           lambda b: claim.step_feature(b, 1), "Select the next row of the Ledger", group=2),
+           lambda b: claim.step_feature(b, 1), "Select the next row of the Ledger", group=3),
         _c("claim.previous", "Previous feature", "Alt+Up", "Claims", has_features,
-           lambda b: claim.step_feature(b, -1), "Select the previous row of the Ledger", group=2),
+           lambda b: claim.step_feature(b, -1), "Select the previous row of the Ledger", group=3),
         _c("claim.open_next", "Next undecided feature", "F8", "Claims", has_features,
            lambda b: claim.step_undecided(b, 1),
-           "The next feature that is not firm and that you have not judged", group=2),
+           "The next feature that is not firm and that you have not judged", group=3),
         _c("claim.open_previous", "Previous undecided feature", "Shift+F8", "Claims",
            has_features, lambda b: claim.step_undecided(b, -1),
-           "The previous feature that is not firm and that you have not judged", group=2),
+           "The previous feature that is not firm and that you have not judged", group=3),
     ]
 
 

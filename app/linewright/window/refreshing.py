@@ -8,10 +8,12 @@ from PySide6.QtCore import QTimer
 from ..job.view_profile import profile_of
 from .acts import opening
 from .acts.picking import pick
+from .acts.reweighing import heed, propose
 from .acts.viewing import slide
 from .rake import RakeKeeper
 from .steps import Steps
 
+REST_MS = 700  # after the last claim before what it changes is looked up
 MANY = 1000  # features whose first showing is spread over several frames
 
 
@@ -28,6 +30,10 @@ class Refresher:
         self._calm.setSingleShot(True)
         self._calm.setInterval(60)
         self._calm.timeout.connect(space.evidence.refresh)
+        self.reweigh_soon = QTimer(space)
+        self.reweigh_soon.setSingleShot(True)
+        self.reweigh_soon.setInterval(REST_MS)
+        self.reweigh_soon.timeout.connect(lambda: propose(bench))
         view = space.spectrum_view
         view.featureClicked.connect(lambda number: bench.view.select(number))
         view.pickRequested.connect(lambda wave: pick(bench, wave))
@@ -41,6 +47,8 @@ class Refresher:
 
     def session_changed(self, old, new) -> None:
         bench, space = self._bench, self._space
+        heed(bench, old, new)
+        space.show_changes(bench.desk)
         if new is None:
             self._steps.run([])
             self._session = None
@@ -124,6 +132,7 @@ class Refresher:
         view.show_profile(*(profile or (None, None)))
         self._space.ledger.show_selection(number)
         self._space.orphans.show_selection(number)
+        self._space.changes.show_selection(number)
         self._space.catalogue.follow_selection()
         self._space.evidence.refresh()
 

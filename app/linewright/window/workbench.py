@@ -41,6 +41,7 @@ class Desk:
     span: tuple[float, float] | None = None
     velocity: float = 0.0
     selected: int | None = None
+    weighed: object = None  # what the person's words change elsewhere, once looked up
     _sticks: tuple = (None, None)
 
     @property

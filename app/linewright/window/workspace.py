@@ -7,6 +7,7 @@ from PySide6.QtWidgets import QSplitter, QTabBar, QTabWidget, QVBoxLayout, QWidg
 
 from . import layout_memory as memory
 from .panels.catalogue import CataloguePanel
+from .panels.changes import ChangesPanel
 from .panels.evidence import EvidencePanel
 from .panels.ledger import LedgerPanel
 from .panels.orphans import OrphansPanel
@@ -22,6 +23,7 @@ class Workspace(QWidget):
         self.evidence = EvidencePanel(bench, bench.commands)
         self.ledger, self.roll_call = LedgerPanel(bench), RollCallPanel(bench)
         self.catalogue, self.orphans = CataloguePanel(bench), OrphansPanel(bench)
+        self.changes = ChangesPanel(bench)
         self.spectrum_view.setAccessibleName("Spectrum and Rake")
         self.track.setAccessibleName("Velocity track")
         self.desks = QTabBar(self)
@@ -32,8 +34,9 @@ class Workspace(QWidget):
         self.tables = QTabWidget()
         self.tables.setAccessibleName("Tables")
         self.tables.tabBar().setDrawBase(False)
-        for panel in (self.ledger, self.roll_call, self.catalogue, self.orphans):
+        for panel in (self.ledger, self.roll_call, self.catalogue, self.orphans, self.changes):
             self.tables.addTab(panel, panel.accessibleName())
+        self.tables.setTabVisible(self.tables.indexOf(self.changes), False)
         self._arrange()
 
     def _arrange(self) -> None:
@@ -67,6 +70,16 @@ class Workspace(QWidget):
             text = f"{name}  {count:,}" if count else name
             if self.tables.tabText(k) != text:  # setting it lays the tabs out again
                 self.tables.setTabText(k, text)
+
+    def show_changes(self, desk) -> None:
+        """The tab of what re-weighing changes, while there is something in it."""
+        weighed = desk.weighed if desk is not None else None
+        self.changes.show_weighed(weighed)
+        at = self.tables.indexOf(self.changes)
+        if self.tables.isTabVisible(at) != (weighed is not None):
+            self.tables.setTabVisible(at, weighed is not None)
+        if weighed is not None:
+            self.tables.setTabText(at, f"Changes  {len(weighed.changes):,}")
 
     def remember(self) -> None:
         memory.keep_bytes("across", self.across.saveState())

@@ -1,3 +1,3 @@
 """Names of the tables in the order of their tabs."""
 
-TABLES = ("ledger", "rollcall", "catalogue", "orphans")
+TABLES = ("ledger", "rollcall", "catalogue", "orphans", "changes")

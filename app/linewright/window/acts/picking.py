@@ -34,8 +34,8 @@ def pick(bench, wave: float) -> None:
 
 
 def _free_engine(bench):
-    """None while the engine's process is solving: short work is done in a thread then."""
-    return None if bench.tasks.busy("solve") else bench.engine
+    """None while the engine's process is busy: short work is done in a thread then."""
+    return None if bench.tasks.busy("solve") or bench.tasks.busy("reweigh") else bench.engine
 
 
 def _call(engine, name: str, arguments):

@@ -1,0 +1,69 @@
+"""A person's word carried to the other claims: what would change, and the changed session."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from ..session.model import HistoryEntry, Session
+from .reweigh import Change, reweigh
+
+WORDS = ("accept_candidate", "set_species", "set_aside", "set_standing", "restore")
+
+
+@dataclass(frozen=True, eq=False)
+class Weighed:
+    """before: the session that was weighed; after: its claims in the light of the person's
+    words; changes: claims whose species or standing differ
+    """
+
+    before: Session
+    after: Session
+    changes: tuple[Change, ...]
+
+    def state(self, now: Session) -> str:
+        """'would change', 'changed', or 'changed in part', by what a session says."""
+        rows = {int(n): i for i, n in enumerate(now.features.number)}
+        said = [(now.claims[rows[c.feature]].species, now.claims[rows[c.feature]].standing)
+                if c.feature in rows else None for c in self.changes]
+        done = sum(words == change.after for words, change in zip(said, self.changes))
+        if done == len(self.changes):
+            return "changed"
+        return "changed in part" if done else "would change"
+
+
+def can_reweigh(session: Session) -> bool:
+    """True once a solve has found velocity and temperature."""
+    return bool(len(session.features) and np.isfinite(session.temperature_k)
+                and np.isfinite(session.velocity.velocity))
+
+
+def new_word(old: Session | None, new: Session) -> bool:
+    """Whether the step from old to new is a person's act that the other claims may heed."""
+    return (old is not None and len(new.history) == len(old.history) + 1
+            and new.history[-1].by == "person" and new.history[-1].action in WORDS
+            and can_reweigh(new))
+
+
+def weighed_again(session: Session, progress=None) -> Weighed:
+    """The other claims weighed in the light of what the person said; ``before`` is left bare,
+    for the caller has it."""
+    after, changes = reweigh(session, progress=progress)
+    return Weighed(without_samples(session), after, changes)
+
+
+def without_samples(session: Session) -> Session:
+    """The claims and numbers of a session only."""
+    return replace(session, claims=(), history=(), continuum=())
+
+
+def carried_over(session: Session, weighed: Weighed) -> Session:
+    """``session``, which was weighed, with the new claims: one step, and what did not change
+    stays the same object. Claims a person made or locked are the session's own."""
+    claims = tuple(
+        old if old.by == "person" or old.locked or old == new else new
+        for old, new in zip(session.claims, weighed.after.claims, strict=True))
+    entry = HistoryEntry("reweigh", {"changed": len(weighed.changes)}, "machine")
+    return replace(session, claims=claims, roll_call=weighed.after.roll_call,
+                   orphans=weighed.after.orphans, history=(*session.history, entry))
