@@ -13,40 +13,43 @@ from dataclasses import dataclass
 import numpy as np
 
 NEGLIGIBLE = 1e-5  # odds below which a pair cannot sway any other
+ITERATIONS, TOLERANCE = 40, 1e-4  # at most so many; change of a message that ends them
 
 
 @dataclass(frozen=True, eq=False)
 class Marginals:
     """pair: P(line made feature) per pair; unlisted: P(no line) per feature;
-    ledger of ``missing``: P(line made no feature) per line."""
+    missing: P(line made no feature) per line; message: of each pair's line to its feature,
+    from which the next call on the same pairs may start."""
 
     pair: np.ndarray
     unlisted: np.ndarray
     missing: np.ndarray
+    message: np.ndarray
 
 
-def associate(feature, line, odds, sizes, rounds: int = 40, tolerance: float = 1e-4) -> Marginals:
+def associate(feature, line, odds, sizes, start=None) -> Marginals:
     """Marginals from pair odds.
 
     feature, line: int arrays (p,), the pairs; odds: (p,) likelihood that the line made the
-    feature over likelihood that line and feature are unrelated; sizes: (features, lines).
+    feature over likelihood that line and feature are unrelated; sizes: (features, lines);
+    start: (p,) messages to begin with, all open by default.
     """
     n_feature, n_line = sizes
     if len(odds) == 0:
-        return Marginals(np.zeros(0), np.ones(n_feature), np.ones(n_line))
-    open_line = _open_lines(feature, line, odds, sizes, (rounds, tolerance))
+        return Marginals(np.zeros(0), np.ones(n_feature), np.ones(n_line), np.zeros(0))
+    open_line = _open_lines(feature, line, odds, sizes, start)
     offer = odds * open_line
     norm = 1.0 + np.bincount(feature, offer, n_feature)
     pair = offer / norm[feature]
     missing = np.clip(1.0 - np.bincount(line, pair, n_line), 0.0, 1.0)
-    return Marginals(pair, 1.0 / norm, missing)
+    return Marginals(pair, 1.0 / norm, missing, open_line)
 
 
-def _open_lines(feature, line, odds, sizes, limits):
+def _open_lines(feature, line, odds, sizes, start):
     """Message of each line to each feature, (p,): how free the line is to make it.
 
     A line wanted by one feature only is free; messages run between the others alone.
-    limits: (most rounds, tolerance of the messages).
     """
     n_feature, n_line = sizes
     message = np.ones_like(odds)
@@ -58,15 +61,16 @@ def _open_lines(feature, line, odds, sizes, limits):
         return message
     fixed = 1.0 + np.bincount(feature[loose], odds[loose], n_feature)
     (f, n_f), (i, n_i), power = _compact(feature[edges]), _compact(line[edges]), odds[edges]
-    fixed, open_line = fixed[feature[edges]], np.ones(len(edges))
-    for _ in range(limits[0]):
+    fixed = fixed[feature[edges]]
+    open_line = np.ones(len(edges)) if start is None else start[edges]
+    for _ in range(ITERATIONS):
         offer = power * open_line
         claim = power / (fixed + np.maximum(np.bincount(f, offer, n_f)[f] - offer, 0.0))
         wanted = np.bincount(i, claim, n_i)[i]
         updated = 1.0 / (1.0 + np.maximum(wanted - claim, 0.0))
         change = float(np.max(np.abs(updated - open_line)))
         open_line = updated
-        if change < limits[1]:
+        if change < TOLERANCE:
             break
     message[edges] = open_line
     return message

@@ -159,11 +159,15 @@ def identify(
     )
     found = refined(setting, found, solution, temperature)
     solution = solve_mixture(
-        setting.problem(found.components, temperature), progress=progress.part(0.75, 0.9)
+        setting.problem(found.components, temperature),
+        progress=progress.part(0.75, 0.9),
+        start=solution.state,
     )
     if any(c.log_ratio for c in found.components):
         found = settled(found, solution)
-        solution = solve_mixture(setting.problem(found.components, temperature))
+        solution = solve_mixture(
+            setting.problem(found.components, temperature), start=solution.state
+        )
     claims = flagged(build_claims(solution, setting.catalogue, found.components), solution)
     claims = spikes_aside(features, claims)
     progress.report("calling the roll", 0.95)

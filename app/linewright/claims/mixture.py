@@ -21,6 +21,7 @@ from .problem import NOT_SAID, Problem
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
+SETTLED = 1e-3  # rms change of probability per feature and round
 TAIL_SHARE = 0.04  # of the heavy tail of position errors
 ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
 STRENGTH_TAIL, STRENGTH_RANGE = 0.03, 8.0  # share and width (dex) of strengths gone wrong
@@ -66,16 +67,32 @@ class Solution:
     log_likelihood: float
 
 
-def solve_mixture(problem: Problem, rounds: int = ROUNDS, progress=None) -> Solution:
-    """Run the engine; an empty problem gives an empty solution."""
+def solve_mixture(
+    problem: Problem, rounds: int = ROUNDS, progress=None, start: State | None = None
+) -> Solution:
+    """Run the engine; an empty problem gives an empty solution.
+
+    rounds: at most so many; it ends before when the claims have settled. start: what was
+    learned on a problem of the same features and species, to go on from.
+    """
     pairs = Pairs(problem)
-    state = _first_state(problem, pairs)
+    state, warm = (_first_state(problem, pairs), 0) if start is None else (start, 1)
+    step = _expect(problem, pairs, state)
     for turn in range(rounds):
         if progress is not None:
             progress.report("weighing claims", turn / rounds)
-        step = _expect(problem, pairs, state)
-        state = _learn(problem, pairs, step, state, turn)
-    return _finish(problem, pairs, _expect(problem, pairs, state), state)
+        before = step.marginals
+        state = _learn(problem, pairs, step, state, turn + warm)
+        step = _expect(problem, pairs, state, before.message)
+        if _settled(before.pair, step.marginals.pair, len(problem.features)):
+            break
+    return _finish(problem, pairs, step, state)
+
+
+def _settled(before, after, features: int) -> bool:
+    """Whether a round moved so little probability that more would change no claim."""
+    moved = float(np.sum((after - before) ** 2))
+    return moved < SETTLED**2 * max(features, 1)
 
 
 def _first_state(problem: Problem, pairs: Pairs) -> State:
@@ -97,7 +114,8 @@ class _Step:
     log_likelihood: float
 
 
-def _expect(problem: Problem, pairs: Pairs, state: State) -> _Step:
+def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step:
+    """Marginals in the present state; message: of the association before, to go on from."""
     e, f = problem.entries, problem.features
     strength = e.strength + state.offsets[e.species]
     groups = pairs.near.groups(strength)
@@ -109,7 +127,7 @@ def _expect(problem: Problem, pairs: Pairs, state: State) -> _Step:
     absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
     density, likelihood = _as_said(problem, pairs, density, likelihood)
     odds = likelihood / (absent * (density * p0)[pairs.feature])
-    marginals = associate(pairs.feature, pairs.entry, odds, (len(f), len(e)))
+    marginals = associate(pairs.feature, pairs.entry, odds, (len(f), len(e)), message)
     total = np.bincount(pairs.feature, likelihood, len(f)) + density * p0
     value = float(np.sum(np.log(total))) - float(np.sum(shows * pairs.covered))
     return _Step(groups, strength, marginals, sigma, offset, value)
