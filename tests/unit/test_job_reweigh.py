@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -42,3 +44,13 @@ def test_a_set_aside_feature_stays_so(solved):
     weighed, changes = reweigh(aside)
     assert weighed.claims[row].standing == "set aside"
     assert int(solved.features.number[row]) not in [c.feature for c in changes]
+
+
+def test_the_same_whether_the_first_weighing_was_kept_or_not(solved):
+    number = int(solved.features.number[np.argmax(solved.features.depth)])
+    first, _ = reweigh(set_species(solved, number, "Gd II"))
+    reweigh(set_aside(solved, number, "cosmic ray"))
+    kept, _ = reweigh(set_species(solved, number, "Gd II"))
+    fresh = replace(solved, features=replace(solved.features))  # equal tables, not the same
+    again, _ = reweigh(set_species(fresh, number, "Gd II"))
+    assert repr(kept.claims) == repr(first.claims) == repr(again.claims)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -15,7 +15,7 @@ from .artefacts import spikes_aside, with_spikes
 from .consistency import drift_warning, flagged
 from .entries import group_half_width
 from .features_in import feature_data
-from .mixture import solve_mixture
+from .mixture import Solution, solve_mixture
 from .model import Claim, Orphan, RollRow, VelocityResult
 from .options import ClaimOptions
 from .orphans import rank_orphans
@@ -26,6 +26,7 @@ from .temperature import electron_pressure, neighbours, peak, prior_log
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
 PROFILE_ROUNDS = 5
+AGAIN_ROUNDS = 6  # at most, after a person's word
 
 
 @dataclass(frozen=True, eq=False)
@@ -138,6 +139,16 @@ def _allowed(catalogue, species):
     return catalogue.take(np.isin(catalogue.species, wanted))
 
 
+@dataclass(frozen=True, eq=False)
+class Weighing:
+    """What is settled before claims are made of it: components, temperature, marginals."""
+
+    setting: Setting
+    found: Found
+    temperature: float
+    solution: Solution
+
+
 def identify(
     features, coverage, catalogue, options=ClaimOptions(), progress=None, said=None
 ) -> Identification:
@@ -152,15 +163,20 @@ def identify(
         return _nothing(options)
     setting = Setting(features, catalogue, coverage, options)
     setting.said = with_spikes(features, said)
+    return conclude(weigh(setting, progress.part(0.0, 0.9)), progress)
+
+
+def weigh(setting: Setting, progress) -> Weighing:
+    """Components, temperature and the mixture, in turn until they agree."""
     found = find_components(setting, progress.part(0.0, 0.3))
-    temperature = _temperature(setting, found, progress.part(0.3, 0.6))
+    temperature = _temperature(setting, found, progress.part(0.3, 0.7))
     solution = solve_mixture(
-        setting.problem(found.components, temperature), progress=progress.part(0.6, 0.75)
+        setting.problem(found.components, temperature), progress=progress.part(0.7, 0.85)
     )
     found = refined(setting, found, solution, temperature)
     solution = solve_mixture(
         setting.problem(found.components, temperature),
-        progress=progress.part(0.75, 0.9),
+        progress=progress.part(0.85, 1.0),
         start=solution.state,
     )
     if any(c.log_ratio for c in found.components):
@@ -168,17 +184,37 @@ def identify(
         solution = solve_mixture(
             setting.problem(found.components, temperature), start=solution.state
         )
-    claims = flagged(build_claims(solution, setting.catalogue, found.components), solution)
+    return Weighing(setting, found, temperature, solution)
+
+
+def weigh_again(weighing: Weighing, said, progress=None) -> Weighing:
+    """The weighing in the light of a person's words, (f,) as of ``identify``: components and
+    temperature stand, and the mixture goes on from where it had settled."""
+    problem = weighing.solution.problem
+    words = with_spikes(weighing.setting.features, said)
+    solution = solve_mixture(
+        replace(problem, said=words), AGAIN_ROUNDS, progress, start=weighing.solution.state
+    )
+    return replace(weighing, solution=solution)
+
+
+def conclude(weighing: Weighing, progress=None) -> Identification:
+    """Claims, Roll call and Orphans out of a weighing."""
+    setting, found, solution = weighing.setting, weighing.found, weighing.solution
+    features, catalogue, options = setting.features, setting.catalogue, setting.options
+    claims = flagged(build_claims(solution, catalogue, found.components), solution)
     claims = spikes_aside(features, claims)
-    progress.report("calling the roll", 0.95)
+    if progress is not None:
+        progress.report("calling the roll", 0.95)
+    pressure = electron_pressure(weighing.temperature)
     return Identification(
         claims,
         found.velocity,
         found.components,
-        temperature,
-        electron_pressure(temperature) if options.log_pe is None else options.log_pe,
-        call_roll(solution, setting.catalogue),
-        rank_orphans(features, claims, solution, setting.catalogue),
+        weighing.temperature,
+        pressure if options.log_pe is None else options.log_pe,
+        call_roll(solution, catalogue),
+        rank_orphans(features, claims, solution, catalogue),
         found.warnings + drift_warning(solution, found.components),
         solution,
     )

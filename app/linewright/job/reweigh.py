@@ -1,15 +1,23 @@
-"""A person's firm word is data: the rest is weighed again in its light."""
+"""A person's firm word is data: the rest is weighed again in its light.
+
+What the spectrum says of itself, before anyone spoke, is weighed once and kept for the next
+word on the same session; it depends on the session alone, so the outcome is the same
+whether it was kept or not.
+"""
 
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from threading import Lock
 
 import numpy as np
 
-from ..claims.identify import identify
+from ..claims.artefacts import with_spikes
+from ..claims.identify import Setting, Weighing, conclude, weigh, weigh_again
 from ..claims.options import ClaimOptions
 from ..claims.problem import NOT_SAID, SET_ASIDE
 from ..lines.loading import load_catalogue
+from ..progress import Progress
 from ..session.model import HistoryEntry, Session
 
 
@@ -30,32 +38,74 @@ def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, t
     default.
     """
     catalogue = load_catalogue() if catalogue is None else catalogue
-    features, coverage = session.features, session.spectrum.coverage
-    complete = len(coverage) > 0
-    if not complete:
-        coverage = ((float(features.wave.min()) - 0.5, float(features.wave.max()) + 0.5),)
-    found = identify(
-        features, coverage, catalogue, _options(session, complete), progress, _said(session, catalogue)
-    )
-    claims, changes = [], []
-    for number, old, new in zip(features.number, session.claims, found.claims):
-        if old.by == "person" or old.locked:
-            claims.append(old)
-            continue
-        new = replace(new, note=old.note, flags=old.flags)
-        claims.append(new)
-        before, after = (old.species, old.standing), (new.species, new.standing)
-        if before != after:
-            changes.append(Change(int(number), before, after))
+    progress = progress or Progress()
+    if len(session.features) == 0:
+        return session, ()
+    before = _kept.weighing(session, catalogue, progress.part(0.0, 0.7))
+    after = weigh_again(before, _said(session, catalogue), progress.part(0.7, 0.9))
+    found = conclude(after, progress)
+    claims, changes = _merged(session, found)
     entry = HistoryEntry("reweigh", {"changed": len(changes)}, "machine")
     weighed = replace(
         session,
-        claims=tuple(claims),
+        claims=claims,
         roll_call=found.roll_call,
         orphans=found.orphans,
         history=(*session.history, entry),
     )
-    return weighed, tuple(changes)
+    return weighed, changes
+
+
+def _merged(session: Session, found):
+    """(claims, changes): new machine claims beside what a person made or locked."""
+    claims, changes = [], []
+    for number, old, new in zip(session.features.number, session.claims, found.claims):
+        if old.by == "person" or old.locked:
+            claims.append(old)
+            continue
+        if (new.note, new.flags) != (old.note, old.flags):
+            new = replace(new, note=old.note, flags=old.flags)
+        claims.append(new)
+        before, after = (old.species, old.standing), (new.species, new.standing)
+        if before != after:
+            changes.append(Change(int(number), before, after))
+    return tuple(claims), tuple(changes)
+
+
+class _Kept:
+    """The last session's weighing before a person spoke."""
+
+    def __init__(self):
+        self._lock, self._key, self._weighing = Lock(), None, None
+
+    def weighing(self, session: Session, catalogue, progress) -> Weighing:
+        coverage, complete = _coverage(session)
+        key = (session.features, catalogue, coverage, _options(session, complete))
+        with self._lock:
+            if self._key is not None and self._same(key):
+                return self._weighing
+        setting = Setting(session.features, catalogue, coverage, key[3])
+        setting.said = with_spikes(session.features, None)
+        weighing = weigh(setting, progress)
+        with self._lock:
+            self._key, self._weighing = key, weighing
+        return weighing
+
+    def _same(self, key) -> bool:
+        """The same tables (not equal ones), ranges and options."""
+        return all(a is b for a, b in zip(key[:2], self._key[:2])) and key[2:] == self._key[2:]
+
+
+_kept = _Kept()
+
+
+def _coverage(session: Session):
+    """(searched ranges, whether every feature in them is listed)."""
+    coverage = tuple(tuple(float(x) for x in pair) for pair in session.spectrum.coverage)
+    if coverage:
+        return coverage, True
+    wave = session.features.wave
+    return ((float(wave.min()) - 0.5, float(wave.max()) + 0.5),), False
 
 
 def _options(session: Session, complete: bool) -> ClaimOptions:
