@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from .breakdown import breakdowns
 from .model import Candidate, Claim, standing_of
 from .entries import SHARE_EXPONENT
 from .mixture import Solution
@@ -140,6 +141,7 @@ def _candidates(solution: Solution, catalogue, components, chosen):
         solution.offset_sigma[pairs].tolist(),
         _predicted_depths(solution)[entry].tolist(),
         [catalogue.source_keys[i] for i in catalogue.source[row].tolist()],
+        breakdowns(solution, pairs),
     )
     return tuple(map(Candidate, *columns))
 

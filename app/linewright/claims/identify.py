@@ -22,6 +22,7 @@ from .orphans import rank_orphans
 from .populations import HYDROGEN, POPULATIONS, UNGRADED, Component, assemble
 from .problem import Problem
 from .roll_call import call_roll
+from .siblings import with_siblings
 from .temperature import electron_pressure, neighbours, peak, prior_log
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
@@ -213,7 +214,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
         found.components,
         weighing.temperature,
         pressure if options.log_pe is None else options.log_pe,
-        call_roll(solution, catalogue),
+        with_siblings(call_roll(solution, catalogue), solution, catalogue),
         rank_orphans(features, claims, solution, catalogue),
         found.warnings + drift_warning(solution, found.components),
         solution,

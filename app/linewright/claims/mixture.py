@@ -119,11 +119,11 @@ def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step
     e, f = problem.entries, problem.features
     strength = e.strength + state.offsets[e.species]
     groups = pairs.near.groups(strength)
-    shows = _shows(pairs, groups, state)
-    position, sigma, offset = _position(problem, pairs, state, groups)
+    shows = chance_to_show(pairs, groups, state)
+    position, sigma, offset = position_likelihood(problem, pairs, state, groups)
     density, p0 = state.null.at(pairs.bins)
     shown = shows[pairs.entry]
-    likelihood = shown * position * _strength_likelihood(pairs, state, groups, p0)
+    likelihood = shown * position * strength_likelihood(pairs, state, groups, p0)
     absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
     density, likelihood = _as_said(problem, pairs, density, likelihood)
     odds = likelihood / (absent * (density * p0)[pairs.feature])
@@ -145,7 +145,7 @@ def _as_said(problem: Problem, pairs: Pairs, density, likelihood):
     return np.where(problem.said >= 0, density * DOUBT_A_PERSON, density), likelihood * allowed
 
 
-def _shows(pairs: Pairs, groups: Groups, state: State):
+def chance_to_show(pairs: Pairs, groups: Groups, state: State):
     """P(the entry makes a feature)."""
     out = np.zeros(len(groups.share))
     for block in pairs.blocks:
@@ -153,23 +153,23 @@ def _shows(pairs: Pairs, groups: Groups, state: State):
     return out * groups.share
 
 
-def _position(problem: Problem, pairs: Pairs, state: State, groups: Groups):
+def position_likelihood(problem: Problem, pairs: Pairs, state: State, groups: Groups):
     """Position likelihood per pair: the line's own place, or its blend's centroid."""
     e = problem.entries
     list_variance = e.error**2 + state.scatter[e.species] ** 2
     scale = state.error_scale[pairs.crowded]
     sigma = np.sqrt(pairs.base_variance * scale**2 + list_variance[pairs.entry])
-    value, nearer = _tailed(pairs.own, sigma), pairs.own.copy()
+    value, nearer = tailed(pairs.own, sigma), pairs.own.copy()
     share = groups.share[pairs.entry]
     mixed = np.nonzero(share < 1.0)[0]
     blend = pairs.wave[mixed] - groups.centroid[pairs.entry[mixed]]
     weight = np.maximum(share[mixed], OWN_PLACE)
-    value[mixed] = weight * value[mixed] + (1 - weight) * _tailed(blend, sigma[mixed])
+    value[mixed] = weight * value[mixed] + (1 - weight) * tailed(blend, sigma[mixed])
     nearer[mixed] = np.where(np.abs(blend) < np.abs(nearer[mixed]), blend, nearer[mixed])
     return value, sigma, nearer / sigma
 
 
-def _tailed(offset, sigma):
+def tailed(offset, sigma):
     wide = np.maximum(TAIL_FACTOR * sigma, TAIL_FLOOR)
     return (1 - TAIL_SHARE) * _normal(offset, sigma) + TAIL_SHARE * _normal(offset, wide)
 
@@ -179,7 +179,7 @@ def _normal(x, s):
     return np.exp(-0.5 * z * z) / (s * np.sqrt(2 * np.pi))
 
 
-def _strength_likelihood(pairs: Pairs, state: State, groups: Groups, p0):
+def strength_likelihood(pairs: Pairs, state: State, groups: Groups, p0):
     """Density of the measured strength given the line's group; flat where strengths are not
     predicted, the null's own (no evidence) where none was measured."""
     value = np.where(np.isfinite(pairs.m), ANY_STRENGTH, p0[pairs.feature])

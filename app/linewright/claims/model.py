@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -28,6 +29,7 @@ class Candidate:
     share: of the predicted opacity (emissivity) within a resolution element
     offset_sigma: (feature - line)/sigma at the component's velocity
     depth_predicted: predicted central depth, negative in emission, NaN unknown
+    weights: the breakdown of its probability (breakdown.Breakdown), empty where it has none
     """
 
     species: str
@@ -42,6 +44,7 @@ class Candidate:
     offset_sigma: float
     depth_predicted: float
     source: str
+    weights: tuple[float, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -87,8 +90,8 @@ class VelocityResult:
     how: 'voting', 'template', 'given'
     """
 
-    velocity: float = float("nan")
-    error: float = float("nan")
+    velocity: float = math.nan
+    error: float = math.nan
     margin: float = 0.0
     declared: bool = False
     rivals: tuple[tuple[float, float], ...] = ()
@@ -99,7 +102,15 @@ class VelocityResult:
 
 @dataclass(frozen=True)
 class RollRow:
-    """One species of the Roll call (columns of the table contract)."""
+    """One species of the Roll call (columns of the table contract), and what goes with it.
+
+    limit_dex: the strength offset lies below this where the species is not seen (NaN: no
+    limit); limit_wave: the line that says so, rest vacuum Angstrom; limit_ew: the equivalent
+    width it would at least need, milliangstrom
+    missing_wave, missing_depth: the strongest line expected and not seen; missing_shift: how
+    many dex the offset would rise were it seen; gap_...: the same of the strongest line
+    outside the coverage
+    """
 
     species: str
     expected: int
@@ -109,6 +120,15 @@ class RollRow:
     offset_dex: float
     offset_err: float
     verdict: str
+    limit_dex: float = math.nan
+    limit_wave: float = math.nan
+    limit_ew: float = math.nan
+    missing_wave: float = math.nan
+    missing_depth: float = math.nan
+    missing_shift: float = math.nan
+    gap_wave: float = math.nan
+    gap_depth: float = math.nan
+    gap_shift: float = math.nan
 
 
 @dataclass(frozen=True)

@@ -5,11 +5,13 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ..session.model import Candidate, Claim, RollRow
+from ..claims.facts import Fact, Place, deciding_facts, strongest_fact
+from ..session.model import Candidate, Claim, RollRow, Session
 
 NEAR, FAR = 1.5, 3.0  # sigma
 SAME, DIFFERENT = 1.5, 3.0  # ratio of predicted to observed depth
 FULL, MINOR = 0.7, 0.2  # share of the predicted opacity
+NEIGHBOURS = 6  # features on either side that may want the same line
 
 
 @dataclass(frozen=True)
@@ -34,6 +36,41 @@ def reasons(
         chance = "more than 0.99" if claim.p_unlisted > 0.995 else f"{claim.p_unlisted:.2f}"
         bad.append(f"no listed line made it, with probability {chance}")
     return Reasons(tuple(good), tuple(bad))
+
+
+@dataclass(frozen=True)
+class WhatChanges:
+    """What would change a verdict: ``words`` is one sentence each, most likely first.
+
+    decisive: False where no single fact does and the sentence tells the one that goes
+    furthest; facts: the same with their probabilities
+    """
+
+    words: tuple[str, ...]
+    facts: tuple[Fact, ...]
+    decisive: bool
+
+
+def what_would_change(session: Session, row: int, species: str = "") -> WhatChanges:
+    """The one or two facts that would carry a feature's probability across the nearest bound.
+
+    row: of the session's features; species: the claim's own where empty. Nothing where a
+    person decided, where no line comes near, and in sessions that keep no breakdown.
+    """
+    claim, f = session.claims[row], session.features
+    wanted = species or claim.species
+    roll = next((r for r in session.roll_call if r.species == wanted), None)
+    near = range(max(row - NEIGHBOURS, 0), min(row + NEIGHBOURS + 1, len(f)))
+    others = tuple((float(f.wave[i]), session.claims[i]) for i in near if i != row)
+    place = Place(float(f.wave[row]), session.spectrum.medium, roll, others)
+    facts = deciding_facts(claim, place, species)
+    if facts:
+        return WhatChanges(tuple(f.sentence() for f in facts), facts, True)
+    furthest = strongest_fact(claim, place, species)
+    if furthest is None:
+        return WhatChanges((), (), False)
+    words = f"no single fact would change it; furthest goes: {furthest.sentence()}"
+    return WhatChanges((words,), (furthest,), False)
 
 
 def _position(c: Candidate, _depth: float, good: list, bad: list) -> None:

@@ -101,10 +101,13 @@ def _claims(parts: dict, count: int) -> tuple[Claim, ...]:
 
 def _typed(cls, name: str, values: list) -> list:
     kind = next(f.type for f in fields(cls) if f.name == name)
+    if kind.startswith("tuple"):
+        return [frozen(v) for v in values]
     return [real(v) for v in values] if kind == "float" else values
 
 
 def _candidates(part: dict, count: int) -> list[tuple[Candidate, ...]]:
+    part = {**part, "weights": part.get("weights") or [()] * sum(part["count"])}
     names = [f.name for f in fields(Candidate)]
     total = _same_length("candidates", {name: part[name] for name in names})
     counts = part["count"]

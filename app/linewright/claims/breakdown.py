@@ -1,0 +1,107 @@
+"""The probability's breakdown: what each factor of the odds says for one candidate.
+
+The odds of a candidate line against 'no listed line' are a product: how readily the line
+shows, how well it is placed, how well its strength fits, and how free it is of other
+features that want it. The breakdown keeps the factors of the engine's last round with
+what is needed to compute them again under changed circumstances (see ``facts``).
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+
+from .mixture import chance_to_show, position_likelihood, strength_likelihood
+from .pairs import Pairs
+from .problem import NOT_SAID
+
+NEGLIGIBLE = 1e-3  # candidates less probable than this keep no breakdown
+STEP = 0.5  # dex by which the readiness to show is tried
+DIGITS = 4
+
+
+class Breakdown(NamedTuple):
+    """Natural logarithms of the four factors, then what they were made of.
+
+    show: P(shows)/P(stays away); place: position likelihood over the density of unlisted
+    features; strength: likelihood of the measured strength over that of unlisted features;
+    free: of other features that want the line, 0 where none does
+    sigma: of the offset, Angstrom; of which ``own``: the feature's part, without the list's
+    blend: feature less the centroid of the line's blend, Angstrom
+    excess: measured strength less the expected one, dex; scatter: its sigma, dex, 0 where no
+    strength is predicted or measured; slope: of measured against predicted strength
+    stronger, weaker: change of log P(shows) for a line STEP dex stronger or weaker
+    """
+
+    show: float
+    place: float
+    strength: float
+    free: float
+    sigma: float
+    own: float
+    blend: float
+    excess: float
+    scatter: float
+    slope: float
+    stronger: float
+    weaker: float
+
+    @property
+    def log_odds(self) -> float:
+        """ln of P(this line)/P(no listed line)."""
+        return self.show + self.place + self.strength + self.free
+
+
+def breakdowns(solution, chosen) -> list[tuple[float, ...]]:
+    """Breakdown of each chosen pair as a plain tuple; () where it is negligible or where a
+    person's word decided.
+
+    solution: Solution; chosen: (c,) pair indices.
+    """
+    columns = [column[chosen] for column in _columns(solution)]
+    told = solution.problem.said
+    quiet = solution.probability[chosen] < NEGLIGIBLE
+    if told is not None:
+        quiet = quiet | (told[solution.feature[chosen]] != NOT_SAID)
+    rows = zip(*(np.round(column, DIGITS).tolist() for column in columns))
+    return [() if skip else row for skip, row in zip(quiet.tolist(), rows)]
+
+
+def _columns(solution):
+    problem, state, groups = solution.problem, solution.state, solution.groups
+    pairs = Pairs(problem)
+    shown = chance_to_show(pairs, groups, state)[pairs.entry]
+    position, sigma, _ = position_likelihood(problem, pairs, state, groups)
+    density, p0 = state.null.at(pairs.bins)
+    fits = strength_likelihood(pairs, state, groups, p0) / p0[pairs.feature]
+    absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
+    show, place = np.log(shown / absent), np.log(position / density[pairs.feature])
+    strength = np.log(fits)
+    tiny = 1e-300
+    odds = np.log(np.maximum(solution.probability, tiny))
+    odds = odds - np.log(np.maximum(solution.unlisted[pairs.feature], tiny))
+    own = np.sqrt(pairs.base_variance) * state.error_scale[pairs.crowded]
+    blend = pairs.wave - groups.centroid[pairs.entry]
+    free = odds - show - place - strength
+    return show, place, strength, free, sigma, own, blend, *_strengths(pairs, state, groups)
+
+
+def _strengths(pairs: Pairs, state, groups):
+    """(excess, scatter, slope, stronger, weaker) per pair."""
+    total = groups.total[pairs.entry]
+    out = np.zeros((3, len(total)))
+    change = np.zeros((2, len(total)))
+    population = np.zeros(len(groups.total), dtype=int)
+    for block in pairs.blocks:
+        population[block.entries] = block.population
+        rows, relation = block.graded, state.relation[block.population]
+        out[0, rows] = pairs.m[rows] - relation(total[rows])
+        out[1, rows] = np.sqrt(relation.scatter**2 + pairs.m_variance[rows])
+        out[2, rows] = relation.slope(total[rows])
+    for k in np.unique(population):
+        rows, curve = population[pairs.entry] == k, state.detection[k]
+        now = np.log(curve(total[rows]))
+        change[0, rows] = np.log(curve(total[rows] + STEP)) - now
+        change[1, rows] = np.log(curve(total[rows] - STEP)) - now
+    return *out, *change
