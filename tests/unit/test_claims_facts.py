@@ -45,9 +45,13 @@ def test_the_odds_kept_give_the_probability_again(session):
     trials = [Trial(session.claims[i], session.claims[i].species, placed(session, i)) for i in rows]
     stated = [session.claims[i].probability for i in rows]
     assert [t.probability() for t in trials] == pytest.approx(stated, abs=1e-6)
-    # what had to be added to the kept lines' odds for that is next to nothing
-    added = [t.more / (1 + np.sum(t.odds) + t.rest) for t in trials]
-    assert np.max(np.abs(added)) < 0.01
+    # what had to be added to the odds for that is the share of the species' other lines
+    added = [t.sure * t.more / (1 + np.sum(t.odds) + t.rest) for t in trials]
+    others = [
+        c.probability - sum(k.probability for k in c.candidates if k.weights and k.species == c.species)
+        for c in (session.claims[i] for i in rows)
+    ]
+    assert added == pytest.approx(others, abs=0.002)
 
 
 def test_lines_that_no_other_feature_wants_are_free(session):
