@@ -18,6 +18,7 @@ _HOMES = {
     "solve": "linewright.job.solve",
     "solve_features": "linewright.job.solve",
     "SolveOptions": "linewright.job.options",
+    "again": "linewright.job.again",
     "load_session": "linewright.session.file",
     "save_session": "linewright.session.file",
 }

@@ -7,6 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from measured_session import nearest, session_of
 
 from linewright.cli.main import main
 from linewright.errors import InputRefused
@@ -14,14 +15,12 @@ from linewright.job.hand_anchors import anchored, anchors_in, keep_anchors, leve
 from linewright.job.hand_edits import measured, merge, refit, script_measurer, split
 from linewright.job.hand_fit import Wanted, limits_of
 from linewright.job.view_keep import keep_acts
-from linewright.job.view_session import unsolved_session
-from linewright.measure import measure_spectrum
 from linewright.measure.anchors import add_anchor
 from linewright.publish.ledger import ledger_table
 from linewright.session.document import Document
 from linewright.session.encode import session_bytes
 from linewright.session.file import load_session, save_session
-from linewright.session.model import Claim, ContinuumNodes
+from linewright.session.model import Claim
 from linewright.session.script import apply_edit, apply_script, history_commands
 from linewright.spectra.reading import read_spectrum
 from linewright.spectra.spectrum import Segment, Spectrum
@@ -48,20 +47,9 @@ def spectrum():
     return Spectrum((segment,), "vacuum", "test", "rest", "test", "", "made", "", "0" * 64, "text")
 
 
-def session_of(spectrum):
-    found = measure_spectrum(spectrum)
-    nodes = tuple(ContinuumNodes(s.node_wave, s.node_flux) for s in found.segments)
-    return replace(unsolved_session(spectrum), features=found.features, continuum=nodes,
-                   claims=tuple(Claim(note=f"of {n}") for n in found.features.number.tolist()))
-
-
 @pytest.fixture(scope="module")
 def session(spectrum):
     return session_of(spectrum)
-
-
-def nearest(session, wave):
-    return int(session.features.number[np.argmin(np.abs(session.features.wave - wave))])
 
 
 def row(session, number):

@@ -20,6 +20,7 @@ COMMANDS = {
     "table": "write the Ledger, the Roll call or the Orphans of a session",
     "figure": "draw a session's spectrum with its lines named",
     "lines": "list catalogue lines of a range",
+    "again": "measure a session's features in another spectrum of the star",
     "edit": "apply a script of edits to a session",
 }
 

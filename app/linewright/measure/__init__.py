@@ -1,6 +1,6 @@
 """Noise, pseudo-continuum, features and their profiles."""
 
-from .again import Differences, measure_again
+from .again import Differences, differences, measure_again
 from .anchors import Anchors, add_anchor, anchors_of, move_anchor, refit, remove_anchor
 from .by_hand import fit_profile, measure_at
 from .core import measure_spectrum
@@ -12,7 +12,7 @@ from .region import RegionFit, choose_region, fit_region
 
 __all__ = [
     "Anchors", "Differences", "EquivalentWidth", "FeatureTable", "MeasureOptions", "Measurement",
-    "RegionFit", "add_anchor", "anchors_of", "choose_region", "equivalent_width",
+    "RegionFit", "add_anchor", "anchors_of", "choose_region", "differences", "equivalent_width",
     "features_from_columns", "fit_profile", "fit_region", "measure_again", "measure_at",
     "measure_spectrum", "move_anchor", "refit", "remove_anchor", "rest_width", "upper_limit",
 ]

@@ -57,13 +57,18 @@ def measure_again(features: FeatureTable, spectrum, velocity: float = 0.0, optio
     table = remeasured(spectrum, measured, moved.take(order), known)
     table = table.take(np.argsort(order))
     table = _blank(table, segment < 0)
+    return differences(features, table, factor), measured
+
+
+def differences(first: FeatureTable, second: FeatureTable, factor: float) -> Differences:
+    """Of two tables with the same rows; factor: of the second's wavelengths over the first's."""
     columns = {}
     for name in MEASURED:
         scale = factor if name in ("wave", "fwhm", "ew") else 1.0
-        columns[name] = getattr(table, name) / scale - getattr(features, name)
+        columns[name] = getattr(second, name) / scale - getattr(first, name)
         columns[f"{name}_err"] = np.hypot(
-            getattr(table, f"{name}_err") / scale, getattr(features, f"{name}_err"))
-    return Differences(table, **columns), measured
+            getattr(second, f"{name}_err") / scale, getattr(first, f"{name}_err"))
+    return Differences(second, **columns)
 
 
 def remeasured(

@@ -154,3 +154,32 @@ ORPHANS = (
     _c("nearest", "text", "the nearest line of the catalogue"),
     _c("why", "text", "why that is not the explanation"),
 )
+
+
+def _twice(name: str, what: str, unit: str, digits: str) -> tuple[Column, ...]:
+    """First, second, difference and its error of one measured number."""
+    return (
+        _c(name, "float", f"{what} in the first spectrum", unit, digits),
+        _c(f"{name}_err", "float", f"one-sigma error of {name}", unit, digits),
+        _c(f"{name}_again", "float", f"{what} in the second spectrum, its velocity taken out",
+           unit, digits),
+        _c(f"{name}_again_err", "float", f"one-sigma error of {name}_again", unit, digits),
+        _c(f"{name}_diff", "float", f"{name}_again less {name}", unit, digits),
+        _c(f"{name}_diff_err", "float", f"one-sigma error of {name}_diff", unit, digits),
+    )
+
+
+AGAIN = (
+    _c("feature", "int", "permanent number of the feature"),
+    _c("segment", "int", "index of the first spectrum's segment, from 0"),
+    _c("kind", "text", "absorption or emission"),
+    _c("species", "text", "species of the claim"),
+    _c("standing", "text", "firm, likely, tentative, unclaimed or set aside"),
+    *_twice("wave", "wavelength, first spectrum's medium and frame", A, ".4f"),
+    *_twice("depth", "depth", "", ".4f"),
+    *_twice("fwhm", "full width at half depth", A, ".4f"),
+    *_twice("ew", "equivalent width", MA, ".2f"),
+    _c("significance_again", "float", "matched-filter signal-to-noise in the second", "", ".1f"),
+    _c("flags", "text", "short words on the first measurement and the claim"),
+    _c("flags_again", "text", "short words on the second measurement"),
+)

@@ -38,13 +38,13 @@ def ledger_table(session: Session):
     columns["kind"] = [KINDS[int(s)] for s in features.sign]
     columns["wave"] = to_medium(features.wave, session.spectrum.medium)
     columns["flags"] = [
-        _words(f"{own} {claim.flags}")
+        words_once(f"{own} {claim.flags}")
         for own, claim in zip(features.flags, session.claims, strict=True)
     ]
     columns["blend"] = [blend_text(claim, session.spectrum.medium) for claim in session.claims]
     columns |= {name: [getattr(c, name) for c in session.claims] for name in _CLAIMED}
     columns |= _lines(session)
-    return _table(LEDGER, columns, session)
+    return table_of(LEDGER, columns, metadata(session))
 
 
 _MEASURED = (
@@ -57,7 +57,8 @@ _CLAIMED = (
 )  # fmt: skip
 
 
-def _words(text: str) -> str:
+def words_once(text: str) -> str:
+    """The words of a text, each once, in order."""
     return " ".join(dict.fromkeys(text.split()))
 
 
@@ -98,7 +99,7 @@ def rollcall_table(session: Session):
     """The Roll call: one row a species."""
     rows = session.roll_call
     columns = {c.name: [getattr(row, c.name) for row in rows] for c in ROLL_CALL}
-    return _table(ROLL_CALL, columns, session)
+    return table_of(ROLL_CALL, columns, metadata(session))
 
 
 def open_orphans(session: Session) -> list:
@@ -123,19 +124,20 @@ def orphans_table(session: Session):
     columns["kind"] = [KINDS[int(s)] for s in features.sign]
     columns["wave"] = to_medium(features.wave, medium)
     columns["wave_rest"] = to_medium(rest, medium)
-    return _table(ORPHANS, columns, session)
+    return table_of(ORPHANS, columns, metadata(session))
 
 
 _ORPHANED = ("feature", "p_unlisted", "nearest", "why")
 
 
-def _table(specification: tuple[Column, ...], columns: dict, session: Session):
+def table_of(specification: tuple[Column, ...], columns: dict, meta: dict):
+    """The astropy table of these columns, masked where nothing is known."""
     from astropy.table import Table
 
     table = Table(masked=True)
     for column in specification:
         table[column.name] = _masked(column, columns[column.name])
-    table.meta.update(metadata(session))
+    table.meta.update(meta)
     return table
 
 

@@ -8,9 +8,9 @@ from pathlib import Path
 
 from ..errors import InputRefused
 from ..session.atomic import check_writable, write_atomically
-from .columns import LEDGER, ORPHANS, ROLL_CALL
+from .columns import AGAIN, LEDGER, ORPHANS, ROLL_CALL
 
-PRINTED = {c.name: c.print_format for c in (*LEDGER, *ROLL_CALL, *ORPHANS) if c.print_format}
+PRINTED = {c.name: c.print_format for c in (*LEDGER, *ROLL_CALL, *ORPHANS, *AGAIN) if c.print_format}
 
 
 def write_table(table, path, force: bool = False) -> None:
