@@ -11,6 +11,7 @@ import numpy as np
 from .curves import BIN, CENTRES, bin_of
 
 SCALE, FREEDOM = 0.4, 3.0  # dex and degrees of freedom of the prior
+LEAST_ERROR = 0.05  # dex: the strengths of one species share errors of their own
 GRID = np.arange(-15, 16) * BIN
 
 
@@ -56,9 +57,22 @@ def strength_log_likelihood(residual, slope, scatter, weight, species, count):
 
 def best_offsets(log_likelihood, scale: float = SCALE):
     """Posterior mean and sigma per species, dex, from (count, len(GRID)) likelihoods."""
-    posterior = log_likelihood + prior_log(scale)
-    posterior = np.exp(posterior - posterior.max(axis=1, keepdims=True))
+    log_posterior = log_likelihood + prior_log(scale)
+    posterior = np.exp(log_posterior - log_posterior.max(axis=1, keepdims=True))
     posterior /= posterior.sum(axis=1, keepdims=True)
     mean = posterior @ GRID
-    variance = posterior @ GRID**2 - mean**2
-    return mean, np.sqrt(np.maximum(variance, (BIN / 4) ** 2))
+    sigma = np.sqrt(np.maximum(posterior @ GRID**2 - mean**2, 0.0))
+    peak, width = _parabola(log_posterior)
+    sharp = width < BIN  # the grid is too coarse for moments; the parabola is not
+    mean, sigma = np.where(sharp, peak, mean), np.where(sharp, width, sigma)
+    return mean, np.maximum(sigma, LEAST_ERROR)
+
+
+def _parabola(log_posterior):
+    """(place, sigma) of the parabola through the best grid point and its neighbours."""
+    best = np.clip(np.argmax(log_posterior, axis=1), 1, len(GRID) - 2)
+    rows = np.arange(len(best))
+    left, mid, right = (log_posterior[rows, best + k] for k in (-1, 0, 1))
+    curvature = np.maximum(2 * mid - left - right, 1e-9)
+    shift = np.clip(0.5 * (right - left) / curvature, -1.0, 1.0)
+    return GRID[best] + BIN * shift, BIN / np.sqrt(curvature)
