@@ -90,13 +90,11 @@ def scene(name, seed, stars, ranges, resolution, sn, air=None) -> Scene:
 class Observed:
     """A simulated spectrum and its truth.
 
-    sources: name ('star 1', 'telluric') -> (grid wavelengths, depth) of that source alone
     wave, size, species: vacuum place, depth when alone, and name of the simulated lines,
         sorted; origin and component beside them
     """
 
     spectrum: Spectrum
-    sources: dict
     wave: np.ndarray
     size: np.ndarray
     species: np.ndarray
@@ -125,56 +123,22 @@ def observed(scene: Scene, catalogue=None) -> Observed:
         frame_from="simulated", name=scene.name,
     )
     return Observed(
-        spectrum, _alone(scene, table), place[order], size[order],
-        table["species"][order], table["origin"][order], table["component"][order],
-        scene.camera.resolution,
+        spectrum, place[order], size[order], table["species"][order], table["origin"][order],
+        table["component"][order], scene.camera.resolution,
     )
 
 
-def _alone(scene: Scene, table) -> dict:
-    """Depth of every source without the others, on the simulation's fine grid."""
-    sources = {}
-    groups = [("stellar", k + 1) for k in range(len(scene.stars))]
-    if scene.air is not None:
-        groups.append(("telluric", None))
-    for origin, k in groups:
-        rows = table["origin"] == origin
-        if k is not None:
-            rows &= table["component"] == k
-        grid, flux = light.received(scene, {n: v[rows] for n, v in table.items()})
-        sources[f"star {k}" if k else "telluric"] = (grid.wave, np.max(flux) - flux)
-    return sources
-
-
-def local_depths(seen: Observed, wave, fwhm) -> dict:
-    """source -> how far its own depth rises at each ``wave`` above the higher of its two
-    lowest places within 1.5 FWHM on either side; the source whose dip it is has the most."""
-    wave, fwhm = np.asarray(wave), np.asarray(fwhm)
-    fwhm = np.maximum(np.nan_to_num(fwhm), wave / seen.resolution)
-    steps = np.linspace(0.0, 1.5, 16)
-    out = {}
-    for name, (grid, depth) in seen.sources.items():
-        here = _read(grid, depth, wave)
-        left = np.min([_read(grid, depth, wave - s * fwhm) for s in steps], axis=0)
-        right = np.min([_read(grid, depth, wave + s * fwhm) for s in steps], axis=0)
-        out[name] = np.maximum(here - np.maximum(left, right), 0.0)
-    return out
-
-
-def _read(grid, depth, wave):
-    return np.interp(wave, grid, depth)
-
-
-def shares(seen: Observed, wave: float, fwhm: float) -> dict[str, float]:
-    """Share of each simulated species in a feature: depths when alone, weighted by a Gaussian
-    of 0.45 FWHM about its centre; {} where no line is within one FWHM."""
+def shares(seen: Observed, wave: float, fwhm: float, by="species") -> dict[str, float]:
+    """Share of each simulated species (or origin, or component) in a feature: depths when
+    alone, weighted by a Gaussian of 0.45 FWHM about its centre; {} where no line is within
+    one FWHM."""
     width = max(float(np.nan_to_num(fwhm)), wave / seen.resolution)
     first, last = np.searchsorted(seen.wave, [wave - width, wave + width])
     weight = seen.size[first:last] * np.exp(
         -0.5 * ((seen.wave[first:last] - wave) / (0.45 * width)) ** 2
     )
     found: dict[str, float] = {}
-    for name, part in zip(seen.species[first:last], weight):
+    for name, part in zip(getattr(seen, by)[first:last], weight):
         found[str(name)] = found.get(str(name), 0.0) + float(part)
     whole = sum(found.values())
     return {name: part / whole for name, part in found.items()} if whole > 0 else {}
