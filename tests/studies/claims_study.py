@@ -1,6 +1,6 @@
 """How far claims can be trusted, measured on published truths. Slow: run by hand.
 
-    python tests/studies/claims_study.py kgiant|scattered|decoys|shifts|nebula|telluric|velocity|scrambled
+    python tests/studies/claims_study.py kgiant|scattered|decoys|shifts|nebula|telluric
     (kgiant=6 runs 6 seeds instead of 30)
 
 Truths and their sources: see tests/truths.py. The last recorded results stand in
@@ -222,47 +222,6 @@ def nebula_score(session, rest, lines):
         sure = claim.probability >= 0.95
         out[1:] += (1, right, sure, right and sure)
     return out
-
-
-def scrambled(seeds=50):
-    """The Sun's features at random places: species called present, confident claims."""
-    from dataclasses import replace
-
-    session, catalogue = solve(sun()), load_catalogue()
-    coverage, f = session.spectrum.coverage, session.features
-    present = species = sure = total = 0
-    for seed in range(seeds):
-        rng = np.random.default_rng(seed)
-        places = np.sort(
-            np.concatenate([rng.uniform(a, b, int(0.45 * (b - a))) for a, b in coverage])
-        )
-        rows = np.sort(rng.permutation(len(f))[: len(places)])
-        table = replace(f.take(rows), wave=places[: len(rows)])
-        found = identify(
-            table, coverage, catalogue, ClaimOptions(velocity=0.0, temperature=5200.0)
-        )
-        species += len(found.roll_call)
-        present += sum(r.verdict == "present" for r in found.roll_call)
-        total += len(found.claims)
-        sure += sum(c.probability >= 0.95 for c in found.claims)
-    print("species called present", rate(present, species), "; claims made confident", rate(sure, total))
-
-
-def velocity(trials=500):
-    """Blind velocity from random features of the K giant at 0.01 A, +-500 km/s."""
-    for kept in (5, 10, 20):
-        rng = np.random.default_rng(kept)
-        right = declared = false = 0
-        for seed in range(trials):
-            v = float(rng.uniform(-450, 450))
-            features, _ = kgiant_table(
-                np.random.default_rng(seed), velocity=v, keep=kept, invented=0.0
-            )
-            found = solve_features(features, options=SolveOptions(temperature=4300.0)).velocity
-            good = abs(found.velocity - v) < 2.0
-            right, declared = right + good, declared + found.declared
-            false += found.declared and not good
-        print(f"{kept} features: right {right / trials:.3f}, declared {declared / trials:.3f}, falsely {false}")
 
 
 if __name__ == "__main__":
