@@ -214,7 +214,9 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
         found.components,
         weighing.temperature,
         pressure if options.log_pe is None else options.log_pe,
-        with_siblings(call_roll(solution, catalogue), solution, catalogue),
+        with_siblings(
+            call_roll(solution, catalogue, found.components), solution, catalogue
+        ),
         rank_orphans(features, claims, solution, catalogue),
         found.warnings + drift_warning(solution, found.components),
         solution,

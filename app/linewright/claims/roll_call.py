@@ -20,9 +20,14 @@ EXPECTED = 0.5  # a line is expected where the learned curve gives this, or wher
 PRESENT, POSSIBLE = 0.002, 0.05
 
 
-def call_roll(solution, catalogue) -> tuple[RollRow, ...]:
-    """One row per species with a predicted line in coverage, most claims first."""
+def call_roll(solution, catalogue, components) -> tuple[RollRow, ...]:
+    """One row per species with a predicted line in coverage, most claims first.
+
+    The chance probability inherits the certainty of the species' component, as claims do:
+    lines at a velocity that was only fitted to the features coincide with them anyway.
+    """
     e = solution.problem.entries
+    certainty = np.array([c.certainty for c in components])[e.component]
     names = catalogue.species[e.row]
     seen = np.bincount(solution.entry, solution.probability, len(e))
     shows = _shows(solution)
@@ -36,7 +41,11 @@ def call_roll(solution, catalogue) -> tuple[RollRow, ...]:
     table = [
         _row(
             catalogue.species_names[int(name)],
-            _Count(seen[rows], shows[rows], min(1.0, tails[name] * len(groups))),
+            _Count(
+                seen[rows],
+                shows[rows],
+                1.0 - (1.0 - min(1.0, tails[name] * len(groups))) * float(np.max(certainty[rows])),
+            ),
             solution.state,
             e.species[rows[0]],
         )
