@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
+from ..measure.features import FeatureTable
 from ..session.model import HistoryEntry, Session
 from .reweigh import Change, reweigh
 
@@ -49,8 +50,27 @@ def new_word(old: Session | None, new: Session) -> bool:
 def weighed_again(session: Session, progress=None) -> Weighed:
     """The other claims weighed in the light of what the person said; ``before`` is left bare,
     for the caller has it."""
+    session = replace(session, features=_the_same(session.features))
     after, changes = reweigh(session, progress=progress)
     return Weighed(without_samples(session), after, changes)
+
+
+_last: list[FeatureTable] = []
+
+
+def _the_same(features: FeatureTable) -> FeatureTable:
+    """The table of the last call where it is equal: what came through a pipe is a copy, and
+    ``reweigh`` keeps what it settled for one table."""
+    if not (_last and _equal(_last[0], features)):
+        _last[:] = [features]
+    return _last[0]
+
+
+def _equal(a: FeatureTable, b: FeatureTable) -> bool:
+    if a.flags != b.flags or len(a) != len(b):
+        return False
+    return all(np.array_equal(getattr(a, f.name), getattr(b, f.name), equal_nan=True)
+               for f in fields(FeatureTable) if f.name != "flags")
 
 
 def without_samples(session: Session) -> Session:

@@ -23,8 +23,9 @@ class _Acts:
             import_module(f".acts.{self._name}", __package__), act)(*arguments, **named)
 
 
-claim, opening, reweighing, saving, solving, view = (_Acts(name) for name in (
-    "claiming", "opening", "reweighing", "saving", "solving", "viewing"))
+choosing, claim, exchanging, opening, reweighing, saving, solving, view = (
+    _Acts(name) for name in ("choosing", "claiming", "exchanging", "opening", "reweighing",
+                             "saving", "solving", "viewing"))
 
 MENUS = ("File", "Edit", "Spectrum", "Claims", "Lines", "View", "Help")
 
@@ -106,6 +107,9 @@ def _file() -> list[Command]:
     return [
         _c("file.open", "Open spectrum or session…", "Ctrl+O", "File", always,
            lambda b: b.window.ask_open(), "Open FITS, VOTable, ECSV or text, or a saved session"),
+        _c("file.choose", "Choose another spectrum of the file…", "Ctrl+Shift+O", "File",
+           lambda b: b.asked_file is not None, choosing.choose,
+           "List the HDUs, rows and columns that hold a spectrum, and read one"),
         _c("file.reread", "Read the file another way…", "", "File",
            lambda b: b.asked_file is not None, lambda b: b.window.ask_reading(),
            "Say which columns, unit, HDU, row, frame or medium to read"),
@@ -119,15 +123,20 @@ def _file() -> list[Command]:
         _c("file.figure", "Export figure…", "Ctrl+Shift+E", "File", has_spectrum,
            lambda b: b.window.ask_figure(), "Draw the range in view, annotated, for a paper: "
            + " ".join(FIGURES), group=2),
+        _c("file.send", "Offer spectrum to other programs", "", "File", has_spectrum,
+           exchanging.send, "Send it by SAMP to every program that takes spectra", group=3),
+        _c("file.listen", "Listen to other programs", "", "File", always,
+           exchanging.toggle_listening, "Show what other programs send by SAMP; nothing is "
+           "opened before you say so", group=3, checked=lambda b: b.listener is not None),
         _c("file.close", "Close spectrum", "Ctrl+W", "File", has_session,
-           opening.close_desk, "Close this spectrum; unsaved work is asked about", group=3),
+           opening.close_desk, "Close this spectrum; unsaved work is asked about", group=4),
         _c("file.next", "Next open spectrum", "Ctrl+PgDown", "File", lambda b: len(b.desks) > 1,
-           lambda b: b.window.turn_desk(1), "Show the next of the open spectra", group=3),
+           lambda b: b.window.turn_desk(1), "Show the next of the open spectra", group=4),
         _c("file.previous", "Previous open spectrum", "Ctrl+PgUp", "File",
            lambda b: len(b.desks) > 1, lambda b: b.window.turn_desk(-1),
-           "Show the previous of the open spectra", group=3),
+           "Show the previous of the open spectra", group=4),
         _c("file.quit", "Quit", "Ctrl+Q", "File", always, lambda b: b.window.close(),
-           "Close the window; unsaved work is asked about", group=4),
+           "Close the window; unsaved work is asked about", group=5),
     ]
 
 

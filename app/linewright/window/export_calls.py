@@ -17,3 +17,17 @@ def write_figure_file(session, spectrum, path, span):
     from ..publish.figure import write_figure
 
     return write_figure(session, spectrum, path, force=True, range=span)
+
+
+def send_spectrum(spectrum, name: str) -> int:
+    """How many programs took the spectrum, offered as standard FITS in a temporary folder."""
+    import tempfile
+    from pathlib import Path
+
+    from ..publish.exchange import Exchange
+    from ..publish.spectrum_out import write_spectrum
+
+    with Exchange(receive=False) as exchange:
+        path = Path(tempfile.mkdtemp(prefix="linewright-")) / f"{name.split('.')[0]}.fits"
+        write_spectrum(spectrum, path)
+        return exchange.send_spectrum(path, spectrum)

@@ -84,6 +84,7 @@ class Workbench:
         self.window = None
         self.weighing: set[int] = set()  # features whose claim is on its way
         self.asked_file: Path | None = None
+        self.listener = None  # to other programs
         self._listeners: list[Callable[[Session | None, Session | None], None]] = []
 
     @property

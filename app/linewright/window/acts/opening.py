@@ -46,9 +46,16 @@ def open_file(bench, path: Path) -> None:
     bench.tasks.start(Request(
         key=f"open {path}", title=f"Opening {path.name}",
         work=lambda progress: read(path, progress),
-        done=lambda opened: _show(bench, opened),
+        done=lambda opened: (_show(bench, opened), _remark(bench, path, opened)),
         failed=lambda error: _failed(bench, error),
     ))
+
+
+def _remark(bench, path: Path, opened: Opened) -> None:
+    from .choosing import remark
+
+    if opened.session is None and "HDU" in opened.spectrum.layout:
+        remark(bench, path)
 
 
 def read_again(bench, text: str) -> None:
@@ -59,6 +66,11 @@ def read_again(bench, text: str) -> None:
     except LinewrightError as refusal:
         bench.refuse(refusal)
         return
+    read_with(bench, path, choices)
+
+
+def read_with(bench, path: Path, choices: dict) -> None:
+    """Reads a file with arguments of ``read_spectrum``, in place of its untouched desk."""
     bench.tasks.start(Request(
         key=f"open {path}", title=f"Opening {path.name}",
         work=lambda progress: _read_with(path, choices),
@@ -176,7 +188,8 @@ def follow_medium(desk: Desk) -> None:
 def _failed(bench, error: Exception) -> None:
     if isinstance(error, LinewrightError):
         bench.notify(Notice(str(error), "refused", (
-            ("Read it another way…", lambda: bench.window.ask_reading()),), topic="refused"))
+            ("Read it another way…", lambda: bench.window.ask_reading()),
+            ("What is in it?", lambda: bench.run("file.choose"))), topic="refused"))
     else:
         bench.window.report_unexpected(error)
 

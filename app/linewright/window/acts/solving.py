@@ -35,7 +35,8 @@ def _take(bench, desk, spectrum, session) -> None:
     if desk not in bench.desks or desk.spectrum is not spectrum:
         return  # closed, or read in another medium since
     desk.document.replace(keep_acts(desk.document.session, session), "solve")
-    bench.notify(summary(session))
+    told = summary(session)
+    bench.notify(with_warnings(bench, told, session, spectrum) if len(session.features) else told)
 
 
 def summary(session) -> Notice:
@@ -52,6 +53,18 @@ def summary(session) -> Notice:
                       seconds=12, topic="solved")
     return Notice(f"{words} The velocity is not certain: see the other peaks in the Velocity "
                   "track, slide there and solve again.", "warning", topic="solved")
+
+
+def with_warnings(bench, told: Notice, session, spectrum) -> Notice:
+    """The summary with what the solve warns of; what the reading said was said before."""
+    new = [w for w in session.warnings if w not in spectrum.warnings]
+    if not new:
+        return told
+    more = f" And {len(new) - 1} more: see the tip of the status line." if len(new) > 1 else ""
+    drifts = any("drifts" in w for w in new)
+    buttons = (("Velocity residuals", lambda: bench.run("view.residuals")),) if drifts else ()
+    first = next((w for w in new if "drifts" in w), new[0])
+    return Notice(f"{told.text} Note: {first}.{more}", "warning", buttons, topic="solved")
 
 
 def signed(value: float) -> str:

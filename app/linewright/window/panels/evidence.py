@@ -37,6 +37,7 @@ class EvidencePanel(QWidget):
         self.setAccessibleName("Evidence")
         self._workbench = workbench
         self.heading, self.verdict, self.note = QLabel(), QLabel(), QLabel()
+        self.flags = QLabel()
         self.rows = [CandidateRow(rank) for rank in range(SHOWN)]
         self.unlisted = CandidateRow(-1)
         self.none_near = QLabel(say.NO_CANDIDATES)
@@ -59,10 +60,10 @@ class EvidencePanel(QWidget):
 
     def _page(self) -> QWidget:
         self.heading.setObjectName("heading")
-        for label in (self.heading, self.verdict, self.note, self.none_near):
+        for label in (self.heading, self.verdict, self.note, self.flags, self.none_near):
             label.setWordWrap(True)
             label.setTextFormat(Qt.TextFormat.PlainText)
-        for label in (self.verdict, self.note, self.none_near):
+        for label in (self.verdict, self.note, self.flags, self.none_near):
             label.setObjectName("quiet")
         splitter = QSplitter(Qt.Orientation.Vertical)
         splitter.setChildrenCollapsible(False)
@@ -79,8 +80,8 @@ class EvidencePanel(QWidget):
         box.setContentsMargins(8, 6, 8, 4)
         box.setSpacing(4)
         box.addWidget(self.heading)
-        box.addWidget(self.verdict)
-        box.addWidget(self.note)
+        for label in (self.verdict, self.flags, self.note):
+            box.addWidget(label)
         box.addWidget(self._candidates(), 1)
         self.species.setPlaceholderText("another species, such as Fe I")
         self.species.setToolTip("Type a species and press Return to claim it (F2)")
@@ -134,6 +135,10 @@ class EvidencePanel(QWidget):
         claim = session.claims[row]
         self.heading.setText(say.heading(session, row))
         self.verdict.setText(say.verdict(claim))
+        flags = say.flag_words(session, row)
+        self.flags.setText(say.remarkable(flags) if flags else "")
+        self.flags.setToolTip(words.flags(flags))
+        self.flags.setVisible(bool(flags))
         self.note.setText(f"note: {claim.note}")
         self.note.setVisible(bool(claim.note))
         self._show_candidates(session, row, claim)

@@ -50,9 +50,19 @@ def verdict(claim: Claim) -> str:
         parts.append(claim.origin)
     if claim.locked:
         parts.append("kept when solved again")
-    if claim.flags:
-        parts.append(f"flags: {claim.flags}")
     return " · ".join(parts)
+
+
+def flag_words(session: Session, row: int) -> str:
+    """The flags of measurement and claim, each once."""
+    both = f"{session.claims[row].flags} {session.features.flags[row]}".split()
+    return " ".join(dict.fromkeys(both))
+
+
+def remarkable(flags: str) -> str:
+    """One line: the first flag explained, the others named."""
+    first, *others = flags.split()
+    return words.flag(first) + (f"; also {', '.join(others)}" if others else "")
 
 
 def candidate_name(candidate: Candidate, medium: str) -> str:

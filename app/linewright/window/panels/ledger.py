@@ -40,7 +40,8 @@ class LedgerModel(ColumnModel):
         if role == Qt.ItemDataRole.ForegroundRole and claim.standing == "unclaimed":
             return self.quiet
         if role == Qt.ItemDataRole.ToolTipRole:
-            return claim.note or claim.flags or None
+            said = words.flags(self.arrays.flags(row))
+            return (said if column.title == "flags" else claim.note or said) or None
         return None
 
 

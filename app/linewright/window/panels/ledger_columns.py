@@ -43,6 +43,10 @@ class LedgerArrays:
             self._take(i, session)
         return rows
 
+    def flags(self, i: int) -> str:
+        """Of the measurement and of the claim, each once."""
+        return " ".join(dict.fromkeys(f"{self.features.flags[i]} {self.claims[i].flags}".split()))
+
     def _take(self, i: int, session: Session) -> None:
         claim = session.claims[i]
         lab = claim.line.wave if claim.line else np.nan
@@ -87,6 +91,9 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
                lambda i: words.standing(STANDINGS[a.standing[i]]), lambda: a.standing, False, 104),
         Column("by", "Who said it: machine or person",
                lambda i: a.by[i], lambda: a.by.astype(str), False, 76),
+        Column("flags", "What is remarkable about measurement and claim; the tip of a cell says "
+               "what each word means", a.flags,
+               lambda: np.array([a.flags(i) for i in range(len(a.wave))], dtype=str), False, 110),
         Column("note", "Your note on this feature",
                lambda i: a.note[i], lambda: a.note.astype(str), False, 160),
     ]
