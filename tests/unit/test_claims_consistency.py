@@ -34,7 +34,7 @@ def test_a_good_wavelength_scale_raises_no_warning(spectrum):
     session = solve(spectrum, options=PART)
     assert not [w for w in session.warnings if "drifts" in w]
     words = {w for c in session.claims for w in c.flags.split()}
-    assert words <= {"off-velocity", "broad", "narrow"}
+    assert words <= {"off-velocity", "broad", "narrow", "off-strength", "off-excitation"}
     firm = [c for c in session.claims if c.standing == "firm"]
     odd = [c for c in firm if "off-velocity" in c.flags]
     assert len(odd) < 0.1 * len(firm)

@@ -59,7 +59,7 @@ def breakdowns(solution, chosen) -> list[tuple[float, ...]]:
 
     solution: Solution; chosen: (c,) pair indices.
     """
-    columns = [column[chosen] for column in _columns(solution)]
+    columns = _columns(solution, chosen)
     told = solution.problem.said
     quiet = solution.probability[chosen] < NEGLIGIBLE
     if told is not None:
@@ -68,7 +68,13 @@ def breakdowns(solution, chosen) -> list[tuple[float, ...]]:
     return [() if skip else row for skip, row in zip(quiet.tolist(), rows)]
 
 
-def _columns(solution):
+def breakdown_of(solution, chosen) -> list[Breakdown]:
+    """Breakdown of each chosen pair, however improbable."""
+    return [Breakdown(*row) for row in zip(*(c.tolist() for c in _columns(solution, chosen)))]
+
+
+def _columns(solution, chosen):
+    """The fields of Breakdown for the chosen pairs, (c,) each."""
     problem, state, groups = solution.problem, solution.state, solution.groups
     pairs = Pairs(problem)
     shown = chance_to_show(pairs, groups, state)[pairs.entry]
@@ -84,7 +90,8 @@ def _columns(solution):
     own = np.sqrt(pairs.base_variance) * state.error_scale[pairs.crowded]
     blend = pairs.wave - groups.centroid[pairs.entry]
     free = odds - show - place - strength
-    return show, place, strength, free, sigma, own, blend, *_strengths(pairs, state, groups)
+    made = (show, place, strength, free, sigma, own, blend, *_strengths(pairs, state, groups))
+    return tuple(column[chosen] for column in made)
 
 
 def _strengths(pairs: Pairs, state, groups):

@@ -24,6 +24,7 @@ from .problem import Problem
 from .roll_call import call_roll
 from .siblings import with_siblings
 from .temperature import electron_pressure, neighbours, peak, prior_log
+from .upper_limits import with_limits
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
 PROFILE_ROUNDS = 5
@@ -43,6 +44,7 @@ class Identification:
     orphans: tuple[Orphan, ...]
     warnings: tuple[str, ...]
     solution: object
+    catalogue: object = None
 
     def shown(self) -> tuple[tuple[str, float, float], ...]:
         """(origin, km/s, error) of the components that explain at least one feature, and of
@@ -214,12 +216,17 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
         found.components,
         weighing.temperature,
         pressure if options.log_pe is None else options.log_pe,
-        with_siblings(
-            call_roll(solution, catalogue, found.components), solution, catalogue
+        with_limits(
+            with_siblings(
+                call_roll(solution, catalogue, found.components), solution, catalogue
+            ),
+            solution,
+            catalogue,
         ),
         rank_orphans(features, claims, solution, catalogue),
         found.warnings + drift_warning(solution, found.components),
         solution,
+        catalogue,
     )
 
 

@@ -24,6 +24,19 @@ def with_siblings(rows, solution, catalogue):
     return tuple(map(_Lines(solution, catalogue).row, rows))
 
 
+def _under_features(entries, features):
+    """True where a line stands inside a feature of its sign, which may hide it; (n,)."""
+    out = np.zeros(len(entries), dtype=bool)
+    width = np.fmax(0.6 * np.nan_to_num(features.fwhm), 0.03)
+    for sign in (1, -1):
+        mine = features.sign == sign
+        low = np.searchsorted(entries.wave, features.wave[mine] - width[mine])
+        high = np.searchsorted(entries.wave, features.wave[mine] + width[mine])
+        steps = np.bincount(low, minlength=len(out) + 1) - np.bincount(high, minlength=len(out) + 1)
+        out |= (np.cumsum(steps)[:-1] > 0) & (entries.sign == sign)
+    return out
+
+
 class _Lines:
     """Chance to show of every entry, for its species' offset and for displaced ones."""
 
@@ -37,6 +50,7 @@ class _Lines:
             here = e.population == k
             self.shows[here] = curve(solution.groups.total[here])
         self.name = catalogue.species[e.row]
+        self.bare = ~_under_features(e, solution.problem.features)
         self.usable = np.isin(e.population, (STELLAR, HYDROGEN, NEBULAR))
 
     def row(self, row):
@@ -44,7 +58,7 @@ class _Lines:
             return row
         mine = (self.name == self.catalogue.species_names.index(row.species)) & self.usable
         mine &= (self.s.groups.share >= OWNED) & (self.shows >= EXPECTED)
-        missing = np.nonzero(mine & self.covered & (self.seen < SEEN))[0]
+        missing = np.nonzero(mine & self.covered & self.bare & (self.seen < SEEN))[0]
         gap = np.nonzero(mine & ~self.covered)[0]
         found = {}
         for word, lines, counted in (("missing", missing, True), ("gap", gap, False)):

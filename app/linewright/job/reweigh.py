@@ -16,6 +16,7 @@ from ..claims.artefacts import with_spikes
 from ..claims.identify import Setting, Weighing, conclude, weigh, weigh_again
 from ..claims.options import ClaimOptions
 from ..claims.problem import NOT_SAID, SET_ASIDE
+from ..claims.upper_limits import carried
 from ..lines.loading import load_catalogue
 from ..progress import Progress
 from ..session.model import HistoryEntry, Session
@@ -49,7 +50,7 @@ def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, t
     weighed = replace(
         session,
         claims=claims,
-        roll_call=found.roll_call,
+        roll_call=carried(found.roll_call, session.roll_call),
         orphans=found.orphans,
         history=(*session.history, entry),
     )

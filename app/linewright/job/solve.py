@@ -13,10 +13,12 @@ import numpy as np
 from .. import __version__
 from ..claims.identify import Identification, identify
 from ..claims.options import ClaimOptions
+from ..claims.upper_limits import with_limits
 from ..errors import InputRefused, MediumUnknown
 from ..lines.loading import load_catalogue
 from ..measure.core import measure_spectrum
 from ..measure.features import FeatureTable
+from ..measure.limits import upper_limit
 from ..measure.options import Measurement, MeasureOptions
 from ..progress import Progress
 from ..session.model import ContinuumNodes, Session, SpectrumReference
@@ -47,6 +49,7 @@ def solve(
     if spectrum.medium == "unknown":
         raise _medium_unknown(spectrum, measurement, catalogue, options)
     found = _identified(spectrum, measurement, catalogue, options, progress.part(0.5, 1.0))
+    found = _limited(found, measurement)
     reference = _reference(spectrum, measurement)
     session = _session(reference, measurement.features, found, options, catalogue)
     progress.report("done", 1.0)
@@ -120,6 +123,16 @@ def solve_features(
     )
     session = _session(reference, features, found, options, catalogue)
     return replace(session, warnings=_join(warnings, found.warnings))
+
+
+def _limited(found: Identification, measurement: Measurement) -> Identification:
+    """Upper limits at the measured noise for the species that are not seen."""
+
+    def least_width(wave):
+        return upper_limit(measurement, wave)
+
+    rows = with_limits(found.roll_call, found.solution, found.catalogue, least_width)
+    return replace(found, roll_call=rows)
 
 
 def _measure_options(spectrum: Spectrum, options: SolveOptions) -> MeasureOptions:

@@ -113,6 +113,9 @@ ROLL_CALL = (
     _c("offset_dex", "float", "strength offset from the prediction", "dex", ".3f"),
     _c("offset_err", "float", "one-sigma error of offset_dex", "dex", ".3f"),
     _c("verdict", "text", "present, possible, absent or not testable"),
+    _c("limit_dex", "float", "the offset lies below this: no line of the species is seen", "dex", ".2f"),
+    _c("limit_wave", "float", "line that says so, at rest, medium of the spectrum", A, ".3f"),
+    _c("limit_ew", "float", "equivalent width it would at least need to show", MA, ".1f"),
 )
 
 ORPHANS = (

@@ -99,6 +99,8 @@ def rollcall_table(session: Session):
     """The Roll call: one row a species."""
     rows = session.roll_call
     columns = {c.name: [getattr(row, c.name) for row in rows] for c in ROLL_CALL}
+    limits = np.array([row.limit_wave for row in rows], dtype=float)
+    columns["limit_wave"] = to_medium(limits, session.spectrum.medium)
     return table_of(ROLL_CALL, columns, metadata(session))
 
 
