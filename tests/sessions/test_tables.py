@@ -113,9 +113,10 @@ def test_orphans_without_velocity_have_no_rest_wavelength(made):
 
 
 def test_roll_call_columns(made):
-    assert ledger.rollcall_table(made).colnames == (
-        "species expected seen missing p_chance offset_dex offset_err verdict".split()
-    )
+    contract = "species expected seen missing p_chance offset_dex offset_err verdict".split()
+    names = ledger.rollcall_table(made).colnames
+    assert names[: len(contract)] == contract
+    assert names[len(contract) :] == ["limit_dex", "limit_wave", "limit_ew"]
     with pytest.raises(InputRefused, match="no such table"):
         ledger.session_table(made, "menu")
 

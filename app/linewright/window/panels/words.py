@@ -92,6 +92,9 @@ FLAGS = {
     "core-wings": "fitted with a core and wide wings",
     # of a claim
     "off-velocity": "stands off the velocity of its like by more than 3.5 sigma",
+    "off-strength": "stronger or weaker than the species' other lines say, by more than 3.5 sigma",
+    "off-excitation": "its lower level lies far from those of the species' firm lines, and its "
+                      "strength does not fit well",
     "broad": "wider than lines of its strength are here: a blend, or another claim is right",
     "narrow": "narrower than lines of its strength are here: perhaps telluric, interstellar or "
               "an artefact",
