@@ -1,6 +1,6 @@
 """A simulated K dwarf at low resolution and broadened by rotation. Slow: run by hand.
 
-    python tests/studies/kdwarf_study.py [R ...] [vsini=KM_S ...] [seed=N]
+    python tests/studies/kdwarf_study.py [R ...] [vsini=KM_S ...] [seed=N] [keep]
 
 4,700 K, 4850-6700 A, S/N 200 a pixel; lines perturbed, 5 % missing from the engine's list. Each
 degraded spectrum is scored against the claims of the full-resolution one (R 60,000), as the Sun
@@ -13,6 +13,7 @@ from __future__ import annotations
 import sys
 
 import numpy as np
+from kept import keep, wanted
 from lowres_study import report
 from simulated import engine_list, observed, rate, scene, shares, star
 
@@ -52,7 +53,7 @@ def against_truth(seen, session, words: str) -> None:
 
 
 def main(words) -> None:
-    seed = 0
+    seed, stored, results = 0, wanted(words), {}
     for word in [w for w in words if w.startswith("seed=")]:
         seed = int(word.partition("=")[2])
     cases = [w for w in words if not w.startswith("seed=")] or CASES
@@ -68,8 +69,10 @@ def main(words) -> None:
         seen = simulated(seed, **made)
         session = solve(seen.spectrum, listed, SolveOptions(**made))
         half = number / C_KM_S if name == "vsini" else 0.5 / number
-        report(word if name else f"R {number:.0f}", full, session, half)
+        results[word] = report(word if name else f"R {number:.0f}", full, session, half)
         against_truth(seen, session, word if name else f"R {number:.0f}")
+    if stored:
+        keep("resolution K dwarf", results)
 
 
 if __name__ == "__main__":

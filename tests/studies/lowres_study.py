@@ -1,6 +1,6 @@
 """The Sun degraded in resolution or broadened by rotation, against its own full claims.
 
-    python tests/studies/lowres_study.py [R ...] [vsini=KM_S ...]
+    python tests/studies/lowres_study.py [R ...] [vsini=KM_S ...] [keep]
 
 Truth: the likely and firm claims of the full-resolution solve; a degraded feature's truth is
 the strongest of them (equivalent width) within half a resolution element. 'Always Fe I'
@@ -18,6 +18,7 @@ import numpy as np
 ROOT = Path(__file__).resolve().parents[2]
 sys.path[:0] = [str(ROOT / "app"), str(ROOT / "tests")]
 
+from kept import keep, wanted  # noqa: E402
 from truths import SPECTRA, SUN_GAPS, within  # noqa: E402
 
 from linewright.job.options import SolveOptions  # noqa: E402
@@ -92,18 +93,28 @@ def report(label, full, session, half_width):
         f"stars {sum(c[0] == 'stellar' for c in session.components)}",
         flush=True,
     )
+    return {
+        "top-1": float(right.mean()), "not iron": float(right[~iron].mean()),
+        "confident": float(sure.mean()), "agreement": float(right[sure].mean()),
+        "features": len(right),
+    }  # fmt: skip
 
 
 if __name__ == "__main__":
     sun = read_spectrum(SPECTRA / "sun_r47000.txt", medium="air")
     full = solve(sun)
-    for word in sys.argv[1:] or ["10000", "5000", "2000", "vsini=50", "vsini=100"]:
+    words, cases = sys.argv[1:], {}
+    stored = wanted(words)
+    for word in words or ["10000", "5000", "2000", "vsini=50", "vsini=100"]:
         name, _, value = word.rpartition("=")
         number = float(value)
         if name == "vsini":
             made = degraded(sun, vsini=number)
-            report(word, full, solve(made, options=SolveOptions(vsini=number)), number / C_KM_S)
+            session = solve(made, options=SolveOptions(vsini=number))
+            cases[word] = report(word, full, session, number / C_KM_S)
         else:
             made = degraded(sun, resolution=number)
             session = solve(made, options=SolveOptions(resolution=number))
-            report(f"R {number:.0f}", full, session, 0.5 / number)
+            cases[word] = report(f"R {number:.0f}", full, session, 0.5 / number)
+    if stored:
+        keep("resolution Sun", cases)

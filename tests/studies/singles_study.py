@@ -31,8 +31,8 @@ REAL = {
 }  # fmt: skip
 
 
-def drawn(number: int):
-    """(Observed, what was drawn) of one star."""
+def drawn(number: int, only=lambda what: True):
+    """(Observed, what was drawn) of one star; (None, what) where ``only`` says no."""
     rng = np.random.default_rng(5000 + number)
 
     def log_uniform(low, high):
@@ -43,6 +43,8 @@ def drawn(number: int):
         "sn": log_uniform(30, 300), "velocity": float(rng.uniform(-200, 200)),
         "vsini": float(rng.uniform(10, 200)) if rng.random() < 0.5 else float(rng.uniform(1, 10)),
     }  # fmt: skip
+    if not only(what):
+        return None, what
     element = np.hypot(C_KM_S / what["resolution"], what["vsini"]) / C_KM_S * START
     length = float(np.clip(1500 * element, LEAST, MOST))
     low = START + float(rng.uniform(0, 1200))

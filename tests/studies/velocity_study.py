@@ -1,6 +1,6 @@
 """Blind velocity from few features of the K giant's list, +-500 km/s. Slow: run by hand.
 
-    python tests/studies/velocity_study.py [TRIALS] [FEATURES:SIGMA ...]
+    python tests/studies/velocity_study.py [TRIALS] [FEATURES:SIGMA ...] [keep]
 
 FEATURES random published lines (Hinkle et al. 2000) moved by noise of SIGMA Angstrom and by a
 velocity drawn within +-450 km/s; right: within 2 km/s. Declared: the margin over the best rival
@@ -12,6 +12,7 @@ from __future__ import annotations
 import sys
 
 import numpy as np
+from kept import keep, wanted
 from simulated import rate
 from truths import kgiant_table
 
@@ -42,7 +43,8 @@ def cell(features: int, sigma: float, trials: int):
 
 
 if __name__ == "__main__":
-    words = sys.argv[1:]
+    words, cells = sys.argv[1:], {}
+    stored = wanted(words)
     trials = int(words.pop(0)) if words and ":" not in words[0] else TRIALS
     total = wrong = 0
     for word in words or CELLS:
@@ -51,4 +53,7 @@ if __name__ == "__main__":
         print(f"{features} features, {sigma} A: right {rate(right, trials)}, declared "
               f"{declared / trials:.3f}, falsely {false}, rms {np.std(errors):.3f} km/s", flush=True)
         total, wrong = total + trials, wrong + false
+        cells[word] = {"right": right, "declared": declared, "falsely": false, "trials": trials}
     print(f"falsely declared {rate(wrong, total)}")
+    if stored:
+        keep("velocity", cells)
