@@ -6,6 +6,8 @@ from PySide6.QtCore import QRectF, QSize, Qt, Signal
 from PySide6.QtGui import QColor, QPainter
 from PySide6.QtWidgets import QFrame, QGridLayout, QLabel, QSizePolicy, QWidget
 
+from .odds_strip import OddsStrip
+
 
 class ProbabilityBar(QWidget):
     """A bar from 0 to 1 with a tick at 0.5 and 0.95, where standings change."""
@@ -46,7 +48,7 @@ class CandidateRow(QFrame):
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setCursor(Qt.CursorShape.PointingHandCursor)
         self.name, self.bar, self.number = QLabel(self), ProbabilityBar(self), QLabel(self)
-        self.detail, self.why = QLabel(self), QLabel(self)
+        self.detail, self.why, self.odds = QLabel(self), QLabel(self), OddsStrip(self)
         self.detail.setObjectName("quiet")
         self.why.setObjectName("reasons")
         self.number.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
@@ -63,7 +65,8 @@ class CandidateRow(QFrame):
         grid.addWidget(self.bar, 0, 1)
         grid.addWidget(self.number, 0, 2)
         grid.addWidget(self.detail, 1, 0, 1, 3)
-        grid.addWidget(self.why, 2, 0, 1, 3)
+        grid.addWidget(self.odds, 2, 0, 1, 3)
+        grid.addWidget(self.why, 3, 0, 1, 3)
         grid.setColumnStretch(1, 1)
 
     def show_chosen(self, chosen: bool) -> None:

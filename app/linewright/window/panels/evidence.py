@@ -5,12 +5,10 @@ from __future__ import annotations
 from PySide6.QtCore import QStringListModel, Qt
 from PySide6.QtWidgets import (
     QCompleter,
-    QFrame,
     QHBoxLayout,
     QLabel,
     QLineEdit,
     QPushButton,
-    QScrollArea,
     QSizePolicy,
     QSplitter,
     QStackedWidget,
@@ -18,11 +16,14 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from ...job.view_breakdown import terms
 from ...job.view_reasons import reasons
 from . import evidence_text as say
 from . import words
 from .candidate_row import CandidateRow
+from .facts_box import FactsBox
 from .siblings import SiblingsBox
+from .tall_area import TallArea
 
 SHOWN = 6
 LEAST = 0.001  # below this probability only the two best are listed
@@ -42,7 +43,7 @@ class EvidencePanel(QWidget):
         self.unlisted = CandidateRow(-1)
         self.none_near = QLabel(say.NO_CANDIDATES)
         self.species = QLineEdit()
-        self.siblings = SiblingsBox(workbench)
+        self.siblings, self.facts = SiblingsBox(workbench), FactsBox(workbench)
         self.buttons = {name: _act_button(commands[name], workbench) for name in BUTTONS}
         self._pages = QStackedWidget(self)
         self._pages.addWidget(_empty_page())
@@ -69,9 +70,9 @@ class EvidencePanel(QWidget):
         splitter.setChildrenCollapsible(False)
         splitter.addWidget(self._upper())
         splitter.addWidget(self.siblings)
-        splitter.setSizes([500, 500])
-        splitter.setStretchFactor(0, 1)
-        splitter.setStretchFactor(1, 1)
+        splitter.setSizes([600, 400])
+        splitter.setStretchFactor(0, 3)
+        splitter.setStretchFactor(1, 2)
         return splitter
 
     def _upper(self) -> QWidget:
@@ -95,25 +96,12 @@ class EvidencePanel(QWidget):
         return upper
 
     def _candidates(self) -> QWidget:
-        inside = QWidget()
-        inside.setObjectName("candidates")
-        box = QVBoxLayout(inside)
-        box.setContentsMargins(0, 0, 0, 0)
-        box.setSpacing(2)
-        box.addWidget(self.none_near)
-        for row in (*self.rows, self.unlisted):
-            box.addWidget(row)
         self.unlisted.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.unlisted.setCursor(Qt.CursorShape.ArrowCursor)
         self.unlisted.setToolTip("Probability that no catalogue line made this feature")
-        box.addStretch(1)
-        area = QScrollArea()
-        area.setFrameShape(QFrame.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        area.setWidget(inside)
-        return area
+        self.area = TallArea((self.none_near, *self.rows, self.unlisted, self.facts))
+        self.facts.told.connect(self.area.fit)
+        return self.area
 
     def show_species(self, names: list[str]) -> None:
         self._completions.setStringList(names)
@@ -130,6 +118,7 @@ class EvidencePanel(QWidget):
             button.setEnabled(self._workbench.allows(command_id))
         if row is None:
             self.siblings.clear()
+            self.facts.clear()
             return
         session = self._workbench.session
         claim = session.claims[row]
@@ -142,7 +131,10 @@ class EvidencePanel(QWidget):
         self.note.setText(f"note: {claim.note}")
         self.note.setVisible(bool(claim.note))
         self._show_candidates(session, row, claim)
-        self.siblings.show_candidate(session, self._workbench.candidate())
+        candidate = self._workbench.candidate()
+        self.facts.show_claim(claim, candidate.species if candidate is not None else "")
+        self.area.fit()
+        self.siblings.show_candidate(session, candidate)
 
     def _show_candidates(self, session, row: int, claim) -> None:
         chosen = min(self._workbench.view.now.candidate, max(len(claim.candidates) - 1, 0))
@@ -170,8 +162,10 @@ class EvidencePanel(QWidget):
         widget.number.setText(words.probability(candidate.probability))
         widget.detail.setText(say.candidate_numbers(candidate, depth))
         widget.why.setVisible(chosen)
+        widget.odds.show_terms(terms(candidate) if chosen else (), theme)
         if chosen:
-            roll = next((r for r in session.roll_call if r.species == candidate.species), None)
+            roll = next((r for r in session.roll_call if r.species == candidate.species
+                         and r.verdict == "absent"), None)  # else Siblings counts them
             lines = (say.why(reasons(candidate, claim, depth, roll)), say.line_facts(candidate))
             widget.why.setText("\n".join(line for line in lines if line))
         widget.show_chosen(chosen)
@@ -186,6 +180,7 @@ class EvidencePanel(QWidget):
         self.unlisted.number.setText(words.probability(claim.p_unlisted))
         self.unlisted.detail.hide()
         self.unlisted.why.hide()
+        self.unlisted.odds.hide()
         self.unlisted.setVisible(bool(claim.candidates))
 
     def _choose(self, rank: int) -> None:

@@ -60,9 +60,11 @@ def flag_words(session: Session, row: int) -> str:
 
 
 def remarkable(flags: str) -> str:
-    """One line: the first flag explained, the others named."""
+    """The first flag explained in short, the others named; the tip has it all."""
     first, *others = flags.split()
-    return words.flag(first) + (f"; also {', '.join(others)}" if others else "")
+    name, _, meaning = words.flag(first).partition(": ")
+    short = meaning.partition(":")[0]
+    return f"{name}: {short}" + (f"; also {', '.join(others)}" if others else "")
 
 
 def candidate_name(candidate: Candidate, medium: str) -> str:

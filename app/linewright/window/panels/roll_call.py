@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from PySide6.QtWidgets import QLabel
 
+from ...spectra.medium import to_medium
 from . import words
 from .column_model import Column, ColumnModel
 from .table_panel import TablePanel
@@ -46,11 +47,11 @@ class RollCallPanel(TablePanel):
         text = self.text.text().strip().lower()
         keep = [i for i, r in enumerate(self._rows)
                 if text in f"{r.species} {r.verdict}".lower()]
-        self.model.show_rows(_columns(self._rows), np.array(keep, dtype=int))
+        self.model.show_rows(_columns(self._rows, self._workbench.medium), np.array(keep, dtype=int))
         self.show_state("No species passes this filter." if self._rows else EMPTY)
 
 
-def _columns(rows) -> list[Column]:
+def _columns(rows, medium: str) -> list[Column]:
     def numbers(name):
         return lambda: np.array([getattr(r, name) for r in rows], dtype=float)
 
@@ -71,11 +72,39 @@ def _columns(rows) -> list[Column]:
                lambda i: _chance(rows[i].p_chance), numbers("p_chance"), True, 96),
         Column("strength offset (dex)", "Learned strength of the species over the predicted one",
                lambda i: _offset(rows[i]), numbers("offset_dex"), True, 150),
+        Column("upper limit (dex)", "Where the species is not seen: its strength offset lies "
+               "below this", lambda i: _limit(rows[i]), numbers("limit_dex"), True, 116),
+        Column("limit from", "The line that sets the limit, and the equivalent width it would at "
+               "least need", lambda i: _limit_line(rows[i], medium), numbers("limit_wave"), True, 150),
+        Column("strongest missing", "The strongest expected line that is not seen, and its "
+               "predicted depth", lambda i: _missing(rows[i], medium), numbers("missing_wave"),
+               True, 150),
     ]
 
 
 def _chance(p: float) -> str:
+    if p == 0:
+        return "< 1e−300"
     return f"{p:.1e}".replace("-", "−") if 0 <= p < 0.001 else words.number(p, 3)
+
+
+def _limit(row) -> str:
+    text = words.number(row.limit_dex, 2, True)
+    return f"< {text}" if text else ""
+
+
+def _limit_line(row, medium: str) -> str:
+    if not np.isfinite(row.limit_wave):
+        return ""
+    ew = words.number(row.limit_ew, 1)
+    return f"{float(to_medium(row.limit_wave, medium)):.2f} Å" + (f", {ew} mÅ" if ew else "")
+
+
+def _missing(row, medium: str) -> str:
+    if not np.isfinite(row.missing_wave):
+        return ""
+    depth = words.number(row.missing_depth, 2)
+    return f"{float(to_medium(row.missing_wave, medium)):.2f} Å" + (f", {depth}" if depth else "")
 
 
 def _offset(row) -> str:

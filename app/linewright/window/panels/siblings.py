@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
+from ...job.view_breakdown import siblings_words
 from ...job.view_siblings import said_now, sibling_strips
 from ..plot import SiblingStrips, Strip
 from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
@@ -12,6 +13,12 @@ TIP = (
     "If the candidate is right, its strongest other lines must be in the spectrum as well. "
     "Each strip is centred on where one is expected, with a bar at the depth predicted; click "
     "it to go there."
+)
+
+COUNT_TIP = (
+    "Of all expected lines of the species, the strongest missing one and the strongest outside "
+    "the coverage. In the strips: 'seen' is claimed for the species, 'in Fe I' is blended into "
+    "a feature of another claim, 'missing' has no feature."
 )
 
 
@@ -23,6 +30,10 @@ class SiblingsBox(QWidget):
         self._workbench, self._found = workbench, []
         self._forget()
         self.title, self.strips = QLabel("Siblings"), SiblingStrips()
+        self.count, self.lines = QLabel(), QLabel()
+        for label in (self.count, self.lines):
+            label.setObjectName("quiet")
+        self.lines.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
         self.title.setObjectName("heading")
         self.title.setToolTip(TIP)
         self.strips.setAccessibleName("Siblings strips")
@@ -30,7 +41,12 @@ class SiblingsBox(QWidget):
         box = QVBoxLayout(self)
         box.setContentsMargins(8, 2, 8, 4)
         box.setSpacing(2)
-        box.addWidget(self.title)
+        head = QHBoxLayout()
+        head.setSpacing(8)
+        head.addWidget(self.title)
+        head.addWidget(self.count, 1)
+        box.addLayout(head)
+        box.addWidget(self.lines)
         box.addWidget(self.strips, 1)
         self.strips.stripActivated.connect(self._go)
 
@@ -41,6 +57,7 @@ class SiblingsBox(QWidget):
         self._found = []
         self._forget()
         self.title.setText("Siblings")
+        self._tell("", "")
         self.strips.set_strips([], self._workbench.theme.accent)
 
     def show_candidate(self, session, candidate) -> None:
@@ -63,7 +80,15 @@ class SiblingsBox(QWidget):
         else:
             self._found = said_now(self._found, session, velocity, candidate.species)
         self._said = (session.claims, bench.theme.name)
+        roll = next((r for r in session.roll_call if r.species == candidate.species), None)
+        self._tell(*siblings_words(roll, session.spectrum.medium))
         self._show(candidate)
+
+    def _tell(self, count: str, lines: str) -> None:
+        for label, words in ((self.count, count), (self.lines, lines)):
+            label.setText(words)
+            label.setToolTip(COUNT_TIP)
+            label.setVisible(bool(words))
 
     def _show(self, candidate) -> None:
         theme = self._workbench.theme
@@ -85,5 +110,7 @@ class SiblingsBox(QWidget):
 
 def _note(strip, species: str) -> str:
     if strip.feature is None:
-        return "not seen"
-    return "seen" if strip.said == species else (strip.said or "no claim")
+        return "missing"
+    if strip.said == species:
+        return "seen"
+    return f"in {strip.said}" if strip.said else "unclaimed"
