@@ -22,6 +22,9 @@ from ..progress import Progress
 from ..session.model import HistoryEntry, Session
 
 
+MOVED = 0.01  # of a probability: less than this is not put down to what a person said
+
+
 @dataclass(frozen=True)
 class Change:
     """One claim the machine changed: feature number, species and standing before and after."""
@@ -35,17 +38,18 @@ def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, t
     """The session with its machine claims weighed again, and what changed.
 
     Claims a person made or locked stay untouched, word for word; features they named or set
-    aside inform the rest. Velocity and temperature are kept. Catalogue: the shipped one by
-    default.
+    aside inform the rest. A claim changes only where the weighing with the person's words
+    differs from the same weighing without them: the solve's own may have gone another way, and
+    that is no news. Velocity and temperature are kept. Catalogue: the shipped one by default.
     """
     catalogue = load_catalogue() if catalogue is None else catalogue
     progress = progress or Progress()
     if len(session.features) == 0:
         return session, ()
-    before = _kept.weighing(session, catalogue, progress.part(0.0, 0.7))
+    before, alone = _kept.weighing(session, catalogue, progress.part(0.0, 0.7))
     after = weigh_again(before, _said(session, catalogue), progress.part(0.7, 0.9))
     found = conclude(after, progress)
-    claims, changes = _merged(session, found)
+    claims, changes = _merged(session, found.claims, alone)
     entry = HistoryEntry("reweigh", {"changed": len(changes)}, "machine")
     weighed = replace(
         session,
@@ -57,11 +61,15 @@ def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, t
     return weighed, changes
 
 
-def _merged(session: Session, found):
-    """(claims, changes): new machine claims beside what a person made or locked."""
+def _merged(session: Session, found, alone):
+    """(claims, changes): new machine claims beside what a person made or locked.
+
+    found, alone: claims with the person's words and without them.
+    """
     claims, changes = [], []
-    for number, old, new in zip(session.features.number, session.claims, found.claims):
-        if old.by == "person" or old.locked:
+    rows = zip(session.features.number, session.claims, found, alone, strict=True)
+    for number, old, new, mute in rows:
+        if old.by == "person" or old.locked or not _told(new, mute):
             claims.append(old)
             continue
         if (new.note, new.flags) != (old.note, old.flags):
@@ -73,13 +81,19 @@ def _merged(session: Session, found):
     return tuple(claims), tuple(changes)
 
 
+def _told(new, mute) -> bool:
+    """Whether the person's words made a difference to a claim."""
+    same = (new.species, new.standing) == (mute.species, mute.standing)
+    return not same or abs(new.probability - mute.probability) >= MOVED
+
+
 class _Kept:
-    """The last session's weighing before a person spoke."""
+    """The last session's weighing before a person spoke, and the claims it makes."""
 
     def __init__(self):
         self._lock, self._key, self._weighing = Lock(), None, None
 
-    def weighing(self, session: Session, catalogue, progress) -> Weighing:
+    def weighing(self, session: Session, catalogue, progress) -> tuple[Weighing, tuple]:
         coverage, complete = _coverage(session)
         key = (session.features, catalogue, coverage, _options(session, complete))
         with self._lock:
@@ -88,9 +102,11 @@ class _Kept:
         setting = Setting(session.features, catalogue, coverage, key[3])
         setting.said = with_spikes(session.features, None)
         weighing = weigh(setting, progress)
+        nothing = np.full(len(session.features), NOT_SAID)
+        kept = weighing, conclude(weigh_again(weighing, nothing)).claims
         with self._lock:
-            self._key, self._weighing = key, weighing
-        return weighing
+            self._key, self._weighing = key, kept
+        return kept
 
     def _same(self, key) -> bool:
         """The same tables (not equal ones), ranges and options."""

@@ -52,7 +52,12 @@ def weighed_again(session: Session, progress=None) -> Weighed:
     for the caller has it."""
     session = replace(session, features=_the_same(session.features))
     after, changes = reweigh(session, progress=progress)
-    return Weighed(without_samples(session), after, changes)
+    return Weighed(without_samples(session), after, tuple(filter(_claims, changes)))
+
+
+def _claims(change: Change) -> bool:
+    """False where an unclaimed feature only has another best guess."""
+    return not change.before[1] == change.after[1] == "unclaimed"
 
 
 _last: list[FeatureTable] = []
