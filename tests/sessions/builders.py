@@ -15,6 +15,7 @@ from linewright.session.model import (
     RollRow,
     Session,
     SpectrumReference,
+    TemperatureReading,
     VelocityResult,
     standing_of,
 )
@@ -122,6 +123,10 @@ def session(count: int = 12, seed: int = 1, segments: int = 1, path: str = "", s
         components=(("stellar", 12.5, 0.05), ("telluric", 0.1, float("nan"))),
         temperature_k=5500.0,
         log_pe=float("nan"),
+        temperatures=(
+            TemperatureReading("adopted", 5500.0, 90.0, used=True),
+            TemperatureReading("curve of growth", 5480.0, float("nan"), used=True, note="40 lines"),
+        ),
         roll_call=(RollRow("Fe I", 30, 28, 2, 1e-9, 0.05, 0.02, "present"),),
         orphans=(Orphan(3, 0.97, "Fe I 5100.0", "no line within 0.05 A"),) if count > 2 else (),
         continuum=(ContinuumNodes(np.array([5000.0, 5400.0]), np.array([1.0, 1.1])),),

@@ -212,6 +212,22 @@ def test_older_versions_are_lifted_step_by_step():
     }  # fmt: skip
 
 
+def test_a_session_of_version_1_still_opens(saved):
+    made, path = saved
+    _tampered(path, lambda p: (p.pop("temperatures"), p.__setitem__("version", 1)))
+    back = file.load_session(path)
+    assert back.temperatures == () and back.temperature_k == made.temperature_k
+    file.save_session(back, path, force=True)
+    assert json.loads(path.read_text())["version"] == 2
+
+
+def test_temperatures_come_back_with_label_and_error(saved):
+    made, path = saved
+    adopted, growth = file.load_session(path).temperatures
+    assert adopted == made.temperatures[0]
+    assert np.isnan(growth.error) and growth.note == "40 lines" and growth.used
+
+
 def test_the_spectrum_is_found_by_its_checksum(tmp_path):
     data = tmp_path / "x.txt"
     data.write_text("5000 1\n")

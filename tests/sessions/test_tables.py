@@ -20,7 +20,7 @@ CONTRACT = (
 ).split(", ")
 METADATA = (
     "medium, frame, velocity_kms, velocity_err_kms, temperature_k, coverage, spectrum_sha256, "
-    "linewright_version"
+    "linewright_version, temperatures"
 ).split(", ")
 
 
@@ -48,6 +48,9 @@ def test_ledger_columns_and_metadata_follow_the_contract(made, tmp_path):
     }  # fmt: skip
     assert all(table[name].description for name in CONTRACT)
     assert table.meta["velocity_kms"] == 12.5 and table.meta["temperature_k"] == 5500.0
+    adopted, growth = table.meta["temperatures"]
+    assert (adopted["label"], adopted["value"], adopted["error"]) == ("adopted", 5500.0, 90.0)
+    assert growth["note"] == "40 lines" and growth["used"] is True
 
 
 def test_absent_numbers_are_masked_never_zero(made, tmp_path):

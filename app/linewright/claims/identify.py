@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import partial
 
 import numpy as np
 
@@ -21,19 +23,21 @@ from .options import ClaimOptions
 from .orphans import rank_orphans
 from .populations import HYDROGEN, POPULATIONS, UNGRADED, Component, assemble
 from .problem import Problem
+from .readings import TemperatureReading, nominal, read_temperatures
 from .roll_call import call_roll
 from .siblings import with_siblings
-from .temperature import electron_pressure, neighbours, peak, prior_log
+from .temperature import Profile, electron_pressure, prior_log, profile
 from .upper_limits import with_limits
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
 PROFILE_ROUNDS = 5
+USUAL_LOOKS = 9.0  # at a profile: sets the pace of its progress
 AGAIN_ROUNDS = 6  # at most, after a person's word
 
 
 @dataclass(frozen=True, eq=False)
 class Identification:
-    """What the engine says of one feature table."""
+    """What the engine says of one feature table; ``read_temperatures()`` reads them all."""
 
     claims: tuple[Claim, ...]
     velocity: VelocityResult
@@ -45,6 +49,7 @@ class Identification:
     warnings: tuple[str, ...]
     solution: object
     catalogue: object = None
+    read_temperatures: Callable[[], tuple[TemperatureReading, ...]] = tuple
 
     def shown(self) -> tuple[tuple[str, float, float], ...]:
         """(origin, km/s, error) of the components that explain at least one feature, and of
@@ -144,12 +149,14 @@ def _allowed(catalogue, species):
 
 @dataclass(frozen=True, eq=False)
 class Weighing:
-    """What is settled before claims are made of it: components, temperature, marginals."""
+    """What is settled before claims are made of it: components, temperature, marginals, and
+    what reads the other temperatures when asked."""
 
     setting: Setting
     found: Found
     temperature: float
     solution: Solution
+    read_temperatures: Callable[[], tuple[TemperatureReading, ...]] = tuple
 
 
 def identify(
@@ -172,10 +179,12 @@ def identify(
 def weigh(setting: Setting, progress) -> Weighing:
     """Components, temperature and the mixture, in turn until they agree."""
     found = find_components(setting, progress.part(0.0, 0.3))
-    temperature = _temperature(setting, found, progress.part(0.3, 0.7))
+    seen = _temperature(setting, found, progress.part(0.3, 0.7))
+    temperature = seen.temperature if isinstance(seen, Profile) else seen
     solution = solve_mixture(
         setting.problem(found.components, temperature), progress=progress.part(0.7, 0.85)
     )
+    temperature, readings = _adopted(setting, found, seen, solution)
     found = refined(setting, found, solution, temperature)
     solution = solve_mixture(
         setting.problem(found.components, temperature),
@@ -187,7 +196,7 @@ def weigh(setting: Setting, progress) -> Weighing:
         solution = solve_mixture(
             setting.problem(found.components, temperature), start=solution.state
         )
-    return Weighing(setting, found, temperature, solution)
+    return Weighing(setting, found, temperature, solution, readings)
 
 
 def weigh_again(weighing: Weighing, said, progress=None) -> Weighing:
@@ -227,6 +236,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
         found.warnings + drift_warning(solution, found.components),
         solution,
         catalogue,
+        weighing.read_temperatures,
     )
 
 
@@ -236,16 +246,35 @@ def _nothing(options: ClaimOptions) -> Identification:
     )
 
 
-def _temperature(setting: Setting, found: Found, progress) -> float:
-    """The given temperature, or the peak of the likelihood around the vote's best."""
+def _temperature(setting: Setting, found: Found, progress) -> Profile | float:
+    """The given or nominal temperature (K), or the profile around the vote's best."""
     if setting.options.temperature is not None:
         return float(setting.options.temperature)
     if not found.has_star:
         return found.temperature
-    tried = [found.temperature, *neighbours(found.temperature)]
-    values = []
-    for i, t in enumerate(tried):
-        progress.report("excitation temperature", i / len(tried))
-        problem = setting.problem(found.components, t)
-        values.append(solve_mixture(problem, PROFILE_ROUNDS).log_likelihood + prior_log(t))
-    return round(peak(tried, values))
+    count = len(setting.features)
+
+    def value_at(temperature: float) -> float:
+        problem = setting.problem(found.components, temperature)
+        value = solve_mixture(problem, PROFILE_ROUNDS).log_likelihood
+        return value + prior_log(temperature, count)
+
+    return profile(
+        value_at,
+        found.temperature,
+        lambda k: progress.report("excitation temperature", min(k / USUAL_LOOKS, 1.0)),
+    )
+
+
+def _adopted(setting: Setting, found: Found, seen: Profile | float, solution):
+    """(temperature in whole K for the strengths, what gives all readings when asked).
+
+    A given temperature stands, and reading the others is left until someone asks.
+    """
+    if not found.has_star:
+        return seen, lambda: (nominal(seen),)
+    read = partial(read_temperatures, seen, solution, setting.catalogue, setting.features)
+    if not isinstance(seen, Profile):
+        return seen, lambda: read().readings
+    adopted = read()
+    return float(round(adopted.temperature)), lambda: adopted.readings

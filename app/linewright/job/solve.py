@@ -13,6 +13,7 @@ import numpy as np
 from .. import __version__
 from ..claims.identify import Identification, identify
 from ..claims.options import ClaimOptions
+from ..claims.readings import NOMINAL
 from ..claims.upper_limits import with_limits
 from ..errors import InputRefused, MediumUnknown
 from ..lines.loading import load_catalogue
@@ -27,6 +28,7 @@ from ..spectra.spectrum import Spectrum
 from .feature_file import read_feature_file
 from .observer_frame import frame_doubts
 from .options import SolveOptions
+from .temperatures import colour_readings
 from .template import at_velocity, disagreement, template_velocity
 
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
@@ -55,6 +57,7 @@ def solve(
     progress.report("done", 1.0)
     return replace(
         session,
+        temperatures=session.temperatures + _colours(spectrum, measurement, session),
         continuum=_continuum(measurement),
         measurement=_measured(measurement),
         warnings=_join(
@@ -241,6 +244,7 @@ def _session(reference, features, found: Identification, options, catalogue) -> 
         options=options.as_dict(),
         components=found.shown(),
         temperature_k=found.temperature,
+        temperatures=found.read_temperatures(),
         log_pe=found.log_pe,
         roll_call=found.roll_call,
         orphans=found.orphans,
@@ -248,6 +252,13 @@ def _session(reference, features, found: Identification, options, catalogue) -> 
         version=__version__,
         seed=options.seed,
     )
+
+
+def _colours(spectrum, measurement, session):
+    """Colour temperatures, where the lines speak of a star's continuum."""
+    read = session.temperatures
+    star = len(read) > 0 and read[0].label != NOMINAL
+    return colour_readings(spectrum, measurement) if star else ()
 
 
 def _continuum(measurement: Measurement) -> tuple[ContinuumNodes, ...]:

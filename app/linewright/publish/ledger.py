@@ -160,6 +160,7 @@ def metadata(session: Session) -> dict:
     """Table metadata of the contract; None where a number is not known.
 
     coverage: searched ranges in the spectrum's own medium, Angstrom
+    temperatures: every one that was read, with its error, the adopted one first
     """
     reference = session.spectrum
     coverage = [
@@ -175,6 +176,19 @@ def metadata(session: Session) -> dict:
         "coverage": coverage,
         "spectrum_sha256": reference.sha256,
         "linewright_version": session.version,
+        "temperatures": [_reading(r) for r in session.temperatures],
+    }
+
+
+def _reading(reading) -> dict:
+    """One temperature (or electron pressure) as plain data."""
+    return {
+        "label": reading.label,
+        "value": _known(round(reading.value, 3)),
+        "error": _known(round(reading.error, 3)),
+        "unit": reading.unit,
+        "used": reading.used,
+        "note": reading.note,
     }
 
 

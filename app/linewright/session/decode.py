@@ -21,6 +21,7 @@ from .model import (
     RollRow,
     Session,
     SpectrumReference,
+    TemperatureReading,
     VelocityResult,
 )
 from .plain import INTEGER_COLUMNS, candidate_from, contributors_from, fill, frozen, real
@@ -42,6 +43,9 @@ def session_from(parts: dict, folder) -> Session:
         components=tuple((o, real(v), real(e)) for o, v, e in parts["components"]),
         temperature_k=real(parts["temperature_k"]),
         log_pe=real(parts["log_pe"]),
+        temperatures=tuple(
+            fill(TemperatureReading, t, "temperatures") for t in parts["temperatures"]
+        ),
         roll_call=tuple(fill(RollRow, r, "roll_call") for r in parts["roll_call"]),
         orphans=tuple(fill(Orphan, o, "orphans") for o in parts["orphans"]),
         continuum=tuple(_nodes(c) for c in parts["continuum"]),

@@ -38,6 +38,7 @@ def session_bytes(session: Session, folder) -> bytes:
         "history": Rows(plain(h) for h in session.history),
         "roll_call": Rows(plain(r) for r in session.roll_call),
         "orphans": Rows(plain(o) for o in session.orphans),
+        "temperatures": Rows(plain(t) for t in session.temperatures),
     }
     for name in _SIMPLE:
         parts[name] = plain(getattr(session, name))

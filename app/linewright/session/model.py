@@ -15,6 +15,7 @@ from ..claims.model import (
     VelocityResult,
     standing_of,
 )
+from ..claims.readings import TemperatureReading
 from ..measure.features import FeatureTable
 
 __all__ = [
@@ -28,6 +29,7 @@ __all__ = [
     "STANDINGS",
     "Session",
     "SpectrumReference",
+    "TemperatureReading",
     "VelocityResult",
     "standing_of",
 ]
@@ -92,7 +94,8 @@ class Session:
 
     claims: parallel to ``features``
     components: velocity components as (origin, km/s, km/s error)
-    temperature_k, log_pe: as used for the strengths; warnings: for the reader
+    temperature_k, log_pe: as used for the strengths; temperatures: every one that was read,
+        with its error and label, the adopted one first; warnings: for the reader
     anchors: continuum anchors a person laid, a segment each, without points where none; ()
         where there are none at all; fits: stretches fitted by hand
     """
@@ -105,6 +108,7 @@ class Session:
     components: tuple[tuple[str, float, float], ...] = ()
     temperature_k: float = float("nan")
     log_pe: float = float("nan")
+    temperatures: tuple[TemperatureReading, ...] = ()
     roll_call: tuple[RollRow, ...] = ()
     orphans: tuple[Orphan, ...] = ()
     continuum: tuple[ContinuumNodes, ...] = ()

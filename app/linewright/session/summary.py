@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from collections import Counter
 
-from .model import STANDINGS, Session
+from .model import STANDINGS, Session, TemperatureReading
 
 
 def velocity_words(session: Session) -> str:
@@ -21,6 +21,28 @@ def velocity_words(session: Session) -> str:
     return f"{text}, not certain" + (f"; rivals {rivals}" if rivals else "")
 
 
+def temperature_words(reading: TemperatureReading) -> str:
+    """One temperature (or electron pressure) with its error, use and caveat."""
+    kelvin = reading.unit == "K"
+    digits = 0 if kelvin else 2
+    error = f" +- {reading.error:.{digits}f}" if math.isfinite(reading.error) else ""
+    unit = " K" if kelvin else ""
+    note = f" ({reading.note})" if reading.note else ""
+    return f"{reading.label} {reading.value:.{digits}f}{error}{unit}{note}"
+
+
+def _temperatures(session: Session) -> list[str]:
+    """The temperature in use, then how it and others were read, indented."""
+    if not math.isfinite(session.temperature_k):
+        return []
+    first = f"excitation temperature {session.temperature_k:.0f}"
+    read = session.temperatures
+    if read and math.isfinite(read[0].error):
+        first += f" +- {read[0].error:.0f}"
+    first += " K" if not read or read[0].label == "adopted" else f" K, {read[0].label}"
+    return [first, *(f"  {temperature_words(r)}" for r in read[1:])]
+
+
 def summary(session: Session) -> str:
     """Features by standing, velocities, temperature and the significance cut, one a line."""
     counts = Counter(claim.standing for claim in session.claims)
@@ -28,8 +50,7 @@ def summary(session: Session) -> str:
     lines = [f"{len(session.features)} features" + (f": {standings}" if standings else "")]
     lines.append(velocity_words(session))
     lines += _second_star(session)
-    if math.isfinite(session.temperature_k):
-        lines.append(f"excitation temperature {session.temperature_k:.0f} K")
+    lines += _temperatures(session)
     cut, false = (session.measurement.get(k) for k in ("threshold", "expected_false"))
     if cut is not None:
         lines.append(f"significance cut {cut:.2f}: {false:.1f} false features expected")

@@ -1,7 +1,8 @@
 """Session files of older versions, lifted one version at a time.
 
 ``UPGRADES[n]`` turns the parsed file of version n into one of version n + 1. There is no
-version before 1. Version 2 brought the fits by hand and the continuum anchors.
+version before 1. Version 2 brought the fits by hand, the continuum anchors and every
+temperature that was read.
 """
 
 from __future__ import annotations
@@ -9,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable
 
 UPGRADES: dict[int, Callable[[dict], dict]] = {
-    1: lambda parts: {**parts, "anchors": [], "fits": []},
+    1: lambda parts: {"temperatures": [], **parts, "anchors": [], "fits": []},
 }
 
 

@@ -12,12 +12,14 @@ def description(bench) -> str:
     if session is None:
         return "No spectrum is open"
     from ..job.view_depths import conditions
+    from ..job.view_temperature import short_text
 
     s = session.spectrum
     medium = s.medium if s.medium != "unknown" else "air or vacuum?"
     frame = f"{s.frame} frame" if s.frame != "unknown" else "frame not stated"
     known = "in emission" if conditions(session).emission else (
-        f"T {conditions(session).temperature:,.0f} K" + ("" if len(session.features) else " assumed"))
+        short_text(session) if len(session.features) and short_text(session)
+        else f"T {conditions(session).temperature:,.0f} K assumed")
     saved = "saved" if bench.desk.path and bench.desk.document.saved else "not saved"
     what = "a table of features" if s.from_features else f"{s.samples:,} samples"
     return " · ".join([bench.desk.name, medium, frame, what, known, saved])
@@ -27,9 +29,12 @@ def provenance(bench) -> str:
     """How the things in the status line are known, one a line."""
     if bench.session is None:
         return ""
+    from ..job.view_temperature import long_text
+
     s = bench.session.spectrum
     lines = [s.path, f"layout: {s.layout}", f"medium: {s.medium} ({s.medium_from})",
-             f"frame: {s.frame} ({s.frame_from})", *bench.session.warnings]
+             f"frame: {s.frame} ({s.frame_from})",
+             long_text(bench.session), *bench.session.warnings]
     return "\n".join(line for line in lines if line)
 
 

@@ -1,0 +1,114 @@
+"""Temperatures of simulated stars against the truth. By hand:
+
+    python tests/studies/temperature_study.py [seeds=3,4] [starts=1]
+
+Stars of 4,000 to 15,000 K, sharp-lined and rotating (tests/star_simulation.py: wavelengths and
+log gf perturbed by their errors, 5 % of the lines kept from the engine, electron pressure 0.3
+dex off the usual, elements 0.1 dex off solar). Seeds 1 and 2 set the systematic errors in
+claims/temperature.py and claims/readings.py; the others score them. starts=1 adds, per star,
+what is found when the engine is first given a temperature 3,000 K too low or too high.
+"""
+
+from __future__ import annotations
+
+import sys
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+
+ROOT = Path(__file__).resolve().parents[2]
+sys.path[:0] = [str(ROOT / "app"), str(ROOT / "tests")]
+
+from star_simulation import Star, simulate  # noqa: E402
+
+from linewright.claims import identify as engine  # noqa: E402
+from linewright.claims.readings import BALANCE, GROWTH, PROFILE  # noqa: E402
+from linewright.claims.temperature import electron_pressure  # noqa: E402
+from linewright.job.options import SolveOptions  # noqa: E402
+from linewright.job.solve import solve  # noqa: E402
+from linewright.lines.loading import load_catalogue  # noqa: E402
+
+TEMPERATURES = (4000, 5000, 5800, 6500, 8000, 10000, 15000)
+ROTATIONS = (0, 15, 50)
+WRONG = 3000.0  # K
+
+
+def options_of(star: Star) -> SolveOptions:
+    return SolveOptions(vsini=star.vsini or None)
+
+
+def solved_from(star: Star, catalogue, start: float):
+    """The session when the profile's search begins at ``start`` (K), not at the vote's best."""
+    spectrum, kept = simulate(star, catalogue)
+    find = engine.find_components
+
+    def misled(setting, progress):
+        return replace(find(setting, progress), temperature=float(start))
+
+    engine.find_components = misled
+    try:
+        return solve(spectrum, kept, options_of(star))
+    finally:
+        engine.find_components = find
+
+
+def words(session, truth) -> tuple[str, float, float]:
+    """(line of the table, adopted less truth, pull)."""
+    read = {r.label: r for r in session.temperatures}
+    first = session.temperatures[0]
+    cells = [f"{first.value - truth:+6.0f} +- {first.error:4.0f}"]
+    for label in (PROFILE, GROWTH):
+        r = read.get(label)
+        cell = "none" if r is None else f"{r.value - truth:+6.0f} +- {r.error:4.0f}"
+        cells.append(cell + ("" if r is None or r.used else " unused"))
+    return " | ".join(cells), first.value - truth, (first.value - truth) / first.error
+
+
+def main(seeds, starts: bool) -> None:
+    catalogue, off, pulls, hints = load_catalogue(), [], [], []
+    print("T, v sin i, seed | adopted - true | profile - true | curve of growth - true | log Pe - true")
+    for temperature in TEMPERATURES:
+        for vsini in ROTATIONS:
+            for seed in seeds:
+                star = Star(temperature, vsini, 0.3 if seed % 2 else -0.3, seed=seed)
+                spectrum, kept = simulate(star, catalogue)
+                session = solve(spectrum, kept, options_of(star))
+                text, gap, pull = words(session, temperature)
+                off.append((temperature, vsini, gap))
+                pulls.append(pull)
+                hint = next((r for r in session.temperatures if r.label == BALANCE), None)
+                if hint is not None:
+                    wrong = hint.value - electron_pressure(temperature) - star.pressure
+                    hints.append(wrong / hint.error)
+                    text += f" | {wrong:+.2f} +- {hint.error:.2f}"
+                print(f"{temperature} {vsini} {seed} | {text}", flush=True)
+                for start in (temperature - WRONG, temperature + WRONG) if starts else ():
+                    misled = solved_from(star, catalogue, start)
+                    print(f"   from {start:.0f} | {words(misled, temperature)[0]}", flush=True)
+    summary(np.array(off), np.array(pulls), np.array(hints))
+
+
+def summary(off, pulls, hints) -> None:
+    for name, keep in (
+        ("to 8,000 K, v sin i 0 and 15", (off[:, 0] <= 8000) & (off[:, 1] < 50)),
+        ("to 8,000 K, v sin i 50", (off[:, 0] <= 8000) & (off[:, 1] == 50)),
+        ("10,000 and 15,000 K", off[:, 0] > 8000),
+    ):
+        gap = off[keep, 2]
+        inside = [np.mean(np.abs(gap) <= limit) for limit in (100, 300)]
+        print(
+            f"{name}: {len(gap)} stars, mean {gap.mean():+.0f} K, rms {np.sqrt(np.mean(gap**2)):.0f}"
+            f" K, worst {gap[np.argmax(np.abs(gap))]:+.0f} K, within 100 K {inside[0]:.2f}, within"
+            f" 300 K {inside[1]:.2f}, rms of (T/true - 1) "
+            f"{np.sqrt(np.mean((gap / off[keep, 0]) ** 2)):.3f}"
+        )
+    print(f"pulls of the adopted temperature: mean {pulls.mean():+.2f}, rms "
+          f"{np.sqrt(np.mean(pulls**2)):.2f}, beyond 2: {np.sum(np.abs(pulls) > 2)} of {len(pulls)}")
+    print(f"pulls of log Pe: mean {hints.mean():+.2f}, rms {np.sqrt(np.mean(hints**2)):.2f}, "
+          f"beyond 2: {np.sum(np.abs(hints) > 2)} of {len(hints)}")
+
+
+if __name__ == "__main__":
+    given = dict(word.split("=") for word in sys.argv[1:])
+    main([int(s) for s in given.get("seeds", "3,4").split(",")], given.get("starts") == "1")
