@@ -26,7 +26,7 @@ from .problem import Problem
 from .readings import TemperatureReading, nominal, read_temperatures
 from .roll_call import call_roll
 from .siblings import with_siblings
-from .temperature import Profile, electron_pressure, prior_log, profile
+from .temperature import electron_pressure, prior_log, profile
 from .upper_limits import with_limits
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
@@ -179,12 +179,10 @@ def identify(
 def weigh(setting: Setting, progress) -> Weighing:
     """Components, temperature and the mixture, in turn until they agree."""
     found = find_components(setting, progress.part(0.0, 0.3))
-    seen = _temperature(setting, found, progress.part(0.3, 0.7))
-    temperature = seen.temperature if isinstance(seen, Profile) else seen
+    temperature, readings = _temperature(setting, found, progress.part(0.3, 0.7))
     solution = solve_mixture(
         setting.problem(found.components, temperature), progress=progress.part(0.7, 0.85)
     )
-    temperature, readings = _adopted(setting, found, seen, solution)
     found = refined(setting, found, solution, temperature)
     solution = solve_mixture(
         setting.problem(found.components, temperature),
@@ -196,7 +194,7 @@ def weigh(setting: Setting, progress) -> Weighing:
         solution = solve_mixture(
             setting.problem(found.components, temperature), start=solution.state
         )
-    return Weighing(setting, found, temperature, solution, readings)
+    return Weighing(setting, found, temperature, solution, readings or _unasked(setting, solution))
 
 
 def weigh_again(weighing: Weighing, said, progress=None) -> Weighing:
@@ -246,35 +244,46 @@ def _nothing(options: ClaimOptions) -> Identification:
     )
 
 
-def _temperature(setting: Setting, found: Found, progress) -> Profile | float:
-    """The given or nominal temperature (K), or the profile around the vote's best."""
-    if setting.options.temperature is not None:
-        return float(setting.options.temperature)
-    if not found.has_star:
-        return found.temperature
-    count = len(setting.features)
+def _temperature(setting: Setting, found: Found, progress):
+    """(temperature in K for the strengths, what gives all readings when asked, or None).
 
-    def value_at(temperature: float) -> float:
-        problem = setting.problem(found.components, temperature)
-        value = solve_mixture(problem, PROFILE_ROUNDS).log_likelihood
-        return value + prior_log(temperature, count)
-
-    return profile(
-        value_at,
-        found.temperature,
-        lambda k: progress.report("excitation temperature", min(k / USUAL_LOOKS, 1.0)),
-    )
-
-
-def _adopted(setting: Setting, found: Found, seen: Profile | float, solution):
-    """(temperature in whole K for the strengths, what gives all readings when asked).
-
-    A given temperature stands, and reading the others is left until someone asks.
+    The given or nominal temperature, or what the profile around the vote's best and the
+    curve of growth of its best mixture say together, in whole kelvin.
     """
-    if not found.has_star:
-        return seen, lambda: (nominal(seen),)
-    read = partial(read_temperatures, seen, solution, setting.catalogue, setting.features)
-    if not isinstance(seen, Profile):
-        return seen, lambda: read().readings
-    adopted = read()
+    if setting.options.temperature is not None and found.has_star:
+        return float(setting.options.temperature), None
+    if setting.options.temperature is not None or not found.has_star:
+        temperature = float(setting.options.temperature or found.temperature)
+        return temperature, lambda: (nominal(temperature),)
+    looks = _Looks(setting, found, progress)
+    seen = profile(looks.value_at, found.temperature)
+    adopted = read_temperatures(
+        seen, looks.solution, setting.catalogue, setting.features, looks.temperature
+    )
     return float(round(adopted.temperature)), lambda: adopted.readings
+
+
+class _Looks:
+    """Mixtures at temperatures tried; the best is kept with its temperature (K)."""
+
+    def __init__(self, setting: Setting, found: Found, progress):
+        self._setting, self._found, self._progress = setting, found, progress
+        self._tried, self._best = 0, -np.inf
+        self.solution, self.temperature = None, float("nan")
+
+    def value_at(self, temperature: float) -> float:
+        self._progress.report("excitation temperature", min(self._tried / USUAL_LOOKS, 1.0))
+        self._tried += 1
+        problem = self._setting.problem(self._found.components, temperature)
+        solution = solve_mixture(problem, PROFILE_ROUNDS)
+        value = solution.log_likelihood + prior_log(temperature, len(self._setting.features))
+        if value > self._best:
+            self._best, self.solution, self.temperature = value, solution, temperature
+        return value
+
+
+def _unasked(setting: Setting, solution):
+    """Reads the temperatures of claims made at a given one, should someone ask."""
+    given = float(setting.options.temperature)
+    read = partial(read_temperatures, given, solution, setting.catalogue, setting.features, given)
+    return lambda: read().readings

@@ -57,13 +57,15 @@ class Adopted:
     readings: tuple[TemperatureReading, ...]
 
 
-def read_temperatures(found: Profile | float, solution, catalogue, features) -> Adopted:
+def read_temperatures(
+    found: Profile | float, solution, catalogue, features, made_at: float
+) -> Adopted:
     """All excitation temperatures of a solved mixture.
 
     found: the profile, or the temperature (K) that a person gave.
-    solution: of the mixture; catalogue: whose rows it names; features: FeatureTable.
+    solution: of the mixture, at the temperature ``made_at`` (K); catalogue: whose rows it
+    names; features: FeatureTable.
     """
-    made_at = found.temperature if isinstance(found, Profile) else float(found)
     growth = read_growth(solution, catalogue, features, made_at)
     if isinstance(found, Profile):
         temperature, error, readings = _weighed(found, growth)

@@ -61,12 +61,11 @@ def round_kelvin(temperature) -> np.ndarray:
     return np.round(np.asarray(temperature, dtype=float) / 50.0) * 50.0
 
 
-def profile(value_at, start: float, report=None) -> Profile:
+def profile(value_at, start: float) -> Profile:
     """Profile of ``value_at`` (log-likelihood at a temperature in K) about ``start``.
 
     While the best stands at an edge the search climbs on beyond it, so that a start wrong by
     thousands of kelvin ends at the same peak; it never leaves COOLEST to HOTTEST.
-    report(k): called before the k-th value.
     """
     start = float(np.clip(start, COOLEST, HOTTEST))
     values: dict[float, float] = {}
@@ -74,8 +73,6 @@ def profile(value_at, start: float, report=None) -> Profile:
     def look(temperatures) -> None:
         for t in temperatures:
             if t not in values:
-                if report is not None:
-                    report(len(values))
                 values[t] = float(value_at(t))
 
     look((start, *neighbours(start)))
