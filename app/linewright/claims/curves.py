@@ -69,10 +69,12 @@ def _forms():
 
 
 def _best_form(hits, tries) -> DetectionCurve:
-    """Maximum Bernoulli likelihood over ceiling and zero point."""
+    """Mean of the forms weighed by their Bernoulli likelihood: a choice of one would jump
+    from one step of ceiling or zero point to the next, and claims with it."""
     shown, missed = _forms()
-    best = int(np.argmax(shown @ hits + missed @ np.maximum(tries - hits, 0.0)))
-    return DetectionCurve(np.exp(shown[best]))
+    fit = shown @ hits + missed @ np.maximum(tries - hits, 0.0)
+    weight = np.exp(fit - fit.max())
+    return DetectionCurve(weight @ np.exp(shown) / weight.sum())
 
 
 @dataclass(frozen=True, eq=False)
