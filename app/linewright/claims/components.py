@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .interstellar import find_clouds
+from .gas import find_clouds, find_emission
 from .model import VelocityResult
 from .populations import HYDROGEN, NEBULAR, SKY, STELLAR, TELLURIC, Component
 from .temperature import COARSE
@@ -176,6 +176,8 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
     star = next((c for c in components if c.population == STELLAR), None)
     second = [] if star is None else find_second_star(setting, solution, star, temperature)
     components += second or find_clouds(setting, solution, velocity.velocity)
+    if star is not None and not second:
+        components = find_emission(setting, solution, components, star)
     return replace(found, components=tuple(components), velocity=velocity)
 
 

@@ -21,8 +21,9 @@ from .mixture import Solution, solve_mixture
 from .model import Claim, Orphan, RollRow, VelocityResult
 from .options import ClaimOptions
 from .orphans import rank_orphans
-from .populations import HYDROGEN, POPULATIONS, UNGRADED, Component, assemble
+from .populations import HYDROGEN, POPULATIONS, STELLAR, UNGRADED, Component, assemble
 from .problem import Problem
+from .profiles import shape_warning, shaped
 from .readings import TemperatureReading, nominal, read_temperatures
 from .roll_call import call_roll
 from .siblings import with_siblings
@@ -54,11 +55,13 @@ class Identification:
     def shown(self) -> tuple[tuple[str, float, float], ...]:
         """(origin, km/s, error) of the components that explain at least one feature, and of
         the star; hydrogen counts as the star's."""
-        used = {c.origin for c in self.claims if c.probability >= 0.5} | {"stellar"}
+        named = [c for c in self.claims if c.probability >= 0.5 and c.candidates]
+        used = {(c.origin, c.candidates[0].velocity) for c in named}
+        star = {("stellar", c.velocity) for c in self.components if c.population == STELLAR}
         rows = [
             (c.origin, c.velocity, c.error)
             for c in self.components
-            if c.population != HYDROGEN and c.origin in used
+            if c.population != HYDROGEN and (c.origin, c.velocity) in used | star
         ]
         return tuple(dict.fromkeys(rows))
 
@@ -213,7 +216,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
     setting, found, solution = weighing.setting, weighing.found, weighing.solution
     features, catalogue, options = setting.features, setting.catalogue, setting.options
     claims = flagged(build_claims(solution, catalogue, found.components), solution)
-    claims = spikes_aside(features, claims)
+    claims = shaped(features, spikes_aside(features, claims))
     if progress is not None:
         progress.report("calling the roll", 0.95)
     pressure = electron_pressure(weighing.temperature)
@@ -231,7 +234,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
             catalogue,
         ),
         rank_orphans(features, claims, solution, catalogue),
-        found.warnings + drift_warning(solution, found.components),
+        found.warnings + drift_warning(solution, found.components) + shape_warning(claims),
         solution,
         catalogue,
         weighing.read_temperatures,

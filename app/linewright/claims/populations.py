@@ -15,13 +15,35 @@ from ..spectra.medium import C_KM_S
 from .entries import ABSORPTION, EMISSION, Entries, join
 from .problem import inside
 
-STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY, HYDROGEN = range(6)
-POPULATIONS = ("stellar", "telluric", "interstellar", "nebular", "sky", "hydrogen")
-ORIGIN_OF = ("stellar", "telluric", "interstellar", "nebular", "sky", "stellar")
-SIGNS = (ABSORPTION, ABSORPTION, ABSORPTION, EMISSION, EMISSION, ABSORPTION)
+STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY, HYDROGEN, EMITTED, OUTFLOW = range(8)
+POPULATIONS = (
+    "stellar", "telluric", "interstellar", "nebular", "sky", "hydrogen", "emitted", "outflow",
+)
+ORIGIN_OF = (
+    "stellar", "telluric", "interstellar", "nebular", "sky", "stellar", "stellar", "stellar",
+)
+SIGNS = (
+    ABSORPTION, ABSORPTION, ABSORPTION, EMISSION, EMISSION, ABSORPTION, EMISSION, ABSORPTION,
+)
 # Populations whose central depths the strengths do not predict: Stark-broadened hydrogen
-# and helium, clouds of unknown column, sky lines of unknown subtraction.
-UNGRADED = (INTERSTELLAR, SKY, HYDROGEN)
+# and helium, clouds of unknown column, sky lines of unknown subtraction, a star's own gas.
+UNGRADED = (INTERSTELLAR, SKY, HYDROGEN, EMITTED, OUTFLOW)
+# Lines in which stars, their chromospheres, discs and winds shine (air Angstrom); common
+# practice, no source.
+EMITTED_LINES = (
+    ("H I", (6562.8, 4861.3, 4340.5, 4101.7, 3970.1, 3889.1, 3835.4, 8598.4, 8750.5, 8862.8)),
+    ("He I", (3888.6, 4026.2, 4471.5, 4921.9, 5015.7, 5875.6, 6678.2, 7065.2)),
+    ("He II", (4685.7,)),
+    ("Ca II", (3933.66, 3968.47, 8498.0, 8542.1, 8662.1)),
+    ("Na I", (5889.95, 5895.92)),
+    ("Mg I", (5167.3, 5172.7, 5183.6)),
+    ("Fe II", (4233.2, 4583.8, 4923.9, 5018.4, 5169.0, 5316.6)),
+    ("Si II", (6347.1, 6371.4)),
+    ("O I", (7771.9, 7774.2, 7775.4, 8446.4)),
+)
+CLOUD_SLOPE = 0.3  # of log gf: columns of clouds differ by more than oscillator strengths
+DIFFUSE = -2.0  # strength of diffuse bands, which are shallow and have no log gf
+SHINING = 1.5  # dex above the weakest detectable line that these are taken to be
 BROAD_SPECIES = ("H I", "He I", "He II")
 DEEPEST = 3.2  # dex below the weakest detectable line: beyond it a line cannot matter
 
@@ -65,8 +87,30 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     if population == SKY:
         here = origin == ORIGINS.index("sky")
         return np.where(here, np.nan_to_num(catalogue.emission), nothing)
+    if population in (EMITTED, OUTFLOW):
+        nothing[emitted_rows(catalogue)] = SHINING
+        return nothing
     here = origin == ORIGINS.index("interstellar")
-    return np.where(here, np.nan_to_num(catalogue.loggf) - 0.5, nothing)
+    strength = CLOUD_SLOPE * catalogue.loggf - 0.5
+    return np.where(here, np.where(np.isfinite(strength), strength, DIFFUSE), nothing)
+
+
+def emitted_rows(catalogue):
+    """Rows (k,) of EMITTED_LINES: the strongest stellar line of the species at each place."""
+    from ..spectra.medium import air_to_vacuum
+
+    stellar, found = ORIGINS.index("stellar"), []
+    for name, places in EMITTED_LINES:
+        if name not in catalogue.species_names:
+            continue
+        code = catalogue.species_names.index(name)
+        for wave in air_to_vacuum(np.array(places)):
+            low, high = np.searchsorted(catalogue.wave, [wave - 0.25, wave + 0.25])
+            rows = np.arange(low, high)
+            rows = rows[(catalogue.species[rows] == code) & (catalogue.origin[rows] == stellar)]
+            if len(rows):
+                found.append(int(rows[np.nanargmax(np.nan_to_num(catalogue.loggf[rows], nan=-9.0))]))
+    return np.unique(np.array(found, dtype=int))
 
 
 def broad_species(catalogue) -> list[int]:

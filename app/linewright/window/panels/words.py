@@ -95,6 +95,10 @@ FLAGS = {
     "off-strength": "stronger or weaker than the species' other lines say, by more than 3.5 sigma",
     "off-excitation": "its lower level lies far from those of the species' firm lines, and its "
                       "strength does not fit well",
+    "core-reversal": "absorption and emission of one line, the one inside the other",
+    "p-cygni": "emission of a line with absorption on its blue side: matter that flows out",
+    "inverse-p-cygni": "emission of a line with absorption on its red side: matter that falls in",
+    "double-peak": "one of two emission peaks of a line: a turning disc, or a core absorbed",
     "broad": "wider than lines of its strength are here: a blend, or another claim is right",
     "narrow": "narrower than lines of its strength are here: perhaps telluric, interstellar or "
               "an artefact",

@@ -1,0 +1,236 @@
+"""Velocities at which features that nothing explains repeat the lines of thin gas.
+
+Interstellar clouds, emission of a star or its surroundings, and absorption in its wind show
+few lines, all known beforehand. A velocity is believed when at least two of them stand there
+and chance would hardly put them there, or when one alone is far too strong and too well
+placed for chance.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..lines.catalogue import ORIGINS
+from ..spectra.medium import C_KM_S
+from .features_in import position_error
+from .populations import EMITTED, INTERSTELLAR, NEBULAR, OUTFLOW, Component, emitted_rows
+
+MOST = 3  # components of a kind
+CHANCE = 0.003  # expected chance coincidences that two lines or more must beat
+LONE_CHANCE = 0.05  # and one alone; what is left of it is the claim's doubt
+CLOUD_SPAN = 250.0  # km/s about the spectrum's zero
+NEXT_CLOUD = 60.0  # km/s about a cloud within which a single line may show another
+STAR_SPAN = 450.0  # km/s about the star, for its own gas
+NARROW = 0.1  # Angstrom: lines with worse positions (diffuse bands) do not vote
+SAME = 3.0  # km/s: a cloud this close to the star cannot be told from it
+LIST_ERROR = 0.003  # Angstrom
+CENTRING = 0.12  # of the width: lines of moving gas differ in shape
+FORBIDDEN = 2  # confident forbidden lines that make a nebula
+ROUGH = 0.2  # of the width: centroids of fits that did not settle
+LIKE_DEPTH, LIKE_WIDTH = 0.7, 1.4  # features as deep and as narrow as the one in question
+STRONGEST = ("Ca II", "Na I", "K I")  # species whose single line may show a cloud
+
+
+@dataclass(frozen=True, eq=False)
+class _Marks:
+    """Features that may show gas and the lines they may show, as pairs: km/s, its error,
+    feature row, catalogue row. density: such features per km/s near each pair."""
+
+    v: np.ndarray
+    sigma: np.ndarray
+    feature: np.ndarray
+    row: np.ndarray
+    density: np.ndarray
+
+
+def _marks(setting, features, rows, middle: float, span: float, centring: float) -> _Marks:
+    f, cat = setting.features, setting.catalogue
+    feature, row = (a.ravel() for a in np.meshgrid(features, rows, indexing="ij"))
+    v = C_KM_S * (f.wave[feature] / cat.wave[row] - 1.0)
+    width = centring * np.nan_to_num(f.fwhm[feature])
+    rough = np.array(["fallback" in f.flags[i] for i in features], dtype=bool)
+    rough = np.repeat(rough, len(rows)) * ROUGH * np.nan_to_num(f.fwhm[feature])
+    sigma = np.sqrt(position_error(f)[feature] ** 2 + LIST_ERROR**2 + width**2 + rough**2)
+    sigma = C_KM_S * sigma / f.wave[feature]
+    near = np.abs(v - middle) < span
+    v, sigma, feature, row = v[near], np.maximum(sigma[near], 0.3), feature[near], row[near]
+    count = np.bincount(np.searchsorted(np.unique(row), row)) if len(row) else np.zeros(0, int)
+    density = count[np.searchsorted(np.unique(row), row)] / (2 * span) if len(row) else v
+    return _Marks(v, sigma, feature, row, density)
+
+
+def _clusters(marks: _Marks, least: int = 2):
+    """(mean, error, members) of velocities shared by several lines, most lines first."""
+    free = np.ones(len(marks.v), dtype=bool)
+    for _ in range(MOST + 3):
+        close = np.abs(marks.v[:, None] - marks.v[None, :])
+        close = close < 2.5 * np.hypot(marks.sigma[:, None], marks.sigma[None, :])
+        lines = [len(set(marks.row[close[i] & free])) if free[i] else 0 for i in range(len(free))]
+        if not lines or max(lines) < least:
+            return
+        best = int(np.argmax(lines))
+        members = np.nonzero(close[best] & free)[0]
+        free[members] = False
+        weight = 1.0 / marks.sigma[members] ** 2
+        mean = float(np.sum(weight * marks.v[members]) / np.sum(weight))
+        scatter = float(np.sqrt(np.sum(weight * (marks.v[members] - mean) ** 2) / len(members)))
+        error = max(1.0, scatter) / np.sqrt(weight.sum())
+        yield mean, float(error), members, _coincidence(marks, best, members)
+
+
+def _coincidence(marks: _Marks, best: int, members) -> float:
+    """Expected number of such coincidences by chance, from the density of open features."""
+    rows = np.unique(marks.row[members])
+    density = np.array([np.max(marks.density[members[marks.row[members] == r]]) for r in rows])
+    rates = np.sort(density * 5.0 * marks.sigma[best])[::-1]
+    trials = np.min(density) * 2 * CLOUD_SPAN
+    return float(trials * np.prod(rates[:-1]))
+
+
+def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
+    """Interstellar clouds among the absorption features that the rest leaves unexplained.
+
+    Two resonance lines at one velocity show a cloud; beside a known cloud the strongest lines
+    show another alone, if hardly any other open feature is as deep and narrow. A cloud at the
+    star's own velocity cannot be told from it and is left out.
+    """
+    cat, f = setting.catalogue, setting.features
+    rows = np.nonzero((cat.origin == ORIGINS.index("interstellar")) & (cat.wave_err < NARROW))[0]
+    unexplained = np.nonzero((solution.unlisted > 0.5) & (f.sign > 0))[0]
+    if len(rows) == 0 or len(unexplained) == 0:
+        return []
+    marks = _marks(setting, unexplained, rows, 0.0, CLOUD_SPAN, 0.0)
+    clouds, used = [], []
+    for mean, error, members, chance in _clusters(marks):
+        if chance < CHANCE and abs(mean - stellar_velocity) >= SAME and len(clouds) < MOST:
+            clouds.append(Component(INTERSTELLAR, mean, error))
+            used += marks.feature[members].tolist()
+    if clouds and len(clouds) < MOST:
+        clouds += _lone_cloud(setting, marks, used, (clouds, stellar_velocity))
+    return clouds
+
+
+def _lone_cloud(setting, marks: _Marks, used, known) -> list[Component]:
+    """Another cloud that a single strong line shows beside a known one, with its certainty.
+
+    known: (clouds, the star's velocity).
+    """
+    clouds, star = known
+    cat = setting.catalogue
+    strong = [i for i, name in enumerate(cat.species_names) if name in STRONGEST]
+    beside = np.min([np.abs(marks.v - c.velocity) for c in clouds], axis=0)
+    own = np.min([np.abs(marks.v - c.velocity) for c in clouds], axis=0) > SAME
+    open_ = np.isin(cat.species[marks.row], strong) & ~np.isin(marks.feature, used) & own
+    open_ &= (beside < NEXT_CLOUD) & (np.abs(marks.v - star) >= SAME)
+    best = None
+    for i in np.nonzero(open_)[0]:
+        chance = _lone_chance(setting, marks, i, used) * 2 * NEXT_CLOUD * len(clouds)
+        if chance < LONE_CHANCE and (best is None or chance < best[0]):
+            best = (chance, i)
+    if best is None:
+        return []
+    i = best[1]
+    return [Component(INTERSTELLAR, float(marks.v[i]), float(marks.sigma[i]),
+                      certainty=float(1.0 - best[0]))]
+
+
+def _lone_chance(setting, marks: _Marks, i: int, used) -> float:
+    """Open features as deep and narrow as this one, per km/s, itself and the clouds' left out."""
+    f = setting.features
+    mine = marks.feature[i]
+    others = np.setdiff1d(np.unique(marks.feature), [*used, mine])
+    like = np.abs(f.depth[others]) > LIKE_DEPTH * abs(f.depth[mine])
+    like &= f.fwhm[others] / f.wave[others] < LIKE_WIDTH * f.fwhm[mine] / f.wave[mine]
+    length = float(np.sum(np.diff(setting.coverage, axis=1)))
+    per_angstrom = (np.sum(like) + 1.0) / max(length, 1.0)
+    return float(per_angstrom * f.wave[mine] / C_KM_S)
+
+
+def find_emission(setting, solution, components, star: Component) -> list[Component]:
+    """Components with the star's own emission, and absorption of its wind, where shown.
+
+    The nebular component goes where hardly a forbidden line is claimed with confidence: what
+    it explained then is the star's. Without a star nothing changes.
+    """
+    f = setting.features
+    nebula = [i for i, c in enumerate(components) if c.population == NEBULAR]
+    if not nebula or star.certainty <= 0.5 or _forbidden(setting, solution, nebula[0]):
+        return components
+    rows = emitted_rows(setting.catalogue)
+    claimed = np.bincount(
+        solution.feature,
+        solution.probability * (solution.problem.entries.component[solution.entry] != nebula[0]),
+        len(f),
+    )
+    bright = np.nonzero((claimed < 0.5) & (f.sign < 0))[0]
+    shining = _own_gas(setting, bright, rows, star, EMITTED)
+    if not shining:
+        return components
+    dark = np.nonzero((solution.unlisted > 0.5) & (f.sign > 0))[0]
+    wind = [c for c in _own_gas(setting, dark, rows, star, OUTFLOW)
+            if abs(c.velocity - star.velocity) > _width(setting)]
+    return [c for c in components if c.population != NEBULAR] + shining + wind
+
+
+def _width(setting) -> float:
+    """Median FWHM of the features, km/s."""
+    f = setting.features
+    known = np.isfinite(f.fwhm) & (f.fwhm > 0)
+    return float(C_KM_S * np.median(f.fwhm[known] / f.wave[known])) if np.any(known) else 0.0
+
+
+def _forbidden(setting, solution, nebula: int) -> bool:
+    """Whether the nebular component claims at least FORBIDDEN forbidden lines with confidence."""
+    e, cat = solution.problem.entries, setting.catalogue
+    sure = (solution.probability > 0.9) & (e.component[solution.entry] == nebula)
+    names = cat.species[e.row[solution.entry[sure]]]
+    return sum(cat.species_names[i].startswith("[") for i in names) >= FORBIDDEN
+
+
+def _own_gas(setting, features, rows, star: Component, population: int) -> list[Component]:
+    if len(features) == 0 or len(rows) == 0:
+        return []
+    f = setting.features
+    marks = _marks(setting, features, rows, star.velocity, STAR_SPAN, CENTRING)
+    found, used = [], []
+    for mean, error, members, _ in _clusters(marks):
+        if _elsewhere(setting, features, marks, members) < CHANCE and len(found) < MOST:
+            spread = CENTRING * np.median(f.fwhm[marks.feature[members]] / f.wave[marks.feature[members]])
+            found.append(Component(population, mean, max(error, float(spread) * C_KM_S)))
+            used += marks.feature[members].tolist()
+    if population == EMITTED and not found:
+        return _lone_emission(setting, marks, star)
+    return found
+
+
+def _elsewhere(setting, features, marks: _Marks, members) -> float:
+    """Expected number of such coincidences by chance, from features as strong that stand away
+    from all lines of the list."""
+    f = setting.features
+    strong = LIKE_DEPTH * np.min(np.abs(f.ew[marks.feature[members]]))
+    others = np.setdiff1d(features, marks.feature)
+    length = float(np.sum(np.diff(setting.coverage, axis=1)))
+    per_angstrom = (np.sum(np.abs(f.ew[others]) >= strong) + 1.0) / max(length, 1.0)
+    rows, first = np.unique(marks.row[members], return_index=True)
+    per_km_s = per_angstrom * f.wave[marks.feature[members[first]]] / C_KM_S
+    rates = np.sort(per_km_s * 5.0 * np.median(marks.sigma[members]))[::-1]
+    return float(per_km_s.max() * 2 * STAR_SPAN * np.prod(rates[: len(rows) - 1]))
+
+
+def _lone_emission(setting, marks: _Marks, star: Component) -> list[Component]:
+    """A single emission line of the list, where few features shine that brightly."""
+    f, best = setting.features, None
+    for i in range(len(marks.v)):
+        mine = marks.feature[i]
+        like = (f.sign < 0) & (np.abs(f.ew) > LIKE_DEPTH * abs(f.ew[mine]))
+        length = float(np.sum(np.diff(setting.coverage, axis=1)))
+        rate = float(np.sum(like)) / max(length, 1.0) * f.wave[mine] / C_KM_S
+        chance = rate * 2 * abs(marks.v[i] - star.velocity) * len(np.unique(marks.row))
+        if chance < LONE_CHANCE and (best is None or chance < best[0]):
+            best = (chance, i)
+    if best is None:
+        return []
+    i = best[1]
+    return [Component(EMITTED, float(marks.v[i]), float(marks.sigma[i]), certainty=1.0 - best[0])]
