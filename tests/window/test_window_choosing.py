@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import ast
+import inspect
 import time
 import warnings
 
@@ -174,18 +176,36 @@ def test_listening_costs_the_window_nothing(window, qtbot):
     assert Silent.closed == 1
 
 
+def _tree(module):
+    return ast.walk(ast.parse(inspect.getsource(module)))
+
+
+def _appended(module) -> set[str]:
+    """Texts that a module appends to a list called ``words``."""
+    return {node.args[0].value for node in _tree(module)
+            if isinstance(node, ast.Call) and isinstance(node.func, ast.Attribute)
+            and node.func.attr == "append" and getattr(node.func.value, "id", "") == "words"}
+
+
+def _marks(module) -> set[str]:
+    """Keys of the table ``marks``."""
+    return {key.value for node in _tree(module) if isinstance(node, ast.Assign)
+            and getattr(node.targets[0], "id", "") == "marks" for key in node.value.keys}
+
+
 def test_every_flag_has_words(solved):
     """The words that the measuring and the claiming set, by name."""
     from linewright.claims import consistency
     from linewright.claims.artefacts import SPIKE
+    from linewright.measure import table
     from linewright.measure.shapes import _SHAPES
     from linewright.window.panels import words
 
-    set_by_the_engine = {"blend", "integrated", "wing", "saturated", "edge", "fallback", "hand",
-                         SPIKE, "off-velocity", "broad", "narrow", "cosmic-ray", "gap-edge",
-                         "artefact", *(s for s in _SHAPES if s != "gaussian")}
-    assert hasattr(consistency, "flagged")
-    assert set_by_the_engine <= set(words.FLAGS)
+    claimed, measured = _appended(consistency), _marks(table)
+    assert {"broad", "off-velocity"} <= claimed and {"wing", "edge"} <= measured
+    by_hand = {"hand", "cosmic-ray", "gap-edge", "artefact"}
+    shapes = {s for s in _SHAPES if s != "gaussian"}
+    assert claimed | measured | by_hand | shapes | {SPIKE} <= set(words.FLAGS)
     assert words.flags("broad wing").count("\n") == 1
     assert words.flag("my-own") == "my-own: said by a person"
 

@@ -137,3 +137,13 @@ def test_the_roll_call_tells_limits_and_what_is_missing(solved):
     assert cell(0, "upper limit (dex)") == ""
     assert cell(last, "upper limit (dex)") == "< −0.40"
     assert cell(last, "limit from") == "4934.07 Å, 3.2 mÅ"
+
+
+def test_a_chosen_species_is_told_in_words(solved):
+    bench, panel = solved.bench, solved.space.roll_call
+    assert "Choose a species" in panel.words.text()
+    panel.table.setCurrentIndex(panel.model.index(0, 0))
+    assert panel.words.text().startswith(f"{bench.session.roll_call[0].species} is present")
+    assert "no abundance" in panel.words.text()
+    bench.desk.document.replace(replace(bench.session, roll_call=()), "test")
+    assert "Choose a species" in panel.words.text()

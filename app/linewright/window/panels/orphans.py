@@ -80,7 +80,7 @@ class OrphansPanel(TablePanel):
             Column("unlisted", "Probability that no catalogue line made it",
                    lambda i: words.probability(chance[i]), lambda: chance, True, 80),
             Column("nearest", "The nearest catalogue line", lambda i: rows[i].nearest,
-                   lambda: np.array([o.nearest for o in rows], dtype=str), False, 170),
+                   lambda: np.array([o.nearest for o in rows], dtype=str), False, 230),
             Column("why", "What it is not, and why", lambda i: rows[i].why,
                    lambda: np.array([o.why for o in rows], dtype=str), False, 320),
         ], wave

@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import numpy as np
-from PySide6.QtWidgets import QLabel
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QFrame, QLabel, QScrollArea
 
+from ...job.view_roll import verdict_words
 from ...spectra.medium import to_medium
 from . import words
 from .column_model import Column, ColumnModel
@@ -14,6 +16,7 @@ EMPTY = (
     "The Roll call counts, species by species, the lines that ought to be seen, those that "
     "are, and how likely chance alone would do as well.\nPress F5 to solve the spectrum."
 )
+CHOOSE = "Choose a species: its verdict stands here in words, and its lines go on the rake."
 VERDICTS = {"present": "● present", "possible": "◑ possible", "absent": "⊗ absent",
             "not testable": "○ not testable"}
 _ORDER = tuple(VERDICTS)
@@ -27,17 +30,39 @@ class RollCallPanel(TablePanel):
         self._workbench, self._rows = workbench, ()
         self.text = self.add_text_filter(
             "Filter: species or verdict", "Shows species or verdicts containing this text")
-        hint = QLabel("Choose a row to see the species on the rake")
-        hint.setObjectName("quiet")
-        self.filters.addWidget(hint)
+        self.words = QLabel(CHOOSE)
+        self.words.setWordWrap(True)
+        self.words.setTextFormat(Qt.TextFormat.PlainText)
+        self.words.setAlignment(Qt.AlignmentFlag.AlignTop)
+        self.words.setMargin(8)
+        self.words.setAccessibleName("Verdict in words")
+        self.words.setMinimumWidth(200)
+        area = QScrollArea()
+        area.setFrameShape(QFrame.Shape.NoFrame)
+        area.setWidgetResizable(True)
+        area.setWidget(self.words)
+        self.body.addWidget(area)
+        self.body.setStretchFactor(0, 3)
+        self.body.setStretchFactor(1, 1)
+        self.body.setSizes([750, 250])
         self.filtered.connect(self.refresh)
-        self.acted.connect(lambda row: workbench.show_on_rake(self._rows[row].species))
+        self.acted.connect(self._choose)
+
+    def _choose(self, row: int) -> None:
+        self._tell(row)
+        self._workbench.show_on_rake(self._rows[row].species)
+
+    def _tell(self, row: int | None) -> None:
+        """The verdict of a row in sentences; with None how to get one."""
+        said = () if row is None else verdict_words(self._rows[row], self._workbench.session)
+        self.words.setText("\n".join(f"{s[:1].upper()}{s[1:]}." for s in said) or CHOOSE)
 
     def show_session(self, session) -> None:
         rows = () if session is None else session.roll_call
         if rows is self._rows and self.model.columns:
             return
         first, self._rows = not self._rows, rows
+        self._tell(None)
         self.refresh()
         if first and rows:
             for i, column in enumerate(self.model.columns):

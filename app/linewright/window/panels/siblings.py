@@ -96,7 +96,7 @@ class SiblingsBox(QWidget):
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
         absorbs = candidate.depth_predicted > 0  # emission has no predicted profile
-        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species),
+        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species, absorbs),
                         s.predicted if absorbs else float("nan")) for s in self._found]
         self.strips.set_strips(strips, theme.colour(candidate.species, candidate.origin))
 
@@ -108,9 +108,9 @@ class SiblingsBox(QWidget):
             self._workbench.look_at(strip.wave)
 
 
-def _note(strip, species: str) -> str:
-    if strip.feature is None:
-        return "missing"
+def _note(strip, species: str, absorbs: bool) -> str:
+    if strip.feature is None:  # emission has no predicted depth that would have to show
+        return "missing" if absorbs else "not seen"
     if strip.said == species:
         return "seen"
     return f"in {strip.said}" if strip.said else "unclaimed"
