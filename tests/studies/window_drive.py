@@ -21,6 +21,7 @@ from pathlib import Path
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 ROOT = Path(__file__).resolve().parents[2]
 sys.path.insert(0, str(ROOT / "app"))
+from PySide6.QtCore import Qt  # noqa: E402
 
 
 def memory_mb() -> float:
@@ -70,8 +71,6 @@ class Driver:
         self.window.ledger.filter_now()
 
     def do_sort(self) -> None:
-        from PySide6.QtCore import Qt
-
         order = self.random.choice(list(Qt.SortOrder))
         self.window.ledger.table.sortByColumn(self.random.randint(-1, 9), order)
 
@@ -88,13 +87,29 @@ class Driver:
         self.bench.view.change(span=(middle - half, middle + half))
 
     def do_tab(self) -> None:
-        self.window.space.tables.setCurrentIndex(self.random.randint(0, 3))
+        self.window.space.tables.setCurrentIndex(self.random.randint(0, 4))
 
     def do_catalogue(self) -> None:
         panel = self.window.space.catalogue
-        panel.range.setText(self.random.choice(["", "all", "view", "5100:5200"]))
-        panel.depth.setText(self.random.choice(["", "0.1"]))
+        panel.fields["range"].setText(self.random.choice(["", "all", "view", "here", "5100:5200"]))
+        panel.fields["depth"].setText(self.random.choice(["", "0.1", "x"]))
+        panel.text.setText(self.random.choice(["", "Fe I", "ti e<2", "gf>-1", "multiplet", "gf="]))
         panel.filter_now()
+
+    def do_line(self) -> None:
+        panel = self.window.space.catalogue
+        rows = panel.model.rowCount()
+        if rows:
+            at = panel.model.index(self.random.randrange(rows), 0)
+            panel.table.setCurrentIndex(at)
+        self.bench.run(self.random.choice(["line.claim", "line.rake", "line.go", "line.here",
+                                           "line.bibtex", "line.search"]))
+
+    def do_sort_lines(self) -> None:
+        self.window.space.catalogue.table.sortByColumn(
+            self.random.randint(-1, 7), self.random.choice(list(Qt.SortOrder)))
+
+    do_sort_lines.weight = 2
 
     do_catalogue.weight = 2
 

@@ -79,7 +79,7 @@ class AskBar(QFrame):
         self.list.clear()
         self.list.addItems([self._choices[k] for k in self._shown])
         rows = min(max(len(self._shown), 1), ROWS)
-        self.list.setFixedHeight(rows * (self.list.fontMetrics().height() + 4) + 6)
+        self.list.setFixedHeight(rows * max(self.list.sizeHintForRow(0), 1) + 6)
         self.list.setCurrentRow(0)
 
     def _done(self) -> None:

@@ -13,7 +13,10 @@ FIRST_STEPS = (
     "Open a spectrum: Ctrl+O, drop its file on the window, or name it on the command line.",
     "Solve it: F5. The Ledger fills; claims are written over the spectrum.",
     "Ask why: click a feature or a Ledger row; Evidence shows candidates and reasons.",
-    "Correct: mark another candidate and press Ctrl+Return, or F2 and type a species.",
+    "Correct: mark another candidate and press Ctrl+Return, or F2 and type a species. What that "
+    "changes elsewhere is looked up; F7 takes it over.",
+    "Look a line up: Ctrl+Shift+L, then words such as Fe I 5160:5200 grade B; Ctrl+Shift+H lists "
+    "the lines about the selected feature, Ctrl+Shift+Return claims it with the chosen one.",
     "Slide: drag the mark in the Velocity track or type km/s; the rake follows.",
     "Save the session with Ctrl+S; export a table with Ctrl+E, a figure with Ctrl+Shift+E.",
 )
@@ -30,7 +33,13 @@ WORDS = (
     ("Standing", "● firm (probability 0.95 and more), ◕ likely (0.80), ◑ tentative (0.50), "
      "○ unclaimed, ⊗ set aside. Your own act sets the standing and never the probability"),
     ("Evidence", "what speaks for and against each candidate of one feature"),
+    ("Odds", "the four bars of the marked candidate: how readily such a line shows, how well it "
+     "is placed, how well its strength fits, and how free it is of other features; to the right "
+     "for it, to the left against it, beside a line that no catalogue lists"),
+    ("What would change this", "the one or two facts that would carry the probability over the "
+     "next bound, found by weighing the claim again"),
     ("Siblings", "the other lines of a candidate's species that must be there if it is right"),
+    ("Changes", "the claims that your own claims change elsewhere, before and after"),
     ("Roll call", "species by species: lines expected, seen, missing, and the odds of chance"),
     ("Orphans", "significant features that no catalogue line explains"),
     ("Velocity track", "the velocity slider; its groove shows how well each velocity matches"),

@@ -10,6 +10,7 @@ from ...errors import LinewrightError
 from ...job.view_line_page import page_for
 from ...job.view_line_words import EXAMPLES, Places, as_words, asked
 from ...job.view_lines import Order, at_rest, lines_found
+from ...spectra.medium import to_medium
 from ..coalesced import Coalesced
 from .catalogue_model import CatalogueModel, catalogue_columns
 from .line_page import LinePageView
@@ -176,7 +177,10 @@ class CataloguePanel(TablePanel):
             return
         self.follow(row)
         span = bench.vacuum_range()
-        self._paging.ask(lambda: page_for(catalogue, row, session, span), self.page.show_page)
+        wave = float(to_medium(catalogue.wave[row], bench.medium))
+        title = f"{catalogue.species_of(row)} {wave:.3f}"
+        self._paging.ask(lambda: page_for(catalogue, row, session, span),
+                         lambda page: self.page.show_page(page, title))
 
     def show_rake(self, species: tuple[str, ...] | None) -> None:
         if not self.rake.hasFocus():

@@ -55,7 +55,8 @@ class RollCallPanel(TablePanel):
     def _tell(self, row: int | None) -> None:
         """The verdict of a row in sentences; with None how to get one."""
         said = () if row is None else verdict_words(self._rows[row], self._workbench.session)
-        self.words.setText("\n".join(f"{s[:1].upper()}{s[1:]}." for s in said) or CHOOSE)
+        text = "\n".join(f"{s[:1].upper()}{s[1:]}." for s in said).replace(" -", " −")
+        self.words.setText(text or CHOOSE)
 
     def show_session(self, session) -> None:
         rows = () if session is None else session.roll_call
