@@ -15,7 +15,13 @@ from .association import Marginals, associate
 from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_relation
 from .curves import first_relation, threshold_form
 from .entries import Groups
-from .offsets import SCALE, best_offsets, detection_log_likelihood, strength_log_likelihood
+from .offsets import (
+    SCALE,
+    best_offsets,
+    detection_log_likelihood,
+    shared_offset,
+    strength_log_likelihood,
+)
 from .pairs import TAIL_FACTOR, TAIL_FLOOR, Pairs
 from .problem import NOT_SAID, Problem
 from .unlisted import Null, learn_null
@@ -248,12 +254,19 @@ def _species_scatter(problem: Problem, pairs: Pairs, step: _Step):
 
 
 def _learn_offsets(problem: Problem, pairs: Pairs, step: _Step, state: State) -> State:
-    """Each population's species have indices of their own."""
+    """Each population's species have indices of their own.
+
+    What all species of a population share is no offset but the zero point, which the curves
+    hold: left in, it grows from round to round in crowded spectra and carries the species
+    of most lines with it.
+    """
     mean, error = np.zeros(problem.species), np.full(problem.species, SCALE)
     seen = np.bincount(pairs.entry, step.marginals.pair, len(problem.entries))
+    lines = np.bincount(problem.entries.species, seen, problem.species)
     for block in pairs.blocks:
         table = _offset_evidence(problem, pairs, step, state, (block, seen))
-        mean[block.species], error[block.species] = best_offsets(table)
+        offset, error[block.species] = best_offsets(table)
+        mean[block.species] = offset - shared_offset(offset, lines[block.species])
     return replace(state, offsets=mean, offset_errors=error)
 
 

@@ -12,6 +12,7 @@ from .curves import BIN, CENTRES, bin_of
 
 SCALE, FREEDOM = 0.4, 3.0  # dex and degrees of freedom of the prior
 LEAST_ERROR = 0.05  # dex: the strengths of one species share errors of their own
+LINES_FOR_ZERO = 20.0  # seen lines of a population that fix its zero of strength
 GRID = np.arange(-15, 16) * BIN
 
 
@@ -66,6 +67,25 @@ def best_offsets(log_likelihood, scale: float = SCALE):
     sharp = width < BIN  # the grid is too coarse for moments; the parabola is not
     mean, sigma = np.where(sharp, peak, mean), np.where(sharp, width, sigma)
     return mean, np.maximum(sigma, LEAST_ERROR)
+
+
+def shared_offset(offset, lines) -> float:
+    """What the species of a population have in common, dex; 0 where too few lines are seen.
+
+    offset: (n,) dex; lines: (n,) lines seen of each. A mean that a species of odd abundance
+    does not move, however many lines it has: species weigh by the square root of theirs,
+    and less the farther they stand from the rest (Student t about the median).
+    """
+    if float(np.sum(lines)) < LINES_FOR_ZERO:
+        return 0.0
+    weight = np.sqrt(lines)
+    order = np.argsort(offset, kind="stable")
+    heap = np.cumsum(weight[order])
+    centre = float(offset[order][np.searchsorted(heap, 0.5 * heap[-1])])
+    for _ in range(5):
+        near = weight / (1.0 + ((offset - centre) / SCALE) ** 2 / FREEDOM)
+        centre = float(np.sum(near * offset) / np.sum(near))
+    return centre
 
 
 def _parabola(log_posterior):
