@@ -134,7 +134,7 @@ def _starts(features, rows, wanted: Wanted, limits) -> list[np.ndarray]:
     weight = np.abs(np.nan_to_num(features.ew[rows])) + 1e-12
     middle = float(np.sum(wave * weight) / weight.sum())
     if parts == 1:
-        return [np.array([middle])]
+        return [np.array([middle]), wave[[int(np.argmax(weight))]]]
     width = float(np.nanmax(fwhm)) if len(rows) == 1 else float(np.ptp(wave) + np.nanmean(fwhm))
     rank = np.arange(parts) - 0.5 * (parts - 1)
     tries = [middle + shift * width + rank * gap * width / (parts - 1)

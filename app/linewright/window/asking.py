@@ -6,7 +6,7 @@ from pathlib import Path
 
 from . import layout_memory as memory
 from .commands import claim as claiming
-from .commands import opening, saving
+from .commands import anchoring, fitting, opening, saving
 from .commands import view as viewing
 from .formats import FIGURES, SUFFIX, TABLES
 from .workspace_names import TABLES as TABS
@@ -81,6 +81,33 @@ class Questions:
         row = self.bench.selected_row()
         self.ask_bar.ask("Note", self.bench.session.claims[row].note, "kept with this feature",
                          lambda text: claiming.set_note(self.bench, text))
+
+    def ask_parts(self) -> None:
+        self.ask_bar.ask("Split into", "3", "2 to 9 components",
+                         lambda text: fitting.split_in(self.bench, text))
+
+    def ask_limits(self) -> None:
+        self.ask_bar.ask("Fit limits (Å)", fitting.limits_text(self.bench), "5187.2:5188.1",
+                         lambda text: fitting.set_limits(self.bench, text))
+
+    def ask_anchor(self) -> None:
+        self.ask_bar.ask("Anchor (Å, flux)", "", "5187.2 1.013",
+                         lambda text: anchoring.add(self.bench, text))
+
+    def ask_again(self) -> None:
+        """The other spectrum, then the table to write."""
+        from PySide6.QtWidgets import QFileDialog
+
+        name, _kind = QFileDialog.getOpenFileName(
+            self, "Measure again in", str(memory.recall("folder", "")), SPECTRA)
+        if not name:
+            return
+        memory.keep("folder", str(Path(name).parent))
+        kinds = ";;".join(f"{s.upper()} (*.{s})" for s in TABLES)
+        path = self._ask_path("Write both measurements and their differences",
+                              saving.suggested(self.bench, ".again.ecsv"), kinds)
+        if path is not None:
+            saving.measure_again(self.bench, Path(name), path)
 
     def ask_reading(self) -> None:
         self.ask_bar.ask(f"Read {self.bench.asked_file.name} with", "",

@@ -9,6 +9,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from importlib import import_module
 
+from .fit_commands import fit_rows
 from .formats import FIGURES, TABLES
 
 
@@ -23,11 +24,12 @@ class _Acts:
             import_module(f".acts.{self._name}", __package__), act)(*arguments, **named)
 
 
-choosing, claim, exchanging, opening, reweighing, saving, solving, view = (
-    _Acts(name) for name in ("choosing", "claiming", "exchanging", "opening", "reweighing",
-                             "saving", "solving", "viewing"))
+anchoring, choosing, claim, exchanging, fitting, opening, reweighing, saving, solving, view = (
+    _Acts(name) for name in (
+        "anchoring", "choosing", "claiming", "exchanging", "fitting", "opening", "reweighing",
+        "saving", "solving", "viewing"))
 
-MENUS = ("File", "Edit", "Spectrum", "Claims", "Lines", "View", "Help")
+MENUS = ("File", "Edit", "Spectrum", "Fit", "Claims", "Lines", "View", "Help")
 
 
 @dataclass(frozen=True)
@@ -123,6 +125,9 @@ def _file() -> list[Command]:
         _c("file.figure", "Export figure…", "Ctrl+Shift+E", "File", has_spectrum,
            lambda b: b.window.ask_figure(), "Draw the range in view, annotated, for a paper: "
            + " ".join(FIGURES), group=2),
+        _c("file.again", "Measure again in another spectrum…", "Ctrl+Alt+E", "File", has_features,
+           lambda b: b.window.ask_again(), "Measure these features in another spectrum of the "
+           "star; a table of both, their differences and errors", group=2),
         _c("file.send", "Offer spectrum to other programs", "", "File", has_spectrum,
            exchanging.send, "Send it by SAMP to every program that takes spectra", group=3),
         _c("file.listen", "Listen to other programs", "", "File", always,
@@ -299,5 +304,6 @@ def command_table() -> dict[str, Command]:
     """All commands by id, in menu order."""
     from .line_commands import line_commands
 
-    rows = [*_file(), *_edit(), *_spectrum(), *_claims(), *line_commands(), *_view(), *_help()]
+    rows = [*_file(), *_edit(), *_spectrum(), *fit_rows(_c, fitting), *_claims(),
+            *line_commands(), *_view(), *_help()]
     return {row.id: row for row in rows}

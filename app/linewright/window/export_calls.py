@@ -31,3 +31,25 @@ def send_spectrum(spectrum, name: str) -> int:
         path = Path(tempfile.mkdtemp(prefix="linewright-")) / f"{name.split('.')[0]}.fits"
         write_spectrum(spectrum, path)
         return exchange.send_spectrum(path, spectrum)
+
+
+def write_again_file(session, spectrum_path, path, progress=None) -> str:
+    """Measures the session's features in another file and writes the table of both; returns
+    what to say of it. A file that states no medium is read in the session's."""
+    from ..job.again import again
+    from ..publish.again import again_table
+    from ..publish.writers import check_suffix, write_table
+    from ..spectra.reading import read_spectrum
+
+    check_suffix(path)
+    spectrum, assumed = read_spectrum(spectrum_path), ""
+    if spectrum.medium == "unknown":
+        spectrum = spectrum.with_medium(session.spectrum.medium, "as the session's")
+        assumed = f" Its wavelengths were taken for {spectrum.medium}, as the session's are."
+    result = again(session, spectrum, progress=progress)
+    table = again_table(session, result)
+    write_table(table, path, force=True)
+    seen = int((~table["depth_again"].mask).sum())
+    velocity = f"{result.velocity:+.2f}".replace("-", "−")
+    return (f"{seen:,} of {len(table):,} features measured again, at {velocity} ± "
+            f"{result.velocity_err:.2f} km/s.{assumed}")

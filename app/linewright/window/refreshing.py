@@ -10,6 +10,8 @@ from .acts import opening
 from .acts.picking import pick
 from .acts.reweighing import heed, propose
 from .acts.viewing import slide
+from .anchor_keeper import AnchorKeeper
+from .fit_follower import FitFollower
 from .rake import RakeKeeper
 from .steps import Steps
 
@@ -35,6 +37,7 @@ class Refresher:
         self.reweigh_soon.setInterval(REST_MS)
         self.reweigh_soon.timeout.connect(lambda: propose(bench))
         view = space.spectrum_view
+        self.fits, self.anchors = FitFollower(bench, view), AnchorKeeper(bench, view)
         view.featureClicked.connect(lambda number: bench.view.select(number))
         view.pickRequested.connect(lambda wave: pick(bench, wave))
         view.viewChanged.connect(self._moved)
@@ -63,14 +66,18 @@ class Refresher:
             self._session is None or new.features is not self._session.features)
         self._session = new
         self._steps.run([
-            lambda: space.spectrum_view.set_session(new),
+            lambda: self._show_marks(new),
             lambda: self._show_track(new),
             lambda: space.ledger.show_session(new),
             lambda: space.orphans.show_session(new),
             lambda: self._show_rest(new),
-            self._show_selected,
+            self.show_selected,
             self.rake.refresh,
         ], spread=many)
+
+    def _show_marks(self, session) -> None:
+        self._space.spectrum_view.set_session(session)
+        self.anchors.show()
 
     def _show_rest(self, session) -> None:
         self._space.roll_call.show_session(session)
@@ -122,7 +129,7 @@ class Refresher:
         self._space.track.set_velocity(velocity, error, declared)
         self._space.spectrum_view.set_velocity(velocity)
 
-    def _show_selected(self) -> None:
+    def show_selected(self) -> None:
         bench, view = self._bench, self._space.spectrum_view
         number = bench.view.now.selected
         view.select(number)
@@ -130,6 +137,7 @@ class Refresher:
         if bench.selected_row() is not None:
             profile = profile_of(bench.session, number)
         view.show_profile(*(profile or (None, None)))
+        self.fits.show()
         self._space.ledger.show_selection(number)
         self._space.orphans.show_selection(number)
         self._space.changes.show_selection(number)
@@ -147,7 +155,7 @@ class Refresher:
             self._calm.start()
         if (new.selected, new.candidate) != (old.selected, old.candidate):
             if not self._steps.pending:  # else among the steps
-                self._show_selected()
+                self.show_selected()
                 self.rake.refresh()
         if new.rake != old.rake:
             self.rake.refresh()

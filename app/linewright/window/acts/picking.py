@@ -9,6 +9,8 @@ from ...session.feature_edits import add_feature
 from ..notices import Notice
 from ..tasks import Request
 
+MAKING = ("add_feature", "split_feature", "fit_features")  # acts that bring new features
+
 
 def pick(bench, wave: float) -> None:
     """Snaps to the extremum nearest a vacuum wavelength and fits it, beside the window."""
@@ -83,6 +85,12 @@ def _weigh(bench, desk, before, row, number: int) -> None:
     bench.window.space.evidence.refresh()
 
 
+def weigh_new(bench, desk, before, number: int) -> None:
+    """As after a pick, for a feature that a fit by hand brought."""
+    session = bench.session
+    _weigh(bench, desk, before, session.features.take([session.index_of(number)]), number)
+
+
 def _weighed(bench, desk, number: int, claim) -> None:
     """Part of the pick's own step where nothing was done since, else a step of its own."""
     from ...job.view_pick import with_claim
@@ -96,10 +104,10 @@ def _weighed(bench, desk, number: int, claim) -> None:
         bench.window.space.evidence.refresh()
         return
     selected = bench.view.now.selected
-    still_last = session.history[-1].action == "add_feature"
+    still_last, label = session.history[-1].action in MAKING, desk.document.undo_label
     if still_last:
         desk.document.undo()
-    desk.document.replace(new, "add feature" if still_last else "weigh")
+    desk.document.replace(new, label if still_last else "weigh")
     if desk is bench.desk:
         bench.view.select(selected)
 

@@ -84,6 +84,18 @@ def export_figure(bench, path: Path) -> None:
     ))
 
 
+def measure_again(bench, spectrum: Path, path: Path) -> None:
+    """The session's features in another spectrum of the star, as a table."""
+    session, engine = bench.session, bench.export_engine
+    bench.tasks.start(Request(
+        key="again", title=f"Measuring again in {spectrum.name}",
+        work=lambda progress: engine.call(
+            f"{CALLS}:write_again_file", session, spectrum, path, progress=progress),
+        done=lambda said: _written(bench, path, f" {said}"),
+        failed=lambda error: failed(bench, error),
+    ))
+
+
 def _left_out(report) -> str:
     if not report.left_out:
         return ""

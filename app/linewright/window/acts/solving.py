@@ -17,10 +17,11 @@ def solve(bench) -> None:
         opening.ask_medium(bench, lambda: solve(bench))
         return
     desk, spectrum, options = bench.desk, bench.spectrum, bench.desk.options
-    engine = bench.engine
+    engine, before = bench.engine, bench.session
     bench.tasks.start(Request(
         key="solve", title=f"Solving {desk.name}",
-        work=lambda progress: _solved(engine, spectrum, options, progress),
+        work=lambda progress: _anchored(
+            engine, before, spectrum, _solved(engine, spectrum, options, progress)),
         done=lambda session: _take(bench, desk, spectrum, session),
         failed=lambda error: _failed(bench, error),
         stop=lambda: engine.stop(SOLVE),
@@ -29,6 +30,13 @@ def solve(bench) -> None:
 
 def _solved(engine, spectrum, options, progress):
     return engine.call(SOLVE, spectrum, None, options, progress=progress)
+
+
+def _anchored(engine, before, spectrum, session):
+    """Measured again under the continuum anchors a person laid, if any."""
+    if not any(len(laid.wave) for laid in before.anchors):
+        return session
+    return engine.call("job.hand_anchors:keep_anchors", spectrum, before, session)
 
 
 def _take(bench, desk, spectrum, session) -> None:

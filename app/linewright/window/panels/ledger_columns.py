@@ -26,6 +26,7 @@ class LedgerArrays:
         self.standing = np.array([STANDINGS.index(c.standing) for c in claims], dtype=int)
         self.by = np.array([c.by for c in claims], dtype=object)
         self.note = np.array([c.note for c in claims], dtype=object)
+        self.fit = np.array([fitted_by(flags) for flags in f.flags], dtype=object)
 
     def take_claims(self, session: Session) -> np.ndarray | None:
         """Takes over the claims that differ, in place; returns their rows.
@@ -57,6 +58,18 @@ class LedgerArrays:
         self.by[i], self.note[i] = claim.by, claim.note
 
 
+PROFILES = {"voigt": "Voigt", "rotational": "rotational", "core-wings": "core + wings",
+            "double-peaked": "double-peaked", "p-cygni": "P Cygni"}
+
+
+def fitted_by(flags: str) -> str:
+    """'hand' and the profile where a person picked or fitted; nothing for the machine."""
+    named = flags.split()
+    if "hand" not in named:
+        return ""
+    return ", ".join(["hand", *(PROFILES[w] for w in named if w in PROFILES)])
+
+
 def shown_species(claim) -> str:
     """The claim in the trade's notation, with what it is blended with."""
     others = [s for s, _wave, _share in claim.blend if s != claim.species]
@@ -68,7 +81,7 @@ def shown_species(claim) -> str:
 
 
 def ledger_columns(a: LedgerArrays) -> list[Column]:
-    """wavelength, claim, laboratory, velocity, depth, EW, probability, standing, by, note"""
+    """wavelength, claim, laboratory, velocity, depth, EW, fit, probability, standing, by, note"""
     f = a.features
     return [
         Column("wavelength (Å)", "Fitted centre and its error, in the spectrum's own medium",
@@ -83,6 +96,8 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
                lambda i: words.depth(f.depth[i]), lambda: f.depth, True, 70),
         Column("EW (mÅ)", "Equivalent width and its error; negative in emission",
                lambda i: words.width(f.ew[i], f.ew_err[i]), lambda: f.ew, True, 132),
+        Column("fit", "Who fitted it: nothing for the machine, 'hand' for you, with the profile",
+               lambda i: a.fit[i], lambda: a.fit.astype(str), False, 100),
         Column("probability", "That the claimed species is the main contributor",
                lambda i: words.probability(a.probability[i]) if a.species[i] else "",
                lambda: a.probability, True, 86),

@@ -10,8 +10,8 @@ from .caret import outline, turning_points
 from .extremes import PixelScale
 from .flux_axis import draw_flux_axis
 from .geometry import LEFT, RIGHT, Frame, to_device
+from .handled_lane import HandledLane
 from .label_layer import LabelLayer
-from .navigation import NavigableLane
 from .primitives import draw_lines, draw_polyline
 from .spectrum_item import Reduced, SpectrumItem
 
@@ -22,7 +22,7 @@ _HEADROOM = 0.06
 _CALM_SHARE = 0.6
 
 
-class SpectrumPlot(NavigableLane):
+class SpectrumPlot(HandledLane):
     """Draws in one paint per change; ``frame`` says where things are after a paint."""
 
     featureClicked = Signal(int)
@@ -106,6 +106,8 @@ class SpectrumPlot(NavigableLane):
             self._draw_upright(painter, frame, self.pointed, QColor(theme.accent))
         if self.caret is not None:
             self._draw_upright(painter, frame, self.caret, QColor(theme.profile))
+        for grip in self.grips:
+            grip.paint(painter, frame, theme)
 
     def _draw_selection(self, painter: QPainter, frame: Frame) -> None:
         marks = self.labels.marks
@@ -156,6 +158,12 @@ class SpectrumPlot(NavigableLane):
         low, high = self.flux_shown
         return low + (foot - y) / max(foot - top, 1.0) * (high - low)
 
+    def y_of(self, flux):
+        """Logical y of a flux."""
+        top, foot = self.labels.height, self.height() - _FOOT
+        low, high = self.flux_shown
+        return foot - (np.asarray(flux) - low) / (high - low) * (foot - top)
+
     def zoom_flux(self, factor: float, y: float) -> None:
         about = self.flux_at(y)
         low, high = self.flux_shown
@@ -163,7 +171,7 @@ class SpectrumPlot(NavigableLane):
 
     def click(self, point: QPointF) -> None:
         self.setFocus(Qt.FocusReason.MouseFocusReason)
-        if self.item is None:
+        if self.item is None or any(grip.clicked(None, point, self) for grip in self.grips):
             return
         labelled = self.labels.number_at(point)
         wave = self.wave_at(point.x())

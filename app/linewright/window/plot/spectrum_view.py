@@ -15,6 +15,7 @@ from .context_strip import HEIGHT as STRIP
 from .context_strip import LOWEST as LOW_STRIP
 from .context_strip import ContextStrip
 from .feature_marks import marks_after
+from .hand_marks import HandMarks
 from .rake_data import RakeData
 from .rake_lane import RakeLane
 from .spectrum_item import SpectrumItem
@@ -50,6 +51,7 @@ class SpectrumView(QWidget):
         self.state.moved.connect(self.viewChanged)
         self.plot.featureClicked.connect(self.featureClicked)
         self.plot.pickRequested.connect(self._pick)
+        self.hand = HandMarks(self)
         self._continuum: tuple = ((), "")
 
     def resizeEvent(self, event) -> None:
