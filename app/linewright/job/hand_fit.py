@@ -105,7 +105,7 @@ def fitted(session: Session, about: HandTrace, wanted: Wanted) -> Made:
     trace, nodes = about.without_others(numbers, wing)
     signs = _signs(session, wanted, profile, len(choices[0]))
     best = _best((trace, nodes, limits, signs), choices, SHAPES.get(profile, profile))
-    return _made(about, (numbers, wing), limits, profile, best)
+    return _made(about, (numbers, wing, trace), limits, profile, best)
 
 
 def check_rows(session: Session, wanted: Wanted, limits) -> list[int]:
@@ -220,7 +220,7 @@ def _distinct(fit: RegionFit, trace) -> bool:
 
 
 def _made(about: HandTrace, whose, limits, profile: str, fit: RegionFit) -> Made:
-    numbers, wing = whose
+    numbers, wing, cleared = whose
     order = np.argsort(fit.params[:, 1])
     rows = [{**row_to_plain(fit.features.take([k])), "segment": about.segment,
              "flags": _flags(fit.features.flags[k], profile, wing)}
@@ -229,19 +229,11 @@ def _made(about: HandTrace, whose, limits, profile: str, fit: RegionFit) -> Made
         row["number"] = number
     plain_fit = {"limits": [float(x) for x in limits], "profile": profile,
                  "params": [[float(x) for x in p] for p in fit.params[order]], "rows": rows}
-    y = 1.0 - fit.flux / _level(about, wing, fit.wave)
-    rest = np.interp(fit.wave, about.trace.wave,
-                     about.trace.y - about.without_others(numbers, False)[0].y)
-    base = 1.0 - np.interp(fit.wave, about.trace.wave, about.trace.veil) if wing else 1.0
-    flux = about.nodes.continuum_at(fit.wave) * (base * (1.0 - y) - rest)
+    t = about.trace
+    veil = np.minimum(t.veil, 0.98) if wing else np.zeros(len(t.wave))
+    others = t.y - (cleared.y * (1.0 - veil) + (t.veil if wing else 0.0))
+    flux = fit.flux - about.nodes.continuum_at(fit.wave) * np.interp(fit.wave, t.wave, others)
     return Made(tuple(numbers), plain_fit, fit.wave, flux, fit.bic)
-
-
-def _level(about: HandTrace, wing: bool, wave):
-    level = about.nodes.continuum_at(wave)
-    if wing:
-        level = level * (1.0 - np.interp(wave, about.trace.wave, np.minimum(about.trace.veil, 0.98)))
-    return level
 
 
 def _flags(flags: str, profile: str, wing: bool) -> str:

@@ -44,7 +44,7 @@ class HandTrace:
         features the machine flags so.
         """
         t, nodes = self.trace, self.nodes
-        y = t.y - self._model(~np.isin(self.features.number, list(numbers)), wing)
+        y = t.y - self._model(~np.isin(self.features.number, list(numbers)))
         if not wing:
             return replace(t, y=y), nodes
         base = 1.0 - np.minimum(t.veil, 0.98)
@@ -53,7 +53,7 @@ class HandTrace:
                                 node_flux=nodes.continuum_at(t.wave) * base,
                                 node_err=nodes.continuum_err_at(t.wave))
 
-    def _model(self, others, wing: bool) -> np.ndarray:
+    def _model(self, others) -> np.ndarray:
         """What the features of this mask add to y, (n,)."""
         f, wave = self.features, self.trace.wave
         base = np.minimum(1.0, f.continuum / self.nodes.continuum_at(f.wave))

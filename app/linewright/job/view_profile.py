@@ -35,12 +35,17 @@ def _by_hand(session: Session, fit: HandFit) -> tuple[np.ndarray, np.ndarray]:
     """The fitted profile between its limits, with the neighbours."""
     f, rows = session.features, [session.index_of(n) for n in fit.features]
     wave = np.linspace(*fit.limits, max(121, 60 * len(rows)))
-    level = np.interp(wave, f.wave[rows], f.continuum[rows])
+    words = [set(flags.split()) for flags in f.flags]
+    plain = np.array([not w & {"integrated", "spike"} for w in words], dtype=bool)
+    plain &= (f.segment == f.segment[rows[0]]) & np.isfinite(f.continuum)
+    plain[rows] = True
+    order = np.flatnonzero(plain)[np.argsort(f.wave[plain])]
+    level = np.interp(wave, f.wave[order], f.continuum[order])  # lowered in wings
     shape = SHAPES.get(fit.profile, fit.profile)
     y = sum(profile(shape, wave, np.array(p))[0] for p in fit.params)
     near = (f.segment == f.segment[rows[0]]) & (np.nan_to_num(f.fwhm) > 0) & np.isfinite(f.depth)
     near &= (f.wave > fit.limits[0] - 3.0 * f.fwhm) & (f.wave < fit.limits[1] + 3.0 * f.fwhm)
-    near &= np.array(["integrated" not in words.split() for words in f.flags], dtype=bool)
+    near &= plain
     near[rows] = False
     others = np.c_[f.depth[near], f.wave[near], np.log(f.fwhm[near] / FWHM_PER_SIGMA)]
     return wave, level * (1.0 - y - component_sum(wave, others))

@@ -102,6 +102,11 @@ class Engine:
         if self._child is child:
             self._child = None
 
+    @property
+    def busy(self) -> bool:
+        """Whether a call is under way."""
+        return self._turn.locked()
+
     def stop(self, target: str | None = None) -> None:
         """Ends the call under way at once; the next call starts a new process.
 

@@ -67,5 +67,6 @@ def warm() -> bool:
     """Loads what a solve will need, so that the first one starts at once."""
     from ..lines.loading import load_catalogue
 
-    importlib.import_module("linewright.job.solve")
+    for name in ("linewright.job.solve", "scipy.optimize"):
+        importlib.import_module(name)
     return len(load_catalogue()) > 0

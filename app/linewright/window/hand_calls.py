@@ -13,8 +13,9 @@ def call(engine, target: str, *arguments):
 
 
 def free_engine(bench):
-    """None while the engine's process is solving: short work is done in a thread then."""
-    return None if bench.tasks.busy("solve") else bench.engine
+    """None while the engine's process is at work: a drag does not wait for it, short work is
+    done in a thread then."""
+    return None if bench.tasks.busy("solve") or bench.engine.busy else bench.engine
 
 
 def ready_to_fit(lean, stretch):

@@ -24,6 +24,8 @@ MOUSE = (
     ("wheel", "zoom the wavelength about the pointer; with Shift, the flux"),
     ("drag", "move along the spectrum; in the strip on top, move or resize the bracket"),
     ("click on a feature", "select it everywhere"),
+    ("drag a bracket of the selected feature", "set the limits of its fit; the curve follows"),
+    ("drag a diamond", "move a continuum anchor (Fit menu, Continuum anchors)"),
     ("click on a bare trough or peak", "measure it and add it to the Ledger"),
 )
 WORDS = (

@@ -6,12 +6,14 @@ import numpy as np
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen
 
+from .fit_limits import say_in
 from .handled_lane import Grip
 from .marks import marker_polygon
 
 REACH = 9.0  # logical pixels about an anchor in which it can be taken
 ON_LINE = 8.0  # logical pixels from the continuum at which a click means it
-APART = 12.0  # anchors nearer to one another in the view are dots that cannot be taken
+ROOM = 1.06  # of the highest anchor, so that it can be raised
+APART = 20.0  # anchors nearer to one another in the view are dots that cannot be taken
 HINT = "Continuum anchors: drag one, click the continuum to add, Alt+Del removes the chosen"
 CROWDED = "Continuum anchors: zoom in to move them"
 
@@ -47,8 +49,8 @@ class AnchorPoints(Grip):
 
     def drag(self, held: int, point: QPointF, lane, final: bool) -> None:
         self.chosen = held
-        self._act("drop" if final else "drag", held, float(lane.wave_at(point.x())),
-                  float(lane.flux_at(point.y())))
+        flux = float(np.clip(lane.flux_at(point.y()), *lane.flux_shown))  # it stays in view
+        self._act("drop" if final else "drag", held, float(lane.wave_at(point.x())), flux)
 
     def clicked(self, held, point: QPointF, lane) -> bool:
         if held is not None:
@@ -79,14 +81,9 @@ class AnchorPoints(Grip):
             painter.drawPolygon(marker_polygon("diamond", px, py, size * frame.ratio))
         painter.setBrush(Qt.BrushStyle.NoBrush)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
-        self._hint(painter, frame, theme, HINT if apart else CROWDED)
+        say_in(painter, frame, 0.0, HINT if apart else CROWDED, theme)
 
-    def _hint(self, painter: QPainter, frame, theme, words: str) -> None:
-        painter.save()
-        font = painter.font()
-        font.setPixelSize(max(1, round(12 * frame.ratio)))
-        painter.setFont(font)
-        painter.setPen(QColor(theme.muted))
-        painter.drawText(QPointF(frame.scale.origin + 8 * frame.ratio,
-                                 frame.top + 16 * frame.ratio), words)
-        painter.restore()
+    def headroom(self, low: float, high: float) -> float | None:
+        """Flux that must be in view for the anchors between low and high to be moved."""
+        inside = self.value[(self.wave >= low) & (self.wave <= high)] if self.shown else ()
+        return float(np.max(inside)) * ROOM if len(inside) else None

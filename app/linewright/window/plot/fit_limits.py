@@ -61,7 +61,7 @@ class FitLimits(Grip):
             if -1e4 < x < 3e4:
                 _bracket(painter, frame, (np.floor(x) + 0.5, side), colour, QColor(theme.base))
         if self.words:
-            _say(painter, frame, 0.5 * (low + high), self.words, theme)
+            say_in(painter, frame, 0.5 * (low + high), self.words, theme)
 
 
 def _bracket(painter: QPainter, frame, place, colour: QColor, ground: QColor) -> None:
@@ -81,16 +81,18 @@ def _bracket(painter: QPainter, frame, place, colour: QColor, ground: QColor) ->
     painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
 
 
-def _say(painter: QPainter, frame, x: float, words: str, theme) -> None:
-    """A line of words above the foot, between the brackets or as near as it finds room."""
+def say_in(painter: QPainter, frame, x: float, words: str, theme) -> None:
+    """A line of words in a box above the foot, its middle at ``x`` or as near as it finds
+    room."""
     painter.save()
     font = painter.font()
     font.setPixelSize(max(1, round(12 * frame.ratio)))
     painter.setFont(font)
     box = painter.fontMetrics().boundingRect(words)
     width, height = box.width() + 12 * frame.ratio, box.height() + 6 * frame.ratio
-    left = min(max(x - width / 2, frame.scale.origin), frame.scale.origin + frame.scale.width - width)
-    place = QRectF(left, frame.bottom - height - 8 * frame.ratio, width, height)
+    first, last = frame.scale.origin, frame.scale.origin + frame.scale.width - width
+    left = max(min(x - width / 2, last), first)
+    place = QRectF(left, frame.bottom - height - 4 * frame.ratio, width, height)
     painter.setPen(QPen(QColor(theme.edge), frame.ratio))
     painter.setBrush(QColor(theme.raised))
     painter.drawRect(place)

@@ -31,6 +31,9 @@ class Grip:
         """A click; True when it was meant for this. held: as ``at`` gave it."""
         return False
 
+    def headroom(self, low: float, high: float) -> float | None:
+        """Flux that the automatic scale must reach for it between two wavelengths."""
+
     def paint(self, painter, frame, theme) -> None:
         """Draw in device pixels."""
 
@@ -44,6 +47,11 @@ class HandledLane(NavigableLane):
         self._held: tuple | None = None
         self._moved = False
         self.setMouseTracking(True)
+
+    @property
+    def held(self) -> bool:
+        """Whether something is being dragged: the flux scale stands still meanwhile."""
+        return self._held is not None
 
     def _under(self, point: QPointF):
         for grip in reversed(self.grips):

@@ -140,9 +140,12 @@ class SpectrumPlot(HandledLane):
         """The user's range, or a calm automatic one: kept while the data still suit it."""
         if self.state.flux is not None:
             self.flux_shown = self.state.flux
+        if self.state.flux is not None or self.held:
             return self.flux_shown
         limits = self.item.flux_limits(reduced, scale)
         if limits is not None:
+            room = [grip.headroom(scale.low, scale.high) for grip in self.grips]
+            limits = limits[0], max([limits[1], *(flux for flux in room if flux is not None)])
             low, high = _with_headroom(*limits)
             shown_low, shown_high = self.flux_shown
             suits = shown_low <= limits[0] and limits[1] <= shown_high
