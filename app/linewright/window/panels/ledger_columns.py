@@ -81,7 +81,7 @@ def shown_species(claim) -> str:
 
 
 def ledger_columns(a: LedgerArrays) -> list[Column]:
-    """wavelength, claim, laboratory, velocity, depth, EW, fit, probability, standing, by, note"""
+    """wavelength, claim, laboratory, velocity, depth, EW, probability, standing, by, fit, note"""
     f = a.features
     return [
         Column("wavelength (Å)", "Fitted centre and its error, in the spectrum's own medium",
@@ -96,8 +96,6 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
                lambda i: words.depth(f.depth[i]), lambda: f.depth, True, 70),
         Column("EW (mÅ)", "Equivalent width and its error; negative in emission",
                lambda i: words.width(f.ew[i], f.ew_err[i]), lambda: f.ew, True, 132),
-        Column("fit", "Who fitted it: nothing for the machine, 'hand' for you, with the profile",
-               lambda i: a.fit[i], lambda: a.fit.astype(str), False, 100),
         Column("probability", "That the claimed species is the main contributor",
                lambda i: words.probability(a.probability[i]) if a.species[i] else "",
                lambda: a.probability, True, 86),
@@ -109,6 +107,8 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
         Column("flags", "What is remarkable about measurement and claim; the tip of a cell says "
                "what each word means", a.flags,
                lambda: np.array([a.flags(i) for i in range(len(a.wave))], dtype=str), False, 110),
+        Column("fit", "Who fitted it: nothing for the machine, 'hand' for you, with the profile",
+               lambda i: a.fit[i], lambda: a.fit.astype(str), False, 100),
         Column("note", "Your note on this feature",
                lambda i: a.note[i], lambda: a.note.astype(str), False, 160),
     ]
