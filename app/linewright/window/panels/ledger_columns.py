@@ -26,7 +26,6 @@ class LedgerArrays:
         self.standing = np.array([STANDINGS.index(c.standing) for c in claims], dtype=int)
         self.by = np.array([c.by for c in claims], dtype=object)
         self.note = np.array([c.note for c in claims], dtype=object)
-        self.fit = np.array([fitted_by(flags) for flags in f.flags], dtype=object)
 
     def take_claims(self, session: Session) -> np.ndarray | None:
         """Takes over the claims that differ, in place; returns their rows.
@@ -45,8 +44,9 @@ class LedgerArrays:
         return rows
 
     def flags(self, i: int) -> str:
-        """Of the measurement and of the claim, each once."""
-        return " ".join(dict.fromkeys(f"{self.features.flags[i]} {self.claims[i].flags}".split()))
+        """Of the measurement and of the claim, each once; a person's hand first."""
+        named = dict.fromkeys(f"{self.features.flags[i]} {self.claims[i].flags}".split())
+        return " ".join(sorted(named, key=lambda word: word != "hand"))
 
     def _take(self, i: int, session: Session) -> None:
         claim = session.claims[i]
@@ -56,18 +56,6 @@ class LedgerArrays:
         self.species[i], self.probability[i] = shown_species(claim), claim.probability
         self.standing[i] = STANDINGS.index(claim.standing)
         self.by[i], self.note[i] = claim.by, claim.note
-
-
-PROFILES = {"voigt": "Voigt", "rotational": "rotational", "core-wings": "core + wings",
-            "double-peaked": "double-peaked", "p-cygni": "P Cygni"}
-
-
-def fitted_by(flags: str) -> str:
-    """'hand' and the profile where a person picked or fitted; nothing for the machine."""
-    named = flags.split()
-    if "hand" not in named:
-        return ""
-    return ", ".join(["hand", *(PROFILES[w] for w in named if w in PROFILES)])
 
 
 def shown_species(claim) -> str:
@@ -81,7 +69,7 @@ def shown_species(claim) -> str:
 
 
 def ledger_columns(a: LedgerArrays) -> list[Column]:
-    """wavelength, claim, laboratory, velocity, depth, EW, probability, standing, by, fit, note"""
+    """wavelength, claim, laboratory, velocity, depth, EW, probability, standing, by, note"""
     f = a.features
     return [
         Column("wavelength (Å)", "Fitted centre and its error, in the spectrum's own medium",
@@ -107,8 +95,6 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
         Column("flags", "What is remarkable about measurement and claim; the tip of a cell says "
                "what each word means", a.flags,
                lambda: np.array([a.flags(i) for i in range(len(a.wave))], dtype=str), False, 110),
-        Column("fit", "Who fitted it: nothing for the machine, 'hand' for you, with the profile",
-               lambda i: a.fit[i], lambda: a.fit.astype(str), False, 100),
         Column("note", "Your note on this feature",
                lambda i: a.note[i], lambda: a.note.astype(str), False, 160),
     ]
