@@ -135,3 +135,16 @@ def test_few_shallow_lines_are_searched_for_at_their_own_width(resolution):
     assert np.median(measured.segments[0].width_pixels) == pytest.approx(3.0, rel=0.25)
     f = measured.features
     assert np.mean([np.min(np.abs(f.wave - c)) < 0.7 * lines.fwhm for c in centres]) >= 0.97
+
+
+def test_noise_correlated_in_a_crowd_is_not_taken_for_lines_nor_lines_for_noise():
+    """One line per 3 FWHM, noise 1 per cent smoothed over 1 and 1.5 samples, no array: the
+    estimate keeps within a factor 1.7 of the truth, and says that it is one."""
+    for blur in (1.0, 1.5):
+        spectrum, _ = Lines(12.0, 0.3, 100.0, 200, 3.0, blur, 1).build()
+        measured = measure_spectrum(spectrum)
+        noise = float(np.median(measured.segments[0].noise))
+        assert 0.01 / 1.7 < noise < 0.017, blur
+        assert any("no uncertainty array" in w for w in measured.warnings)
+        with_errors, _ = Lines(12.0, 0.3, 100.0, 200, 3.0, blur, 1).build(True)
+        assert not measure_spectrum(with_errors).warnings

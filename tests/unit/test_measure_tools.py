@@ -20,6 +20,7 @@ from linewright.measure import (
     remove_anchor,
     rest_width,
     upper_limit,
+    upper_limits,
 )
 
 
@@ -35,6 +36,21 @@ def test_upper_limit_has_the_fisher_coefficient():
     assert np.isnan(upper_limit(measured, 9000.0))
     both = upper_limit(measured, np.array([5300.0, 4000.0]), fwhm)
     assert both[0] == pytest.approx(3e3 * sigma, rel=0.1) and np.isnan(both[1])
+
+
+def test_upper_limits_of_a_moving_source_are_those_of_its_own_frame():
+    """W_rest = W / (1 + v/c); widths in km/s, none below the narrowest lines'."""
+    n, step = 40_000, 0.02
+    wave = 5000 + step * np.arange(n)
+    flux = 1 + np.random.default_rng(3).standard_normal(n) / 100
+    measured = measure_spectrum(spectrum_of(wave, flux, np.full(n, 0.01)))
+    z = 30_000 / 299792.458
+    rest = np.array([5200.0, 5300.0, 9000.0]) / (1 + z)
+    own = upper_limits(measured, rest, 30_000.0, 50.0)
+    there = upper_limit(measured, rest * (1 + z), rest * (1 + z) * 50.0 / 299792.458)
+    assert own[:2] == pytest.approx(there[:2] / (1 + z), rel=1e-12) and np.isnan(own[2])
+    least = upper_limits(measured, rest, 30_000.0)
+    assert upper_limits(measured, rest, 30_000.0, 1e-3)[:2] == pytest.approx(least[:2], rel=1e-12)
 
 
 def test_upper_limit_is_three_sigma_of_what_noise_gives():

@@ -1,18 +1,32 @@
-"""Noise, pseudo-continuum, features and their profiles."""
+"""Noise, pseudo-continuum, features and their profiles; each name is imported when used."""
 
-from .again import Differences, differences, measure_again
-from .anchors import Anchors, add_anchor, anchors_of, move_anchor, refit, remove_anchor
-from .by_hand import fit_profile, measure_at
-from .core import measure_spectrum
-from .features import FeatureTable
-from .features_from import features_from_columns
-from .limits import EquivalentWidth, equivalent_width, rest_width, upper_limit
-from .options import Measurement, MeasureOptions
-from .region import RegionFit, choose_region, fit_region
+from importlib import import_module
 
-__all__ = [
-    "Anchors", "Differences", "EquivalentWidth", "FeatureTable", "MeasureOptions", "Measurement",
-    "RegionFit", "add_anchor", "anchors_of", "choose_region", "differences", "equivalent_width",
-    "features_from_columns", "fit_profile", "fit_region", "measure_again", "measure_at",
-    "measure_spectrum", "move_anchor", "refit", "remove_anchor", "rest_width", "upper_limit",
-]
+_PLACES = {
+    "again": ("Differences", "differences", "measure_again"),
+    "anchors": ("Anchors", "add_anchor", "anchors_of", "move_anchor", "refit", "remove_anchor"),
+    "by_hand": ("fit_profile", "measure_at"),
+    "core": ("measure_spectrum",),
+    "features": ("FeatureTable",),
+    "features_from": ("features_from_columns",),
+    "limits": (
+        "EquivalentWidth", "equivalent_width", "rest_width", "upper_limit", "upper_limits",
+    ),
+    "options": ("Measurement", "MeasureOptions"),
+    "region": ("RegionFit", "choose_region", "fit_region"),
+}
+_WHERE = {name: place for place, names in _PLACES.items() for name in names}
+
+__all__ = sorted(_WHERE)
+
+
+def __getattr__(name: str):
+    if name not in _WHERE:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    value = getattr(import_module(f".{_WHERE[name]}", __name__), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__():
+    return sorted({*globals(), *__all__})

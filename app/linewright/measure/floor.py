@@ -23,6 +23,8 @@ SLIGHT = 0.63  # ratio of the first two bands that lines two samples wide may br
 SHARE = 0.08  # independent values of |band| per sample, as its median's scatter has it
 LEAST = 150  # samples below which no verdict is reached
 BLOCK = 1500
+BLURS = np.linspace(0.05, 2.5, 99)  # samples
+DIGITS = 3.0  # times the rounding noise below which the highest frequencies may be that
 
 
 @dataclass(frozen=True, eq=False)
@@ -96,6 +98,28 @@ def blur_of(floor: Floor, sigma: np.ndarray) -> float:
     by_level = float(np.interp(-level, -top, grid))
     by_fall = float(np.interp(-floor.fall, -np.minimum.accumulate(top / below), grid))
     return by_level if 1 / 1.5 < by_level / by_fall < 1.5 else 0.0
+
+
+def largest_blur(floor: Floor | None, flux) -> float | None:
+    """Blur in samples that the fall towards the highest frequencies allows at most, for
+    lines only steepen that fall; None where nothing is said, as where the last digits of
+    the flux fill those frequencies."""
+    if floor is None or np.median(floor.sigma) < DIGITS * _digit(flux):
+        return None
+    top, below = np.array([[_passed(place, b) for b in BLURS] for place in BANDS[:2]])
+    blur = float(np.interp(-floor.fall, -np.minimum.accumulate(top / below), BLURS))
+    return blur if blur < BLURS[-1] else None
+
+
+def unblurred(floor: Floor, blur: float) -> np.ndarray:
+    """Whole noise, (n,), of which ``floor`` is what a blur left at the highest frequencies."""
+    return floor.sigma / _passed(BANDS[0], blur)
+
+
+def _digit(flux) -> float:
+    """Noise of rounding to the last digit: the smallest step between values over sqrt(12)."""
+    values = np.unique(flux)
+    return float(np.min(np.diff(values), initial=np.inf)) / np.sqrt(12.0) if len(values) > 1 else 0.0
 
 
 def _passed(place: float, b: float) -> float:

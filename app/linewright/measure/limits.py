@@ -10,6 +10,7 @@ from .by_hand import local_trace, segment_at
 from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA, Fit, Windows, profiles, spread_noise
 from .groups import component_sum
 
+C_KM_S = 299792.458
 AROUND = 1.5  # widths on either side of a line that is integrated
 
 
@@ -43,9 +44,34 @@ def upper_limit(measurement, wave, width=None, sigmas: float = 3.0):
     return np.where(covered, out, np.nan)
 
 
+def upper_limits(measurement, wavelengths_rest, velocity: float = 0.0, width=None,
+                 sigmas: float = 3.0) -> np.ndarray:
+    """Rest-frame equivalent widths in milliangstrom below which lines would stay unseen, (n,).
+
+    measurement: Measurement; wavelengths_rest: vacuum Angstrom in the source's frame, (n,);
+    velocity: of the source in the spectrum's frame, km/s; width: FWHM expected there, km/s,
+    number or (n,), no less than the narrowest lines' (None: theirs); sigmas: confidence.
+    NaN outside the coverage. Formula and errors: ``upper_limit``.
+    """
+    wave = np.atleast_1d(np.asarray(wavelengths_rest, dtype=float)) * (1.0 + velocity / C_KM_S)
+    if width is not None:
+        width = np.fmax(wave * np.asarray(width, dtype=float) / C_KM_S, _narrowest(measurement, wave))
+    return rest_width(upper_limit(measurement, wave, width, sigmas), velocity)
+
+
+def _narrowest(measurement, wave) -> np.ndarray:
+    """FWHM in Angstrom of the narrowest lines, (n,); NaN outside the segments."""
+    out = np.full(wave.shape, np.nan)
+    for s in measurement.segments:
+        if s is not None:
+            inside = (wave >= s.node_wave[0]) & (wave <= s.node_wave[-1])
+            out = np.where(inside, np.fmin(out, s.width_at(wave)), out)
+    return out
+
+
 def rest_width(ew, velocity: float):
     """Equivalent width in the source's rest frame: W / (1 + v/c); velocity in km/s."""
-    return np.asarray(ew) / (1.0 + velocity / 299792.458)
+    return np.asarray(ew) / (1.0 + velocity / C_KM_S)
 
 
 @dataclass(frozen=True)

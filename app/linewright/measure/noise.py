@@ -188,11 +188,16 @@ def estimate_noise(flux, good, runs, quiet=None, longest=16.0, sure=False) -> No
     sigma = _local(_values(flux, free, runs, lag, profile), flux, lag)
     if free is not good:
         # where nothing is quiet: the shortest lag, least touched by lines
-        r = np.r_[correlation, 0.0, 0.0]
-        short = _differences(flux, good, runs, 1) / np.sqrt((6 - 8 * r[1] + 2 * r[2]) / 6)
-        bound = _local(short, flux, lag)
+        bound = short_scatter(flux, good, runs, np.r_[correlation, 0.0, 0.0], lag)
         sigma = np.where(np.isfinite(sigma), np.minimum(sigma, 1.5 * bound), bound)
     return Noise(sigma, correlation, lag, like)
+
+
+def short_scatter(flux, good, runs, r, lag: int = 1) -> np.ndarray:
+    """Noise, (n,), from the scatter of second differences at lag 1, which lines raise least;
+    r: the noise's autocorrelation at lags 0, 1, 2, ...; lag: stretches the blocks."""
+    short = _differences(flux, good, runs, 1) / np.sqrt((6 - 8 * r[1] + 2 * r[2]) / 6)
+    return _local(short, flux, lag)
 
 
 def _values(flux, free, runs, lag, profile):

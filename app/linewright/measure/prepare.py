@@ -8,11 +8,11 @@ import numpy as np
 
 from .continuum import Spacing, smooth_run
 from .detect import run_filters
-from .floor import Floor, blur_of, blurred, noise_floor
+from .floor import Floor, blur_of, blurred, largest_blur, noise_floor, unblurred
 from .given import scale_of
 from .groups import Trace
 from .methods import method_of
-from .noise import Noise, estimate_noise
+from .noise import Noise, estimate_noise, short_scatter
 from .options import MeasureOptions, SegmentMeasure
 from .spikes import (
     UNSURE, Spikes, bridged, few, find_spikes, in_absorption, joined, none_found, upward,
@@ -21,6 +21,7 @@ from .stretches import stretches, usable
 from .veil import veil
 from .width import measure_width
 
+FAR = 2.5
 AGREE = (0.9, 1.15)  # noise over its floor that sure noise may have
 
 
@@ -37,7 +38,8 @@ def _chosen(segment, ranges):
 @dataclass(frozen=True, eq=False)
 class Raw:
     """Samples of a segment with holes bridged, (n,); runs: stretches of 30 samples or more;
-    given: the uncertainty array or None; floor: noise at the highest frequencies."""
+    given: the uncertainty array or None; floor: noise at the highest frequencies; blur:
+    sigma in samples of the largest smoothing of the noise that is possible, None: unknown."""
 
     wave: np.ndarray
     flux: np.ndarray
@@ -45,6 +47,7 @@ class Raw:
     runs: list
     given: np.ndarray | None
     floor: Floor | None
+    blur: float | None
 
 
 @dataclass(frozen=True, eq=False)
@@ -89,8 +92,15 @@ def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None)
     tick()
     noise, sure = _second_noise(raw, first, noise)
     tick()
+    if far_fetched(noise, raw):
+        noise = sensible(noise, raw)
+        width = _assumed_width(raw.wave, noise.lag, options)
+        first = _level(raw, believed(raw, noise, width / step, False)[0], width, noise, options)
+        noise, sure = _second_noise(raw, first, noise)
+        noise = sensible(noise, raw) if far_fetched(noise, raw) else noise
+        tick()
     sigma, note = believed(raw, noise, first.width / step, sure)
-    warnings += note
+    warnings += note + doubts(raw, sure)
     if raw.given is not None and noise.lag == 1 and not sure:
         noise = _smoothed(noise, raw, sigma)
     last = _level(raw, sigma, first.width, noise, options)
@@ -118,7 +128,8 @@ def _raw(segment, options) -> Raw | None:
     given = None
     if segment.uncertainty is not None:
         given = np.interp(index, index[keep], segment.uncertainty[keep])
-    return Raw(segment.wave, flux, keep, runs, given, noise_floor(flux, keep, runs))
+    floor = noise_floor(flux, keep, runs)
+    return Raw(segment.wave, flux, keep, runs, given, floor, largest_blur(floor, flux[keep]))
 
 
 def _level(raw, sigma, width, noise, options) -> Level:
@@ -140,6 +151,31 @@ def _second_noise(raw, first: Level, noise) -> tuple[Noise, bool]:
     longest = max(1.0, float(np.median(pixels[raw.good])) * (0.85 if sure else 0.33))
     noise = estimate_noise(first.y, raw.good, raw.runs, quiet, longest, sure)
     return bounded(replace(noise, sigma=noise.sigma * first.run), raw, sure), sure
+
+
+def doubts(raw: Raw, sure: bool) -> list[str]:
+    """Words where neither an array nor samples free of lines nor the highest frequencies
+    tell the noise."""
+    if raw.given is not None or sure or raw.floor is not None and raw.floor.flat:
+        return []
+    return ["no uncertainty array and few samples free of lines: the noise is an estimate, "
+            "all errors and significances with it"]
+
+
+def far_fetched(noise: Noise, raw: Raw) -> bool:
+    """Whether the noise seems correlated over FAR times what its fall towards the highest
+    frequencies allows: dense lines may have been taken for noise."""
+    return raw.blur is not None and noise.lag > FAR * max(3.0, 3.5 * raw.blur)
+
+
+def sensible(noise: Noise, raw: Raw) -> Noise:
+    """The noise that the highest frequencies tell of, no more than the shortest differences
+    of the samples allow."""
+    r = blurred(raw.blur)
+    near = short_scatter(raw.flux, raw.good, raw.runs, np.r_[r, np.zeros(3)])
+    sigma = np.minimum(unblurred(raw.floor, raw.blur), near)
+    lag = max(1, len(r) // 2)
+    return Noise(sigma, r[: lag + 1], lag, True)
 
 
 def bounded(noise: Noise, raw: Raw, sure: bool = False) -> Noise:
