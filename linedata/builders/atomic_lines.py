@@ -6,7 +6,6 @@ Usage: python linedata/builders/atomic_lines.py SOURCE_DIR [--out FOLDER]
 from __future__ import annotations
 
 import gzip
-from functools import partial
 from pathlib import Path
 
 import numpy as np
@@ -15,14 +14,17 @@ from common import (
     EV_PER_CM, ORIGIN_CODE, air_to_vacuum, pack_lines, script_arguments, source_file, write_table,
 )
 from components import of_groups, pack
-from damping import van_der_waals
+from compact import compacted
+from damping import collisional_widths
 from decays import radiative_widths
 from level_gaps import allowed
 from nist_levels import read_levels
+from second_strengths import KEYS as STRENGTH_KEYS
+from second_strengths import second_strengths
 from ritz import CM_PER_EV, CM_PER_EV_LISTED, match_far, match_lines, match_shifted, sort_levels
 from symbols import ELEMENTS, ROMAN
 
-KEYS = ["Placco2021", "NIST_ASD"]
+KEYS = ["Placco2021", "NIST_ASD", *sorted({*STRENGTH_KEYS.values()} - {"NIST_ASD"})]
 LIST_AIR_LIMIT = 2000.0
 LONGEST = 25000.0
 # Hydrogen is remade from level energies; the rows of the list include deuterium. Isotopic
@@ -39,6 +41,9 @@ HYPERFINE = {
     "Sc": 0.014, "V": 0.006, "Mn": 0.012, "Co": 0.006, "Cu": 0.008, "Nb": 0.008, "La": 0.008,
     "Pr": 0.010, "Eu": 0.014, "Tb": 0.010, "Ho": 0.010, "Lu": 0.010, "Ta": 0.008, "Re": 0.010,
 }
+# Levels whose pairs are poorer than this share their lines' wavelengths with the list, whose error
+# for lines of such levels is the second number (cm-1; from their scatter about each other, Cr I).
+POOR_LEVELS, LIST_WITH_POOR = 0.06, 0.08
 E_LOW_SCALE = CM_PER_EV_LISTED / CM_PER_EV
 
 
@@ -136,17 +141,39 @@ def without_levels(ion: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     lines["listed"] = lines["wave"]
     lines["error"] = DEFAULT_SCATTER * lines["wave"] / 5000.0
     lines["ritz"] = np.zeros(n, bool)
-    for key in ("j_low", "j_up", "alt_shift", "gamma_rad", "gamma_waals"):
+    for key in ("j_low", "j_up", "alt_shift", "gamma_rad", "gamma_waals", "gamma_stark",
+                "loggf_alt_shift"):
         lines[key] = np.full(n, np.nan)
+    lines["source_loggf_alt"] = np.full(n, -1)
     lines["term_low"] = lines["term_up"] = np.full(n, "", dtype=object)
     return lines
 
 
-def with_levels(ion: dict[str, np.ndarray], levels, damped) -> dict[str, np.ndarray]:
-    """Lines of an ion, those with a level pair at their Ritz wavelengths.
+def share_poor(lines: dict[str, np.ndarray], found) -> None:
+    """Mean of list and Ritz value, weighted by their errors, where the levels are poor."""
+    wavenumber = np.nan_to_num(found.error * 1e8 / found.wave**2)
+    poor = lines["ritz"] & (wavenumber > POOR_LEVELS)
+    share = LIST_WITH_POOR**2 / (LIST_WITH_POOR**2 + wavenumber[poor] ** 2)
+    ritz, shift = found.wave[poor], lines["alt_shift"][poor]
+    lines["wave"] = lines["wave"].copy()
+    lines["wave"][poor] = ritz + (1.0 - share) * shift
+    lines["alt_shift"][poor] = share * shift
+    error = LIST_WITH_POOR * np.sqrt(1.0 - share) * ritz**2 * 1e-8
+    lines["error"][poor] = np.maximum(error, np.abs(share * shift) / 3.0)
 
-    damped(levels, matches): van der Waals damping of the lines.
-    """
+
+def add_second_strengths(lines: dict[str, np.ndarray], shift, kind) -> None:
+    """Enters the second log gf; a preferred one takes the place of the list's."""
+    preferred = kind == "preferred"
+    lines["loggf"] = lines["loggf"] + np.where(preferred, shift, 0.0)
+    lines["loggf_alt_shift"] = np.where(preferred, -shift, shift)
+    codes = {"": -1} | {word: KEYS.index(key) for word, key in STRENGTH_KEYS.items()}
+    codes["preferred"] = KEYS.index("Placco2021")
+    lines["source_loggf_alt"] = np.array([codes[word] for word in kind], int)
+
+
+def with_levels(ion: dict[str, np.ndarray], levels, source: Path, name) -> dict[str, np.ndarray]:
+    """Lines of an ion, name: (element, stage), those with a level pair at Ritz wavelengths."""
     groups = groups_of(ion, matched(levels, ion))
     lines = collapse(ion, groups)
     found = matched(levels, lines)
@@ -159,11 +186,13 @@ def with_levels(ion: dict[str, np.ndarray], levels, damped) -> dict[str, np.ndar
         ritz, np.maximum(found.error, np.abs(shift) / 3.0), scatter * listed / 5000.0
     )
     lines["wave"] = found.wave
-    lines["components"] = of_groups(ion, groups, found.wave)
+    share_poor(lines, found)
+    lines["components"] = of_groups(ion, groups, lines["wave"])
     energy = levels.energy[found.low] * EV_PER_CM
     lines["e_low"] = np.where(ritz, energy, lines["e_low"] * E_LOW_SCALE)
     lines["gamma_rad"] = radiative_widths(levels, found, lines)
-    lines["gamma_waals"] = damped(levels, found)
+    lines |= collisional_widths(source, name, levels, found)
+    add_second_strengths(lines, *second_strengths(source, name, levels, found, lines["loggf"]))
     for side, rows in (("low", found.low), ("up", found.up)):
         lines[f"j_{side}"] = np.where(ritz, levels.j[rows], np.nan)
         names = [levels.label(row) if row >= 0 else "" for row in rows]
@@ -171,14 +200,20 @@ def with_levels(ion: dict[str, np.ndarray], levels, damped) -> dict[str, np.ndar
     return lines
 
 
-def finish(ion: dict[str, np.ndarray], levels, hyperfine: float, damped) -> dict:
+def finish(ion: dict[str, np.ndarray], source: Path, name: tuple[str, int]) -> dict:
     """Lines of one ion with Ritz wavelengths, errors, J and terms where levels allow."""
-    lines = with_levels(ion, levels, damped) if levels else without_levels(ion)
-    shift = hyperfine * lines["listed"] / 5000.0
+    levels = read_levels(source, *name)
+    if levels:
+        lines = with_levels(ion, sort_levels(levels), source, name)
+    else:
+        lines = without_levels(ion)
+    shift = HYPERFINE.get(name[0], 0.0) * lines["listed"] / 5000.0
     lines["wave_err"] = np.sqrt(lines["error"] ** 2 + lines["spread"] ** 2 + shift**2)
     lines["source"] = lines["ritz"].astype(int)
     lines["source_alt"] = np.where(lines["ritz"], 0, -1)
-    lines["loggf_err"] = strength_error(lines["loggf"])
+    # The second log gf lies within three errors of the list's.
+    apart = np.abs(np.nan_to_num(lines["loggf_alt_shift"])) / 3.0
+    lines["loggf_err"] = np.maximum(strength_error(lines["loggf"]), np.ceil(100 * apart) / 100)
     return lines
 
 
@@ -192,10 +227,7 @@ def build(source: Path) -> tuple[dict, list[str], list[tuple[str, dict]]]:
             continue
         mine = (rows["z"] == z) & (rows["stage"] == stage)
         ion = without_repeats({key: values[mine] for key, values in rows.items()})
-        levels = read_levels(source, ELEMENTS[z - 1], stage)
-        hyperfine = HYPERFINE.get(ELEMENTS[z - 1], 0.0)
-        damped = partial(van_der_waals, source, (ELEMENTS[z - 1], stage))
-        lines = finish(ion, sort_levels(levels) if levels else None, hyperfine, damped)
+        lines = finish(ion, source, (ELEMENTS[z - 1], stage))
         lines["species"] = np.full(len(lines["wave"]), len(names))
         names.append(f"{ELEMENTS[z - 1]} {ROMAN[stage - 1]}")
         components.append((names[-1], lines.pop("components", {"parent": ()})))
@@ -209,7 +241,9 @@ def build(source: Path) -> tuple[dict, list[str], list[tuple[str, dict]]]:
 def main() -> None:
     arguments = script_arguments(__doc__.splitlines()[0])
     lines, names, components = build(arguments.source_dir)
-    write_table("atomic_lines", pack_lines(lines, names, KEYS), arguments.out)
+    core, details = compacted(pack_lines(lines, names, KEYS))
+    write_table("atomic_lines", core, arguments.out)
+    write_table("atomic_details", details, arguments.out)
     write_table("atomic_components", pack(components), arguments.out)
     share = np.mean(lines["source"] == 1)
     print(f"{len(lines['wave'])} lines of {len(names)} ions; {share:.1%} with Ritz wavelengths")

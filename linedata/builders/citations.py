@@ -21,6 +21,11 @@ ARTICLES = {
         "Partition functions and equilibrium constants for diatomic molecules and atoms of "
         "astrophysical interest",
     ),
+    "BatesDamgaard1949": (
+        "Bates, D. R. and Damgaard, A.", 1949,
+        "Philosophical Transactions of the Royal Society of London A", "242", "101",
+        "The Calculation of the Absolute Strengths of Spectral Lines",
+    ),
     "Bautista2001": ("Bautista, M. A.", 2001, "Astronomy and Astrophysics", "365", "268", ""),
     "Bautista2015": (
         "Bautista, M. A. and Fivet, V. and Ballance, C. and others", 2015,

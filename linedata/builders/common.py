@@ -29,8 +29,12 @@ _EPOCH = (1980, 1, 1, 0, 0, 0)
 
 
 def source_file(folder: Path, pattern: str) -> Path:
-    """The one file below ``folder`` that fits ``pattern``; raises FileNotFoundError."""
-    hits = sorted(Path(folder).glob(pattern))
+    """The one file below ``folder`` that fits ``pattern``; raises FileNotFoundError.
+
+    Source archives keep their package below src/, wheels do not; both are found.
+    """
+    package, _, rest = pattern.partition("/")
+    hits = [hit for part in ("", "src/") for hit in sorted(Path(folder).glob(f"{package}/{part}{rest}"))]
     if not hits:
         raise FileNotFoundError(f"{folder}: no {pattern}; unpack the source package there")
     return hits[0]

@@ -1,4 +1,4 @@
-"""Van der Waals damping of neutral atoms by hydrogen.
+"""Van der Waals damping of neutral atoms by hydrogen; Stark damping comes from stark.py.
 
 Cross sections of Anstee & O'Mara 1995 (MNRAS 276, 859), Barklem & O'Mara 1997 (290, 102) and
 Barklem, O'Mara & Ross 1998 (296, 1057), tables as carried by lightweaver 0.17.0, by effective
@@ -13,13 +13,12 @@ from pathlib import Path
 
 import numpy as np
 
-from common import EV_PER_CM, source_file
-from level_gaps import ORBITALS, allowed, occupation
-from level_physics import ionisation_energies
-from nist_levels import read_levels
+from common import source_file
+from electrons import Electron, jumping_electron
+from level_gaps import ORBITALS
+from stark import stark_width
 from symbols import ELEMENTS
 
-RYDBERG = 109737.31568
 # lower and higher l: (file, first effective quantum number of either)
 TABLES = {"sp": ("sp", 1.0, 1.3), "pd": ("pd", 1.3, 2.3), "df": ("df", 2.3, 3.3)}
 STEP = 0.1
@@ -67,45 +66,27 @@ def log_gamma(source: Path, kind: str, low: float, high: float, mass: float) -> 
     return float(np.log10(2 * width * (mean / SPEED) ** (1 - alpha)))
 
 
-def core_energies(source: Path, element: str, stage: int) -> dict[frozenset, float]:
-    """Lowest level (cm-1) of the next ion by occupied orbitals."""
-    levels = read_levels(source, element, stage + 1)
-    found: dict[frozenset, float] = {}
-    for k in range(len(levels) if levels else 0):
-        key = frozenset(occupation(levels.configuration[k]).items())
-        found[key] = min(found.get(key, np.inf), levels.energy[k])
-    return found
+def van_der_waals(source: Path, ion: tuple[str, int], electron: Electron | None) -> float:
+    """log10 gamma per hydrogen atom at 10,000 K of a line; NaN where the theory is silent.
 
-
-def van_der_waals(source: Path, ion: tuple[str, int], levels, matches) -> np.ndarray:
-    """log10 gamma per hydrogen atom at 10,000 K of each line; NaN where the theory is silent.
-
-    Neutral atoms only; the jumping electron's effective quantum numbers follow from the
-    ionisation energy and the lowest level of the core it leaves behind.
+    Neutral atoms only.
     """
-    result = np.full(len(matches.low), np.nan)
-    if ion[1] != 1:
-        return result
-    z = ELEMENTS.index(ion[0])
-    limit = ionisation_energies(source)[z, 0] / EV_PER_CM
+    if ion[1] != 1 or electron is None:
+        return float("nan")
     # The mass enters through the reduced mass with hydrogen only: 2.15 Z is good to 0.2 %.
-    cores, mass = core_energies(source, *ion), 2.15 * (z + 1)
+    mass = 2.15 * (ELEMENTS.index(ion[0]) + 1)
+    ends = sorted(((electron.l_low, electron.n_low), (electron.l_up, electron.n_up)))
+    kind = ORBITALS[ends[0][0]] + ORBITALS[ends[1][0]]
+    return log_gamma(source, kind, ends[0][1], ends[1][1], mass) if kind in TABLES else float("nan")
+
+
+def collisional_widths(source: Path, ion: tuple[str, int], levels, matches) -> dict[str, np.ndarray]:
+    """gamma_waals and gamma_stark (log10, 10,000 K) of lines with a level pair, else NaN."""
+    n = len(matches.low)
+    widths = {"gamma_waals": np.full(n, np.nan), "gamma_stark": np.full(n, np.nan)}
     for k in np.flatnonzero(matches.low >= 0):
         low, up = int(matches.low[k]), int(matches.up[k])
-        gone, _, come = allowed(levels, low, up).partition("-")
-        if not come:
-            continue
-        core = occupation(levels.configuration[low])
-        core[gone] -= 1
-        key = frozenset((o, n) for o, n in core.items() if n)
-        free = limit + cores.get(key, 0.0)
-        if levels.energy[up] > free - 100.0:
-            continue
-        electrons = sorted(
-            (ORBITALS.index(o[-1]), float(np.sqrt(RYDBERG / (free - levels.energy[row]))))
-            for o, row in ((gone, low), (come, up))
-        )
-        kind = ORBITALS[electrons[0][0]] + ORBITALS[electrons[1][0]]
-        if kind in TABLES:
-            result[k] = log_gamma(source, kind, electrons[0][1], electrons[1][1], mass)
-    return result
+        electron = jumping_electron(source, ion, levels, low, up)
+        widths["gamma_waals"][k] = van_der_waals(source, ion, electron)
+        widths["gamma_stark"][k] = stark_width(electron, ion[1])
+    return widths

@@ -126,13 +126,17 @@ def line_pairs(source: Path) -> list[dict[str, float]]:
                 if not np.isfinite(gf):
                     main = 1e8 / (up.energy - low.energy)
                     gf = _published_gf(main, table) / 8 if part == "zero" else np.nan
-                if not np.isfinite(gf):
-                    gf, error = _coulomb_gf(low, up) * share, 0.08
+                computed, apart = _coulomb_gf(low, up) * share, np.nan
+                if np.isfinite(gf):
+                    apart = float(np.log10(computed / gf))
+                    error = max(error, float(np.ceil(100 * abs(apart) / 3.0)) / 100)
+                else:
+                    gf, error = computed, 0.08
                 uncertain = wave**2 * 1e-8 * np.hypot(low.error, up.error)
                 lines.append({
                     "wave": wave, "wave_err": float(np.hypot(uncertain, 4e-7 * wave)),
                     "e_low": low.energy / 8065.543937, "loggf": float(np.log10(gf)),
-                    "loggf_err": error, "spread": 0.0,
+                    "loggf_err": error, "spread": 0.0, "loggf_alt_shift": apart,
                     "term_low": low.label, "term_up": up.label,
                     "weight": up.multiplicity / 4, "n_up": up.n, "l_up": up.ell,
                 })

@@ -13,7 +13,7 @@ from helium import line_pairs
 from hydrogenic import HELIUM_II, HYDROGEN, centroid, centroid_error, components
 
 NAMES = ["H I", "He I", "He II"]
-KEYS = ["Hydrogenic", "NIST_ASD"]
+KEYS = ["Hydrogenic", "NIST_ASD", "BatesDamgaard1949"]
 SHORTEST, LONGEST = 1200.0, 25000.0
 COLUMNS = ("wave", "wave_err", "e_low", "loggf", "loggf_err", "spread")
 HIGHEST = {"H I": 40, "He II": 30}
@@ -53,6 +53,9 @@ def main() -> None:
     sizes = [len(group) for group in groups]
     lines["species"] = np.repeat(np.arange(3), sizes)
     lines["source"] = np.repeat([0, 1, 0], sizes)
+    # He I: the Coulomb approximation beside the published transition probability.
+    lines["loggf_alt_shift"] = np.array([row.get("loggf_alt_shift", np.nan) for row in rows])
+    lines["source_loggf_alt"] = np.where(np.isfinite(lines["loggf_alt_shift"]), 2, -1)
     lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
     write_table("hydrogen_helium", pack_lines(lines, NAMES, KEYS), arguments.out)
     kept = [

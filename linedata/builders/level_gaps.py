@@ -13,11 +13,13 @@ same ion and kind of jump, grade E, good to about 1 dex.
 from __future__ import annotations
 
 import re
+from functools import lru_cache
 from pathlib import Path
 
 import numpy as np
 
 from common import EV_PER_CM, ORIGIN_CODE, TABLES, pack_lines, script_arguments, write_table
+from linewright.lines.loading import read_table
 from level_pairs import TERM_LETTERS, permitted_lines
 from level_physics import ionisation_energies
 from nist_levels import Levels, read_levels
@@ -46,6 +48,7 @@ def occupation(configuration: str) -> dict[str, int]:
     return found
 
 
+@lru_cache(maxsize=None)
 def jump(low: str, up: str) -> str:
     """'4p-5s' where one electron moves with Delta l = 1 between two configurations, else ''."""
     first, second = occupation(low), occupation(up)
@@ -158,11 +161,11 @@ def known_lines(folder: Path, name: str) -> dict[str, np.ndarray]:
     """wave, e_low, loggf of one species in the finished tables of permitted lines."""
     parts = []
     for table in ("atomic_lines", "level_lines"):
-        with np.load(folder / f"{table}.npz") as stored:
-            names = [str(n) for n in stored["species_names"]]
-            if name in names:
-                mine = stored["species"] == names.index(name)
-                parts.append({k: stored[k][mine].astype(float) for k in ("wave", "e_low", "loggf")})
+        stored = read_table(folder, table)
+        names = [str(n) for n in stored["species_names"]]
+        if name in names:
+            mine = stored["species"] == names.index(name)
+            parts.append({k: stored[k][mine].astype(float) for k in ("wave", "e_low", "loggf")})
     return {key: np.concatenate([part[key] for part in parts]) for key in parts[0]}
 
 

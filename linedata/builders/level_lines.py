@@ -13,10 +13,13 @@ import numpy as np
 from common import (
     EV_PER_CM, ORIGIN_CODE, TABLES, air_to_vacuum, pack_lines, script_arguments, write_table,
 )
+from electrons import Electron
+from linewright.lines.loading import read_table
 from level_pairs import permitted_lines
 from level_physics import ionisation_energies
 from nist_levels import read_levels
 from published_strengths import FORBIDDEN, PUBLISHED, SOURCES
+from stark import stark_width
 from symbols import ELEMENTS, ROMAN
 
 IONS = [
@@ -94,6 +97,9 @@ def ion_lines(source: Path, element: str, stage: int, energies: np.ndarray) -> l
     published = ritz_of_published(source, (element, stage))
     taken = np.array([line["wave"] for line in published])
     lines = [line for line in lines if not np.any(np.abs(taken - line["wave"]) < 0.003)]
+    for line in lines:
+        low, up = line["low"], line["up"]
+        line["gamma_stark"] = stark_width(Electron(low.ell, up.ell, low.n_eff, up.n_eff), stage)
     lines += published
     poor = POOR_LEVELS.get((element, stage), 0.0)
     for line in lines:
@@ -106,8 +112,7 @@ def main() -> None:
     source = arguments.source_dir
     energies = ionisation_energies(source)
     rows, names = [], []
-    with np.load((arguments.out or TABLES) / "atomic_lines.npz") as table:
-        listed = {key: table[key] for key in table.files}
+    listed = read_table(arguments.out or TABLES, "atomic_lines")
     for element, stage in IONS:
         name = f"{element} {ROMAN[stage - 1]}"
         waves, lows = _listed(name, listed)
@@ -128,6 +133,7 @@ def main() -> None:
     lines = {key: np.array([row[key] for row in rows]) for key in columns}
     for key in ("term_low", "term_up"):
         lines[key] = np.array([row.get(key, "") for row in rows], dtype=object)
+    lines["gamma_stark"] = np.array([row.get("gamma_stark", np.nan) for row in rows])
     lines["nominal"] = np.array([row.get("nominal", False) for row in rows])
     lines["origin"] = np.full(len(rows), ORIGIN_CODE["stellar"])
     lines["source"] = np.array([KEYS.index(row.get("key", "NIST_ASD")) for row in rows])

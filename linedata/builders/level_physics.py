@@ -6,6 +6,7 @@ Usage: python linedata/builders/level_physics.py SOURCE_DIR [--out FOLDER]
 from __future__ import annotations
 
 import pickle
+from functools import lru_cache
 from pathlib import Path
 
 import numpy as np
@@ -35,6 +36,7 @@ def barklem_collet(source: Path) -> dict[str, np.ndarray]:
     return {row[0]: np.array(row[1:], float) for row in rows if len(row) == len(BARKLEM_T) + 1}
 
 
+@lru_cache(maxsize=None)
 def ionisation_energies(source: Path) -> np.ndarray:
     """(92, STAGES) energies in eV; NaN where the table has none."""
     path = source_file(source, "exojax*/exojax/data/atom/NIST_Atomic_Ionization_Energies.txt")

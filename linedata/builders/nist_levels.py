@@ -13,7 +13,7 @@ from pathlib import Path
 import numpy as np
 
 from common import source_file
-from levels_beyond import beyond
+from levels_beyond import LEAST_ERROR, beyond
 
 # Error of a level in units of its last printed digit: rounding (0.29) and a little more.
 ROUNDING = 0.35
@@ -83,9 +83,10 @@ def read_levels(source: Path, element: str, stage: int) -> Levels | None:
         return None
     top = max(row[0] for row in rows)
     for configuration, term, j, text in beyond(element, stage):
-        level = _energy(text)
-        if level[0] > top or element == "O":
-            rows.append((*level, _spin(j), "*" in term, configuration, term))
+        energy, error = _energy(text)
+        if energy > top or element == "O":
+            error = max(error, LEAST_ERROR.get((element, stage), 0.0))
+            rows.append((energy, error, _spin(j), "*" in term, configuration, term))
     energy, error, j, odd, conf, terms = zip(*rows, strict=True)
     return Levels(
         np.array(energy), np.array(error), np.array(j), np.array(odd), np.array(conf),

@@ -4,17 +4,15 @@ from __future__ import annotations
 
 import numpy as np
 
+from linewright.lines.packed import grade_codes
 from merging import merge
 from nonlte import mark_nonlte
 
-# Grades of a log gf (or transition probability) by its stated error in dex; '' unknown.
-GRADES = ("", "A", "B", "C", "D", "E")
-GRADE_LIMITS = (0.05, 0.12, 0.25, 0.5)
 FLAG_NONLTE, FLAG_NOMINAL, FLAG_COLLAPSED = 1, 2, 4
 _FLOATS = {
     "e_low": "<f4", "loggf": "<f4", "loggf_err": "<f2", "emission": "<f2", "depth_ref": "<f4",
     "spread": "<f2", "alt_shift": "<f2", "gamma_rad": "<f2",
-    "gamma_waals": "<f2",
+    "gamma_waals": "<f2", "gamma_stark": "<f2", "loggf_alt_shift": "<f2",
 }
 
 
@@ -24,14 +22,6 @@ def _used(codes, names: list[str]) -> tuple[np.ndarray, list[str]]:
     present = np.unique(codes[codes >= 0])
     recoded = np.where(codes >= 0, np.searchsorted(present, codes), -1)
     return recoded, [names[code] for code in present]
-
-
-def grade_codes(error, nominal=None) -> np.ndarray:
-    """Index into GRADES of strength errors (dex); 0 where there is none, 5 where nominal."""
-    error = np.asarray(error, float)
-    code = 1 + np.searchsorted(GRADE_LIMITS, np.nan_to_num(error, nan=9.0) - 1e-6)
-    code = np.where(np.isfinite(error), code, 0)
-    return code if nominal is None else np.where(nominal, 5, code)
 
 
 def _terms(lines: dict, order: np.ndarray) -> dict[str, np.ndarray]:
@@ -61,22 +51,26 @@ def pack_lines(lines: dict[str, np.ndarray], names: list[str], keys: list[str]) 
     """Stored columns of a line table, repeats merged, sorted by wavelength.
 
     ``lines`` holds wave, wave_err, species, origin, source and any of the columns of _FLOATS,
-    j_low, j_up, term_low, term_up ('configuration|term'), source_alt (-1 none), nominal.
+    j_low, j_up, term_low, term_up ('configuration|term'), source_alt and source_loggf_alt (-1
+    none), nominal.
     Columns without a single value are left out.
     """
     lines = dict(lines) if "depth_ref" in lines else dict(merge(lines))
     lines["species"], names = _used(lines["species"], names)
     n = len(lines["wave"])
     blank = np.full(n, np.nan)
-    alternative = np.asarray(lines.get("source_alt", np.full(n, -1))).astype(int)
-    both, keys = _used(np.concatenate([lines["source"], alternative]), keys)
+    alternative, strength = (
+        np.asarray(lines.get(key, np.full(n, -1))).astype(int)
+        for key in ("source_alt", "source_loggf_alt")
+    )
+    every, keys = _used(np.concatenate([lines["source"], alternative, strength]), keys)
     order = np.lexsort((lines.get("e_low", blank), lines["species"], lines["wave"]))
     stored = {
         "wave": np.asarray(lines["wave"])[order].astype("<f8"),
         "wave_err": np.asarray(lines["wave_err"])[order].astype("<f4"),
         "species": np.asarray(lines["species"])[order].astype("<i2"),
         "origin": np.asarray(lines["origin"])[order].astype("u1"),
-        "source": both[:n][order].astype("<i2"),
+        "source": every[:n][order].astype("<i2"),
         "species_names": np.array(names, dtype="<U16"),
         "source_keys": np.array(keys, dtype="<U48"),
         **_terms(lines, order),
@@ -89,8 +83,11 @@ def pack_lines(lines: dict[str, np.ndarray], names: list[str], keys: list[str]) 
         if key in lines and np.isfinite(np.asarray(lines[key], float)).any():
             stored[f"{key}2"] = _doubled(lines[key], order)
     if (alternative >= 0).any():
-        stored["source_alt"] = both[n:][order].astype("i1")
-    grade = grade_codes(lines.get("loggf_err", blank), lines.get("nominal"))[order]
+        stored["source_alt"] = every[n : 2 * n][order].astype("i1")
+    if (strength >= 0).any():
+        stored["source_loggf_alt"] = every[2 * n :][order].astype("i1")
+    nominal = np.asarray(lines.get("nominal", np.zeros(n)), bool)
+    grade = grade_codes(lines.get("loggf_err", blank), nominal)[order]
     if grade.any():
         stored["grade"] = grade.astype("u1")
     flags = _flags(lines, names)[order]

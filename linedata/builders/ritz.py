@@ -91,8 +91,8 @@ def match_shifted(levels: Levels, wave, e_low_ev, matches: Matches) -> None:
     misses: dict[int, list[tuple[float, int, int]]] = {}
     for k in np.flatnonzero(matches.low < 0):
         for _, low, up in _candidates(levels, wave[k], e_low_ev[k], SHIFT_REACH * wave[k] ** 2 * 1e-8):
-            if (low, up) not in taken:
-                miss = 1e8 / wave[k] - (levels.energy[up] - levels.energy[low])
+            miss = 1e8 / wave[k] - (levels.energy[up] - levels.energy[low])
+            if (low, up) not in taken and not _has_near_pair(levels, wave[k], e_low_ev[k], miss):
                 misses.setdefault(up, []).append((miss, low, int(k)))
     for up, found in sorted(misses.items()):
         chosen = _alike(sorted(found))
@@ -100,6 +100,12 @@ def match_shifted(levels: Levels, wave, e_low_ev, matches: Matches) -> None:
             if matches.low[k] < 0 and (low, up) not in taken:
                 taken.add((low, up))
                 _enter(levels, matches, k, low, up)
+
+
+def _has_near_pair(levels: Levels, wave: float, e_low_ev: float, miss: float) -> bool:
+    """Whether a permitted pair lies nearer to the line than a third of this miss (cm-1)."""
+    found = _candidates(levels, wave, e_low_ev)
+    return bool(found) and found[0][0] < abs(miss) / RIVAL_RATIO * wave**2 * 1e-8
 
 
 def _alike(found: list[tuple[float, int, int]]) -> list[tuple[float, int, int]]:

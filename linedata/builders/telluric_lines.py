@@ -3,7 +3,10 @@
 Usage: python linedata/builders/telluric_lines.py SOURCE_DIR [--out FOLDER]
 
 depth_ref is the central optical depth at air mass 1 for a standard column (5 mm of water):
-intensity at 296 K x column x mean Voigt peak. The mean over the atmosphere weights pressure
+intensity x column x mean Voigt peak. Intensities of O2 and H2O are brought from 296 K to the
+temperature of the layers that hold the gas (250 and 275 K) with the lower energies that
+lower_energies.py derives (kept as e_low, depth-weighted where lines are joined); lines without one,
+and other gases, stay at 296 K. The mean over the atmosphere weights pressure
 p (atm) by p^(k-1), k the ratio of the air's scale height to the gas's (1 for a mixed gas, 4
 for water), with Lorentz half width gamma p and a Doppler width at 250 K.
 """
@@ -16,7 +19,10 @@ import numpy as np
 from astropy.table import Table
 from scipy.special import erfcx
 
-from common import ORIGIN_CODE, pack_lines, script_arguments, source_file, write_table
+from common import EV_PER_CM, ORIGIN_CODE, pack_lines, script_arguments, source_file, write_table
+from lower_energies import Molecule, intensity_ratio, lower_energies
+from molecular_levels import oxygen_levels, water_levels
+from oxygen_gaps import missing_lines
 
 AIR_COLUMN = 2.148e25  # molecules cm-2 above sea level
 # column (cm-2), air-broadened half width (cm-1/atm), scale-height ratio, mass (u), position
@@ -31,6 +37,12 @@ GASES = {
 LEAST_DEPTH = 0.002
 MERGE = 0.01  # Angstrom
 TEMPERATURE = 250.0
+# Ground states (Q at 296 K and abundances: HITRAN) and temperatures (K) of their gases: the
+# standard atmosphere's mean over the pressure (O2) and at the scale height of water.
+GROUND = {
+    "O2": (Molecule(oxygen_levels(), 215.77, 0.995262, 1.0, 0.15), 250.0),
+    "H2O": (Molecule(water_levels(), 174.58, 0.997317, 1.5), 275.0),
+}
 
 
 def mean_peak(wavenumber: np.ndarray, gamma: float, ratio: float, mass: float) -> np.ndarray:
@@ -45,16 +57,42 @@ def mean_peak(wavenumber: np.ndarray, gamma: float, ratio: float, mass: float) -
     return peak
 
 
+def at_temperature(gas: str, wave, intensity, probability) -> tuple[np.ndarray, np.ndarray]:
+    """(intensity at the gas's temperature, lower energy in cm-1 or NaN) of lines."""
+    if gas not in GROUND:
+        return intensity, np.full(len(wave), np.nan)
+    molecule, temperature = GROUND[gas]
+    energy = lower_energies(1e8 / wave, intensity, probability, molecule)
+    return intensity * intensity_ratio(energy, temperature, molecule), energy
+
+
+def weighted_energy(group, depth, energy) -> np.ndarray:
+    """Depth-weighted lower energy (eV) of joined lines; NaN where under half is known."""
+    known = np.isfinite(energy)
+    share = np.bincount(group, depth * known)
+    mean = np.bincount(group, depth * np.where(known, energy, 0.0)) / np.maximum(share, 1e-30)
+    return np.where(share > 0.5 * np.bincount(group, depth), mean * EV_PER_CM, np.nan)
+
+
+def carried(table: Table, gas: str) -> list[np.ndarray]:
+    """Vacuum wavelength, intensity at 296 K and A of a gas, with the O2 lines the list lacks."""
+    mine = np.char.strip(np.asarray(table["molecule"]).astype(str)) == gas
+    columns = [np.asarray(table[key][mine], dtype=float) for key in ("wav", "intensity", "a")]
+    if gas == "O2":
+        found = missing_lines(*columns, GROUND[gas][0])
+        columns = [np.append(values, extra) for values, extra in zip(columns, found.T, strict=True)]
+    return columns
+
+
 def gas_lines(table: Table, gas: str) -> dict[str, np.ndarray]:
     """Lines of one gas above LEAST_DEPTH; closer than MERGE joined, depth-weighted."""
     column, gamma, ratio, mass, error = GASES[gas]
-    mine = np.char.strip(np.asarray(table["molecule"]).astype(str)) == gas
-    wave = np.asarray(table["wav"][mine], dtype=float)
-    intensity = np.asarray(table["intensity"][mine], dtype=float)
+    wave, intensity, probability = carried(table, gas)
+    intensity, energy = at_temperature(gas, wave, intensity, probability)
     depth = intensity * column * mean_peak(1e8 / wave, gamma, ratio, mass)
     keep = depth > LEAST_DEPTH / 10
     order = np.argsort(wave[keep], kind="stable")
-    wave, depth = wave[keep][order], depth[keep][order]
+    wave, depth, energy = (values[keep][order] for values in (wave, depth, energy))
     group = np.concatenate([[0], np.cumsum(np.diff(wave) > MERGE)])
     total = np.bincount(group, depth)
     mean = np.bincount(group, depth * wave) / total
@@ -65,6 +103,7 @@ def gas_lines(table: Table, gas: str) -> dict[str, np.ndarray]:
         "wave": mean,
         "wave_err": np.hypot(error * mean**2 * 1e-8, spread),
         "depth_ref": total[strong],
+        "e_low": weighted_energy(group, depth, energy)[strong],
         "spread": spread,
     }
 

@@ -63,18 +63,36 @@ def table(catalogue, air) -> None:
           f"{1.4826 * np.median(np.abs(every)):.3f} dex")
 
 
+def features(catalogue, air, order) -> list[int]:
+    """Rows of the strongest line of each feature, strongest first.
+
+    Lines of one species within 0.5 A make one feature, as a hot star's line widths do.
+    """
+    kept: list[int] = []
+    for row in order:
+        taken = any(
+            catalogue.species[row] == catalogue.species[k] and abs(air[row] - air[k]) < 0.5
+            for k in kept
+        )
+        if not taken:
+            kept.append(int(row))
+    return kept
+
+
 def strongest(catalogue, air) -> None:
-    """Prints the 25 strongest predicted lines at each temperature, and the expected ones' ranks."""
+    """Prints the 25 strongest predicted features at each temperature, and the expected ranks."""
     optical = (air > 3900) & (air < 6800)
     for temperature, log_pe, expected in EXPECTED:
         strength = absorption_strength(catalogue, temperature, log_pe)
         strength = strength - zero_point(catalogue.wave, temperature, log_pe)
         strength = np.where(optical & np.isfinite(strength), strength, -np.inf)
-        order = np.argsort(-strength)
+        order = features(catalogue, air, np.argsort(-strength)[:150])
         print(f"\n{temperature} K:", ", ".join(
             f"{catalogue.species_of(k)} {air[k]:.1f}" for k in order[:25]))
-        ranks = [int(np.flatnonzero(order == nearest(catalogue, air, *line))[0]) + 1
-                 for line in expected]
+        ranks = [1 + min(
+            place for place, k in enumerate(order)
+            if catalogue.species_of(k) == species and abs(air[k] - wave) < 0.5
+        ) for species, wave in expected]
         print("  expected:", ", ".join(
             f"{s} {w} (rank {r})" for (s, w), r in zip(expected, ranks, strict=True)))
 

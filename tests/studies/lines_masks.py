@@ -1,6 +1,6 @@
 """Predicted depths and coverage against the predicted masks of arve 0.8.3. Run by hand.
 
-    python tests/studies/lines_masks.py FOLDER_OF_arve-0.8.3 [K5 F5 | G2]
+    python tests/studies/lines_masks.py FOLDER_OF_arve-0.8.3 [K5 F5 | G2 | damping]
 
 The masks (MIT; line data extracted from VALD: test-only, never shipped) give vacuum wavelength
 and central depth of the lines of dwarfs. Tuned on K5 and F5; G2 is scored with the conditions
@@ -37,20 +37,29 @@ RANGE = (3000.0, 12000.0)
 REACH = 0.02
 
 
-def read_mask(folder: Path, name: str) -> list[tuple[str, float, float]]:
-    """(species, vacuum wavelength, depth) of the atoms of a mask."""
+def _mask_rows(folder: Path, name: str):
+    """The rows of a mask as dictionaries of text."""
     path = folder / "arve" / "aux_data" / "masks" / f"{name}.csv.zip"
-    rows = []
     with zipfile.ZipFile(path) as archive:
         member = next(n for n in archive.namelist() if not n.startswith("__"))
-        for row in csv.DictReader(io.StringIO(archive.read(member).decode())):
-            wave, depth = float(row["wave_vald"]), float(row["depth_vald"])
-            try:
-                species = normal_name(row["species"])
-            except InputRefused:
-                continue  # molecules written as 'OH 1'
-            if RANGE[0] < wave < RANGE[1]:
-                rows.append((species, wave, depth))
+        yield from csv.DictReader(io.StringIO(archive.read(member).decode()))
+
+
+def _species(text: str) -> str:
+    """The canonical name of an atom; '' for molecules written as 'OH 1'."""
+    try:
+        return normal_name(text)
+    except InputRefused:
+        return ""
+
+
+def read_mask(folder: Path, name: str) -> list[tuple[str, float, float]]:
+    """(species, vacuum wavelength, depth) of the atoms of a mask."""
+    rows = []
+    for row in _mask_rows(folder, name):
+        wave, species = float(row["wave_vald"]), _species(row["species"])
+        if species and RANGE[0] < wave < RANGE[1]:
+            rows.append((species, wave, float(row["depth_vald"])))
     return rows
 
 
@@ -86,9 +95,33 @@ def score(folder: Path, name: str, catalogue) -> tuple[float, float, float]:
     return correlation, share, with_components
 
 
+def damping(folder: Path, catalogue) -> None:
+    """Stark widths against those of the F5 mask (log10 per electron), by species."""
+    differences: dict[str, list[float]] = {}
+    for row in _mask_rows(folder, "F5"):
+        published = float(row["damping_stark"] or 0.0)
+        species = _species(row["species"])
+        if published >= 0.0 or species not in catalogue.species_names:
+            continue
+        wave, e_low = float(row["wave_vald"]), float(row["E_l"])
+        first, last = np.searchsorted(catalogue.wave, [wave - REACH, wave + REACH])
+        code = catalogue.species_names.index(species)
+        for k in range(first, last):
+            same = catalogue.species[k] == code and abs(catalogue.e_low[k] - e_low) < 0.002
+            if same and np.isfinite(catalogue.gamma_stark[k]):
+                differences.setdefault(species, []).append(catalogue.gamma_stark[k] - published)
+    for species, values in sorted(differences.items(), key=lambda item: -len(item[1]))[:15]:
+        centre = np.median(values)
+        print(f"{species:7} n {len(values):5d}  median {centre:6.2f}  robust scatter "
+              f"{1.4826 * np.median(np.abs(values - centre)):.2f} dex")
+
+
 def main() -> None:
     folder, names = Path(sys.argv[1]), sys.argv[2:] or ["K5", "F5"]
     catalogue = load_catalogue(origins="stellar")
+    if names == ["damping"]:
+        damping(folder, catalogue)
+        return
     for name in names:
         score(folder, name, catalogue)
 

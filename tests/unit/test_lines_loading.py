@@ -139,6 +139,7 @@ def test_tables_are_the_ones_in_the_manifest():
         data = (folder / name).read_bytes()
         assert hashlib.sha256(data).hexdigest() == entry["sha256"], name
     assert sum(entry["bytes"] for entry in manifest.values()) < 15e6
+    assert max(entry["bytes"] for entry in manifest.values()) < 4e6
 
 
 def _rebuild(builder, folder):

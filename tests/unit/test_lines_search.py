@@ -137,6 +137,38 @@ def test_second_sources_lie_within_three_errors(catalogue):
     assert pull.max() < 3.02
 
 
+def test_second_strengths_lie_within_three_errors(catalogue):
+    known = np.isfinite(catalogue.loggf_alt)
+    assert known.sum() > 1000 and (catalogue.source_loggf_alt[known] >= 0).all()
+    pull = np.abs(catalogue.loggf_alt - catalogue.loggf)[known] / catalogue.loggf_err[known]
+    assert pull.max() < 3.03
+
+
+@pytest.mark.parametrize(
+    ("air", "published"),
+    [(4443.80, -0.72), (4468.49, -0.62), (4501.27, -0.77), (4571.97, -0.32)],
+)
+def test_strengths_of_ionised_titanium_are_published_ones(catalogue, air, published):
+    """Pickering, Thorne & Perez 2001 (ApJS 132, 403), from memory; the list's value is kept."""
+    row = one(catalogue, f"TiII {air:.2f}")
+    assert float(catalogue.loggf[row]) == pytest.approx(published, abs=0.03)
+    assert catalogue.source_keys[catalogue.source_loggf_alt[row]] == "Placco2021"
+    page = line_page(catalogue, row)
+    values = {label: value for label, value, _ in page.entries}
+    assert "Placco2021" in {key for key, _ in page.sources}
+    difference = float(values["log gf, second source"]) - float(values["log gf"])
+    assert float(values["difference of log gf"]) == pytest.approx(difference, abs=0.0015)
+
+
+def test_the_page_says_what_a_grade_means_and_which_strengths_are_nominal(catalogue):
+    nominal = int(np.flatnonzero(catalogue.flags & 2)[0])
+    values = {label: value for label, value, _ in line_page(catalogue, nominal).entries}
+    assert values["grade"].startswith("E (nominal") and "nominal strength" in values["flags"]
+    good = int(np.flatnonzero((catalogue.grade == 2) & (catalogue.flags == 0))[0])
+    values = {label: value for label, value, _ in line_page(catalogue, good).entries}
+    assert values["grade"] == "B (0.12 dex or better)"
+
+
 def test_upper_energy_follows_from_the_wavelength(catalogue):
     """Na I 5889.951: 2P* 3/2 at 16973.366 cm-1 (NIST ASD)."""
     row = one(catalogue, "NaI 5889.95")

@@ -10,6 +10,10 @@ ORIGINS = ("stellar", "nebular", "telluric", "interstellar", "sky", "lamp", "mol
 # Grade of a line's strength by its stated error: A 0.05 dex or better, B 0.12, C 0.25, D 0.5,
 # E worse or nominal; '' where the line has no strength.
 GRADES = ("", "A", "B", "C", "D", "E")
+GRADE_MEANING = {
+    "A": "0.05 dex or better", "B": "0.12 dex or better", "C": "0.25 dex or better",
+    "D": "0.5 dex or better", "E": "worse than 0.5 dex",
+}
 # Bits of ``flags``.
 NONLTE, NOMINAL, COLLAPSED = 1, 2, 4
 FLAG_NAMES = {NONLTE: "non-LTE", NOMINAL: "nominal strength", COLLAPSED: "components collapsed"}
@@ -18,7 +22,8 @@ EV_ANGSTROM = 12398.41984  # h c, CODATA 2022
 OPTIONAL_COLUMNS = {
     "wave_alt": (np.nan, np.float64), "source_alt": (-1, np.int32), "grade": (0, np.uint8),
     "flags": (0, np.uint8), "gamma_rad": (np.nan, np.float32),
-    "gamma_waals": (np.nan, np.float32),
+    "gamma_waals": (np.nan, np.float32), "gamma_stark": (np.nan, np.float32),
+    "loggf_alt": (np.nan, np.float32), "source_loggf_alt": (-1, np.int32),
     "term_low": (0, np.int32), "term_up": (0, np.int32),
 }
 
@@ -45,6 +50,9 @@ class LineCatalogue:
     grade: index into GRADES; flags: bits NONLTE, NOMINAL, COLLAPSED
     gamma_rad: log10 of the radiative damping constant, rad/s (NaN unknown)
     gamma_waals: log10 of van der Waals damping per hydrogen atom at 10,000 K, rad/s cm3
+    gamma_stark: log10 of Stark damping per electron at 10,000 K, rad/s cm3, approximate
+    loggf_alt, source_loggf_alt: log gf of a second source (NaN, -1 without one); within three
+        ``loggf_err`` of ``loggf``
     term_low, term_up: index into ``term_names`` ('configuration|term', entry 0 '' unknown)
     """
 
@@ -70,6 +78,9 @@ class LineCatalogue:
     flags: np.ndarray | None = None
     gamma_rad: np.ndarray | None = None
     gamma_waals: np.ndarray | None = None
+    gamma_stark: np.ndarray | None = None
+    loggf_alt: np.ndarray | None = None
+    source_loggf_alt: np.ndarray | None = None
     term_low: np.ndarray | None = None
     term_up: np.ndarray | None = None
     term_names: tuple[str, ...] = ("",)

@@ -36,6 +36,8 @@ _COLUMNS = (
     ("wave_alt", "Angstrom", "wavelength of the second source"),
     ("gamma_rad", None, "log10 of the radiative damping constant, rad/s"),
     ("gamma_waals", None, "log10 of van der Waals damping per hydrogen atom, 10,000 K, rad/s cm3"),
+    ("gamma_stark", None, "log10 of Stark damping per electron, 10,000 K, rad/s cm3, approximate"),
+    ("loggf_alt", None, "log gf of the second source"),
     ("flags", None, "non-LTE, nominal strength, components collapsed"),
 )
 
@@ -43,6 +45,7 @@ _COLUMNS = (
 _DIGITS = {
     "wave": 4, "wave_err": 4, "e_low": 4, "loggf": 3, "loggf_err": 2, "spread": 4, "emission": 2,
     "depth_ref": 5, "depth": 3, "e_up": 4, "wave_alt": 4, "gamma_rad": 2, "gamma_waals": 2,
+    "gamma_stark": 2, "loggf_alt": 3,
 }
 
 

@@ -7,12 +7,14 @@ import json
 import zipfile
 from collections.abc import Iterable
 from functools import lru_cache
+from pathlib import Path
 
 import numpy as np
 
 from ..errors import InputRefused
 from ..resources import tables_dir
 from .catalogue import OPTIONAL_COLUMNS, ORIGINS, LineCatalogue
+from .packed import expand
 
 # Every table of lines; 'level_physics' holds no lines.
 LINE_TABLES = (
@@ -25,6 +27,8 @@ LINE_TABLES = (
     "interstellar_sky",
     "telluric_lines",
 )
+# Tables whose rarer columns stand in a second file.
+WITH_DETAILS = {"atomic_lines": "atomic_details"}
 _FLOATS = ("wave", "wave_err", "e_low", "loggf", "loggf_err", "emission", "depth_ref", "spread")
 _CURE = "install Linewright again, or rebuild linedata/tables"
 
@@ -57,13 +61,26 @@ def _names(which: str | None) -> list[str]:
     return [which]
 
 
-def _read(name: str) -> dict[str, np.ndarray]:
-    path = tables_dir() / f"{name}.npz"
+def _read_file(path) -> dict[str, np.ndarray]:
     try:
         with np.load(path) as stored:
             return {key: stored[key] for key in stored.files}
     except (OSError, ValueError, EOFError, KeyError, zipfile.BadZipFile):
         raise InputRefused(path, "the line table is missing or damaged", _CURE) from None
+
+
+def read_table(folder: Path, name: str) -> dict[str, np.ndarray]:
+    """The columns of one stored table, of both its files where it has two.
+
+    Raises InputRefused where a file is missing or damaged.
+    """
+    columns = _read_file(folder / f"{name}.npz")
+    if name in WITH_DETAILS:
+        columns |= _read_file(folder / f"{WITH_DETAILS[name]}.npz")
+    try:
+        return expand(columns)
+    except (KeyError, IndexError):
+        raise InputRefused(folder / name, "the line table is damaged", _CURE) from None
 
 
 def _merged_names(tables: list[dict], column: str, key: str) -> tuple[tuple[str, ...], list]:
@@ -82,9 +99,8 @@ def _merged_terms(tables: list[dict]) -> tuple[tuple[str, ...], list, list]:
     low, up = [], []
     for table in tables:
         if "term_text" not in table:
-            zeros = np.zeros(len(table["wave"]), np.int32)
-            low.append(zeros)
-            up.append(zeros)
+            low.append(None)
+            up.append(None)
             continue
         names = table["term_text"].tobytes().decode().split("\n")
         place = np.array([index.setdefault(name, len(index)) for name in names], np.int32)
@@ -93,65 +109,76 @@ def _merged_terms(tables: list[dict]) -> tuple[tuple[str, ...], list, list]:
     return tuple(index), low, up
 
 
-def _stored(tables: list[dict], key: str, unknown, dtype) -> list[np.ndarray]:
-    """A column of every table; filled with ``unknown`` where a table does not store it."""
-    return [
-        table[key] if key in table else np.full(len(table["wave"]), unknown, dtype)
-        for table in tables
-    ]
-
-
 def _spin(doubled: np.ndarray) -> np.ndarray:
     return np.where(doubled < 0, np.float32(np.nan), doubled * np.float32(0.5))
 
 
-def _joined(tables: list[dict], order: np.ndarray) -> dict[str, np.ndarray]:
+def _places(tables: list[dict]) -> list[np.ndarray]:
+    """For each table, where its rows stand among all rows sorted by wavelength."""
+    order = np.argsort(np.concatenate([table["wave"] for table in tables]), kind="stable")
+    place = np.empty(len(order), np.intp)
+    place[order] = np.arange(len(order))
+    return np.split(place, np.cumsum([len(table["wave"]) for table in tables])[:-1])
+
+
+def _spread(parts: list, places: list[np.ndarray], unknown, dtype) -> np.ndarray:
+    """Parts of a column at their places; ``unknown`` where a table (None) does not store it."""
+    column = np.full(sum(map(len, places)), unknown, dtype)
+    for part, place in zip(parts, places, strict=True):
+        if part is not None:
+            column[place] = part
+    return column
+
+
+def _joined(tables: list[dict], places: list[np.ndarray]) -> dict[str, np.ndarray]:
     """Columns that need no recoding, joined and sorted."""
 
-    def column(key, unknown, stored, dtype):
-        parts = _stored(tables, key, unknown, stored)
-        return np.concatenate(parts)[order].astype(dtype, copy=False)
+    def column(key, unknown, dtype):
+        return _spread([table.get(key) for table in tables], places, unknown, dtype)
 
-    joined = {
-        key: column(key, 0.0 if key == "spread" else np.nan, np.float32, np.float64)
-        for key in _FLOATS
-    }
-    joined["j_low"] = _spin(column("j_low2", -1, np.int8, np.int8))
-    joined["j_up"] = _spin(column("j_up2", -1, np.int8, np.int8))
-    joined["origin"] = column("origin", 0, np.int8, np.int8)
-    for key in ("grade", "flags", "gamma_rad", "gamma_waals"):
-        unknown, dtype = OPTIONAL_COLUMNS[key]
-        joined[key] = column(key, unknown, dtype, dtype)
-    joined["wave_alt"] = joined["wave"] + column("alt_shift", np.nan, np.float16, np.float64)
+    joined = {key: column(key, 0.0 if key == "spread" else np.nan, np.float64) for key in _FLOATS}
+    joined["j_low"] = _spin(column("j_low2", -1, np.int8))
+    joined["j_up"] = _spin(column("j_up2", -1, np.int8))
+    joined["origin"] = column("origin", 0, np.int8)
+    for key in ("grade", "flags", "gamma_rad", "gamma_waals", "gamma_stark"):
+        joined[key] = column(key, *OPTIONAL_COLUMNS[key])
+    joined["wave_alt"] = joined["wave"] + column("alt_shift", np.nan, np.float64)
+    shift = column("loggf_alt_shift", np.nan, np.float32)
+    joined["loggf_alt"] = joined["loggf"].astype(np.float32) + shift
     return joined
 
 
-def _merged_sources(tables: list[dict]) -> tuple[tuple[str, ...], list, list]:
+_SOURCES = ("source", "source_alt", "source_loggf_alt")
+
+
+def _merged_sources(tables: list[dict]) -> tuple[tuple[str, ...], dict[str, list]]:
+    """Keys over the tables and, for each column of sources, the recoded parts."""
     index: dict[str, int] = {}
-    preferred, second = [], []
+    recoded: dict[str, list] = {name: [] for name in _SOURCES}
     for table in tables:
         names = table["source_keys"]
-        place = np.array([index.setdefault(str(n), len(index)) for n in names], np.int32)
-        preferred.append(place[table["source"]])
-        codes = table.get("source_alt", np.full(len(table["wave"]), -1, np.int8))
-        second.append(np.where(codes >= 0, place[codes], -1).astype(np.int32))
-    return tuple(index), preferred, second
+        # The last entry serves code -1, no source.
+        place = np.array([index.setdefault(str(n), len(index)) for n in names] + [-1], np.int32)
+        for name, parts in recoded.items():
+            parts.append(place[table[name]] if name in table else None)
+    return tuple(index), recoded
 
 
 @lru_cache(maxsize=8)
 def _load(which: str | None) -> LineCatalogue:
-    tables = [_read(name) for name in _names(which)]
+    tables = [read_table(tables_dir(), name) for name in _names(which)]
     species_names, species = _merged_names(tables, "species", "species_names")
-    source_keys, source, source_alt = _merged_sources(tables)
+    source_keys, sources = _merged_sources(tables)
     term_names, term_low, term_up = _merged_terms(tables)
-    order = np.argsort(np.concatenate([table["wave"] for table in tables]), kind="stable")
-    recoded = {
-        "species": species, "source": source, "source_alt": source_alt, "term_low": term_low,
-        "term_up": term_up,
-    }
+    places = _places(tables)
+    recoded = {"species": species, "term_low": term_low, "term_up": term_up, **sources}
+    unknown = {"source_alt": -1, "source_loggf_alt": -1}
     catalogue = LineCatalogue(
-        **_joined(tables, order),
-        **{key: np.concatenate(parts)[order] for key, parts in recoded.items()},
+        **_joined(tables, places),
+        **{
+            key: _spread(parts, places, unknown.get(key, 0), np.int32)
+            for key, parts in recoded.items()
+        },
         species_names=species_names,
         source_keys=source_keys,
         term_names=term_names,

@@ -8,7 +8,9 @@ import numpy as np
 
 from ..errors import InputRefused
 from ..spectra.medium import to_medium
-from .catalogue import EV_ANGSTROM, FLAG_NAMES, GRADES, ORIGINS, LineCatalogue
+from .catalogue import (
+    EV_ANGSTROM, FLAG_NAMES, GRADE_MEANING, GRADES, NOMINAL, ORIGINS, LineCatalogue,
+)
 from .citations import bibtex, citation
 from .depths import typical_log_pe
 from .strengths import absorption_strength
@@ -63,8 +65,8 @@ def line_page(
     if not 0 <= row < len(catalogue):
         raise InputRefused(f"line {row}", "no such row", "choose a line of the catalogue")
     keys = [catalogue.source_keys[int(catalogue.source[row])]]
-    if catalogue.source_alt[row] >= 0:
-        keys.append(catalogue.source_keys[int(catalogue.source_alt[row])])
+    seconds = (int(catalogue.source_alt[row]), int(catalogue.source_loggf_alt[row]))
+    keys += [catalogue.source_keys[code] for code in seconds if code >= 0]
     air = float(to_medium(catalogue.wave[row], "air"))
     related = _related(catalogue, row, temperature, wave_range)
     return LinePage(
@@ -94,6 +96,14 @@ def _level(catalogue: LineCatalogue, row: int, upper: bool) -> str:
     return " ".join(part for part in (configuration, term) if part)
 
 
+def _grade(catalogue: LineCatalogue, row: int) -> str:
+    """The grade of the strength and what it means; '' without a strength."""
+    letter = GRADES[int(catalogue.grade[row])]
+    if int(catalogue.flags[row]) & NOMINAL:
+        return f"{letter} (nominal: a typical value, not one of this line)"
+    return f"{letter} ({GRADE_MEANING[letter]})" if letter else ""
+
+
 def _entries(catalogue: LineCatalogue, row: int, air: float) -> list[tuple[str, str, str]]:
     c = catalogue
     flags = [name for bit, name in FLAG_NAMES.items() if int(c.flags[row]) & bit]
@@ -112,11 +122,14 @@ def _entries(catalogue: LineCatalogue, row: int, air: float) -> list[tuple[str, 
         ("E_up", _text(c.e_low[row] + EV_ANGSTROM / c.wave[row], 4), "eV"),
         ("log gf", _text(c.loggf[row], 3), ""),
         ("error of log gf", _text(c.loggf_err[row], 2), "dex"),
-        ("grade", GRADES[int(c.grade[row])], ""),
+        ("log gf, second source", _text(c.loggf_alt[row], 3), ""),
+        ("difference of log gf", _text(c.loggf_alt[row] - c.loggf[row], 3), "dex"),
+        ("grade", _grade(c, row), ""),
         ("log emissivity (H beta = 2)", _text(c.emission[row], 2), ""),
         ("optical depth, air mass 1", _text(c.depth_ref[row], 4), ""),
         ("log radiative damping", _text(c.gamma_rad[row], 2), "rad/s"),
         ("log van der Waals damping", _text(c.gamma_waals[row], 2), "rad/s cm3"),
+        ("log Stark damping, approximate", _text(c.gamma_stark[row], 2), "rad/s cm3"),
         ("spread of components", _text(c.spread[row] or np.nan, 4), "Angstrom"),
         ("flags", ", ".join(flags), ""),
     ]

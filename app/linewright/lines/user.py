@@ -125,7 +125,7 @@ def merge_catalogues(first: LineCatalogue, second: LineCatalogue) -> LineCatalog
     order = np.argsort(np.concatenate([first.wave, second.wave]), kind="stable")
     recoded = {
         "species": species, "source": sources, "source_alt": np.append(sources, -1),
-        "term_low": places, "term_up": places,
+        "source_loggf_alt": np.append(sources, -1), "term_low": places, "term_up": places,
     }
     columns = {}
     for name, values in vars(first).items():
