@@ -10,10 +10,6 @@ ORIGINS = ("stellar", "nebular", "telluric", "interstellar", "sky", "lamp", "mol
 # Grade of a line's strength by its stated error: A 0.05 dex or better, B 0.12, C 0.25, D 0.5,
 # E worse or nominal; '' where the line has no strength.
 GRADES = ("", "A", "B", "C", "D", "E")
-GRADE_MEANING = {
-    "A": "0.05 dex or better", "B": "0.12 dex or better", "C": "0.25 dex or better",
-    "D": "0.5 dex or better", "E": "worse than 0.5 dex",
-}
 # Bits of ``flags``.
 NONLTE, NOMINAL, COLLAPSED = 1, 2, 4
 FLAG_NAMES = {NONLTE: "non-LTE", NOMINAL: "nominal strength", COLLAPSED: "components collapsed"}

@@ -8,9 +8,7 @@ import numpy as np
 
 from ..errors import InputRefused
 from ..spectra.medium import to_medium
-from .catalogue import (
-    EV_ANGSTROM, FLAG_NAMES, GRADE_MEANING, GRADES, NOMINAL, ORIGINS, LineCatalogue,
-)
+from .catalogue import EV_ANGSTROM, FLAG_NAMES, GRADES, ORIGINS, LineCatalogue
 from .citations import bibtex, citation
 from .depths import typical_log_pe
 from .strengths import absorption_strength
@@ -96,14 +94,6 @@ def _level(catalogue: LineCatalogue, row: int, upper: bool) -> str:
     return " ".join(part for part in (configuration, term) if part)
 
 
-def _grade(catalogue: LineCatalogue, row: int) -> str:
-    """The grade of the strength and what it means; '' without a strength."""
-    letter = GRADES[int(catalogue.grade[row])]
-    if int(catalogue.flags[row]) & NOMINAL:
-        return f"{letter} (nominal: a typical value, not one of this line)"
-    return f"{letter} ({GRADE_MEANING[letter]})" if letter else ""
-
-
 def _entries(catalogue: LineCatalogue, row: int, air: float) -> list[tuple[str, str, str]]:
     c = catalogue
     flags = [name for bit, name in FLAG_NAMES.items() if int(c.flags[row]) & bit]
@@ -124,7 +114,7 @@ def _entries(catalogue: LineCatalogue, row: int, air: float) -> list[tuple[str, 
         ("error of log gf", _text(c.loggf_err[row], 2), "dex"),
         ("log gf, second source", _text(c.loggf_alt[row], 3), ""),
         ("difference of log gf", _text(c.loggf_alt[row] - c.loggf[row], 3), "dex"),
-        ("grade", _grade(c, row), ""),
+        ("grade", GRADES[int(c.grade[row])], ""),
         ("log emissivity (H beta = 2)", _text(c.emission[row], 2), ""),
         ("optical depth, air mass 1", _text(c.depth_ref[row], 4), ""),
         ("log radiative damping", _text(c.gamma_rad[row], 2), "rad/s"),
