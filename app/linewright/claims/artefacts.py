@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from .added_rows import BAND, CORE, flagged_as
 from .problem import NOT_SAID, SET_ASIDE
 
 SPIKE = "spike"
@@ -16,10 +17,15 @@ def is_spike(features):
     return np.array([SPIKE in flags.split() for flags in features.flags], dtype=bool)
 
 
+def is_no_line(features):
+    """True where a feature is not for the lines to explain: a spike, or a row that claims added."""
+    return flagged_as(features, (SPIKE, BAND, CORE))
+
+
 def with_spikes(features, said):
     """A person's words with the spikes set aside where they said nothing; None if nothing is
     to be said."""
-    spikes = is_spike(features)
+    spikes = is_no_line(features)
     if said is None and not np.any(spikes):
         return None
     words = np.full(len(features), NOT_SAID) if said is None else np.array(said)

@@ -80,6 +80,7 @@ def _columns(solution, chosen):
     shown = chance_to_show(pairs, groups, state)[pairs.entry]
     position, sigma, _ = position_likelihood(problem, pairs, state, groups)
     density, p0 = state.null.at(pairs.bins)
+    density = density if problem.crowd is None else density * problem.crowd
     fits = strength_likelihood(pairs, state, groups, p0) / p0[pairs.feature]
     absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
     show, place = np.log(shown / absent), np.log(position / density[pairs.feature])

@@ -16,6 +16,7 @@ from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
 from .features_in import position_error
 from .populations import EMITTED, INTERSTELLAR, NEBULAR, OUTFLOW, Component, emitted_rows
+from .roll_call import poisson_binomial_tail
 
 MOST = 3  # components of a kind
 CHANCE = 0.003  # expected chance coincidences that two lines or more must beat
@@ -36,13 +37,12 @@ STRONGEST = ("Ca II", "Na I", "K I")  # species whose single line may show a clo
 @dataclass(frozen=True, eq=False)
 class _Marks:
     """Features that may show gas and the lines they may show, as pairs: km/s, its error,
-    feature row, catalogue row. density: such features per km/s near each pair."""
+    feature row, catalogue row."""
 
     v: np.ndarray
     sigma: np.ndarray
     feature: np.ndarray
     row: np.ndarray
-    density: np.ndarray
 
 
 def _marks(setting, features, rows, middle: float, span: float, centring: float) -> _Marks:
@@ -56,13 +56,11 @@ def _marks(setting, features, rows, middle: float, span: float, centring: float)
     sigma = C_KM_S * sigma / f.wave[feature]
     near = np.abs(v - middle) < span
     v, sigma, feature, row = v[near], np.maximum(sigma[near], 0.3), feature[near], row[near]
-    count = np.bincount(np.searchsorted(np.unique(row), row)) if len(row) else np.zeros(0, int)
-    density = count[np.searchsorted(np.unique(row), row)] / (2 * span) if len(row) else v
-    return _Marks(v, sigma, feature, row, density)
+    return _Marks(v, sigma, feature, row)
 
 
 def _clusters(marks: _Marks, least: int = 2):
-    """(mean, error, members) of velocities shared by several lines, most lines first."""
+    """(mean km/s, error, members) of velocities shared by several lines, most lines first."""
     free = np.ones(len(marks.v), dtype=bool)
     for _ in range(MOST + 3):
         close = np.abs(marks.v[:, None] - marks.v[None, :])
@@ -77,16 +75,30 @@ def _clusters(marks: _Marks, least: int = 2):
         mean = float(np.sum(weight * marks.v[members]) / np.sum(weight))
         scatter = float(np.sqrt(np.sum(weight * (marks.v[members] - mean) ** 2) / len(members)))
         error = max(1.0, scatter) / np.sqrt(weight.sum())
-        yield mean, float(error), members, _coincidence(marks, best, members)
+        yield mean, float(error), members
 
 
-def _coincidence(marks: _Marks, best: int, members) -> float:
-    """Expected number of such coincidences by chance, from the density of open features."""
+def _coincidence(setting, features, marks: _Marks, members, span: float) -> float:
+    """Expected number of velocities at which so many lines would be hit by chance.
+
+    Of the lines hit, the strongest two, three and so on are tried: the density of features as
+    strong as their weakest, away from all lines of the list, gives each line's chance. (The
+    exact tail of the Roll call, times the velocities searched and the numbers tried.)
+    """
+    f = setting.features
+    others = np.abs(f.ew[np.setdiff1d(features, marks.feature)])
+    length = float(np.sum(np.diff(setting.coverage, axis=1)))
+    strength = np.abs(f.ew[marks.feature[members]])
     rows = np.unique(marks.row[members])
-    density = np.array([np.max(marks.density[members[marks.row[members] == r]]) for r in rows])
-    rates = np.sort(density * 5.0 * marks.sigma[best])[::-1]
-    trials = np.min(density) * 2 * CLOUD_SPAN
-    return float(trials * np.prod(rates[:-1]))
+    best = np.sort([strength[marks.row[members] == r].max() for r in rows])[::-1]
+    reach = 5.0 * float(np.median(marks.sigma[members]))
+    places = setting.catalogue.wave[np.unique(marks.row)]
+    chances = []
+    for k in range(2, len(rows) + 1):
+        dense = (np.sum(others >= LIKE_DEPTH * best[k - 1]) + 1.0) / max(length, 1.0)
+        rates = np.clip(dense * places / C_KM_S * reach, 1e-9, 1.0)
+        chances.append(poisson_binomial_tail(rates, k))
+    return float(min(chances) * len(chances) * 2 * span / reach) if chances else 1.0
 
 
 def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
@@ -103,7 +115,8 @@ def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
         return []
     marks = _marks(setting, unexplained, rows, 0.0, CLOUD_SPAN, 0.0)
     clouds, used = [], []
-    for mean, error, members, chance in _clusters(marks):
+    for mean, error, members in _clusters(marks):
+        chance = _coincidence(setting, unexplained, marks, members, CLOUD_SPAN)
         if chance < CHANCE and abs(mean - stellar_velocity) >= SAME and len(clouds) < MOST:
             clouds.append(Component(INTERSTELLAR, mean, error))
             used += marks.feature[members].tolist()
@@ -195,28 +208,15 @@ def _own_gas(setting, features, rows, star: Component, population: int) -> list[
     f = setting.features
     marks = _marks(setting, features, rows, star.velocity, STAR_SPAN, CENTRING)
     found, used = [], []
-    for mean, error, members, _ in _clusters(marks):
-        if _elsewhere(setting, features, marks, members) < CHANCE and len(found) < MOST:
+    for mean, error, members in _clusters(marks):
+        chance = _coincidence(setting, features, marks, members, STAR_SPAN)
+        if chance < CHANCE and len(found) < MOST:
             spread = CENTRING * np.median(f.fwhm[marks.feature[members]] / f.wave[marks.feature[members]])
             found.append(Component(population, mean, max(error, float(spread) * C_KM_S)))
             used += marks.feature[members].tolist()
     if population == EMITTED and not found:
         return _lone_emission(setting, marks, star)
     return found
-
-
-def _elsewhere(setting, features, marks: _Marks, members) -> float:
-    """Expected number of such coincidences by chance, from features as strong that stand away
-    from all lines of the list."""
-    f = setting.features
-    strong = LIKE_DEPTH * np.min(np.abs(f.ew[marks.feature[members]]))
-    others = np.setdiff1d(features, marks.feature)
-    length = float(np.sum(np.diff(setting.coverage, axis=1)))
-    per_angstrom = (np.sum(np.abs(f.ew[others]) >= strong) + 1.0) / max(length, 1.0)
-    rows, first = np.unique(marks.row[members], return_index=True)
-    per_km_s = per_angstrom * f.wave[marks.feature[members[first]]] / C_KM_S
-    rates = np.sort(per_km_s * 5.0 * np.median(marks.sigma[members]))[::-1]
-    return float(per_km_s.max() * 2 * STAR_SPAN * np.prod(rates[: len(rows) - 1]))
 
 
 def _lone_emission(setting, marks: _Marks, star: Component) -> list[Component]:

@@ -8,9 +8,11 @@ from functools import partial
 
 import numpy as np
 
+from ..lines.catalogue import NOMINAL
 from ..lines.strengths import absorption_strength
 from ..progress import Progress
 from ..spectra.medium import C_KM_S
+from .banded import capped
 from .build import build_claims
 from .components import Found, find_components, refined, settled
 from .artefacts import spikes_aside, with_spikes
@@ -32,6 +34,7 @@ from .upper_limits import with_limits
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
 PROFILE_ROUNDS = 5
+NOMINAL_SLOPE = 0.7  # of measured against predicted strength, where the latter is assumed
 USUAL_LOOKS = 9.0  # at a profile: sets the pace of its progress
 AGAIN_ROUNDS = 6  # at most, after a person's word
 
@@ -51,6 +54,7 @@ class Identification:
     solution: object
     catalogue: object = None
     read_temperatures: Callable[[], tuple[TemperatureReading, ...]] = tuple
+    weighing: object = None
 
     def shown(self) -> tuple[tuple[str, float, float], ...]:
         """(origin, km/s, error) of the components that explain at least one feature, and of
@@ -114,7 +118,14 @@ class Setting:
             len(POPULATIONS) * len(self.catalogue.species_names),
             UNGRADED,
             self.said,
+            strength_err=self._nominal(entries),
         )
+
+    def _nominal(self, entries):
+        """Error of measured strengths, dex, that assumed strengths bring; (n,)."""
+        assumed = (self.catalogue.flags[entries.row] & NOMINAL) > 0
+        error = np.nan_to_num(self.catalogue.loggf_err[entries.row], nan=1.0)
+        return np.where(assumed, NOMINAL_SLOPE * error, 0.0)
 
     def _width_at(self, wave):
         """Typical narrow FWHM (lower quartile of the features') scaled with wavelength."""
@@ -153,13 +164,15 @@ def _allowed(catalogue, species):
 @dataclass(frozen=True, eq=False)
 class Weighing:
     """What is settled before claims are made of it: components, temperature, marginals, and
-    what reads the other temperatures when asked."""
+    what reads the other temperatures when asked; bands: observed vacuum ranges of molecular
+    bands that are seen."""
 
     setting: Setting
     found: Found
     temperature: float
     solution: Solution
     read_temperatures: Callable[[], tuple[TemperatureReading, ...]] = tuple
+    bands: tuple[tuple[float, float], ...] = ()
 
 
 def identify(
@@ -217,6 +230,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
     features, catalogue, options = setting.features, setting.catalogue, setting.options
     claims = flagged(build_claims(solution, catalogue, found.components), solution)
     claims = shaped(features, spikes_aside(features, claims))
+    claims = capped(claims, features, weighing.bands)
     if progress is not None:
         progress.report("calling the roll", 0.95)
     pressure = electron_pressure(weighing.temperature)
@@ -238,6 +252,7 @@ def conclude(weighing: Weighing, progress=None) -> Identification:
         solution,
         catalogue,
         weighing.read_temperatures,
+        weighing,
     )
 
 

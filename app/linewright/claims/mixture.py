@@ -128,6 +128,7 @@ def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step
     shows = chance_to_show(pairs, groups, state)
     position, sigma, offset = position_likelihood(problem, pairs, state, groups)
     density, p0 = state.null.at(pairs.bins)
+    density = density if problem.crowd is None else density * problem.crowd
     shown = shows[pairs.entry]
     likelihood = shown * position * strength_likelihood(pairs, state, groups, p0)
     absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0

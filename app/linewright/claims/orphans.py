@@ -18,8 +18,8 @@ RARE, REFUSED = -3.0, -1.0  # ln odds: hardly ever shows; a factor that speaks a
 
 
 def rank_orphans(features, claims, solution, catalogue) -> tuple[Orphan, ...]:
-    """Features with P(unlisted) above one half, most significant first."""
-    rows = [i for i, c in enumerate(claims) if c.p_unlisted > UNEXPLAINED]
+    """Features with P(unlisted) above one half, most significant first; spikes are none."""
+    rows = [i for i, c in enumerate(claims) if c.p_unlisted > UNEXPLAINED and c.standing != "set aside"]
     weight = np.nan_to_num(features.significance)
     rows.sort(key=lambda i: (-weight[i], int(features.number[i])))
     near = _nearest(features, solution.problem.entries, catalogue, rows)

@@ -49,6 +49,8 @@ class Pairs:
         self.bins = StrengthBins(f.sign, f.strength)
         self.m = f.strength[self.feature]
         self.m_variance = np.nan_to_num(f.strength_err[self.feature]) ** 2
+        if problem.strength_err is not None:
+            self.m_variance = self.m_variance + problem.strength_err[self.entry] ** 2
         self.wave = f.wave[self.feature]
         self.own = self.wave - e.wave[self.entry]
         self.crowded = f.crowded[self.feature].astype(int)

@@ -47,6 +47,8 @@ class Problem:
     populations: number of strength populations; species: number of species indices
     ungraded: populations whose depths are not predicted
     said: per feature the species name index a person gave, NOT_SAID, or SET_ASIDE
+    crowd: per feature the local density of unlisted features over the mean one; None: even
+    strength_err: per entry the error of its predicted strength beyond the usual scatter, dex
     """
 
     features: FeatureData
@@ -58,6 +60,8 @@ class Problem:
     species: int
     ungraded: tuple[int, ...] = ()
     said: np.ndarray | None = None
+    crowd: np.ndarray | None = None
+    strength_err: np.ndarray | None = None
 
     def length(self) -> float:
         return float(np.sum(self.coverage[:, 1] - self.coverage[:, 0]))

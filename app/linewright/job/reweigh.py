@@ -13,6 +13,8 @@ from threading import Lock
 import numpy as np
 
 from ..claims.artefacts import with_spikes
+from ..claims.band_claims import band_ranges
+from ..claims.banded import weigh_banded
 from ..claims.identify import Setting, Weighing, conclude, weigh, weigh_again
 from ..claims.options import ClaimOptions
 from ..claims.problem import NOT_SAID, SET_ASIDE
@@ -95,13 +97,14 @@ class _Kept:
 
     def weighing(self, session: Session, catalogue, progress) -> tuple[Weighing, tuple]:
         coverage, complete = _coverage(session)
-        key = (session.features, catalogue, coverage, _options(session, complete))
+        bands = band_ranges(session.features, session.claims)
+        key = (session.features, catalogue, coverage, _options(session, complete), bands)
         with self._lock:
             if self._key is not None and self._same(key):
                 return self._weighing
         setting = Setting(session.features, catalogue, coverage, key[3])
         setting.said = with_spikes(session.features, None)
-        weighing = weigh(setting, progress)
+        weighing = weigh_banded(weigh(setting, progress), bands)
         nothing = np.full(len(session.features), NOT_SAID)
         kept = weighing, conclude(weigh_again(weighing, nothing)).claims
         with self._lock:

@@ -11,7 +11,11 @@ from pathlib import Path
 import numpy as np
 
 from .. import __version__
-from ..claims.identify import Identification, identify
+from ..claims.band_claims import band_warning, with_band_rows
+from ..claims.banded import weigh_banded
+from ..claims.cores import with_cores
+from ..claims.identify import Identification, conclude, identify
+from ..claims.molecules import seen_bands
 from ..claims.options import ClaimOptions
 from ..claims.readings import NOMINAL
 from ..claims.upper_limits import with_limits
@@ -51,9 +55,18 @@ def solve(
     if spectrum.medium == "unknown":
         raise _medium_unknown(spectrum, measurement, catalogue, options)
     found = _identified(spectrum, measurement, catalogue, options, progress.part(0.5, 1.0))
+    bands = _bands(spectrum, measurement, found)
+    if bands:
+        found = _banded(found, bands)
     found = _limited(found, measurement)
     reference = _reference(spectrum, measurement)
-    session = _session(reference, measurement.features, found, options, catalogue)
+    velocity = found.velocity.velocity
+    features, claims = with_cores(
+        spectrum, measurement, measurement.features, found.claims, velocity
+    )
+    features, claims = with_band_rows(features, claims, bands, velocity)
+    found = replace(found, claims=claims)
+    session = _session(reference, features, found, options, catalogue)
     progress.report("done", 1.0)
     return replace(
         session,
@@ -83,6 +96,25 @@ def _identified(spectrum, measurement, catalogue, options, progress) -> Identifi
         velocity=better,
         warnings=_join(again.warnings, disagreement(found.velocity, better)),
     )
+
+
+def _bands(spectrum, measurement, found: Identification):
+    """Molecular bands that show at the star's velocity."""
+    if not found.claims:
+        return ()
+    used = [s for s in measurement.segments if s is not None]
+    width = float(np.median(np.concatenate([s.width for s in used])))
+    low, high = measurement.coverage[0][0], measurement.coverage[-1][1]
+    seen = seen_bands(spectrum, found.velocity.velocity, width)
+    return tuple(b for b in seen if low < b.low * b.band.head / b.band.low < high)
+
+
+def _banded(found: Identification, bands) -> Identification:
+    """The claims weighed again with the bands known."""
+    weighing = weigh_banded(found.weighing, [(b.low, b.high) for b in bands])
+    again = conclude(weighing)
+    warnings = _join(found.warnings, again.warnings, band_warning(bands))
+    return replace(again, velocity=found.velocity, warnings=warnings)
 
 
 def solve_features(

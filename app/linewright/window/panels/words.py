@@ -100,6 +100,9 @@ FLAGS = {
     "p-cygni": "emission of a line with absorption on its blue side: matter that flows out",
     "inverse-p-cygni": "emission of a line with absorption on its red side: matter that falls in",
     "double-peak": "one of two emission peaks of a line: a turning disc, or a core absorbed",
+    "band": "the head of a molecular band: its depth is the drop of the flux there",
+    "in-band": "inside a molecular band that is seen: shallow features there may be any line of it",
+    "core": "emission in the core of an absorption line, measured from the line's floor",
     "broad": "wider than lines of its strength are here: a blend, or another claim is right",
     "narrow": "narrower than lines of its strength are here: perhaps telluric, interstellar or "
               "an artefact",
