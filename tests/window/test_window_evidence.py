@@ -118,6 +118,7 @@ def test_siblings_tell_seen_missing_and_outside(solved):
         replace(r, missing_wave=5270.0) for r in bench.session.roll_call))
     bench.desk.document.replace(session, "test")
     bench.view.select(13)
+    siblings.cut_now()
     assert " seen" in siblings.count.text()
     assert siblings.lines.text() == "missing 5268.53", "in the spectrum's own medium, air"
 
@@ -147,3 +148,21 @@ def test_a_chosen_species_is_told_in_words(solved):
     assert "no abundance" in panel.words.text()
     bench.desk.document.replace(replace(bench.session, roll_call=()), "test")
     assert "Choose a species" in panel.words.text()
+
+
+def test_strips_are_cut_only_where_the_selection_rests(solved, qtbot, monkeypatch):
+    from linewright.window.panels import siblings as module
+
+    bench, siblings, cut = solved.bench, solved.space.evidence.siblings, []
+    real = module.sibling_strips
+    monkeypatch.setattr(module, "sibling_strips", lambda *a: (cut.append(a[3]), real(*a))[1])
+    for number in (3, 4, 5, 6):
+        bench.view.select(number)
+    assert cut == []
+    qtbot.waitUntil(lambda: bool(cut), timeout=2000)
+    assert cut == [bench.candidate()]
+    assert siblings.title.text() == f"Siblings of {bench.candidate().species}"
+    bench.view.select(7)
+    bench.view.select(None)
+    qtbot.wait(60)
+    assert len(cut) == 1 and siblings.title.text() == "Siblings"

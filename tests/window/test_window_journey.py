@@ -70,6 +70,7 @@ def why_in_one_click(window, qtbot, row: int) -> None:
     evidence = window.space.evidence
     assert evidence.rows[0].name.text().startswith("H I")
     assert "+ " in evidence.rows[0].why.text()
+    evidence.siblings.cut_now()
     assert evidence.siblings.title.text() == "Siblings of H I"
     assert len(evidence.siblings.strips.strips) >= 3
 

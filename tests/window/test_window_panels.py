@@ -123,6 +123,7 @@ def test_evidence_ranks_candidates_with_reasons(solved):
 def test_siblings_are_other_lines_of_the_candidates_species(solved, invented):
     bench, siblings = solved.bench, solved.space.evidence.siblings
     bench.view.select(int(bench.session.features.number[12]))
+    siblings.cut_now()
     species = bench.session.claims[12].candidates[0].species
     assert siblings.title.text() == f"Siblings of {species}"
     strips = siblings.strips.strips

@@ -93,6 +93,7 @@ def test_siblings_follow_an_edit_without_new_cuts(solved, monkeypatch):
     session = bench.session
     row = next(k for k, c in enumerate(session.claims) if c.standing == "firm")
     bench.view.select(int(session.features.number[row]))
+    box.cut_now()
     sibling = next(s for s in box._found if s.said == session.claims[row].species)
     made = []
     monkeypatch.setattr(siblings, "sibling_strips", lambda *a: made.append(a))

@@ -11,6 +11,7 @@ from ...session.model import STANDINGS, Session
 from . import words
 from .column_model import Column, ColumnModel
 from .ledger_columns import LedgerArrays, ledger_columns
+from .plain_cells import PlainCells
 from .table_panel import TablePanel
 
 EMPTY = (
@@ -51,6 +52,7 @@ class LedgerPanel(TablePanel):
     def __init__(self, workbench, parent=None):
         super().__init__("Ledger", LedgerModel(), EMPTY, parent)
         self._workbench, self._session = workbench, None
+        self.table.setItemDelegate(PlainCells(self.table, decorated=True))
         self.text = self.add_text_filter(
             "Filter: species, wavelength or note",
             "Shows rows whose claim, wavelength or note contains this text (Ctrl+F)",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from ...job.view_breakdown import siblings_words
@@ -20,6 +21,9 @@ COUNT_TIP = (
     "the coverage. In the strips: 'seen' is claimed for the species, 'in Fe I' is blended into "
     "a feature of another claim, 'missing' has no feature."
 )
+
+
+REST_MS = 25  # after a selection before strips are cut: the next ones may follow
 
 
 class SiblingsBox(QWidget):
@@ -49,18 +53,31 @@ class SiblingsBox(QWidget):
         box.addWidget(self.lines)
         box.addWidget(self.strips, 1)
         self.strips.stripActivated.connect(self._go)
+        self._soon = QTimer(self)
+        self._soon.setSingleShot(True)
+        self._soon.setInterval(REST_MS)
+        self._soon.timeout.connect(self.cut_now)
 
     def _forget(self) -> None:
         self._key, self._made_of, self._said = None, (None,) * 4, None
 
     def clear(self) -> None:
+        self._soon.stop()
         self._found = []
         self._forget()
         self.title.setText("Siblings")
         self._tell("", "")
         self.strips.set_strips([], self._workbench.theme.accent)
 
-    def show_candidate(self, session, candidate) -> None:
+    def cut_now(self) -> None:
+        """Strips of the candidate that is under consideration by now."""
+        self._soon.stop()
+        bench = self._workbench
+        if bench.selected_row() is not None:
+            self.show_candidate(bench.session, bench.candidate(), now=True)
+
+    def show_candidate(self, session, candidate, now: bool = False) -> None:
+        """New strips follow in a frame of their own, when the selection has come to rest."""
         bench = self._workbench
         ready = candidate is not None and bench.catalogue is not None and bench.depth is not None
         self.strips.hint = NO_SPECTRUM if bench.spectrum is None else NONE_EXPECTED
@@ -72,6 +89,9 @@ class SiblingsBox(QWidget):
         made_of = (session.features, session.continuum, bench.depth, bench.spectrum)
         key = (candidate.species, candidate.wave, velocity, fwhm)
         if key != self._key or any(a is not b for a, b in zip(made_of, self._made_of)):
+            if not now:
+                self._soon.start()
+                return
             self._key, self._made_of = key, made_of
             self._found = sibling_strips(
                 bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity, fwhm)
