@@ -94,7 +94,9 @@ def test_a_note_is_asked_in_the_window_and_shown(chosen, qtbot):
     qtbot.keyClick(edit, Qt.Key.Key_Return)
     assert claim(chosen).note == "check against the K giant"
     assert chosen.ask_bar.isHidden()
-    assert chosen.ledger.table.currentIndex().siblingAtColumn(10).data() == claim(chosen).note
+    titles = [c.title for c in chosen.ledger.model.columns]
+    cell = chosen.ledger.table.currentIndex().siblingAtColumn(titles.index("note"))
+    assert cell.data() == claim(chosen).note
 
 
 def test_every_act_is_one_step_of_undo(chosen, qtbot):
