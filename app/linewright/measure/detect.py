@@ -97,20 +97,20 @@ def find_extrema(filtered: Filtered, good, threshold: float):
     found = []
     for sign in (1, -1):
         level, curve, tame = (sign * x for x in (filtered.level, filtered.curve, filtered.tame))
-        lone = _distinct(level, threshold, threshold)
+        lone = distinct(level, threshold, threshold)
         lone = lone[curve[lone] > 0]
-        bends = _distinct(curve, threshold, threshold)
+        bends = distinct(curve, threshold, threshold)
         bends = _flat_cores(bends[level[bends] >= threshold], tame, filtered.fwhm)
         keep = np.unique(np.r_[bends, _apart(lone, bends, curve)])
         found.append(np.c_[keep, np.full(len(keep), sign), level[keep]])
     table = np.concatenate(found)
     index = table[:, 0].astype(int)
-    table = table[_supported(index, good, filtered.fwhm)]
+    table = table[supported(index, good, filtered.fwhm)]
     table = table[np.argsort(table[:, 0], kind="stable")]
     return table[:, 0].astype(int), table[:, 1].astype(int), table[:, 2]
 
 
-def _supported(index, good, fwhm):
+def supported(index, good, fwhm):
     """True where the extremum and most samples within half a width are usable."""
     total = np.r_[0, np.cumsum(good)]
     half = np.maximum(1, np.round(0.5 * fwhm[index])).astype(int)
@@ -119,7 +119,7 @@ def _supported(index, good, fwhm):
     return good[index] & (share >= 0.7)
 
 
-def _distinct(signal, least: float, dip: float) -> np.ndarray:
+def distinct(signal, least: float, dip: float) -> np.ndarray:
     """Indices of maxima of at least ``least`` with drops of ``dip`` between neighbours."""
     padded = np.r_[-np.inf, signal, -np.inf]
     top = (padded[1:-1] > padded[:-2]) & (padded[1:-1] >= padded[2:]) & (signal >= least)

@@ -10,6 +10,8 @@ from .detect import find_extrema, run_filters
 from .gauss import FWHM_PER_SIGMA
 from .groups import BROAD, Fitted, backgrounds, fit_features, group_features
 from .guess import first_guess
+from .narrow import SHARE as NARROW
+from .narrow import narrow_extrema
 from .relevel import relevelled
 from .table import fitted_table
 from .veil import owners, running_min
@@ -99,7 +101,26 @@ def _first(ready, filtered, threshold) -> Found:
         own[which] = owners(index[which], s * t.y[index[which]], np.maximum(s * t.veil, 0.0))
     start = first_guess(t, index, sign, own, _smooth(ready))
     late = np.zeros(len(index), dtype=bool)
-    return Found(index, sign, significance, limits, own, late, start)
+    found = Found(index, sign, significance, limits, own, late, start)
+    return found.joined(_narrow(ready, filtered, threshold, found))
+
+
+def _narrow(ready, filtered, threshold, found) -> Found:
+    """Features that only the narrower filter tells apart."""
+    t, parts = ready.trace, []
+    for r, f in zip(ready.runs, filtered, strict=True):
+        inside = (found.index >= r.start) & (found.index < r.stop)
+        taken = found.index[inside] - r.start, found.sign[inside]
+        table = narrow_extrema(t, r, f, threshold, taken)
+        limits = np.tile([r.start, r.stop], (len(table), 1))
+        parts.append(np.c_[table[:, 0] + r.start, table[:, 1:], limits])
+    table = np.concatenate(parts)
+    index, sign = table[:, 0].astype(int), table[:, 1].astype(int)
+    none = np.zeros(len(index), dtype=bool)
+    width = NARROW * t.width[index]
+    veil = sign * np.maximum(sign * t.veil[index], 0.0)
+    start = np.c_[0.5 * (t.y[index] - veil), t.wave[index], np.log(width / FWHM_PER_SIGMA)]
+    return Found(index, sign, table[:, 2], table[:, 3:].astype(int), none, ~none, start)
 
 
 def _smooth(ready) -> int:

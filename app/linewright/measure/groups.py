@@ -15,6 +15,7 @@ from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, 
 
 REACH = 1.3  # widths on either side of a window's outer members
 CLOSE = 1.8  # features nearer than this many mean widths share a fit
+NARROWEST = 0.25  # line widths: interstellar lines of a rotating star
 BROAD = 2.5  # line widths beyond which only the core of a feature is fitted
 CORE = 0.35  # widths on either side of a core, at least one line width
 MOST = 6  # members of a group
@@ -212,7 +213,7 @@ class _Batch:
         high[..., 0] = np.where(sign > 0, big, 0.0)
         low[..., 1] -= 0.5 * width
         high[..., 1] += 0.5 * width
-        low[..., 2] = np.log(np.minimum(0.4 * narrow, 0.8 * width) / FWHM_PER_SIGMA)
+        low[..., 2] = np.log(np.minimum(NARROWEST * narrow, 0.8 * width) / FWHM_PER_SIGMA)
         high[..., 2] = np.log(np.maximum(1.8 * width, 1.6 * narrow) / FWHM_PER_SIGMA)
         return low, high
 
