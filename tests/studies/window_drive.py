@@ -55,9 +55,10 @@ class Driver:
             self.bench.view.select(int(self.random.choice(numbers)))
 
     def do_command(self) -> None:
-        kept = ("claim.", "edit.", "view.", "spectrum.slower", "spectrum.faster")
+        kept = ("claim.", "edit.", "fit.", "view.", "spectrum.slower", "spectrum.faster")
         ids = [i for i in self.bench.commands if i.startswith(kept)
-               and i not in ("claim.note", "view.goto")]
+               and i not in ("claim.note", "view.goto", "fit.limits", "fit.split_more",
+                            "fit.anchor_add")]
         self.bench.run(self.random.choice(ids))
 
     do_command.weight = 40

@@ -7,6 +7,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 import window_builders as build
+from astropy.table import Table
 from measured_session import nearest, session_of
 from PySide6.QtCore import QPoint, Qt
 from PySide6.QtTest import QTest
@@ -307,3 +308,18 @@ def test_an_anchor_outside_the_spectrum_is_refused(bench, qtbot):
     bench.window.refresher.anchors.add(5200.0, -1.0)
     assert "above zero" in bench.window.notices.current.text
     assert bench.session is before and not bench.tasks.busy("anchors")
+
+
+def test_the_window_writes_a_repeat_measurement(bench, qtbot, tmp_path):
+    """The same spectrum as a file of its own, in no stated medium: nothing differs."""
+    from linewright.window.acts import saving
+
+    build.write_text(bench.spectrum, tmp_path / "other.txt")
+    out = tmp_path / "again.ecsv"
+    saving.measure_again(bench, tmp_path / "other.txt", out)
+    qtbot.waitUntil(lambda: not bench.tasks.busy("again"), timeout=60000)
+    assert "features measured again" in bench.window.notices.current.text
+    assert "taken for air" in bench.window.notices.current.text
+    table = Table.read(out)
+    assert len(table) == len(bench.session.features)
+    assert np.nanmax(np.abs(table["ew_diff"] / table["ew_diff_err"])) < 1.0

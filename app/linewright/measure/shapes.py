@@ -89,7 +89,9 @@ _SHAPES = {
 
 def width_and_area(kind: str, params) -> tuple[float, float]:
     """(FWHM, area per unit height) of one component, Angstrom, read off the profile."""
-    s = np.exp(params[2])
+    s = float(np.exp(params[2]))
+    if kind == "gaussian":
+        return 2.3548200450309493 * s, float(np.sqrt(2.0 * np.pi)) * s
     half = 3.0 * s + (0.0 if EXTRA[kind] == 0 else 3.0 * np.exp(params[3]))
     reach = half * (1.0 if kind in ("gaussian", "rotational") else 60.0)
     x = np.r_[0.0, np.geomspace(1e-3 * s, 3.0 * reach, 4000)]

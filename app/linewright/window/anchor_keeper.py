@@ -34,7 +34,7 @@ class AnchorKeeper:
 
     def __init__(self, bench, view):
         self._bench, self._view = bench, view
-        self.shown = False
+        self.shown, self._desk = False, None
         self._acts: list[Act] = []
         self._chosen: tuple[int, float] | None = None  # segment, vacuum Angstrom
         view.hand.anchorActed.connect(self._acted)
@@ -53,6 +53,9 @@ class AnchorKeeper:
 
     def show(self, extra: Act | None = None) -> None:
         """Anchors and continuum as they are after the acts under way, and ``extra``."""
+        if self._desk is not self._bench.desk:
+            self._desk, self._chosen = self._bench.desk, None
+            self._acts.clear()
         if not self.shown or not self.usable():
             self._view.hand.show_anchors([], [], None, False)
             return
