@@ -197,6 +197,8 @@ def test_every_flag_has_words(solved):
     """The words that the measuring and the claiming set, by name."""
     from linewright.claims import consistency
     from linewright.claims.artefacts import SPIKE
+    from linewright.claims.band_claims import BAND
+    from linewright.claims.cores import CORE, CORE_REVERSAL
     from linewright.measure import table
     from linewright.measure.shapes import _SHAPES
     from linewright.window.panels import words
@@ -205,7 +207,8 @@ def test_every_flag_has_words(solved):
     assert {"broad", "off-velocity"} <= claimed and {"wing", "edge"} <= measured
     by_hand = {"hand", "cosmic-ray", "gap-edge", "artefact"}
     shapes = {s for s in _SHAPES if s != "gaussian"}
-    assert claimed | measured | by_hand | shapes | {SPIKE} <= set(words.FLAGS)
+    known = claimed | measured | by_hand | shapes | {SPIKE, BAND, CORE, CORE_REVERSAL}
+    assert known <= set(words.FLAGS)
     assert words.flags("broad wing").count("\n") == 1
     assert words.flag("my-own") == "my-own: said by a person"
 
