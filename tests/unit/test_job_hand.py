@@ -29,7 +29,7 @@ WAVE = 5000 + 0.02 * np.arange(6000)
 NOISE = 0.003
 SIGMA = 0.06
 PAIR = ((5040.0, 0.45), (5040.17, 0.3))  # two lines 1.2 FWHM apart
-TWIN = ((5060.0, 0.30), (5060.13, 0.28))  # so near that detection sees one
+TWIN = ((5060.0, 0.30), (5060.09, 0.28))  # so near that detection sees one
 
 
 def gaussian(centre, depth, sigma=SIGMA):
@@ -64,7 +64,7 @@ def within(fitted, wave, depth, sigmas=4.0):
 
 
 def test_a_split_finds_the_two_lines_and_keeps_the_number(spectrum, session):
-    number = nearest(session, TWIN[0][0] + 0.06)
+    number = nearest(session, TWIN[0][0] + 0.045)
     assert "blend" not in row(session, number).flags[0], "the machine sees one line here"
     two = split(spectrum, session, number)
     fresh = next(n for n in two.features.number.tolist() if n not in session.features.number)
@@ -79,7 +79,7 @@ def test_a_split_finds_the_two_lines_and_keeps_the_number(spectrum, session):
 
 
 def test_a_merge_takes_a_split_back_but_for_the_mark(spectrum, session):
-    number = nearest(session, TWIN[0][0] + 0.06)
+    number = nearest(session, TWIN[0][0] + 0.045)
     two = split(spectrum, session, number)
     fresh = int(two.features.number.max())
     one = merge(spectrum, two, (number, fresh))
@@ -284,7 +284,7 @@ def test_a_hit_of_one_sample_is_not_split(spectrum, session):
     spiked = session_of(hit)
     number = nearest(spiked, WAVE[1000])
     assert abs(row(spiked, number).wave[0] - WAVE[1000]) < 0.01
-    with pytest.raises(InputRefused, match="on one sample"):
+    with pytest.raises(InputRefused, match="on one sample|samples for"):
         split(hit, spiked, number)
     flags = tuple("spike" if n == number else f
                   for n, f in zip(spiked.features.number, spiked.features.flags))

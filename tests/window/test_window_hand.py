@@ -39,7 +39,7 @@ TWIN = 5240.0  # Angstrom, vacuum: two lines so near that detection sees one
 def with_twin(spectrum):
     s = spectrum.segments[0]
     flux = np.where(np.abs(s.wave - TWIN) < 1.0, 1.0 + 0.002 * np.sin(1e4 * s.wave), s.flux)
-    for centre, depth in ((TWIN - 0.05, 0.3), (TWIN + 0.05, 0.25)):
+    for centre, depth in ((TWIN - 0.035, 0.3), (TWIN + 0.035, 0.25)):
         flux = flux - depth * np.exp(-0.5 * ((s.wave - centre) / 0.05) ** 2)
     return replace(spectrum, segments=(replace(s, flux=flux),))
 
@@ -157,7 +157,7 @@ def test_split_merge_and_undo(bench, qtbot):
     two = bench.session
     pair = two.fit_of(number).features
     waves = [float(row_of(bench, n).wave[0]) for n in pair]
-    assert np.allclose(waves, [TWIN - 0.05, TWIN + 0.05], atol=0.01)
+    assert np.allclose(waves, [TWIN - 0.035, TWIN + 0.035], atol=0.01)
     assert bench.view.now.selected == number
     bench.run("fit.merge_next" if number == pair[0] else "fit.merge_previous")
     qtbot.waitUntil(lambda: len(bench.session.features) == count, timeout=20000)
