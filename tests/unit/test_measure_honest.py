@@ -148,3 +148,19 @@ def test_noise_correlated_in_a_crowd_is_not_taken_for_lines_nor_lines_for_noise(
         assert any("no uncertainty array" in w for w in measured.warnings)
         with_errors, _ = Lines(12.0, 0.3, 100.0, 200, 3.0, blur, 1).build(True)
         assert not measure_spectrum(with_errors).warnings
+
+
+def test_calcium_k_behind_two_clouds_is_one_line_with_two_on_it():
+    """Sample A star: the truth table has depth 0.8163 at 41.3 km/s, and clouds at -27.9 and
+    9.6 km/s of depth 0.39 and 0.38 (3933.6634 A in air, 3934.7770 in vacuum)."""
+    star = read_spectrum(SAMPLES / "a_star.txt.gz")
+    f = measure_spectrum(star, MeasureOptions(ranges=((3900.0, 4060.0),))).features
+    line = 3934.7770 * (1 + np.array([41.3, -27.9, 9.6]) / 299792.458)
+    strong, one, two = (int(np.argmin(np.abs(f.wave - w))) for w in line)
+    assert np.abs(f.wave[[strong, one, two]] - line).max() < 0.05
+    assert f.depth[strong] == pytest.approx(0.8163, abs=0.03)
+    assert {"voigt", "core-wings", "rotational"} & set(f.flags[strong].split())
+    assert f.depth[[one, two]] == pytest.approx([0.39, 0.38], abs=0.1)
+    near = (np.abs(f.wave - line[0]) < 1.0) & (f.depth > 0.2)
+    assert near.sum() == 3
+    assert not np.any((f.sign > 0) & (f.depth < 0))

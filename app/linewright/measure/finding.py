@@ -13,7 +13,8 @@ from .guess import first_guess
 from .narrow import SHARE as NARROW
 from .narrow import narrow_extrema
 from .relevel import relevelled
-from .table import fitted_table
+from .strong import with_strong_lines
+from .table import WING, fitted_table
 from .veil import owners, running_min
 
 MISFIT = 0.12  # residuals below this share of a neighbour's depth may be its own misfit
@@ -67,17 +68,17 @@ def segment_features(ready, filtered, threshold: float, segment: int, tick=lambd
         if better is None:
             break
         ready = better
-        found = replace(found, start=fitted.params)
+        found = replace(found, start=_signed(fitted.params, found.sign))
         fitted = _fit(ready, found)
     tick()
     more = _second(ready, filtered, threshold, found, fitted)
     tick()
     if len(more.index):
-        found = replace(found, start=fitted.params).joined(more)
+        found = replace(found, start=_signed(fitted.params, found.sign)).joined(more)
         fitted = _fit(ready, found)
-    keep = _trusted(found, fitted)
+    keep = _trusted(ready.trace, found, fitted)
     table = fitted_table(ready.trace, ready.nodes, found.take(keep), fitted.take(keep), segment)
-    return table, ready
+    return with_strong_lines(table, ready, tick), ready
 
 
 def _collect(ready, outputs, threshold):
@@ -180,7 +181,17 @@ def _away(found, fitted, wave, sign, least) -> np.ndarray:
     return out
 
 
-def _trusted(found, fitted) -> np.ndarray:
-    """All but the residual finds whose fitted depth is within its error."""
+def _trusted(trace, found, fitted) -> np.ndarray:
+    """All but the residual finds whose fitted depth is within its error, and the fits that
+    failed and left nothing beyond the broad wing they stand on."""
     weak = np.abs(fitted.params[:, 0]) < LEAST_DEPTH * fitted.errors[:, 0]
-    return np.flatnonzero(~(found.late & (weak | fitted.trouble)))
+    wing = np.abs(np.interp(fitted.params[:, 1], trace.wave, trace.veil)) > WING
+    empty = ~found.own & wing & weak & fitted.trouble
+    return np.flatnonzero(~(empty | found.late & (weak | fitted.trouble)))
+
+
+def _signed(params, sign) -> np.ndarray:
+    """Parameters to start from, none of height zero, which would lose the sign."""
+    out = params.copy()
+    out[:, 0] = sign * np.maximum(np.abs(params[:, 0]), 1e-9)
+    return out
