@@ -1,8 +1,8 @@
 """Strong lines that a sum of Gaussians takes apart: one profile and what stands on it.
 
 Ca II K of a rotating star behind interstellar clouds is one broad saturated line with
-narrow ones on it. Where the Gaussian fits of such a line failed, one broad component of
-each shape is fitted, narrow Gaussians are added at the largest residual, and shape and
+narrow ones on it. Where the Gaussian fits of such a line failed, broad
+components are fitted, narrow Gaussians are added at the largest residual, and shape and
 number are those of least BIC = chi2 + k ln n (Schwarz 1978); the rows change only where
 that also beats the sum of Gaussians.
 """
@@ -25,7 +25,8 @@ SPAN = 1.6  # widths at half depth fitted on either side
 MOST_NARROW = 8
 MOST_LINES = 12  # strong lines of a segment
 CLEAR = 10.0  # by which the criterion must prefer the new model
-WHOLE = 0.75  # share of the deepest sample that the strong component makes
+SURE = 5.0  # errors of depth beyond which an old row must not be lost
+WHOLE = 0.9  # share of the deepest sample that the strong component makes
 
 
 @dataclass(frozen=True, eq=False)
@@ -96,12 +97,24 @@ def _replaced(table, ready, smooth, span) -> FeatureTable:
                  float(np.median(t.width[used])))
     old = component_sum(view.x, params[inside]) + np.where(t.veil[used] > 0, t.veil[used], 0)
     old_bic = view.chi2(old) / length + 3 * inside.sum() * np.log(len(used) / length)
-    best = min((view.line(shape, wide) for shape in EXTRA), key=lambda one: one.bic)
+    best = view.line(wide, old_bic - CLEAR)
     whole = best.broad[0] > WHOLE * smooth[first:last].max()
+    whole &= abs(best.broad[1] - 0.5 * (view.x[0] + view.x[-1])) < 0.5 * wide
     if not whole or best.bic > old_bic - CLEAR:
         return table
-    kept = table.take(~inside)
-    return _merged(kept, _rows(best, view, ready, table, inside))
+    rows = _rows(best, view, ready, table, inside)
+    broad = rows.fwhm[np.argmax(rows.ew)] > WIDE * view.width
+    if not broad or not _all_there(table.take(inside), rows, view.width):
+        return table
+    return _merged(table.take(~inside), rows)
+
+
+def _all_there(old: FeatureTable, new: FeatureTable, width: float) -> bool:
+    """Whether every old row whose fit held has a new one within half a line width."""
+    held = np.array(["fallback" not in f.split() for f in old.flags], dtype=bool)
+    held &= np.abs(old.depth) > SURE * old.depth_err
+    apart = np.abs(old.wave[held][:, None] - new.wave[None])
+    return bool(np.all(apart.min(axis=1, initial=np.inf) < 0.5 * width))
 
 
 @dataclass(frozen=True, eq=False)
@@ -117,22 +130,30 @@ class _View:
     def chi2(self, model) -> float:
         return float(np.sum(((self.y - model) / self.noise) ** 2))
 
-    def line(self, shape: str, wide: float) -> _Line:
-        """The broad component with as many narrow ones as the criterion asks for."""
-        middle = 0.5 * (self.x[0] + self.x[-1])
-        start = np.r_[self.y.max(), middle, np.log(wide / FWHM_PER_SIGMA / 1.5),
-                      [np.log(0.4 * wide)] * EXTRA[shape]]
-        best = self.fit(shape, start)
+    def line(self, wide: float, least: float) -> _Line:
+        """A Voigt profile with as many narrow lines on it as the criterion asks for, then the
+        other shapes with those; wide: its width to start from; least: BIC to be reached."""
+        best = self.fit("voigt", self.start("voigt", wide))
         for _ in range(MOST_NARROW):
-            rest = running_mean(self.y - self.model(shape, best.flat)[0], 3) / self.noise
+            if best.broad[0] < 0.5 * self.y.max():
+                break
+            rest = running_mean(self.y - self.model(best.shape, best.flat)[0], 3) / self.noise
             k = int(np.argmax(np.abs(rest)))
             more = np.r_[best.flat, max(rest[k] * self.noise[k], 0.01), self.x[k],
                          np.log(0.6 * self.width / FWHM_PER_SIGMA)]
-            new = self.fit(shape, more)
+            new = self.fit(best.shape, more)
             if new.bic > best.bic:
                 break
             best = new
-        return best
+        if best.bic > least:
+            return best
+        others = (self.fit(s, np.r_[self.start(s, wide), best.narrow.ravel()]) for s in EXTRA)
+        return min((best, *others), key=lambda one: one.bic)
+
+    def start(self, shape: str, wide: float):
+        middle = 0.5 * (self.x[0] + self.x[-1])
+        return np.r_[self.y.max(), middle, np.log(wide / FWHM_PER_SIGMA / 1.5),
+                     [np.log(0.4 * wide)] * EXTRA[shape]]
 
     def model(self, shape, flat):
         k = 3 + EXTRA[shape]
