@@ -20,6 +20,7 @@ from .roll_call import poisson_binomial_tail
 
 MOST = 3  # components of a kind
 CHANCE = 0.003  # expected chance coincidences that two lines or more must beat
+OWN_CHANCE = 0.01  # the same for a star's own gas, whose few lines are the first to be expected
 LONE_CHANCE = 0.05  # and one alone; what is left of it is the claim's doubt
 CLOUD_SPAN = 250.0  # km/s about the spectrum's zero
 NEXT_CLOUD = 60.0  # km/s about a cloud within which a single line may show another
@@ -117,12 +118,21 @@ def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
     clouds, used = [], []
     for mean, error, members in _clusters(marks):
         chance = _coincidence(setting, unexplained, marks, members, CLOUD_SPAN)
+        if not _in_the_open(f, marks, members):
+            continue
         if chance < CHANCE and abs(mean - stellar_velocity) >= SAME and len(clouds) < MOST:
             clouds.append(Component(INTERSTELLAR, mean, error))
             used += marks.feature[members].tolist()
     if clouds and len(clouds) < MOST:
         clouds += _lone_cloud(setting, marks, used, (clouds, stellar_velocity))
     return clouds
+
+
+def _in_the_open(f, marks: _Marks, members) -> bool:
+    """Whether two lines at least stand outside the wings of stronger ones: inside them the
+    same bump of two strong lines of one species looks like a cloud."""
+    open_ = [m for m in members if "wing" not in f.flags[marks.feature[m]].split()]
+    return len(np.unique(marks.row[open_])) >= 2
 
 
 def _lone_cloud(setting, marks: _Marks, used, known) -> list[Component]:
@@ -210,7 +220,7 @@ def _own_gas(setting, features, rows, star: Component, population: int) -> list[
     found, used = [], []
     for mean, error, members in _clusters(marks):
         chance = _coincidence(setting, features, marks, members, STAR_SPAN)
-        if chance < CHANCE and len(found) < MOST:
+        if chance < OWN_CHANCE and len(found) < MOST:
             spread = CENTRING * np.median(f.fwhm[marks.feature[members]] / f.wave[marks.feature[members]])
             found.append(Component(population, mean, max(error, float(spread) * C_KM_S)))
             used += marks.feature[members].tolist()

@@ -23,6 +23,7 @@ from .mixture import Solution, solve_mixture
 from .model import Claim, Orphan, RollRow, VelocityResult
 from .options import ClaimOptions
 from .orphans import rank_orphans
+from .populations import EMITTED, OUTFLOW
 from .populations import HYDROGEN, POPULATIONS, STELLAR, UNGRADED, Component, assemble
 from .problem import Problem
 from .profiles import shape_warning, shaped
@@ -58,14 +59,16 @@ class Identification:
 
     def shown(self) -> tuple[tuple[str, float, float], ...]:
         """(origin, km/s, error) of the components that explain at least one feature, and of
-        the star; hydrogen counts as the star's."""
+        the star; hydrogen, emission and wind count as the star's: a second stellar velocity
+        is a second star."""
         named = [c for c in self.claims if c.probability >= 0.5 and c.candidates]
         used = {(c.origin, c.candidates[0].velocity) for c in named}
         star = {("stellar", c.velocity) for c in self.components if c.population == STELLAR}
         rows = [
             (c.origin, c.velocity, c.error)
             for c in self.components
-            if c.population != HYDROGEN and (c.origin, c.velocity) in used | star
+            if c.population not in (HYDROGEN, EMITTED, OUTFLOW)
+            and (c.origin, c.velocity) in used | star
         ]
         return tuple(dict.fromkeys(rows))
 
