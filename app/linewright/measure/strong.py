@@ -175,7 +175,7 @@ class _View:
             lambda p: (self.model(shape, p)[0] - self.y) / self.noise,
             np.clip(start, low + 1e-9, high - 1e-9),
             jac=lambda p: self.model(shape, p)[1] / self.noise[:, None],
-            bounds=(low, high), x_scale="jac", max_nfev=60,
+            bounds=(low, high), x_scale="jac", max_nfev=60, ftol=1e-4, xtol=1e-5,
         )
         free = max(len(self.x) - len(start), 1)
         scale = self.length * max(1.0, 2 * done.cost / free)
