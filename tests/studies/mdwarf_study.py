@@ -7,7 +7,8 @@ extracted from VALD: test-only, never shipped), molecules among its lines. A cla
 where a line of its species within 0.04 A of the claimed one is the deepest within 0.35 FWHM of
 the feature in either mask, a main contributor where it has half that depth or more, minor below,
 and unknown where neither mask has it. The same is done 60 km/s away, where the judge should say no:
-what he then bears out is chance. 'all' prints every claim, else only those not borne out.
+what he then bears out is chance. Band heads are no lines: those claimed are listed apart. 'all'
+prints the lines borne out as well, by species.
 """
 
 from __future__ import annotations
@@ -73,7 +74,7 @@ def judged(masks, session, away: float = 0.0):
     """[(row, verdict, deepest rival)] of the confident claims; the kindest of the masks."""
     f, out = session.features, []
     for i, claim in enumerate(session.claims):
-        if claim.probability < 0.95 or claim.line is None:
+        if claim.probability < 0.95 or claim.line is None or claim.origin == "molecular":
             continue
         factor = 1 + away / C_KM_S
         place = f.wave[i] / (1 + claim.line.velocity / C_KM_S) * factor
@@ -91,15 +92,36 @@ def report(session, results, every: bool) -> None:
         claim = session.claims[i]
         tally[word] += 1
         by_species.setdefault(claim.species, Counter())[word] += 1
-        if every or word > 1:
+        if word > 0:
             print(f"   {vacuum_to_air(claim.line.wave):.3f} {claim.species} {claim.origin} "
                   f"E_low {claim.line.e_low:.2f} P {claim.probability:.3f} depth "
                   f"{f.depth[i]:.2f}: {WORDS[word]}, deepest there {rival}")
     for species, counts in sorted(by_species.items(), key=lambda x: -sum(x[1].values())):
         print(f"   {species}: " + ", ".join(f"{n} {WORDS[w]}" for w, n in sorted(counts.items())))
+    if every:
+        listed(session, results)
     n = len(results)
     for word in range(4):
         print(f"{WORDS[word]} {rate(tally[word], n)}")
+
+
+def listed(session, results) -> None:
+    """Air wavelengths of the lines borne out, by species."""
+    places: dict[str, list[str]] = {}
+    for i, word, _ in results:
+        if word == 0:
+            claim = session.claims[i]
+            places.setdefault(claim.species, []).append(f"{vacuum_to_air(claim.line.wave):.2f}")
+    for species, waves in places.items():
+        print(f"- {species}: {', '.join(waves)}")
+
+
+def bands(session) -> None:
+    """Band heads claimed with confidence: molecule, head (air), P."""
+    for claim in session.claims:
+        if claim.origin == "molecular" and claim.probability >= 0.95:
+            print(f"   band head {claim.species} {vacuum_to_air(claim.line.wave):.1f} "
+                  f"P {claim.probability:.3f}")
 
 
 def main(folder: str, every: bool = False) -> None:
@@ -114,6 +136,7 @@ def main(folder: str, every: bool = False) -> None:
         here = (f.wave >= low) & (f.wave < low + 500)
         if here.any():
             print(f"   {low}-{low + 500} A: {here.sum()} features, confident {np.mean(p[here] >= 0.95):.3f}")
+    bands(session)
     masks = [read_mask(Path(folder), name) for name in ("M2", "M5")]
     report(session, judged(masks, session), every)
     away = Counter(word for _, word, _ in judged(masks, session, AWAY))

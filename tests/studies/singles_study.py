@@ -23,7 +23,7 @@ from linewright.spectra.medium import C_KM_S
 from linewright.spectra.reading import read_spectrum
 
 STARS = 200
-START, LEAST, MOST = 4300.0, 300.0, 1000.0  # Angstrom: windows begin here, their lengths
+START, LEAST, MOST = 4300.0, 250.0, 800.0  # Angstrom: windows begin here, their lengths
 REAL = {
     "sun_r47000.txt": "air", "mdwarf_r115000_s1d.fits": None, "gdwarf_r2000_18hdu.fits": None,
     "ttauri_r40000_blue.fits": None, "fstar_hband_r22500.fits": None,
