@@ -19,6 +19,11 @@ from .veil import owners, running_min
 
 MISFIT = 0.12  # residuals below this share of a neighbour's depth may be its own misfit
 RELEVEL = 3  # times at most that the continuum is set again
+BESIDE = 1.5  # line widths within which features are members of one blend
+THIN = 0.6  # line widths: narrower than the star's own lines can be
+SLIVER, CONTRAST = 0.3, 8.0  # a thin line: of the deepest member's depth; errors of depth
+EQUAL = 0.5  # a member of a close pair: of the deepest member's depth
+SHARP = 1.3e-4  # of the wavelength (40 km/s): broader lines are blends of unknown number
 LEAST_DEPTH = 3.0  # sigmas of depth below which a feature found in residuals is dropped
 
 
@@ -62,6 +67,10 @@ def segment_features(ready, filtered, threshold: float, segment: int, tick=lambd
     found = _first(ready, filtered, threshold)
     tick()
     fitted = _fit(ready, found)
+    worthy = _worthy(ready.trace, found, fitted)
+    if not worthy.all():
+        found = found.take(worthy)
+        fitted = _fit(ready, found)
     for _ in range(RELEVEL if ready.moves else 0):
         tick()
         better = relevelled(ready, found, fitted)
@@ -179,6 +188,29 @@ def _away(found, fitted, wave, sign, least) -> np.ndarray:
         )
         out[which] = near >= least[which]
     return out
+
+
+def _worthy(trace, found, fitted) -> np.ndarray:
+    """False for finds of the narrow filter that are slivers of the blend they stand in.
+
+    A rotating star's blends are no sums of Gaussians: what is left of them looks narrow,
+    but is shallow beside the members of the blend; an interstellar line is not.
+    """
+    depth, place = np.abs(fitted.params[:, 0]), fitted.params[:, 1]
+    width = np.interp(place, trace.wave, trace.width)
+    deepest = np.zeros(len(depth))
+    for step in (-3, -2, -1, 1, 2, 3):
+        near = np.roll(place, step)
+        beside = np.abs(near - place) < BESIDE * width
+        beside &= np.roll(found.sign, step) == found.sign
+        deepest = np.maximum(deepest, np.where(beside, np.roll(depth, step), 0.0))
+    own_width = FWHM_PER_SIGMA * np.exp(fitted.params[:, 2]) / width
+    contrast = np.where(width < SHARP * place, 1.0, 2.0)
+    thin = own_width < THIN / contrast**0.5
+    sure = (depth > contrast * CONTRAST * fitted.errors[:, 0]) & ~fitted.trouble
+    pair = (own_width >= THIN) & (depth > EQUAL * deepest) & (width < SHARP * place)
+    line = thin & sure & (depth > contrast * SLIVER * deepest) | pair
+    return ~found.late | line
 
 
 def _trusted(trace, found, fitted) -> np.ndarray:
