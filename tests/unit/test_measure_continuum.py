@@ -56,6 +56,23 @@ def test_emission_lines_lift_nothing():
         assert f.depth[k] == pytest.approx(-height / 2.0, rel=0.1)
 
 
+def test_the_edge_of_a_recombination_continuum_is_followed():
+    """A drop of 40 per cent within 80 A, as at the Paschen limit of a nebula seen at R 3000,
+    with bright lines on both sides: no trough is made of it."""
+    rng = np.random.default_rng(25)
+    wave = 4600 + 0.85 * np.arange(5600)
+    level = 1.2 - 0.5 / (1 + np.exp(-(wave - 8300) / 20))
+    flux = level * (1 + 0.004 * rng.standard_normal(len(wave)))
+    for centre in rng.uniform(4620, 9340, 160):
+        flux += 10 ** rng.uniform(-1.5, 2) * np.exp(-0.5 * ((wave - centre) / 1.1) ** 2)
+    measured = measure_spectrum(spectrum_of(wave, flux))
+    found = measured.segments[0].continuum_at(wave)
+    far = np.abs(wave - 8300) > 90
+    assert np.percentile(np.abs(found / level - 1)[far], 95) < 0.02
+    troughs = measured.features.wave[measured.features.sign > 0]
+    assert len(troughs) <= 3  # one false feature is expected
+
+
 def test_a_blaze_is_followed():
     rng = np.random.default_rng(24)
     blaze = 1e4 * np.sinc((WAVE - 5300) / 700) ** 2

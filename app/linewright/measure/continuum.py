@@ -14,6 +14,9 @@ from .level import SAMPLES, block_levels
 
 ROUNDS = 2
 ROUGH = 1e-3  # run of the continuum inside a block that straight nodes cannot follow
+JUMP = 0.2  # change of the logarithm from node to node that asks for nodes closer together
+HALVINGS = 3
+LEAST = 60  # samples of a block
 
 
 @dataclass(frozen=True)
@@ -25,7 +28,7 @@ class Spacing:
     length: float = 1.0
 
 
-def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
+def block_edges(wave, good, size: float, least: int = LEAST) -> list[slice]:
     """Index slices of about ``size`` Angstrom holding at least ``least`` usable samples."""
     count = max(1, int(round((wave[-1] - wave[0]) / size)))
     edges = np.searchsorted(wave, np.linspace(wave[0], wave[-1], count + 1))
@@ -46,21 +49,61 @@ def block_edges(wave, good, size: float, least: int = 60) -> list[slice]:
 def fit_continuum(wave, flux, good, sigma, spacing: Spacing):
     """Nodes (wave, flux, relative error) of the pseudo-continuum of one segment.
 
-    wave, flux: shape (n,); good: usable; sigma: noise in flux units, shape (n,).
+    wave, flux: shape (n,); good: usable; sigma: noise in flux units, shape (n,). Under
+    emission lines, blocks at a jump (the edge of a recombination continuum, as at the
+    Paschen limit) are halved until the nodes follow it.
     """
     blocks = [np.arange(b.start, b.stop)[good[b]] for b in block_edges(wave, good, spacing.size)]
+    level = _smooth(np.array([np.quantile(flux[b], 0.7) for b in blocks]))
+    bright = in_emission(flux[good])
+    # beside the wings of a bright line a node looks like a dip: none is bridged there
+    settle = (lambda centre, level: level) if bright else bridge_dips
+    nodes = _nodes((wave, flux, sigma), blocks, level, spacing.length, settle)
+    for _ in range(HALVINGS if bright else 0):
+        halved = _halved(blocks, nodes[1])
+        if len(halved) == len(blocks):
+            break
+        blocks = halved
+        level = np.interp([wave[b].mean() for b in blocks], *nodes[:2])
+        nodes = _nodes((wave, flux, sigma), blocks, level, spacing.length, settle)
+    return nodes
+
+
+def in_emission(flux) -> bool:
+    """Whether the highest samples stand out far more than the lowest: bright lines, between
+    which the samples speak for themselves. flux: usable samples."""
+    low, middle, high = np.quantile(flux, [0.002, 0.5, 0.998])
+    return bool(high - middle > 5.0 * (middle - low))
+
+
+def _halved(blocks, level) -> list[np.ndarray]:
+    """``blocks`` with those on either side of a jump cut in two, where enough is left."""
+    jump = np.abs(np.diff(np.log(level))) > JUMP
+    beside = np.r_[jump, False] | np.r_[False, jump]
+    out = []
+    for block, cut in zip(blocks, beside, strict=True):
+        out += np.array_split(block, 2) if cut and len(block) >= 2 * LEAST else [block]
+    return out
+
+
+def _nodes(samples, blocks, level, length: float, settle):
+    """(wave, flux, relative error) of one node for each block of sample indices.
+
+    samples: (wave, flux, sigma); level: of each to start from; settle: takes broad
+    lines out of (centre, level).
+    """
+    wave, flux, sigma = samples
     centre = np.array([wave[b].mean() for b in blocks])
     floor = np.array([np.median(sigma[b]) for b in blocks])
-    level = _smooth(np.array([np.quantile(flux[b], 0.7) for b in blocks]))
-    weight = np.array([len(b) / spacing.length / SAMPLES for b in blocks])
+    weight = np.array([len(b) / length / SAMPLES for b in blocks])
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
     for _ in range(ROUNDS):
         level = np.maximum(level, floor)
         run = smooth_run(wave, centre, level)
-        samples = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])
+        ratios = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])
         noise = np.array([np.hypot(np.median(sigma[b] / run[b]), ROUGH) for b in blocks])
-        ratio, error = block_levels(samples, noise, weight)
-        level = bridge_dips(centre, np.maximum(level * ratio, floor))
+        ratio, error = block_levels(ratios, noise, weight)
+        level = settle(centre, np.maximum(level * ratio, floor))
     bent = np.minimum(0.25 * np.abs(_apart(centre, level)), 0.03)
     return centre, level, np.hypot(np.minimum(error, 0.03), bent)
 
