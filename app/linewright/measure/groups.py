@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, profiles, spread_noise
+from .veil import REACH as VEIL_REACH
 
 REACH = 1.3  # widths on either side of a window's outer members
 CLOSE = 1.8  # features nearer than this many mean widths share a fit
@@ -163,16 +164,27 @@ def backgrounds(trace, params, own):
     """(all components, all components with the veil under the narrow ones), each (n,)."""
     narrow = component_sum(trace.wave, params[~own])
     source = component_sum(trace.wave, params[own])
-    veiled = np.where(trace.veil >= 0, np.maximum(trace.veil, source),
-                      np.minimum(trace.veil, source))
+    # the veil follows the wings of what is wider than its reach; a Gaussian fitted to the
+    # core alone says nothing of them
+    broad = own & _broader(trace, params, VEIL_REACH)
+    core = component_sum(trace.wave, params[own & ~broad])
+    core += component_sum(trace.wave, params[broad], CORE * FWHM_PER_SIGMA)
+    veiled = np.where(trace.veil >= 0, np.maximum(trace.veil, core),
+                      np.minimum(trace.veil, core))
     return narrow + source, narrow + veiled
+
+
+def _broader(trace, params, widths: float):
+    """True for components wider than ``widths`` line widths, (m,)."""
+    at = np.minimum(np.searchsorted(trace.wave, params[:, 1]), len(trace.wave) - 1)
+    return FWHM_PER_SIGMA * np.exp(params[:, 2]) > widths * trace.width[at]
 
 
 def _reach(trace, params, rows, limits, own):
     """First and last+1 sample of each group's window; only the core of broad sources."""
     fwhm = FWHM_PER_SIGMA * np.exp(params[:, 2])
     at = np.minimum(np.searchsorted(trace.wave, params[:, 1]), len(trace.wave) - 1)
-    broad = own & (fwhm > BROAD * trace.width[at])
+    broad = own & _broader(trace, params, BROAD)
     core = np.maximum(CORE * fwhm, trace.width[at])
     half = np.where(broad, core, REACH * fwhm)
     low = (params[:, 1] - half)[rows].min(axis=1)
