@@ -58,7 +58,7 @@ def reliability(plt, data) -> None:
         axis.set(xlim=(0, 1), ylim=(0, 1.02), xlabel="mean probability of the bin", title=title)
         axis.set_aspect("equal", adjustable="box")
     axes[0].set_ylabel("share that was right")
-    axes[0].legend(loc="upper left", fontsize=8)
+    axes[1].legend(loc="lower right", fontsize=8)
     save(figure, "reliability.svg")
 
 
