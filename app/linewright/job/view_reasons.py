@@ -69,7 +69,7 @@ def what_would_change(session: Session, row: int, species: str = "") -> WhatChan
     furthest = strongest_fact(claim, place, species)
     if furthest is None:
         return WhatChanges((), (), False)
-    words = f"no single fact would change it; furthest goes: {furthest.sentence()}"
+    words = f"no single fact would change it; the one that counts most: {furthest.sentence()}"
     return WhatChanges((words,), (furthest,), False)
 
 

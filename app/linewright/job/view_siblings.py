@@ -6,12 +6,13 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..lines.catalogue import LineCatalogue
+from ..lines.catalogue import ORIGINS, LineCatalogue
 from ..session.model import Candidate, Session
 from ..spectra.medium import C_KM_S, from_medium, to_medium
 from ..spectra.spectrum import Spectrum
 
 COUNT = 6
+OWN_LINES = ("telluric", "interstellar")  # origins whose lines are not the star's
 WIDEST = 3000.0  # km/s: the wings of hydrogen in a hot star
 LEAST_SIGMA = 3.0
 MAD_TO_SIGMA = 1.4826  # of a normal distribution
@@ -33,6 +34,16 @@ class SiblingStrip:
     predicted: float
 
 
+def sibling_velocity(session: Session, candidate: Candidate, rake: float) -> float:
+    """km/s at which a candidate's siblings stand: its own component's, moved as far as the
+    rake was moved from the spectrum's velocity; the air and the clouds do not move with it."""
+    if candidate.origin in OWN_LINES:
+        return candidate.velocity
+    found = session.velocity.velocity
+    moved = rake - found if np.isfinite(found) else np.nan
+    return float(candidate.velocity + moved) if np.isfinite(moved) else rake
+
+
 def sibling_strips(
     spectrum: Spectrum,
     session: Session,
@@ -52,8 +63,10 @@ def sibling_strips(
     (catalogue, depth), species = predicted, candidate.species
     if species not in catalogue.species_names:
         return []
-    code = catalogue.species_names.index(species)
-    rows = _within(spectrum, catalogue, np.nonzero(catalogue.species == code)[0], velocity)
+    mine = catalogue.species == catalogue.species_names.index(species)
+    if candidate.origin in OWN_LINES:
+        mine &= catalogue.origin == ORIGINS.index(candidate.origin)
+    rows = _within(spectrum, catalogue, np.nonzero(mine)[0], velocity)
     strength = np.nan_to_num(np.asarray(depth)[rows], nan=0.0)
     half = half_width(session, float(np.median(catalogue.wave[rows])) if len(rows) else 5000.0)
     if fwhm > 0:

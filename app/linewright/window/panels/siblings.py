@@ -6,7 +6,7 @@ from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from ...job.view_breakdown import siblings_words
-from ...job.view_siblings import said_now, sibling_strips
+from ...job.view_siblings import OWN_LINES, said_now, sibling_strips, sibling_velocity
 from ..plot import SiblingStrips, Strip
 from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
 
@@ -84,7 +84,7 @@ class SiblingsBox(QWidget):
         if not ready or bench.spectrum is None:
             self.clear()
             return
-        velocity = candidate.velocity if candidate.origin == "telluric" else bench.view.now.velocity
+        velocity = sibling_velocity(session, candidate, bench.view.now.velocity)
         fwhm = float(session.features.fwhm[bench.selected_row()])
         made_of = (session.features, session.continuum, bench.depth, bench.spectrum)
         key = (candidate.species, candidate.wave, velocity, fwhm)
@@ -100,7 +100,8 @@ class SiblingsBox(QWidget):
         else:
             self._found = said_now(self._found, session, velocity, candidate.species)
         self._said = (session.claims, bench.theme.name)
-        roll = next((r for r in session.roll_call if r.species == candidate.species), None)
+        named = "" if candidate.origin in OWN_LINES else candidate.species  # the Roll call's are the star's
+        roll = next((r for r in session.roll_call if r.species == named), None)
         self._tell(*siblings_words(roll, session.spectrum.medium))
         self._show(candidate)
 

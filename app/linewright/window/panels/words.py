@@ -19,6 +19,7 @@ def number(value: float, digits: int, signed: bool = False) -> str:
     """A number with a true minus sign; an empty cell where it was not measured."""
     if value is None or not math.isfinite(value):
         return ""
+    value = round(value, digits) + 0.0  # no minus sign before a zero
     text = f"{value:+.{digits}f}" if signed else f"{value:.{digits}f}"
     return text.replace("-", "−")
 

@@ -1,0 +1,53 @@
+"""Where a candidate's siblings are looked for: the star's lines move with the rake, the lines of
+the air and of the clouds between the stars do not."""
+
+from __future__ import annotations
+
+from types import SimpleNamespace
+
+import numpy as np
+import pytest
+
+from linewright.job.view_siblings import sibling_strips, sibling_velocity
+from linewright.lines.loading import load_catalogue
+from linewright.resources import samples_dir
+from linewright.spectra.reading import read_spectrum
+
+
+def session_at(velocity):
+    found = SimpleNamespace(velocity=velocity)
+    return SimpleNamespace(velocity=found, features=_Empty(), continuum=(), claims=())
+
+
+@pytest.mark.parametrize(("origin", "expected"), [
+    ("stellar", 46.3), ("interstellar", 41.3), ("telluric", 41.3),
+])  # fmt: skip
+def test_only_stellar_siblings_follow_the_rake(origin, expected):
+    candidate = SimpleNamespace(origin=origin, velocity=41.3)
+    assert sibling_velocity(session_at(40.0), candidate, 45.0) == pytest.approx(expected)
+
+
+def test_without_a_velocity_the_rake_decides():
+    candidate = SimpleNamespace(origin="stellar", velocity=0.0)
+    assert sibling_velocity(session_at(float("nan")), candidate, 12.0) == 12.0
+
+
+def test_siblings_of_an_interstellar_line_rise_from_the_ground_state():
+    """Na I lines of 2.1 eV, such as 5682 A, never arise in interstellar gas: both D lines only."""
+    star = read_spectrum(samples_dir() / "a_star.txt.gz")
+    catalogue = load_catalogue()
+    candidate = SimpleNamespace(
+        species="Na I", origin="interstellar", wave=5897.558, velocity=9.6,
+        depth_predicted=float("nan"))  # fmt: skip
+    depth = np.full(len(catalogue), 0.5)
+    strips = sibling_strips(star, session_at(41.3), (catalogue, depth), candidate, 9.6)
+    assert [round(s.wave, 1) for s in strips] == [5890.0]  # air, NIST ASD 5889.951
+
+
+class _Empty:
+    """Features of known width, none of them in the strips."""
+
+    fwhm = np.full(5, 0.3)
+
+    def __len__(self):
+        return 0
