@@ -20,7 +20,7 @@ CONTRACT = (
 ).split(", ")
 METADATA = (
     "medium, frame, velocity_kms, velocity_err_kms, temperature_k, coverage, spectrum_sha256, "
-    "linewright_version, temperatures"
+    "linewright_version, temperatures, instrument_width_from"
 ).split(", ")
 
 
@@ -51,6 +51,28 @@ def test_ledger_columns_and_metadata_follow_the_contract(made, tmp_path):
     adopted, growth = table.meta["temperatures"]
     assert (adopted["label"], adopted["value"], adopted["error"]) == ("adopted", 5500.0, 90.0)
     assert growth["note"] == "40 lines" and growth["used"] is True
+
+
+def test_intrinsic_widths_follow_the_contract_columns(made):
+    """With a resolving power given: fwhm^2 = intrinsic^2 + (wave/R)^2 (Gaussians)."""
+    given = replace(made, options=made.options | {"resolution": 50_000.0})
+    table = ledger.ledger_table(given)
+    assert table.colnames[len(CONTRACT):] == [
+        "fwhm_intrinsic", "fwhm_intrinsic_err", "fwhm_instrument"]
+    assert {str(table[n].unit) for n in table.colnames[len(CONTRACT):]} == {"Angstrom"}
+    assert table.meta["instrument_width_from"] == "resolving power given"
+    instrument = made.features.wave / 50_000.0
+    np.testing.assert_allclose(table["fwhm_instrument"], instrument)
+    own = table["fwhm_intrinsic"]
+    seen = ~own.mask
+    assert seen.any()
+    np.testing.assert_allclose(np.hypot(own, instrument)[seen], made.features.fwhm[seen])
+    np.testing.assert_array_equal(seen, ~table["fwhm_intrinsic_err"].mask)
+    broad = made.features.fwhm - instrument > 3 * made.features.fwhm_err
+    np.testing.assert_array_equal(seen, broad)
+    unknown = ledger.ledger_table(made)
+    assert unknown["fwhm_intrinsic"].mask.all() and unknown["fwhm_instrument"].mask.all()
+    assert unknown.meta["instrument_width_from"] == "not known"
 
 
 def test_absent_numbers_are_masked_never_zero(made, tmp_path):

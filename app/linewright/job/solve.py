@@ -34,6 +34,7 @@ from .observer_frame import frame_doubts
 from .options import SolveOptions
 from .temperatures import colour_readings
 from .template import at_velocity, disagreement, template_velocity
+from .view_width import kept_widths
 
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
 
@@ -72,7 +73,7 @@ def solve(
         session,
         temperatures=session.temperatures + _colours(spectrum, measurement, session),
         continuum=_continuum(measurement),
-        measurement=_measured(measurement),
+        measurement=_measured(measurement) | kept_widths(measurement, spectrum.resolution),
         warnings=_join(
             spectrum.warnings,
             measurement.warnings,

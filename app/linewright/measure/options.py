@@ -36,6 +36,8 @@ class SegmentMeasure:
     correlation: autocorrelation of the noise at lags 0, 1, ... samples (1 first)
     width_wave, width: FWHM of the narrowest lines, Angstrom, shape (j,)
     width_pixels: the same in samples, shape (j,)
+    width_law: how the measured width runs with wavelength, in words; '' where not measured
+    width_err: one sigma of the measured width as a fraction of it
     """
 
     node_wave: np.ndarray
@@ -47,6 +49,8 @@ class SegmentMeasure:
     width_wave: np.ndarray
     width: np.ndarray
     width_pixels: np.ndarray
+    width_law: str = ""
+    width_err: float = float("nan")
 
     def continuum_at(self, wave):
         """Pseudo-continuum in flux units at vacuum wavelength(s), Angstrom."""

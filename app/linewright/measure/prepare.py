@@ -19,7 +19,8 @@ from .spikes import (
 )
 from .stretches import stretches, usable
 from .veil import veil
-from .width import measure_width
+from .width import measure_width, sampled
+from .width_law import WidthLaw
 
 FAR = 2.5
 AGREE = (0.9, 1.15)  # noise over its floor that sure noise may have
@@ -53,7 +54,7 @@ class Raw:
 @dataclass(frozen=True, eq=False)
 class Level:
     """Continuum nodes (centre, level, relative error), the run of it, y and its noise, the
-    line width in Angstrom."""
+    line width in Angstrom; law: how that was seen to run, None where it was not measured."""
 
     centre: np.ndarray
     level: np.ndarray
@@ -62,6 +63,7 @@ class Level:
     y: np.ndarray
     noise: np.ndarray
     width: np.ndarray
+    law: WidthLaw | None
 
 
 @dataclass(frozen=True, eq=False)
@@ -139,8 +141,9 @@ def _level(raw, sigma, width, noise, options) -> Level:
     centre, level, error = fit(raw.wave, raw.flux, raw.good, sigma, spacing)
     run = smooth_run(raw.wave, centre, level)
     y, relative = 1.0 - raw.flux / run, sigma / run
-    width = _width(raw, y, relative, noise, options)
-    return Level(centre, level, error, run, y, relative, width)
+    law = measure_width(raw.wave, y, relative, raw.good, raw.runs, noise.correlation)
+    width = _width(raw.wave, law, noise.lag, options)
+    return Level(centre, level, error, run, y, relative, width, law)
 
 
 def _second_noise(raw, first: Level, noise) -> tuple[Noise, bool]:
@@ -272,6 +275,8 @@ def nodes_of(trace, last: Level) -> SegmentMeasure:
         node_err=np.interp(dense, centre, last.error),
         noise_wave=trace.wave[at], noise=trace.noise[at], correlation=trace.correlation,
         width_wave=trace.wave[at], width=trace.width[at], width_pixels=pixels[at],
+        width_law="" if last.law is None else last.law.kind,
+        width_err=float("nan") if last.law is None else last.law.error,
     )
 
 
@@ -293,14 +298,13 @@ def _node_distance(wave, good, width):
     )
 
 
-def _width(raw, y, noise, model, options):
+def _width(wave, law, lag, options):
     """Line width in Angstrom at every sample, no less than the instrument's; three
     independent samples where there are neither lines nor a known instrument."""
-    measured = measure_width(raw.wave, y, noise, raw.good, raw.runs, model.correlation)
     if options.resolution:
-        instrument = raw.wave / options.resolution
-        return instrument if measured is None else np.maximum(instrument, measured)
-    return 3.0 * model.lag * np.gradient(raw.wave) if measured is None else measured
+        instrument = wave / options.resolution
+        return instrument if law is None else np.maximum(instrument, sampled(law, wave))
+    return 3.0 * lag * np.gradient(wave) if law is None else sampled(law, wave)
 
 
 def _quiet(y, noise, good, runs, pixels, model):

@@ -17,9 +17,9 @@ def flat_runs(flux: np.ndarray, least: int = FLAT_RUN) -> np.ndarray:
     if n < least:
         return flat
     edges = np.flatnonzero(np.r_[True, flux[1:] != flux[:-1], True])
-    for start, stop in zip(edges[:-1], edges[1:]):
-        if stop - start >= least:
-            flat[start:stop] = True
+    long = np.flatnonzero(np.diff(edges) >= least)
+    for start, stop in zip(edges[long], edges[long + 1]):
+        flat[start:stop] = True
     return flat
 
 

@@ -4,17 +4,22 @@ A spectrum made of Gaussian lines of one width, wherever they stand and however 
 overlap, has the autocorrelation A(t) = exp(-t^2 / (4 s^2)). First and second differences
 at a lag, D1 = 2 (A_0 - A_1) and D2 = 6 A_0 - 8 A_1 + 2 A_2, weigh narrow structure most and
 see neither level nor broad wings; their ratio gives s. The noise's own share is known and
-taken off. Each block of the spectrum gives one value; their medians make the width.
+taken off. Each block of the spectrum gives one value, and ``width_law`` follows them.
 """
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
+
+from .width_law import WidthLaw, bent_law, constant_law, law_error
 
 FWHM_PER_SIGMA = 2.3548200450309493
 LAGS = (1, 2, 3, 4, 6, 9, 13, 20, 30, 45, 70, 100)
 COARSE = 8  # samples
 RESOLVED = 3.5  # means per FWHM that a line must span to be measured on means
+ZONES = 24
 BLUNT = 0.7  # sigma in lags below which a block's ratio says little
 LEAST_SIGNAL = 3.0  # structure over noise, in variance of differences, for a block to count
 
@@ -61,10 +66,11 @@ def block_widths(y, noise, good, run, correlation, lag: int) -> np.ndarray:
     return np.c_[middle, lag * sigma * FWHM_PER_SIGMA][fine]
 
 
-def pooled_width(y, noise, good, runs, correlation):
-    """FWHM in samples from all samples at once, at the shortest lag that shows lines; or None."""
+def pooled_width(y, noise, good, runs, correlation, lags=LAGS):
+    """(FWHM in samples, lag) from all samples at once, at the shortest of ``lags`` that shows
+    lines; None where none does."""
     grid = np.geomspace(0.35, 60.0, 400)
-    for lag in (k for k in LAGS if k >= len(correlation)):
+    for lag in (k for k in lags if k >= len(correlation)):
         r = np.r_[correlation, np.zeros(2 * lag + 1)]
         sums = np.zeros(4)
         for run in runs:
@@ -78,39 +84,57 @@ def pooled_width(y, noise, good, runs, correlation):
         doubt = sums[2] * (0.02 + 3.0 / np.sqrt(max(sums[3], 1.0)))
         if sums[0] > 0 and sums[1] > 3.0 * doubt:
             sigma = np.interp(-sums[1] / sums[0], -difference_ratio(grid), grid)
-            return float(lag * sigma * FWHM_PER_SIGMA)
+            return float(lag * sigma * FWHM_PER_SIGMA), lag
     return None
+
+
+def zone_widths(y, noise, good, runs, correlation, lag: int) -> np.ndarray:
+    """(middle sample, FWHM in samples) of up to ZONES equal parts of the segment, all their
+    samples pooled at ``lag``, shape (z, 2)."""
+    edges = np.linspace(runs[0].start, runs[-1].stop, ZONES + 1).astype(int)
+    found = []
+    for a, b in zip(edges[:-1], edges[1:]):
+        parts = [slice(max(a, r.start), min(b, r.stop)) for r in runs]
+        parts = [p for p in parts if p.stop - p.start > max(16, 6 * lag)]
+        value = pooled_width(y, noise, good, parts, correlation, (lag,)) if parts else None
+        if value is not None:
+            found.append((0.5 * (a + b - 1), value[0]))
+    return np.array(found).reshape(-1, 2)
 
 
 def _mean_square(values, ok):
     return np.sum(np.where(ok, values * values, 0.0), axis=1) / np.maximum(ok.sum(axis=1), 1)
 
 
-def measure_width(wave, y, noise, good, runs, correlation) -> np.ndarray | None:
-    """FWHM of the narrowest lines in Angstrom at every sample, shape (n,), or None.
+def measure_width(wave, y, noise, good, runs, correlation) -> WidthLaw | None:
+    """How the FWHM of the narrowest lines runs along the segment, or None.
 
-    Constant resolving power or constant FWHM, whichever the blocks follow better.
     None when fewer than three blocks hold lines, nor do means of COARSE samples: the lines
     of a fast rotator are shallow, and only many samples together show them.
     """
-    width = _one_width(wave, y, noise, good, runs, correlation)
+    law = _law(wave, y, noise, good, runs, correlation)
     count = len(wave) // COARSE
-    if width is not None or len(runs) > 1 or count < 400:
-        return width
+    if law is not None or len(runs) > 1 or count < 400:
+        return law
     cut = slice(0, count * COARSE)
 
     def means(values):
         return values[cut].reshape(count, COARSE).mean(axis=1)
 
     length = min(1.0 + 2.0 * float(np.sum(correlation[1:])), COARSE)
-    rough = _one_width(means(wave), means(y), means(noise) * np.sqrt(length / COARSE),
-                       means(good) > 0.7, [slice(0, count)], np.array([1.0]))
-    if rough is None or np.median(rough / np.gradient(means(wave))) < RESOLVED:
+    rough = _law(means(wave), means(y), means(noise) * np.sqrt(length / COARSE),
+                 means(good) > 0.7, [slice(0, count)], np.array([1.0]))
+    if rough is None or np.median(sampled(rough, means(wave)) / np.gradient(means(wave))) < RESOLVED:
         return None  # sharp lines, smeared by the means
-    return np.interp(wave, means(wave), rough)
+    return rough
 
 
-def _one_width(wave, y, noise, good, runs, correlation):
+def sampled(law: WidthLaw, wave) -> np.ndarray:
+    """FWHM in Angstrom at every sample, no less than two samples, (n,)."""
+    return np.maximum(law.at(wave), 2.0 * np.gradient(wave))
+
+
+def _law(wave, y, noise, good, runs, correlation) -> WidthLaw | None:
     step = np.gradient(wave)
     tables = []
     lags = [lag for lag in LAGS if lag >= len(correlation)]  # nearer samples share noise
@@ -123,19 +147,30 @@ def _one_width(wave, y, noise, good, runs, correlation):
     # the shortest lag at which most of the blocks rise above the noise
     chosen = int(np.argmax((share >= 0.5 * share.max()) & (share > 0)))
     found = tables[chosen]
+    even = _even_log(wave, step)
+    span = float(wave[runs[0].start]), float(wave[runs[-1].stop - 1])
     if np.median(found[:, 1]) < BLUNT * lags[chosen] * FWHM_PER_SIGMA:
         # lines narrower than the lag: single blocks are too noisy, all together are not
         pooled = pooled_width(y, noise, good, runs, correlation)
         if pooled is not None:
-            found = np.array([[len(wave) / 2, pooled]])
+            tried = [k for k in lags if pooled[1] <= k <= 3 * pooled[1]]
+            zones = [zone_widths(y, noise, good, runs, correlation, k) for k in tried]
+            # a lag too short shows only the narrow end of the segment
+            found = next((z for z in zones if len(z) > 0.9 * ZONES), zones[-1])
+            whole = constant_law(*_placed(wave, step, [[len(wave) / 2, pooled[0]]]), span, even)
+            placed = _placed(wave, step, found)
+            return bent_law(replace(whole, error=law_error(*placed)), *placed, span)
+    placed = _placed(wave, step, found)
+    return bent_law(constant_law(*placed, span, even), *placed, span)
+
+
+def _placed(wave, step, found):
+    """Wavelengths and FWHM in Angstrom of (sample, FWHM in samples), each (b,)."""
+    found = np.asarray(found, dtype=float).reshape(-1, 2)
     at = np.rint(found[:, 0]).astype(int)
-    fwhm, where = found[:, 1] * step[at], wave[at]
-    flat, slope = np.median(fwhm), np.median(fwhm / where)
-    scatter_flat = np.median(np.abs(np.log(fwhm / flat)))
-    scatter_slope = np.median(np.abs(np.log(fwhm / where / slope)))
-    # samples even in ln(wavelength) tell of an instrument of constant resolving power
-    even_log = np.ptp(step / wave) / np.mean(step / wave) < np.ptp(step) / np.mean(step)
-    favoured = 0.8 if not even_log else 0.4
-    constant = scatter_flat < favoured * scatter_slope
-    width = np.full(len(wave), flat) if constant else slope * wave
-    return np.maximum(width, 2.0 * step)
+    return wave[at], found[:, 1] * step[at]
+
+
+def _even_log(wave, step) -> bool:
+    """Samples even in ln(wavelength) tell of an instrument of constant resolving power."""
+    return bool(np.ptp(step / wave) / np.mean(step / wave) < np.ptp(step) / np.mean(step))

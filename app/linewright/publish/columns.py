@@ -102,6 +102,12 @@ LEDGER = (
     _c("flags", "text", "short words on measurement and claim"),
     _c("note", "text", "a person's note"),
     _c("source", "text", "bibliographic key of the line"),
+    _c("fwhm_intrinsic", "float", "sqrt(fwhm^2 - fwhm_instrument^2), as Gaussians add; masked where "
+       "fwhm does not exceed fwhm_instrument by 3 sigma", A, ".4f"),
+    _c("fwhm_intrinsic_err", "float", "one-sigma error of fwhm_intrinsic, both widths' errors; of "
+       "other profiles with the difference to a Lorentzian's width", A, ".4f"),
+    _c("fwhm_instrument", "float", "instrument's full width at half depth there, from what the "
+       "metadata's instrument_width_from says", A, ".4f"),
 )
 
 ROLL_CALL = (

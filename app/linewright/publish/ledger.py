@@ -11,6 +11,7 @@ import math
 import numpy as np
 
 from ..errors import InputRefused
+from ..job.view_width import widths_of
 from ..session.model import Claim, Session
 from ..spectra.medium import C_KM_S, to_medium
 from .columns import LEDGER, ORPHANS, ROLL_CALL, Column
@@ -44,7 +45,11 @@ def ledger_table(session: Session):
     columns["blend"] = [blend_text(claim, session.spectrum.medium) for claim in session.claims]
     columns |= {name: [getattr(c, name) for c in session.claims] for name in _CLAIMED}
     columns |= _lines(session)
-    return table_of(LEDGER, columns, metadata(session))
+    widths = widths_of(session)
+    columns["fwhm_intrinsic"], columns["fwhm_intrinsic_err"] = widths.intrinsic, widths.intrinsic_err
+    columns["fwhm_instrument"] = widths.instrument
+    meta = metadata(session) | {"instrument_width_from": widths.source}
+    return table_of(LEDGER, columns, meta)
 
 
 _MEASURED = (

@@ -123,6 +123,7 @@ class EvidencePanel(QWidget):
         session = self._workbench.session
         claim = session.claims[row]
         self.heading.setText(say.heading(session, row))
+        self.heading.setToolTip(say.width_words(session, row))
         self.verdict.setText(say.verdict(claim))
         flags = say.flag_words(session, row)
         self.flags.setText(say.remarkable(flags) if flags else "")

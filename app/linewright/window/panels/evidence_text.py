@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from ...job.view_reasons import Reasons
+from ...job.view_width import widths_of
 from ...session.model import Candidate, Claim, Session
 from ...spectra.medium import to_medium
 from . import words
@@ -25,6 +26,22 @@ def heading(session: Session, row: int) -> str:
     depth = words.number(f.depth[row], 2 if abs(f.depth[row]) < 10 else 0)
     parts = [f"{wave:.3f} Å", f"depth {depth}" if depth else "", _width(float(f.ew[row]))]
     return "   ".join(p for p in parts if p)
+
+
+def width_words(session: Session, row: int) -> str:
+    """The feature's width, what of it is the line's own, and the instrument's."""
+    f, widths = session.features, widths_of(session)
+    if not math.isfinite(f.fwhm[row]):
+        return ""
+    said = [f"FWHM {words.with_error(f.fwhm[row], f.fwhm_err[row], 4)} Å"]
+    if math.isfinite(widths.intrinsic[row]):
+        own = words.with_error(widths.intrinsic[row], widths.intrinsic_err[row], 4)
+        said.append(f"without the instrument {own} Å")
+    elif math.isfinite(widths.instrument[row]):
+        said.append("not significantly broader than the instrument")
+    if math.isfinite(widths.instrument[row]):
+        said.append(f"instrument {widths.instrument[row]:.4f} Å, from: {widths.source}")
+    return "\n".join(said)
 
 
 def _width(ew: float) -> str:
