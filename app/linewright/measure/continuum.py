@@ -6,7 +6,8 @@ an unbiased one, crowded absorption its upper edge, and emission lines lift noth
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -22,10 +23,12 @@ LEAST = 60  # samples of a block
 @dataclass(frozen=True)
 class Spacing:
     """size: Angstrom between nodes, much wider than a line, narrower than the run of the
-    continuum; length: samples per independent noise value."""
+    continuum; length: samples per independent noise value; tick: called now and then, so that
+    a window can go on."""
 
     size: float
     length: float = 1.0
+    tick: Callable[[], None] = field(default=lambda: None, compare=False)
 
 
 def block_edges(wave, good, size: float, least: int = LEAST) -> list[slice]:
@@ -58,14 +61,14 @@ def fit_continuum(wave, flux, good, sigma, spacing: Spacing):
     bright = in_emission(flux[good])
     # beside the wings of a bright line a node looks like a dip: none is bridged there
     settle = (lambda centre, level: level) if bright else bridge_dips
-    nodes = _nodes((wave, flux, sigma), blocks, level, spacing.length, settle)
+    nodes = _nodes((wave, flux, sigma), blocks, level, spacing, settle)
     for _ in range(HALVINGS if bright else 0):
         halved = _halved(blocks, nodes[1])
         if len(halved) == len(blocks):
             break
         blocks = halved
         level = np.interp([wave[b].mean() for b in blocks], *nodes[:2])
-        nodes = _nodes((wave, flux, sigma), blocks, level, spacing.length, settle)
+        nodes = _nodes((wave, flux, sigma), blocks, level, spacing, settle)
     return nodes
 
 
@@ -86,7 +89,7 @@ def _halved(blocks, level) -> list[np.ndarray]:
     return out
 
 
-def _nodes(samples, blocks, level, length: float, settle):
+def _nodes(samples, blocks, level, spacing: Spacing, settle):
     """(wave, flux, relative error) of one node for each block of sample indices.
 
     samples: (wave, flux, sigma); level: of each to start from; settle: takes broad
@@ -95,14 +98,15 @@ def _nodes(samples, blocks, level, length: float, settle):
     wave, flux, sigma = samples
     centre = np.array([wave[b].mean() for b in blocks])
     floor = np.array([np.median(sigma[b]) for b in blocks])
-    weight = np.array([len(b) / length / SAMPLES for b in blocks])
+    weight = np.array([len(b) / spacing.length / SAMPLES for b in blocks])
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
     for _ in range(ROUNDS):
         level = np.maximum(level, floor)
         run = smooth_run(wave, centre, level)
         ratios = np.array([np.quantile(flux[b] / run[b], probs) for b in blocks])
         noise = np.array([np.hypot(np.median(sigma[b] / run[b]), ROUGH) for b in blocks])
-        ratio, error = block_levels(ratios, noise, weight)
+        spacing.tick()
+        ratio, error = block_levels(ratios, noise, weight, tick=spacing.tick)
         level = settle(centre, np.maximum(level * ratio, floor))
     bent = np.minimum(0.25 * np.abs(_apart(centre, level)), 0.03)
     return centre, level, np.hypot(np.minimum(error, 0.03), bent)

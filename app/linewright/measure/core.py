@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from itertools import count
 
 import numpy as np
 
@@ -14,6 +15,8 @@ from .matched import expected_false, threshold_for
 from .options import Measurement, MeasureOptions
 from .prepare import prepare
 from .table import spike_table
+
+USUAL = 30  # reports after which half of a part is called done
 
 
 def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progress=None):
@@ -57,10 +60,11 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
 
 def _ticker(progress, stage: str, share: float, i: int, of: int, begin: float = 0.0):
     """Reports within the i-th of ``of`` equal parts, ever smaller steps towards its end."""
-    steps = iter(range(1, 10_000))
+    steps = count(1)
 
     def tick():
-        done = i + 1.0 - 0.75 ** next(steps)
+        n = next(steps)
+        done = i + n / (n + USUAL)
         progress.report(stage, begin + share * done / of)
 
     progress.report(stage, begin + share * i / of)

@@ -153,7 +153,8 @@ def _flat_cores(bends, tame, fwhm) -> np.ndarray:
         a, b = bends[i], bends[i + 1]
         quarter = (b - a) // 4
         middle = tame[a + quarter : b - quarter + 1]
-        if b - a < 40 * fwhm[a] and np.median(middle) > max(tame[a], tame[b]):
+        rim = max(tame[a], tame[b])
+        if b - a < 40 * fwhm[a] and middle.max() > rim and np.median(middle) > rim:
             bends[i : i + 2] = [(a + b) // 2]
             i = max(i - 1, 0)
         else:

@@ -72,17 +72,18 @@ def score_levels(samples, levels, sigma, weight) -> np.ndarray:
     return fit - EMISSION_COST * lifted
 
 
-def block_levels(samples, sigma, weight, together: int = 8):
+def block_levels(samples, sigma, weight, together: int = 8, tick=lambda: None):
     """(levels, one sigma), each (b,), of b blocks, ``together`` at a time to stay in cache.
 
     samples: sorted quantiles of each block, (b, q); sigma: (b,); weight: (b,) as in
-    ``score_levels``. First the quantiles themselves are tried, then a fine grid about
+    ``score_levels``; tick: called after each lot. First the quantiles themselves are tried, then a fine grid about
     the best.
     """
-    parts = [
-        _few_levels(samples[i : i + together], sigma[i : i + together], weight[i : i + together])
-        for i in range(0, len(samples), together)
-    ]
+    parts = []
+    for i in range(0, len(samples), together):
+        few = slice(i, i + together)
+        parts.append(_few_levels(samples[few], sigma[few], weight[few]))
+        tick()
     levels, errors = zip(*parts, strict=True)
     return np.concatenate(levels), np.concatenate(errors)
 

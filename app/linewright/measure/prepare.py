@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -40,7 +41,8 @@ def _chosen(segment, ranges):
 class Raw:
     """Samples of a segment with holes bridged, (n,); runs: stretches of 30 samples or more;
     given: the uncertainty array or None; floor: noise at the highest frequencies; blur:
-    sigma in samples of the largest smoothing of the noise that is possible, None: unknown."""
+    sigma in samples of the largest smoothing of the noise that is possible, None: unknown;
+    tick: called between steps."""
 
     wave: np.ndarray
     flux: np.ndarray
@@ -49,12 +51,14 @@ class Raw:
     given: np.ndarray | None
     floor: Floor | None
     blur: float | None
+    tick: Callable[[], None]
 
 
 @dataclass(frozen=True, eq=False)
 class Level:
     """Continuum nodes (centre, level, relative error), the run of it, y and its noise, the
-    line width in Angstrom; law: how that was seen to run, None where it was not measured."""
+    line width in Angstrom; law: how that was seen to run, None where it was not measured;
+    asked: the spacing of nodes, noise (flux units), its correlation and lag it answers to."""
 
     centre: np.ndarray
     level: np.ndarray
@@ -64,6 +68,7 @@ class Level:
     noise: np.ndarray
     width: np.ndarray
     law: WidthLaw | None
+    asked: tuple
 
 
 @dataclass(frozen=True, eq=False)
@@ -84,11 +89,13 @@ def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None)
 
     tick: called between steps, so that a window can go on and a cancel is heeded.
     """
-    raw = _raw(segment, options)
+    raw = _raw(segment, options, tick)
     if raw is None:
         return None
+    tick()
     step = np.gradient(raw.wave)
     noise = bounded(estimate_noise(raw.flux, raw.good, raw.runs), raw)
+    tick()
     width = _assumed_width(raw.wave, noise.lag, options)
     first = _level(raw, believed(raw, noise, width / step, False)[0], width, noise, options)
     tick()
@@ -105,7 +112,7 @@ def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None)
     warnings += note + doubts(raw, sure)
     if raw.given is not None and noise.lag == 1 and not sure:
         noise = _smoothed(noise, raw, sigma)
-    last = _level(raw, sigma, first.width, noise, options)
+    last = _level(raw, sigma, first.width, noise, options, first)
     tick()
     spikes = _spikes(raw, last, noise, options)
     tick()
@@ -117,7 +124,7 @@ def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None)
                     options.continuum == "levels")
 
 
-def _raw(segment, options) -> Raw | None:
+def _raw(segment, options, tick) -> Raw | None:
     good = _chosen(segment, options.ranges)
     runs = [r for r in stretches(segment.wave, good) if good[r].sum() >= 30]
     if not runs:
@@ -125,31 +132,41 @@ def _raw(segment, options) -> Raw | None:
     keep = np.zeros(len(good), dtype=bool)
     for r in runs:
         keep[r] = good[r]
-    index = np.arange(len(keep))
-    flux = np.interp(index, index[keep], segment.flux[keep])
-    given = None
-    if segment.uncertainty is not None:
-        given = np.interp(index, index[keep], segment.uncertainty[keep])
+    flux = bridged(np.asarray(segment.flux, dtype=float), ~keep)
+    given = segment.uncertainty
+    given = None if given is None else bridged(np.asarray(given, dtype=float), ~keep)
     floor = noise_floor(flux, keep, runs)
-    return Raw(segment.wave, flux, keep, runs, given, floor, largest_blur(floor, flux[keep]))
+    return Raw(segment.wave, flux, keep, runs, given, floor, largest_blur(floor, flux[keep]), tick)
 
 
-def _level(raw, sigma, width, noise, options) -> Level:
-    """Continuum under the noise ``sigma`` (flux units), and the line width above it."""
-    spacing = Spacing(_node_distance(raw.wave, raw.good, width), _length(noise))
+def _level(raw, sigma, width, noise, options, before=None) -> Level:
+    """Continuum under the noise ``sigma`` (flux units), and the line width above it.
+
+    width: Angstrom, (n,), from which the distance of nodes follows; before: a Level, which is
+    the answer where the same was asked.
+    """
+    spacing = Spacing(_node_distance(raw.wave, raw.good, width), _length(noise), raw.tick)
+    asked = spacing, sigma, noise.correlation, noise.lag
+    if before is not None and _same(before.asked, asked):
+        return before
     fit = method_of(options.continuum)
     centre, level, error = fit(raw.wave, raw.flux, raw.good, sigma, spacing)
     run = smooth_run(raw.wave, centre, level)
     y, relative = 1.0 - raw.flux / run, sigma / run
     law = measure_width(raw.wave, y, relative, raw.good, raw.runs, noise.correlation)
     width = _width(raw.wave, law, noise.lag, options)
-    return Level(centre, level, error, run, y, relative, width, law)
+    return Level(centre, level, error, run, y, relative, width, law, asked)
+
+
+def _same(one, other) -> bool:
+    return one[0] == other[0] and all(map(np.array_equal, one[1:], other[1:]))
 
 
 def _second_noise(raw, first: Level, noise) -> tuple[Noise, bool]:
     """(noise of the samples between the features, whether most samples lie there)."""
     pixels = first.width / np.gradient(raw.wave)
     quiet = _quiet(first.y, first.noise, raw.good, raw.runs, pixels, noise)
+    raw.tick()
     sure = bool(quiet[raw.good].mean() > 0.6)
     longest = max(1.0, float(np.median(pixels[raw.good])) * (0.85 if sure else 0.33))
     noise = estimate_noise(first.y, raw.good, raw.runs, quiet, longest, sure)

@@ -10,10 +10,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.lib.stride_tricks import sliding_window_view
 
 from .gauss import FWHM_PER_SIGMA
 from .matched import noise_gain
+from .veil import running_min
 
 GRID = 64
 LINES = 1e5  # power of lines over noise, at least
@@ -23,6 +23,11 @@ FEWEST = 2.6  # samples per FWHM below which a line may be one sample wide
 MOST = 0.005  # share of hit samples beyond which they are no hits
 PAIRS = 3.2  # samples per FWHM from which two equal samples cannot be a line
 ABOVE = 5.0  # sigmas over the continuum of a hit in a spectrum of absorption lines
+EXCHANGES = {
+    2: ((0, 1), (3, 4), (0, 3), (1, 4), (1, 2), (2, 3), (1, 2)),
+    4: ((1, 2), (4, 5), (7, 8), (0, 1), (3, 4), (6, 7), (1, 2), (4, 5), (7, 8), (0, 3), (5, 8),
+        (4, 7), (3, 6), (1, 4), (2, 5), (4, 7), (4, 2), (6, 4), (4, 2)),
+}
 UNSURE = 3.0  # samples per FWHM assumed at most where the instrument is not known
 
 
@@ -61,7 +66,7 @@ def find_spikes(y, noise, good, runs, fwhm: float, correlation) -> Spikes:
         return none_found(len(y))
     white = spike_filter(fwhm, LINES + 10.0 * float(np.max(np.abs(y / noise))) ** 2)
     # a hit raises its own error: the noise is that of the samples around
-    noise = np.median(sliding_window_view(np.pad(noise, 4, "edge"), 9), axis=1)
+    noise = running_median(noise, 4)
     sizes = (1, 2) if fwhm >= PAIRS else (1,)
     answers = [_answer(y, runs, white, size) for size in sizes]
     gains = [_gain(np.convolve(white, np.ones(size)), correlation) for size in sizes]
@@ -83,6 +88,19 @@ def find_spikes(y, noise, good, runs, fwhm: float, correlation) -> Spikes:
             excess.append(above)
             hit[_spoilt(y, noise, worst, around)] = True
     return Spikes(np.array(index, dtype=int), np.array(excess), strength[index], hit)
+
+
+def running_median(values, half: int) -> np.ndarray:
+    """Median of 5 or 9 samples (``half`` 2 or 4) about each one, ends held, shape (n,).
+
+    Exchanges of whole arrays that bring the middle one to its place (N. Devillard 1998,
+    after Paeth 1990): many times faster than a sort at every sample, and exact.
+    """
+    padded = np.pad(values, half, "edge")
+    p = [padded[i : i + len(values)] for i in range(2 * half + 1)]
+    for a, b in EXCHANGES[half]:
+        p[a], p[b] = np.minimum(p[a], p[b]), np.maximum(p[a], p[b])
+    return p[half]
 
 
 def _gain(kernel, correlation) -> float:
@@ -129,8 +147,8 @@ def in_absorption(y, noise, good) -> bool:
 def _against(y, answers) -> np.ndarray:
     """True where the filter answers the wrong way or beside a taller sample: its side
     lobes, (sizes, n)."""
-    local = y - np.median(sliding_window_view(np.pad(y, 2, "edge"), 5), axis=1)
-    tallest = np.max(sliding_window_view(np.pad(np.abs(local), 2), 5), axis=1)
+    local = y - running_median(y, 2)
+    tallest = -running_min(-np.abs(local), 5)
     pair = local + np.r_[local[1:], 0.0]
     beside = np.abs(local) < 0.5 * tallest
     return np.array([(a * e <= 0) | beside for (a, _), e in zip(answers, (local, pair))])
