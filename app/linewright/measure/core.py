@@ -43,6 +43,7 @@ def measure_spectrum(spectrum, options: MeasureOptions = MeasureOptions(), progr
     for i, (ready, runs) in enumerate(zip(prepared, filtered)):
         tick = _ticker(progress, "finding and fitting features", 0.4, i, len(prepared), 0.6)
         if ready is not None:
+            ready = replace(ready, tick=tick)
             table, prepared[i] = segment_features(ready, runs, threshold, i, tick)
             tables.append(table)
             tables.append(spike_table(ready.trace, ready.nodes, ready.spikes, i))

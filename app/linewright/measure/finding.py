@@ -144,7 +144,7 @@ def _fit(ready, found: Found) -> Fitted:
     alone = found.own & (fwhm > BROAD * t.width[at])
     fwhm = np.maximum(fwhm, t.width[at])
     group = group_features(found.start[:, 1], fwhm, found.limits[:, 0], alone)
-    return fit_features(t, found.start, found.limits, group, found.own)
+    return fit_features(t, found.start, found.limits, group, found.own, ready.tick)
 
 
 def _second(ready, filtered, threshold, found, fitted) -> Found:

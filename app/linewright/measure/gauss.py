@@ -42,16 +42,19 @@ def profiles(x, params):
     """Model sums (g, p) and derivatives (g, p, n, 3) at x (g, p)."""
     a, c, s = params[..., 0], params[..., 1], np.exp(params[..., 2])
     u = (x[:, :, None] - c[:, None, :]) / s[:, None, :]
+    slopes = np.empty((*u.shape, 3))
     shape = np.exp(-0.5 * np.minimum(u * u, 1400.0))
     part = a[:, None, :] * shape
-    slopes = np.stack([shape, part * u / s[:, None, :], part * u * u], axis=-1)
+    bent = part * u
+    slopes[..., 0], slopes[..., 1], slopes[..., 2] = shape, bent / s[:, None, :], bent * u
     return part.sum(axis=2), slopes
 
 
 def _normal(windows, params):
     """Residual chi2 (g,), normal matrix (g, k, k), gradient (g, k), weighted slopes."""
     model, slopes = profiles(windows.x, params)
-    z = slopes.reshape(*slopes.shape[:2], -1) * windows.weight[:, :, None]
+    z = slopes.reshape(*slopes.shape[:2], -1)
+    z *= windows.weight[:, :, None]
     r = (windows.y - model) * windows.weight
     zt = z.transpose(0, 2, 1)
     return (r * r).sum(axis=1), zt @ z, (zt @ r[:, :, None])[:, :, 0], z
@@ -67,14 +70,16 @@ def fit_windows(windows: Windows, start, low, high, rounds: int = 25) -> Fit:
     g, n, _ = params.shape
     damping = np.full(g, 1e-2)
     chi2, matrix, gradient, _ = _normal(windows, params)
-    active = np.ones(g, dtype=bool)
+    active, part = np.ones(g, dtype=bool), windows
     for _ in range(rounds):
         on = np.flatnonzero(active)
         if not len(on):
             break
         step = _solve(matrix[on], gradient[on], damping[on])
         trial = np.clip(params[on] + step.reshape(-1, n, 3), low[on], high[on])
-        new, new_matrix, new_gradient, _ = _normal(windows.take(on), trial)
+        if len(on) < len(part.x):  # windows only ever drop out
+            part = windows.take(on)
+        new, new_matrix, new_gradient, _ = _normal(part, trial)
         better = new <= chi2[on]
         gained = chi2[on] - new
         yes = on[better]
@@ -89,11 +94,12 @@ def fit_windows(windows: Windows, start, low, high, rounds: int = 25) -> Fit:
 
 
 def _damped(matrix, damping):
-    k = matrix.shape[-1]
     diagonal = np.einsum("gii->gi", matrix)
     floor = 1e-12 * diagonal.max(axis=1, keepdims=True) + 1e-300
     extra = np.maximum(diagonal, floor) * damping[:, None] + floor
-    return matrix + np.eye(k) * extra[:, None, :]
+    out = matrix.copy()
+    np.einsum("gii->gi", out)[...] += extra
+    return out
 
 
 def _solve(matrix, gradient, damping):

@@ -20,6 +20,7 @@ NARROWEST = 0.25  # line widths: interstellar lines of a rotating star
 BROAD = 2.5  # line widths beyond which only the core of a feature is fitted
 CORE = 0.35  # widths on either side of a core, at least one line width
 MOST = 6  # members of a group
+SWEEPS = 3
 LONGEST = 1500  # samples of a window
 
 
@@ -129,12 +130,13 @@ def _buckets(size, most: int = 400_000):
         start = stop
 
 
-def fit_features(trace: Trace, start, run_limits, group, own, sweeps: int = 3) -> Fitted:
+def fit_features(trace: Trace, start, run_limits, group, own, tick=lambda: None) -> Fitted:
     """Fit all features of a segment.
 
     start: (m, 3) a, c, ln s sorted by c; run_limits: (m, 2) first and last+1 sample of
     the stretch each lies in; group: (m,) from ``group_features``; own: (m,) True for the
-    source of a veil, measured against the bare continuum with the rest of its group.
+    source of a veil, measured against the bare continuum with the rest of its group; tick:
+    called now and then.
     """
     params = start.copy()
     m = len(params)
@@ -144,17 +146,18 @@ def fit_features(trace: Trace, start, run_limits, group, own, sweeps: int = 3) -
         return Fitted(params, errors, group, trouble, misfit)
     members_of = np.split(np.arange(m), np.flatnonzero(np.diff(group)) + 1)
     sizes = np.array([len(x) for x in members_of])
-    for sweep in range(sweeps):
+    alike = [np.array([x for x in members_of if len(x) == n]) for n in np.unique(sizes)]
+    for sweep in range(SWEEPS):
         bare, base = backgrounds(trace, params, own)
         fresh = params.copy()
-        for n in np.unique(sizes):
-            rows = np.array([x for x in members_of if len(x) == n])
+        for rows in alike:
             first, last = _reach(trace, params, rows, run_limits, own)
             for part in _buckets(last - first):
                 one = _Batch(trace, rows[part], first[part], last[part], start)
                 fit, windows = one.fit(params, bare, base, own[rows[part]].any(axis=1))
                 fresh[rows[part]] = fit.params
-                if sweep == sweeps - 1:
+                tick()
+                if sweep == SWEEPS - 1:
                     one.finish(fit, windows, errors, misfit, trouble)
         params = fresh
     return Fitted(params, errors, group, trouble, misfit)

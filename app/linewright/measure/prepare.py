@@ -82,6 +82,7 @@ class Prepared:
     spikes: Spikes
     level: Level
     moves: bool  # whether the continuum may be set again after the fits
+    tick: Callable[[], None] = lambda: None
 
 
 def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None):
