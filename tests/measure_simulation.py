@@ -65,6 +65,27 @@ class Lines:
         return spectrum_of(wave, flux, error), centres
 
 
+def wood(first, last, seed=0, even_log=True, snr=100.0, span=(5000.0, 5800.0), apart=8.0):
+    """(Spectrum, resolving power at every sample): Gaussian lines at random, on average
+    ``apart`` widths from one another, three samples per FWHM at the highest resolving power; the power runs
+    from ``first`` to ``last`` in proportion to wavelength."""
+    rng = np.random.default_rng(seed)
+    low, high = span
+    most = max(first, last) * 3.0
+    wave = low * np.exp(np.arange(int(np.log(high / low) * most)) / most)
+    wave = wave if even_log else np.arange(low, high, low / most)
+    power = np.interp(wave, span, (first, last))
+    clear, centre = np.ones(len(wave)), low + 1.0
+    while centre < high - 1.0:
+        fwhm = centre / np.interp(centre, wave, power)
+        a, b = np.searchsorted(wave, [centre - 4 * fwhm, centre + 4 * fwhm])
+        u = (wave[a:b] - centre) / fwhm * FWHM_PER_SIGMA
+        clear[a:b] *= 1.0 - min(0.8, 0.05 + rng.exponential(0.15)) * np.exp(-0.5 * u * u)
+        centre += fwhm * rng.exponential(apart)
+    flux = 1000.0 * (clear + rng.standard_normal(len(wave)) / snr)
+    return spectrum_of(wave, flux, np.full(len(wave), 1000.0 / snr)), power
+
+
 def pulls_of(lines: Lines, with_errors: bool = False):
     """(pulls by quantity, share of lines found, Measurement) of one simulation."""
     spectrum, centres = lines.build(with_errors)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from measure_simulation import FWHM_PER_SIGMA, spectrum_of
+from measure_simulation import spectrum_of, wood
 from truths import SPECTRA
 
 from linewright import read_spectrum
@@ -13,27 +13,6 @@ from linewright.measure.prepare import prepare
 from linewright.measure.width_law import (
     LINEAR, QUADRATIC, RESOLVING, WidthLaw, bent_law, constant_law,
 )
-
-
-def wood(first, last, seed=0, even_log=True, snr=100.0, span=(5000.0, 5800.0)):
-    """(Spectrum, resolving power at every sample): Gaussian lines at random, on average
-    eight widths apart, three samples per FWHM at the highest resolving power; the power runs
-    from ``first`` to ``last`` in proportion to wavelength."""
-    rng = np.random.default_rng(seed)
-    low, high = span
-    most = max(first, last) * 3.0
-    wave = low * np.exp(np.arange(int(np.log(high / low) * most)) / most)
-    wave = wave if even_log else np.arange(low, high, low / most)
-    power = np.interp(wave, span, (first, last))
-    clear, centre = np.ones(len(wave)), low + 1.0
-    while centre < high - 1.0:
-        fwhm = centre / np.interp(centre, wave, power)
-        a, b = np.searchsorted(wave, [centre - 4 * fwhm, centre + 4 * fwhm])
-        u = (wave[a:b] - centre) / fwhm * FWHM_PER_SIGMA
-        clear[a:b] *= 1.0 - min(0.8, 0.05 + rng.exponential(0.15)) * np.exp(-0.5 * u * u)
-        centre += fwhm * rng.exponential(8.0)
-    flux = 1000.0 * (clear + rng.standard_normal(len(wave)) / snr)
-    return spectrum_of(wave, flux, np.full(len(wave), 1000.0 / snr)), power
 
 
 @pytest.mark.parametrize("even_log, snr", [(True, 100.0), (False, 50.0)])
