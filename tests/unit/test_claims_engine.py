@@ -13,6 +13,8 @@ from linewright.claims.curves import StrengthRelation
 from linewright.claims.entries import ABSORPTION, SHARE_EXPONENT, group
 from linewright.claims.model import standing_of
 from linewright.claims.offsets import GRID, best_offsets, detection_log_likelihood
+from linewright.claims.pairs import Block
+from linewright.claims.species_offsets import Evidence, without_own
 from linewright.claims.voting import line_weights, vote
 from linewright.spectra.medium import C_KM_S
 
@@ -134,3 +136,44 @@ def test_standing_by_the_contract(p, standing):
 
 def test_signs_are_plus_for_absorption():
     assert ABSORPTION == 1
+
+
+def test_a_main_line_is_at_least_as_strong_as_any_other_of_its_blend():
+    """If the weak line of a pair is the main one, it has half of the blend at least."""
+    wave = np.array([5000.00, 5000.03])
+    made = group(wave, np.array([1.0, 0.0]), np.zeros(2, int), np.full(2, 0.05))
+    assert made.lead == pytest.approx([10 / 11, 0.5])
+
+
+def test_groups_agree_with_sums_taken_one_by_one():
+    rng = np.random.default_rng(7)
+    wave = np.sort(rng.uniform(5000, 5002, 60))
+    strength, half = rng.uniform(-3, 2, 60), rng.uniform(0.03, 0.2, 60)
+    made = group(wave, strength, np.zeros(60, int), half)
+    for i in range(60):
+        near = np.abs(wave - wave[i]) <= half[i]
+        power = 10.0 ** strength[near]
+        raised = power.max()
+        assert made.total[i] == pytest.approx(np.log10(power.sum()))
+        assert made.lead[i] == pytest.approx(raised / (power.sum() - 10.0 ** strength[i] + raised))
+        centroid = np.sum(power * wave[near]) / power.sum()
+        assert made.centroid[i] == pytest.approx(centroid, abs=1e-6)
+
+
+def test_a_line_does_not_vouch_for_its_own_species():
+    """A species of one line that shows far too strong: its offset follows the line, but the
+    line itself is weighed as if nothing were known of the species."""
+    curve, one, none = threshold_form(0.9, 0.0), np.zeros(1, int), np.zeros(0)
+    block = Block(0, one, one, one, one, one, one)
+    measured = (none, none, 0.2, none)
+    evidence = Evidence(
+        block, np.array([-2.0]), np.ones(1), np.ones(1), curve, np.zeros(0, int), measured
+    )
+    table = detection_log_likelihood(
+        evidence.strength, evidence.hits, evidence.tries, one, 1, curve
+    )
+    mean, error = best_offsets(table)
+    entries, alone = without_own(evidence, table, error, np.ones(1))
+    assert mean[0] > 0.4
+    assert entries.tolist() == [0]
+    assert alone[0] == pytest.approx(0.0, abs=1e-9)

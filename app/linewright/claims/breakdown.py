@@ -12,7 +12,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .mixture import chance_to_show, position_likelihood, strength_likelihood
+from .mixture import chance_to_show, own_place, position_likelihood, strength_likelihood
 from .pairs import Pairs
 from .problem import NOT_SAID
 
@@ -32,6 +32,7 @@ class Breakdown(NamedTuple):
     excess: measured strength less the expected one, dex; scatter: its sigma, dex, 0 where no
     strength is predicted or measured; slope: of measured against predicted strength
     stronger, weaker: change of log P(shows) for a line STEP dex stronger or weaker
+    at_own: weight of the line's own place against the centroid, 0-1
     """
 
     show: float
@@ -46,6 +47,7 @@ class Breakdown(NamedTuple):
     slope: float
     stronger: float
     weaker: float
+    at_own: float = 1.0
 
     @property
     def log_odds(self) -> float:
@@ -91,7 +93,9 @@ def _columns(solution, chosen):
     own = np.sqrt(pairs.base_variance) * state.error_scale[pairs.crowded]
     blend = pairs.wave - groups.centroid[pairs.entry]
     free = odds - show - place - strength
-    made = (show, place, strength, free, sigma, own, blend, *_strengths(pairs, state, groups))
+    strengths = _strengths(pairs, state, groups)
+    at_own = own_place(pairs, groups)
+    made = (show, place, strength, free, sigma, own, blend, *strengths, at_own)
     return tuple(column[chosen] for column in made)
 
 

@@ -55,10 +55,12 @@ class Groups:
     """What stands within one resolution element of each entry (same population).
 
     share: of the softened predicted strength, 0-1
+    lead: share of the strength if the entry is the main line, at least as strong as any other
     total: log10 of the summed strength; centroid: strength-weighted wavelength, Angstrom
     """
 
     share: np.ndarray
+    lead: np.ndarray
     total: np.ndarray
     centroid: np.ndarray
 
@@ -94,7 +96,8 @@ class Neighbourhood:
 
     def groups(self, strength) -> Groups:
         """Groups at strengths (n,), log10."""
-        share, total, centroid = np.ones(len(self.wave)), strength.copy(), self.wave.copy()
+        share, lead = np.ones(len(self.wave)), np.ones(len(self.wave))
+        total, centroid = strength.copy(), self.wave.copy()
         for rows, crowd, first, last, half in self.blocks:
             if len(crowd) == 0:
                 continue
@@ -108,8 +111,16 @@ class Neighbourhood:
             chosen, place = rows[crowd], w[crowd]
             share[chosen] = np.clip(soft[crowd] / np.maximum(soft_sum, soft[crowd]), 0.0, 1.0)
             total[chosen] = top + np.log10(lin_sum)
+            raised = _largest(linear, first, last)
+            lead[chosen] = raised / (np.maximum(lin_sum - linear[crowd], 0.0) + raised)
             centroid[chosen] = np.clip(w[0] + moment / lin_sum, place - half, place + half)
-        return Groups(share, total, centroid)
+        return Groups(share, lead, total, centroid)
+
+
+def _largest(values, first, last):
+    """Largest of values[first:last] per row."""
+    bounds = np.column_stack((first, last)).ravel()
+    return np.maximum.reduceat(np.append(values, -np.inf), bounds)[::2]
 
 
 def _window(values, first, last):

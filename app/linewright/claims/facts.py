@@ -17,7 +17,7 @@ import numpy as np
 from ..spectra.medium import C_KM_S, to_medium
 from .breakdown import STEP, Breakdown
 from .entries import SHARE_EXPONENT
-from .mixture import OWN_PLACE, STRENGTH_RANGE, STRENGTH_TAIL, tailed
+from .mixture import STRENGTH_RANGE, STRENGTH_TAIL, tailed
 from .model import Claim, RollRow, standing_of
 
 BOUNDS = (0.50, 0.80, 0.95)
@@ -205,7 +205,7 @@ def _place_again(trial: Trial, shift: float, shrink: float = 1.0):
     for i, line in enumerate(trial.lines):
         w = line.weights
         sigma = np.sqrt(max(w.sigma**2 - (1.0 - shrink**2) * w.own**2, 1e-8))
-        weight = max(line.share, OWN_PLACE)
+        weight = w.at_own
 
         def likely(move, s):
             return weight * tailed(line.apart + move, s) + (1 - weight) * tailed(w.blend + move, s)

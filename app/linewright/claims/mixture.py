@@ -15,15 +15,9 @@ from .association import Marginals, associate
 from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_relation
 from .curves import first_relation, threshold_form
 from .entries import Groups
-from .offsets import (
-    SCALE,
-    best_offsets,
-    detection_log_likelihood,
-    shared_offset,
-    strength_log_likelihood,
-)
 from .pairs import TAIL_FACTOR, TAIL_FLOOR, Pairs
 from .problem import NOT_SAID, Problem
+from .species_offsets import OwnOffsets, learn_offsets
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
@@ -32,7 +26,7 @@ TAIL_SHARE = 0.04  # of the heavy tail of position errors
 ANY_STRENGTH = 0.25  # per dex: density of strengths where nothing predicts them
 STRENGTH_TAIL, STRENGTH_RANGE = 0.03, 8.0  # share and width (dex) of strengths gone wrong
 DOUBT_A_PERSON = 1e-6  # factor on the null of a feature that a person has named
-OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid
+OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid in a crowd
 LIST_SCATTER = 0.002  # Angstrom: position scatter of a species' lines before it is learned
 SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom
 
@@ -48,6 +42,7 @@ class State:
     offset_errors: np.ndarray
     error_scale: np.ndarray
     scatter: np.ndarray
+    own: OwnOffsets | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -83,6 +78,7 @@ def solve_mixture(
     """
     pairs = Pairs(problem)
     state, warm = (_first_state(problem, pairs), 0) if start is None else (start, 1)
+    state = replace(state, own=None)  # rows of another problem
     step = _expect(problem, pairs, state)
     for turn in range(rounds):
         if progress is not None:
@@ -123,7 +119,7 @@ class _Step:
 def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step:
     """Marginals in the present state; message: of the association before, to go on from."""
     e, f = problem.entries, problem.features
-    strength = e.strength + state.offsets[e.species]
+    strength = e.strength + _offsets(problem, state)
     groups = pairs.near.groups(strength)
     shows = chance_to_show(pairs, groups, state)
     position, sigma, offset = position_likelihood(problem, pairs, state, groups)
@@ -138,6 +134,14 @@ def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step
     total = np.bincount(pairs.feature, likelihood, len(f)) + density * p0
     value = float(np.sum(np.log(total))) - float(np.sum(shows * pairs.covered))
     return _Step(groups, strength, marginals, sigma, offset, value)
+
+
+def _offsets(problem: Problem, state: State):
+    """Offset of each entry, dex, by what the other lines of its species say."""
+    offset = state.offsets[problem.entries.species]
+    if state.own is not None:
+        offset[state.own.entries] = state.own.offset
+    return offset
 
 
 def _as_said(problem: Problem, pairs: Pairs, density, likelihood):
@@ -167,13 +171,25 @@ def position_likelihood(problem: Problem, pairs: Pairs, state: State, groups: Gr
     scale = state.error_scale[pairs.crowded]
     sigma = np.sqrt(pairs.base_variance * scale**2 + list_variance[pairs.entry])
     value, nearer = tailed(pairs.own, sigma), pairs.own.copy()
-    share = groups.share[pairs.entry]
-    mixed = np.nonzero(share < 1.0)[0]
+    weight = own_place(pairs, groups)
+    mixed = np.nonzero(weight < 1.0)[0]
     blend = pairs.wave[mixed] - groups.centroid[pairs.entry[mixed]]
-    weight = np.maximum(share[mixed], OWN_PLACE)
+    weight = weight[mixed]
     value[mixed] = weight * value[mixed] + (1 - weight) * tailed(blend, sigma[mixed])
     nearer[mixed] = np.where(np.abs(blend) < np.abs(nearer[mixed]), blend, nearer[mixed])
     return value, sigma, nearer / sigma
+
+
+def own_place(pairs: Pairs, groups: Groups):
+    """Weight of each pair's line's own place against its blend's centroid, 0-1.
+
+    The line's part of the blend if it is the main one, as its chance to show assumes. Where
+    neighbours disturb the centroid the place says less of who is the main one: there the
+    predicted share.
+    """
+    share, lead = groups.share[pairs.entry], groups.lead[pairs.entry]
+    shared = (pairs.crowded > 0) & (share < 1.0)
+    return np.where(shared, np.maximum(share, OWN_PLACE), lead)
 
 
 def tailed(offset, sigma):
@@ -224,7 +240,7 @@ def _learn(problem: Problem, pairs: Pairs, step: _Step, state: State, turn: int)
         error_scale=np.array(scale),
         scatter=_species_scatter(problem, pairs, step),
     )
-    return _learn_offsets(problem, pairs, step, state) if turn >= 1 else state
+    return learn_offsets(problem, pairs, step, state) if turn >= 1 else state
 
 
 def _error_scale(step: _Step, which, previous: float) -> float:
@@ -252,52 +268,6 @@ def _species_scatter(problem: Problem, pairs: Pairs, step: _Step):
     count = np.bincount(species, weight, problem.species)
     variance = (SCATTER_WEIGHT * LIST_SCATTER**2 + total) / (SCATTER_WEIGHT + count)
     return np.sqrt(np.clip(variance, 0.0005**2, 0.03**2))
-
-
-def _learn_offsets(problem: Problem, pairs: Pairs, step: _Step, state: State) -> State:
-    """Each population's species have indices of their own.
-
-    What all species of a population share is no offset but the zero point, which the curves
-    hold: left in, it grows from round to round in crowded spectra and carries the species
-    of most lines with it.
-    """
-    mean, error = np.zeros(problem.species), np.full(problem.species, SCALE)
-    seen = np.bincount(pairs.entry, step.marginals.pair, len(problem.entries))
-    lines = np.bincount(problem.entries.species, seen, problem.species)
-    for block in pairs.blocks:
-        table = _offset_evidence(problem, pairs, step, state, (block, seen))
-        offset, error[block.species] = best_offsets(table)
-        mean[block.species] = offset - shared_offset(offset, lines[block.species])
-    return replace(state, offsets=mean, offset_errors=error)
-
-
-def _offset_evidence(problem: Problem, pairs: Pairs, step: _Step, state: State, which):
-    """Log-likelihood of the offsets of one population's species.
-
-    which: (Block, P(seen) per entry).
-    """
-    block, seen = which
-    e, here, count = problem.entries, block.entries, len(block.species)
-    share, seen = step.groups.share[here], seen[here]
-    exposure = share * pairs.covered[here] if problem.complete else seen
-    table = detection_log_likelihood(
-        e.strength[here],
-        seen * share,
-        exposure * share,
-        block.names,
-        count,
-        state.detection[block.population],
-    )
-    mine = block.graded[step.marginals.pair[block.graded] > 0.05]
-    who, relation = pairs.entry[mine], state.relation[block.population]
-    return table + strength_log_likelihood(
-        pairs.m[mine] - relation(e.strength[who]),
-        relation.slope(step.strength[who]),
-        max(relation.scatter, 0.2),
-        step.marginals.pair[mine] * step.groups.share[who],
-        np.searchsorted(block.species, e.species[who]),
-        count,
-    )
 
 
 def _finish(problem, pairs, step: _Step, state: State) -> Solution:
