@@ -60,21 +60,22 @@ def learn_detection(strength, seen, exposure, features: float) -> DetectionCurve
 
 @lru_cache(maxsize=1)
 def _forms():
-    """Every ceiling and zero point tried: (log p, log(1 - p)), each (forms, bins)."""
+    """Every ceiling and zero point tried: (log p, log(1 - p), p), each (forms, bins)."""
     ceilings = (0.002, 0.005, 0.01, 0.02, 0.05, 0.1, 0.2, 0.35, 0.5, 0.65, 0.8, 0.9, 0.95)
     value = np.array(
         [threshold_form(c, z).value for c in ceilings for z in np.arange(-2.5, 2.51, 0.25)]
     )
-    return np.log(value), np.log1p(-value)
+    shown = np.log(value)
+    return shown, np.log1p(-value), np.exp(shown)
 
 
 def _best_form(hits, tries) -> DetectionCurve:
     """Mean of the forms weighed by their Bernoulli likelihood: a choice of one would jump
     from one step of ceiling or zero point to the next, and claims with it."""
-    shown, missed = _forms()
+    shown, missed, value = _forms()
     fit = shown @ hits + missed @ np.maximum(tries - hits, 0.0)
     weight = np.exp(fit - fit.max())
-    return DetectionCurve(weight @ np.exp(shown) / weight.sum())
+    return DetectionCurve(weight @ value / weight.sum())
 
 
 @dataclass(frozen=True, eq=False)
