@@ -15,6 +15,7 @@ from .narrow import narrow_extrema
 from .relevel import relevelled
 from .strong import with_strong_lines
 from .table import WING, fitted_table
+from .unlined import without_lines
 from .veil import owners, running_min
 
 MISFIT = 0.12  # residuals below this share of a neighbour's depth may be its own misfit
@@ -64,6 +65,10 @@ def filter_runs(ready):
 
 def segment_features(ready, filtered, threshold: float, segment: int, tick=lambda: None):
     """(all features of one segment as a table, the segment under its final continuum)."""
+    clear = without_lines(ready, filtered) if ready.moves else None
+    if clear is not None:
+        ready, filtered = clear, filter_runs(clear)
+        tick()
     found = _first(ready, filtered, threshold)
     tick()
     fitted = _fit(ready, found)

@@ -29,14 +29,24 @@ def relevelled(ready: Prepared, found, fitted) -> Prepared | None:
 
     found, fitted: the features and their fits, as ``segment_features`` has them.
     """
-    t, last = ready.trace, ready.level
+    t = ready.trace
     _, model = backgrounds(t, fitted.params, found.own)
     busy = np.abs(model[t.good]) > OVER * t.noise[t.good]
     shapeless = np.nanmedian(fitted.misfit) if len(fitted.misfit) else np.inf
     if busy.mean() < CROWDED or shapeless > MISFIT:
         return None
-    change = _change(t, last, model)
-    level = last.level * change**EAGER
+    usable = t.good & (np.abs(model) < DEEP)
+    return under_level(ready, model, usable, 0.0, EAGER)
+
+
+def under_level(ready: Prepared, model, usable, share: float, eager: float) -> Prepared:
+    """The segment under the level of ``usable`` samples (n,) divided by 1 - ``model`` (n,).
+
+    share: of a block's samples that must be usable, or its level stays; eager: power of
+    the change.
+    """
+    t, last = ready.trace, ready.level
+    level = last.level * _change(ready, model, usable, share) ** eager
     run = smooth_run(t.wave, last.centre, level)
     ratio = last.run / run
     y, noise = 1.0 - (1.0 - t.y) * ratio, t.noise * ratio
@@ -45,9 +55,9 @@ def relevelled(ready: Prepared, found, fitted) -> Prepared | None:
     return replace(ready, trace=trace, level=new, nodes=nodes_of(trace, new))
 
 
-def _change(t, last, model) -> np.ndarray:
+def _change(ready, model, usable, share: float) -> np.ndarray:
     """Factor for every node of the continuum, (k,)."""
-    usable = t.good & (np.abs(model) < DEEP)
+    t, last = ready.trace, ready.level
     middle = 0.5 * (last.centre[1:] + last.centre[:-1])
     block = np.searchsorted(middle, t.wave)
     rest = (1.0 - t.y) / (1.0 - model)
@@ -55,7 +65,8 @@ def _change(t, last, model) -> np.ndarray:
     change = np.ones(len(last.centre))
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
     members = [np.flatnonzero(usable & (block == k)) for k in range(len(change))]
-    rows = [k for k, m in enumerate(members) if len(m) >= 40]
+    whole = np.bincount(block[t.good], minlength=len(change))
+    rows = [k for k, m in enumerate(members) if len(m) >= max(40, share * whole[k])]
     if not rows:
         return change
     samples = np.array([np.quantile(rest[members[k]], probs) for k in rows])
