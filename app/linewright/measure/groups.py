@@ -11,7 +11,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .gauss import FWHM_PER_SIGMA, Fit, Windows, fit_windows, lone_sensitivity, profiles, spread_noise
+from .gauss import (
+    FWHM_PER_SIGMA, Fit, Windows, first_order_bias, fit_windows, lone_sensitivity, profiles,
+    spread_noise,
+)
 from .veil import REACH as VEIL_REACH
 
 REACH = 1.3  # widths on either side of a window's outer members
@@ -44,13 +47,15 @@ class Trace:
 class Fitted:
     """Per feature: params (m, 3) a, c, ln s; errors (m, 4) of a, c, FWHM (Angstrom),
     area (Angstrom); group (m,) number; trouble (m,) True where the fit failed or sits on
-    a bound; misfit (m,) reduced chi-square of the window."""
+    a bound; misfit (m,) reduced chi-square of the window; bias (m, 3) of a, FWHM, area, to
+    be taken off."""
 
     params: np.ndarray
     errors: np.ndarray
     group: np.ndarray
     trouble: np.ndarray
     misfit: np.ndarray
+    bias: np.ndarray
 
     def take(self, which) -> Fitted:
         return Fitted(*(getattr(self, n)[which] for n in self.__dataclass_fields__))
@@ -140,10 +145,10 @@ def fit_features(trace: Trace, start, run_limits, group, own, tick=lambda: None)
     """
     params = start.copy()
     m = len(params)
-    errors, misfit = np.full((m, 4), np.nan), np.full(m, np.nan)
+    errors, misfit, bias = np.full((m, 4), np.nan), np.full(m, np.nan), np.zeros((m, 3))
     trouble = np.zeros(m, dtype=bool)
     if m == 0:
-        return Fitted(params, errors, group, trouble, misfit)
+        return Fitted(params, errors, group, trouble, misfit, bias)
     members_of = np.split(np.arange(m), np.flatnonzero(np.diff(group)) + 1)
     sizes = np.array([len(x) for x in members_of])
     alike = [np.array([x for x in members_of if len(x) == n]) for n in np.unique(sizes)]
@@ -159,8 +164,9 @@ def fit_features(trace: Trace, start, run_limits, group, own, tick=lambda: None)
                 tick()
                 if sweep == SWEEPS - 1:
                     one.finish(fit, windows, errors, misfit, trouble)
+                    bias[rows[part]] = first_order_bias(windows, fit)
         params = fresh
-    return Fitted(params, errors, group, trouble, misfit)
+    return Fitted(params, errors, group, trouble, misfit, bias)
 
 
 def backgrounds(trace, params, own):

@@ -21,9 +21,13 @@ def fitted_table(trace, nodes, found, fitted, segment: int) -> FeatureTable:
     m = len(fitted.params)
     base = np.interp(fitted.params[:, 1], trace.wave, trace.veil)
     base = np.where(found.own, 0.0, np.minimum(base, 0.98))
-    depth, depth_err = fitted.params[:, 0] / (1 - base), fitted.errors[:, 0] / (1 - base)
+    bias = np.where(fitted.trouble[:, None], 0.0, fitted.bias)
+    depth = (fitted.params[:, 0] - bias[:, 0]) / (1 - base)
+    depth_err = fitted.errors[:, 0] / (1 - base)
     fwhm, fwhm_err = FWHM_PER_SIGMA * np.exp(fitted.params[:, 2]), fitted.errors[:, 2].copy()
-    ew, ew_err = 1e3 * GAUSSIAN_AREA * depth * fwhm, 1e3 * fitted.errors[:, 3] / (1 - base)
+    area = GAUSSIAN_AREA * fitted.params[:, 0] * fwhm - bias[:, 2]
+    fwhm -= bias[:, 1]
+    ew, ew_err = 1e3 * area / (1 - base), 1e3 * fitted.errors[:, 3] / (1 - base)
     wide = integrate_broad(trace, found, fitted)
     fwhm_err[wide.rows] *= wide.fwhm / fwhm[wide.rows]
     fwhm[wide.rows] = wide.fwhm

@@ -7,7 +7,6 @@ emission alike, the samples around are left out, and the rest gives the level.
 
 from __future__ import annotations
 
-from dataclasses import replace
 
 import numpy as np
 
