@@ -46,33 +46,35 @@ def under_level(ready: Prepared, model, usable, share: float, eager: float) -> P
     the change.
     """
     t, last = ready.trace, ready.level
-    level = last.level * _change(ready, model, usable, share) ** eager
+    change, error = _change(ready, model, usable, share)
+    level = last.level * change**eager
     run = smooth_run(t.wave, last.centre, level)
     ratio = last.run / run
     y, noise = 1.0 - (1.0 - t.y) * ratio, t.noise * ratio
-    trace = replace(t, y=y, noise=noise)
-    new = replace(last, level=level, run=run, y=y, noise=noise)
+    error = np.maximum(last.error, error)
+    trace = replace(t, y=y, noise=noise, level_err=np.interp(t.wave, last.centre, error))
+    new = replace(last, level=level, error=error, run=run, y=y, noise=noise)
     return replace(ready, trace=trace, level=new, nodes=nodes_of(trace, new))
 
 
-def _change(ready, model, usable, share: float) -> np.ndarray:
-    """Factor for every node of the continuum, (k,)."""
+def _change(ready, model, usable, share: float) -> tuple[np.ndarray, np.ndarray]:
+    """(factor, its error) for every node of the continuum, each (k,)."""
     t, last = ready.trace, ready.level
     middle = 0.5 * (last.centre[1:] + last.centre[:-1])
     block = np.searchsorted(middle, t.wave)
     rest = (1.0 - t.y) / (1.0 - model)
     noise = t.noise / (1.0 - model)
-    change = np.ones(len(last.centre))
+    change, error = np.ones(len(last.centre)), np.zeros(len(last.centre))
     probs = (np.arange(SAMPLES) + 0.5) / SAMPLES
     members = [np.flatnonzero(usable & (block == k)) for k in range(len(change))]
     whole = np.bincount(block[t.good], minlength=len(change))
     rows = [k for k, m in enumerate(members) if len(m) >= max(40, share * whole[k])]
     if not rows:
-        return change
+        return change, error
     samples = np.array([np.quantile(rest[members[k]], probs) for k in rows])
     sigma = np.array([np.hypot(np.median(noise[members[k]]), ROUGH) for k in rows])
     length = 1.0 + 2.0 * t.correlation[1:].sum()
     weight = np.array([len(members[k]) / length / SAMPLES for k in rows])
-    found, _ = block_levels(samples, sigma, weight)
+    found, error[rows] = block_levels(samples, sigma, weight)
     change[rows] = np.clip(found, 1.0 - MOST, 1.0 + MOST)
-    return change
+    return change, np.minimum(error, MOST)

@@ -13,7 +13,7 @@ import numpy as np
 from .prepare import Prepared
 from .relevel import under_level
 
-LOUD = 2.5  # sigmas of either filter, up or down, beyond which samples are left out
+LOUD = 3.5  # sigmas of either filter, up or down, beyond which samples are left out
 AROUND = 1.0  # line widths on either side
 ENOUGH = 0.3  # share of a block that must be left
 
