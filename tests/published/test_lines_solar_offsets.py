@@ -26,6 +26,7 @@ pytestmark = pytest.mark.skipif(
 )
 # Level values and hyperfine patterns that the Sun contradicts; their errors are set to cover it.
 # Bounds are what was measured, rounded up: not met, and not to get worse.
+FEW = 20  # lines: the median of fewer has an error of its own (of a normal sample), allowed for
 CONTRADICTED = {"Ca I": 0.0035, "Mn I": 0.013, "Sc II": 0.018}
 
 
@@ -39,7 +40,10 @@ def test_medians_of_well_sampled_species_lie_within_2_mA(offsets):
     sampled = {name: values for name, values in offsets.items() if len(values) >= 10}
     assert {"Fe I", "Fe II", "Ni I", "Ti I", "Ti II", "Cr I", "Cr II", "Si I"} <= set(sampled)
     for name, values in sampled.items():
-        assert abs(np.median(values[:, 0])) < CONTRADICTED.get(name, LIMIT), name
+        shift = values[:, 0]
+        error = 1.2533 * 1.4826 * np.median(np.abs(shift - np.median(shift))) / np.sqrt(len(shift))
+        within = CONTRADICTED.get(name, LIMIT + (error if len(shift) < FEW else 0.0))
+        assert abs(np.median(shift)) < within, name
 
 
 def test_few_lines_lie_beyond_three_stated_errors(offsets):
