@@ -154,7 +154,7 @@ def first_order_bias(windows: Windows, fit: Fit) -> np.ndarray:
     Box 1971 (J. R. Stat. Soc. B 33, 171): with C the covariance, z the slopes over the
     noise and H_i the second derivatives at sample i, -C z' tr(C H_i) / 2; FWHM and area
     gain what the curvature of the exponential adds. For independent samples; clipped at
-    SMALL errors, beyond which the first order means nothing.
+    SMALL errors and none where the error exceeds the value: the first order means nothing.
     """
     g, n, _ = fit.params.shape
     *_, z = _normal(windows, fit.params)
@@ -170,6 +170,8 @@ def first_order_bias(windows: Windows, fit: Fit) -> np.ndarray:
     bias = np.stack([shift[..., 0], fwhm * wider, area], axis=-1)
     error = np.stack([lone_sensitivity(fit.covariance, fit.params, j)[:, [0, 2, 3]]
                       for j in range(n)], axis=1)
+    value = np.stack([a, fwhm, GAUSSIAN_AREA * a * fwhm], axis=-1)
+    bias = np.where(error < np.abs(value), bias, 0.0)
     return np.clip(bias, -SMALL * error, SMALL * error)
 
 
