@@ -17,11 +17,13 @@ REACH = 1.5  # FWHM on either side: beyond, other features have their own profil
 def profile_of(session: Session, number: int) -> tuple[np.ndarray, np.ndarray] | None:
     """(vacuum Angstrom, flux) of the fit with its neighbours, on the feature's continuum.
 
-    None where the feature was not measured.
+    None where the feature was not measured, or was integrated and has no profile.
     """
     f, row = session.features, session.index_of(number)
     numbers = (f.wave[row], f.fwhm[row], f.depth[row], f.continuum[row])
     if not np.all(np.isfinite(numbers)) or f.fwhm[row] <= 0:
+        return None
+    if "integrated" in f.flags[row].split():
         return None
     fit = session.fit_of(number)
     if fit is not None and len(fit.params) == len(fit.features):

@@ -17,6 +17,7 @@ from ...lines.page import LinePage
 from .line_page_text import page_html
 
 NO_LINE = "Choose a line to see what is known of it."
+NARROW = 100  # characters below which the siblings find no place beside the data
 COMMANDS = ("line.claim", "line.rake", "line.go", "line.bibtex")
 
 
@@ -27,7 +28,7 @@ class LinePageView(QFrame):
 
     def __init__(self, workbench, parent=None):
         super().__init__(parent)
-        self._workbench, self.page = workbench, None
+        self._workbench, self.page, self._narrow = workbench, None, False
         self.setAccessibleName("Line page")
         self.title, self.text = QLabel(NO_LINE), QTextBrowser()
         self.title.setObjectName("heading")
@@ -78,5 +79,14 @@ class LinePageView(QFrame):
             self.text.clear()
             return
         theme = self._workbench.theme
+        self._narrow = self._is_narrow()
         self.text.setHtml(page_html(
-            self.page, self._workbench.medium, (theme.accent, theme.muted)))
+            self.page, self._workbench.medium, (theme.accent, theme.muted), self._narrow))
+
+    def _is_narrow(self) -> bool:
+        return self.text.width() < NARROW * self.text.fontMetrics().averageCharWidth()
+
+    def resizeEvent(self, event) -> None:  # noqa: N802
+        super().resizeEvent(event)
+        if self.page is not None and self._is_narrow() != self._narrow:
+            self._fill()

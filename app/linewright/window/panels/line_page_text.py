@@ -19,17 +19,19 @@ _UNITS = {"Angstrom": "Å", "rad/s cm3": "rad/s cm³"}
 _SKIPPED = ("species", "flags", "grade", "lower level", "upper level")
 
 
-def page_html(page: LinePage, medium: str, colours: tuple[str, str]) -> str:
-    """colours: (link, quiet) of the theme; links are 'line:ROW'."""
+def page_html(page: LinePage, medium: str, colours: tuple[str, str], narrow: bool = False) -> str:
+    """colours: (link, quiet) of the theme; links are 'line:ROW'; narrow: the siblings stand
+    below the data, not beside them."""
     link, quiet = colours
     pairs = _pairs(page)
     half = (len(pairs) + 1) // 2
     cells = (_table(pairs[:half], quiet), _table(pairs[half:], quiet),
              _related(page, medium, link, quiet))
+    beside, below = (cells[:2], cells[2]) if narrow else (cells, "")
     data = "".join(f"<td{wide} style='padding-right:12px'>{cell}</td>"
-                   for cell, wide in zip(cells, WIDTHS))
+                   for cell, wide in zip(beside, WIDTHS))
     return (f"<table width='100%'><tr>{data}</tr></table>{_levels(page, quiet)}{_remarks(page)}"
-            f"{_sources(page, quiet)}")
+            f"{below}{_sources(page, quiet)}")
 
 
 def _pairs(page: LinePage) -> list[tuple[str, str]]:
