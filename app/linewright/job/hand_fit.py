@@ -210,7 +210,8 @@ def _distinct(fit: RegionFit, trace) -> bool:
     """Whether no component is void or a hit of one sample, nor two the same."""
     f = fit.features
     step = np.interp(f.wave, trace.wave, np.gradient(trace.wave))
-    if not np.all((np.abs(f.depth) > VOID) & (f.fwhm > NARROWEST * step)):
+    real = (np.abs(f.depth) > VOID) & (np.abs(f.depth) > f.depth_err)
+    if not np.all(real & (f.fwhm > NARROWEST * step)):
         return False
     return all(
         f.sign[i] != f.sign[j]

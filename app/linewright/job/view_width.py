@@ -38,7 +38,7 @@ class Widths:
     intrinsic_err: np.ndarray
 
 
-@lru_cache(maxsize=2)  # a session is frozen
+@lru_cache(maxsize=1)  # a session is frozen; the last one shown
 def widths_of(session: Session) -> Widths:
     """Instrument's and intrinsic widths, by ``measure.intrinsic``.
 

@@ -15,7 +15,7 @@ from .relevel import under_level
 
 LOUD = 3.5  # sigmas of either filter, up or down, beyond which samples are left out
 AROUND = 1.0  # line widths on either side
-ENOUGH = 0.3  # share of a block that must be left
+ENOUGH = 0.7  # share of a block that must be left
 
 
 def without_lines(ready: Prepared, filtered) -> Prepared | None:

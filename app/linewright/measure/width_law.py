@@ -22,7 +22,7 @@ CLEAR = 10.0  # by which the criterion must prefer a law that bends ("very stron
 # words of Kass & Raftery 1995, J. Am. Stat. Assoc. 90, 773, from memory)
 FIRM = 0.1  # departure in ln FWHM from a constant that blends in blocks do not make
 FEWEST = {LINEAR: 12, QUADRATIC: 24}  # blocks
-COVER = 0.6  # share of the segment's range in ln wavelength that the blocks must span
+COVER, PARTS = 0.6, 10  # share of equal parts of the range, in ln wavelength, with blocks in them
 
 
 @dataclass(frozen=True)
@@ -45,6 +45,12 @@ class WidthLaw:
         inside = np.clip(wave, self.low, self.high)
         x = np.log(inside / self.pivot)
         return np.exp(np.polynomial.polynomial.polyval(x, self.coefficients)) * (wave / inside)
+
+
+def _covered(wave, span) -> float:
+    """Share of the range's equal parts in which blocks lie: a few far ones make no run."""
+    place = np.log(wave / span[0]) / np.log(span[1] / span[0])
+    return len(np.unique(np.clip((place * PARTS).astype(int), 0, PARTS - 1))) / PARTS
 
 
 def constant_law(wave, fwhm, span, even_log: bool) -> WidthLaw:
@@ -70,7 +76,7 @@ def bent_law(base: WidthLaw, wave, fwhm, span) -> WidthLaw:
     wave, fwhm: of the blocks, Angstrom, (b,), ascending; span: searched, Angstrom.
     """
     kinds = [k for k in (LINEAR, QUADRATIC) if len(wave) >= FEWEST[k]]
-    if not kinds or np.log(wave.max() / wave.min()) < COVER * np.log(span[1] / span[0]):
+    if not kinds or _covered(wave, span) < COVER:
         return base
     pivot = float(np.exp(np.mean(np.log(wave))))
     x, y = np.log(wave / pivot), np.log(fwhm)
