@@ -103,6 +103,8 @@ def _replaced(table, ready, smooth, span) -> FeatureTable:
     if not whole or best.bic > old_bic - CLEAR:
         return table
     rows = _rows(best, view, ready, table, inside)
+    if rows is None:
+        return table
     broad = rows.fwhm[np.argmax(rows.ew)] > WIDE * view.width
     if not broad or not _all_there(table.take(inside), rows, view.width):
         return table
@@ -183,8 +185,9 @@ class _View:
         return _Line(shape, done.x, float(bic), np.linalg.pinv(done.jac.T @ done.jac) * scale)
 
 
-def _rows(line: _Line, view: _View, ready, table, inside) -> FeatureTable:
-    """The strong line and the narrow ones on it as rows, significances of the nearest old."""
+def _rows(line: _Line, view: _View, ready, table, inside) -> FeatureTable | None:
+    """The strong line and the narrow ones on it as rows, significances of the nearest old;
+    None where no depth is sure."""
     k, t = len(line.broad), ready.trace
     error = np.sqrt(np.maximum(np.diag(line.covariance), 0.0))
     fwhm, area = width_and_area(line.shape, line.broad)
@@ -210,7 +213,7 @@ def _rows(line: _Line, view: _View, ready, table, inside) -> FeatureTable:
                      wide * error[j + 2], 1e3 * GAUSSIAN_AREA * p[0] * wide / base,
                      1e3 * area_err / base, base, "blend wing"))
     rows = [r for r in rows if r[2] > 3 * r[3]]
-    return _table(sorted(rows), ready, table.take(inside))
+    return _table(sorted(rows), ready, table.take(inside)) if rows else None
 
 
 def _slope(shape: str, params, j: int) -> tuple[float, float]:
