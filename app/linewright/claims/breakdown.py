@@ -22,7 +22,7 @@ DIGITS = 4
 
 
 class Breakdown(NamedTuple):
-    """Natural logarithms of the four factors, then what they were made of.
+    """Natural logarithms of the first four factors, then what they were made of.
 
     show: P(shows)/P(stays away); place: position likelihood over the density of unlisted
     features; strength: likelihood of the measured strength over that of unlisted features;
@@ -33,6 +33,7 @@ class Breakdown(NamedTuple):
     strength is predicted or measured; slope: of measured against predicted strength
     stronger, weaker: change of log P(shows) for a line STEP dex stronger or weaker
     at_own: weight of the line's own place against the centroid, 0-1
+    between: ln of what weighing the star's part of a blend against the air's did to the odds
     """
 
     show: float
@@ -48,11 +49,12 @@ class Breakdown(NamedTuple):
     stronger: float
     weaker: float
     at_own: float = 1.0
+    between: float = 0.0
 
     @property
     def log_odds(self) -> float:
         """ln of P(this line)/P(no listed line)."""
-        return self.show + self.place + self.strength + self.free
+        return self.show + self.place + self.strength + self.free + self.between
 
 
 def breakdowns(solution, chosen) -> list[tuple[float, ...]]:
@@ -92,10 +94,11 @@ def _columns(solution, chosen):
     odds = odds - np.log(np.maximum(solution.unlisted[pairs.feature], tiny))
     own = np.sqrt(pairs.base_variance) * state.error_scale[pairs.crowded]
     blend = pairs.wave - groups.centroid[pairs.entry]
-    free = odds - show - place - strength
+    between = np.zeros(len(odds)) if solution.between is None else solution.between
+    free = odds - show - place - strength - between
     strengths = _strengths(pairs, state, groups)
     at_own = own_place(pairs, groups)
-    made = (show, place, strength, free, sigma, own, blend, *strengths, at_own)
+    made = (show, place, strength, free, sigma, own, blend, *strengths, at_own, between)
     return tuple(column[chosen] for column in made)
 
 

@@ -13,6 +13,7 @@ from ..lines.strengths import absorption_strength
 from ..progress import Progress
 from ..spectra.medium import C_KM_S
 from .banded import capped
+from .between import shared_between
 from .build import build_claims
 from .components import Found, find_components, refined, settled
 from .artefacts import spikes_aside, with_spikes
@@ -229,7 +230,8 @@ def weigh_again(weighing: Weighing, said, progress=None) -> Weighing:
 
 def conclude(weighing: Weighing, progress=None) -> Identification:
     """Claims, Roll call and Orphans out of a weighing."""
-    setting, found, solution = weighing.setting, weighing.found, weighing.solution
+    setting, found = weighing.setting, weighing.found
+    solution = shared_between(weighing.solution)
     features, catalogue, options = setting.features, setting.catalogue, setting.options
     claims = flagged(build_claims(solution, catalogue, found.components), solution)
     claims = shaped(features, spikes_aside(features, claims))

@@ -51,7 +51,8 @@ class Solution:
 
     feature, entry: (p,) the pairs; probability: (p,); unlisted: (f,); missing: per entry;
     offset_sigma, sigma: (p,) position offset in sigma, and that sigma in Angstrom; groups: shares per entry;
-    strength: (n,) predicted strengths with species offsets
+    strength: (n,) predicted strengths with species offsets; between: (p,) ln of what weighing
+    star against air did to the odds, None where nothing was weighed
     """
 
     problem: Problem
@@ -66,6 +67,7 @@ class Solution:
     strength: np.ndarray
     state: State
     log_likelihood: float
+    between: np.ndarray | None = None
 
 
 def solve_mixture(

@@ -85,13 +85,15 @@ def _refusal(line: tuple[str, float], w: Breakdown, solution, pair: int) -> str:
     place = -0.5 * sigmas**2
     if solution.problem.said is not None and w.free < -100:
         return f"{name} is ruled out by what was said of it"
-    worst = min(place, w.show, w.strength, w.free)
+    worst = min(place, w.show, w.strength, w.free, w.between)
     if worst > REFUSED:
         return f"{name} fits, but not better than an unlisted line"
     if worst == place:
         return f"{name} is {gap:+.3f} Å off, {sigmas:+.1f} sigma"
     if worst == w.free:
         return f"{name} is in place but made another feature"
+    if worst == w.between:
+        return f"{name} is in place but makes the smaller part of a blend of star and air"
     if worst == w.strength:
         side = "too strong" if w.excess > 0 else "too weak"
         return f"{name} is in place, the feature {abs(w.excess):.1f} dex {side} for it"

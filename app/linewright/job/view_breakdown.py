@@ -33,10 +33,13 @@ def factor_text(log: float) -> str:
 
 
 def terms(candidate: Candidate) -> tuple[Term, ...]:
-    """shows, place, strength, free; empty where the session keeps no breakdown."""
+    """shows, place, strength, free, and star against air where both meet; empty where the session keeps no breakdown."""
     if not candidate.weights:
         return ()
     b, name = Breakdown(*candidate.weights), candidate.species
+    shared = (Term("star and air", b.between, _side(
+        b.between, "what the depth leaves for star and air favours it {} times",
+        "what the depth leaves for star and air speaks {} times against it")),)
     return (
         Term("shows", b.show, _show(b.show, name)),
         Term("place", b.place, _side(
@@ -46,7 +49,7 @@ def terms(candidate: Candidate) -> tuple[Term, ...]:
         Term("free", b.free, _side(
             b.free, "no other feature wants this line", "other features want this line too: "
             "{} times less free") if b.free < -0.05 else "no other feature wants this line"),
-    )
+    ) + (shared if abs(b.between) > 0.05 else ())
 
 
 def _times(log: float) -> str:
