@@ -125,8 +125,8 @@ def _candidates(solution: Solution, catalogue, components, chosen):
     e, entry = solution.problem.entries, solution.entry[pairs]
     row = e.row[entry]
     origins = [c.origin for c in components]
-    velocities = np.array([c.velocity for c in components], dtype=float)
     owner = e.component[entry]
+    velocity = _velocities(components, owner, row)
     probability = np.minimum(solution.probability[pairs], 1.0) * sure[solution.feature[pairs]]
     columns = (
         [catalogue.species_names[i] for i in catalogue.species[row].tolist()],
@@ -135,7 +135,7 @@ def _candidates(solution: Solution, catalogue, components, chosen):
         catalogue.wave_err[row].tolist(),
         catalogue.e_low[row].tolist(),
         catalogue.loggf[row].tolist(),
-        velocities[owner].tolist(),
+        velocity.tolist(),
         probability.tolist(),
         solution.groups.share[entry].tolist(),
         solution.offset_sigma[pairs].tolist(),
@@ -144,6 +144,16 @@ def _candidates(solution: Solution, catalogue, components, chosen):
         breakdowns(solution, pairs),
     )
     return tuple(map(Candidate, *columns))
+
+
+def _velocities(components, owner, row):
+    """km/s of the components behind some lines, or of their ions where these have their own."""
+    velocity = np.array([c.velocity for c in components], dtype=float)[owner]
+    for i, component in enumerate(components):
+        if component.ions is not None:
+            mine = owner == i
+            velocity[mine] += component.ions.shift[row[mine]]
+    return velocity
 
 
 def _blends(solution: Solution, catalogue, pairs):

@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from . import ion_velocities
 from .gas import find_clouds, find_emission
 from .model import VelocityResult
 from .populations import HYDROGEN, NEBULAR, SKY, STELLAR, TELLURIC, Component
@@ -53,7 +54,9 @@ def find_components(setting, progress) -> Found:
         components.append(Component(HYDROGEN, main.velocity, certainty=starry))
     if np.any(f.sign < 0):
         certain = max(sure, nebula.certainty)
-        components.append(Component(NEBULAR, _emission_velocity(nebula, main), certainty=certain))
+        velocity = _emission_velocity(nebula, main)
+        ions = ion_velocities.unknown(setting.catalogue)
+        components.append(Component(NEBULAR, velocity, certainty=certain, ions=ions))
         components.append(Component(SKY, 0.0, 0.5 if o.frame == "topocentric" else 15.0))
     telluric = telluric_vote(f, setting.catalogue, o.frame, o.velocity_range)
     # A table without coverage cannot refute telluric lines: only a clear vote brings them in.
@@ -171,6 +174,9 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
             error = float(np.hypot(error, BLENDING * typical_width(setting.features)))
         if np.isfinite(error) and not fixed:
             component = replace(component, velocity=component.velocity + shift, error=error)
+        if component.ions is not None:
+            ions = ion_velocities.learned(setting.catalogue, solution, i, component.velocity)
+            component = replace(component, ions=ions)
         components.append(component)
     components = _tie_hydrogen(components)
     main = _spokesman(found, solution)

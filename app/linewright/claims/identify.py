@@ -65,11 +65,13 @@ class Identification:
         named = [c for c in self.claims if c.probability >= 0.5 and c.candidates]
         used = {(c.origin, c.candidates[0].velocity) for c in named}
         star = {("stellar", c.velocity) for c in self.components if c.population == STELLAR}
+        origins = {c.origin for c in named}
+        nebula = {(c.origin, c.velocity) for c in self.components if c.ions and c.origin in origins}
         rows = [
             (c.origin, c.velocity, c.error)
             for c in self.components
             if c.population not in (HYDROGEN, EMITTED, OUTFLOW)
-            and (c.origin, c.velocity) in used | star
+            and (c.origin, c.velocity) in used | star | nebula
         ]
         return tuple(dict.fromkeys(rows))
 

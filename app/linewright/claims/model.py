@@ -24,7 +24,7 @@ class Candidate:
     """One catalogue line as the explanation of one feature.
 
     wave, wave_err: laboratory vacuum wavelength, Angstrom; e_low in eV; loggf in dex
-    velocity: of the component it belongs to, km/s
+    velocity: of the component it belongs to, or of its ion in it, km/s
     probability: that this line is the main contributor
     share: of the predicted opacity (emissivity) within a resolution element
     offset_sigma: (feature - line)/sigma at the component's velocity

@@ -13,6 +13,7 @@ import numpy as np
 from ..lines.catalogue import ORIGINS, LineCatalogue
 from ..spectra.medium import C_KM_S
 from .entries import ABSORPTION, EMISSION, Entries, join
+from .ion_velocities import IonVelocities
 from .problem import inside
 
 STELLAR, TELLURIC, INTERSTELLAR, NEBULAR, SKY, HYDROGEN, EMITTED, OUTFLOW = range(8)
@@ -53,7 +54,8 @@ class Component:
     """A velocity at which lines of one population stand; km/s.
 
     log_ratio: flux share of a second star, dex; certainty: probability that the component
-    is there at this velocity, which every claim on its lines inherits.
+    is there at this velocity, which every claim on its lines inherits; ions: what each ion's
+    velocity differs by, in a nebula.
     """
 
     population: int
@@ -61,6 +63,7 @@ class Component:
     error: float = 0.0
     log_ratio: float = 0.0
     certainty: float = 1.0
+    ions: IonVelocities | None = None
 
     @property
     def origin(self) -> str:
@@ -126,6 +129,16 @@ def zero_point(strength, observed, coverage, features: int) -> float:
     return float(ranked[min(max(features, 5), len(ranked)) - 1])
 
 
+def places(catalogue, component: Component):
+    """(observed wavelength, its error by the velocity) of every row, vacuum Angstrom."""
+    velocity, error = component.velocity, np.full(len(catalogue), component.error)
+    if component.ions is not None:
+        velocity = velocity + component.ions.shift
+        error = np.hypot(error, component.ions.error)
+    observed = catalogue.wave * (1.0 + velocity / C_KM_S)
+    return observed, observed * error / C_KM_S
+
+
 def predict(catalogue, absorption, component: Component, index: int, context) -> Entries:
     """Entries of one component.
 
@@ -133,8 +146,7 @@ def predict(catalogue, absorption, component: Component, index: int, context) ->
     """
     coverage, counts, species_count, segments = context
     strength = strengths(catalogue, component.population, absorption) + component.log_ratio
-    factor = 1.0 + component.velocity / C_KM_S
-    observed = catalogue.wave * factor
+    observed, unsure = places(catalogue, component)
     if component.population in (STELLAR, NEBULAR, HYDROGEN):
         emission = component.population == NEBULAR
         scale = strength if emission else absorption
@@ -142,7 +154,7 @@ def predict(catalogue, absorption, component: Component, index: int, context) ->
     near = inside(observed, coverage + np.array([-2.0, 2.0])) & (strength > -DEEPEST)
     within = (observed >= segments[:, :1] - 2.0) & (observed <= segments[:, 1:] + 2.0)
     segment, rows = np.nonzero(within & near)
-    error = np.hypot(catalogue.wave_err[rows], observed[rows] * component.error / C_KM_S)
+    error = np.hypot(catalogue.wave_err[rows], unsure[rows])
     return Entries(
         observed[rows],
         error,
