@@ -115,7 +115,7 @@ def test_siblings_tell_seen_missing_and_outside(solved):
     assert siblings_words(None, "air") == ("", "")
     bench, siblings = solved.bench, solved.space.evidence.siblings
     session = replace(bench.session, roll_call=tuple(
-        replace(r, missing_wave=5270.0) for r in bench.session.roll_call))
+        replace(r, missing=1, missing_wave=5270.0) for r in bench.session.roll_call))
     bench.desk.document.replace(session, "test")
     bench.view.select(13)
     siblings.cut_now()
@@ -126,7 +126,7 @@ def test_siblings_tell_seen_missing_and_outside(solved):
 def test_the_roll_call_tells_limits_and_what_is_missing(solved):
     bench, panel = solved.bench, solved.space.roll_call
     rows = list(bench.session.roll_call)
-    rows[0] = replace(rows[0], missing_wave=5270.0, missing_depth=0.31)
+    rows[0] = replace(rows[0], missing=1, missing_wave=5270.0, missing_depth=0.31)
     rows[-1] = replace(rows[-1], limit_dex=-0.4, limit_wave=4935.45, limit_ew=3.2)
     bench.desk.document.replace(replace(bench.session, roll_call=tuple(rows)), "test")
     titles = [c.title for c in panel.model.columns]

@@ -70,15 +70,24 @@ def is_band(features: FeatureTable):
 def band_ranges(features: FeatureTable, claims) -> tuple[tuple[float, float], ...]:
     """Observed vacuum ranges of the bands that rows of a table stand for, but for those that a
     person set aside."""
+    return tuple((band.low * factor, band.high * factor)
+                 for band, factor, _row in _seen(features, claims))
+
+
+def named_bands(features: FeatureTable, claims):
+    """(molecule, head, low, high, step seen) of the same bands; rest vacuum Angstrom."""
+    return [(band.molecule, band.head, band.low, band.high, float(features.depth[row]))
+            for band, _factor, row in _seen(features, claims)]
+
+
+def _seen(features: FeatureTable, claims):
+    """(Band, 1 + v/c, row) of the rows that stand for a band."""
     known = {(b.molecule, round(b.head, 3)): b for b in load_bands()}
-    out = []
-    for i in np.nonzero(is_band(features))[0]:
+    for i in np.nonzero(is_band(features))[0].tolist():
         line = claims[i].candidates[0] if claims[i].candidates else None
         band = known.get((line.species, round(line.wave, 3))) if line else None
         if band is not None and claims[i].standing != "set aside":
-            factor = 1.0 + line.velocity / C_KM_S
-            out.append((band.low * factor, band.high * factor))
-    return tuple(out)
+            yield band, 1.0 + line.velocity / C_KM_S, i
 
 
 def band_warning(bands) -> tuple[str, ...]:

@@ -78,7 +78,8 @@ def siblings_words(roll: RollRow | None, medium: str) -> tuple[str, str]:
     is missing and that lies outside the coverage."""
     if roll is None or not roll.expected:
         return "", ""
-    lines = [_line("missing", roll.missing_wave, medium), _line("outside", roll.gap_wave, medium)]
+    gone = roll.missing_wave if roll.missing else math.nan
+    lines = [_line("missing", gone, medium), _line("outside", roll.gap_wave, medium)]
     return f"{roll.seen} of {roll.expected} seen", " · ".join(filter(None, lines))
 
 

@@ -69,7 +69,7 @@ def _conditions(session: Session) -> str:
 
 
 def _missing(row: RollRow, medium: str) -> list[str]:
-    if not math.isfinite(row.missing_wave):
+    if not row.missing or not math.isfinite(row.missing_wave):
         return []
     wave = float(to_medium(row.missing_wave, medium))
     depth = f", expected {row.missing_depth:.2f} deep" if math.isfinite(row.missing_depth) else ""

@@ -6,7 +6,7 @@ import numpy as np
 from PySide6.QtCore import QObject, QTimer
 
 from ..job.view_depths import conditions, predicted_depths
-from ..job.view_rake import most_claimed, rake_columns
+from ..job.view_rake import Elsewhere, elsewhere, most_claimed, rake_columns, rake_teeth
 from ..spectra.medium import from_medium
 from .plot import RakeData
 from .tasks import Request
@@ -26,6 +26,7 @@ class RakeKeeper(QObject):
         self._drawn: tuple | None = None
         self._known: tuple | None = None
         self._counted: tuple = (None, 0.0, 0.0, ())
+        self._apart: tuple = (None, None, Elsewhere())
         self._later = QTimer(self)
         self._later.setSingleShot(True)
         self._later.setInterval(80)
@@ -70,12 +71,15 @@ class RakeKeeper(QObject):
             return
         species = self._wanted()
         low, high = bench.drawn.own_range()
-        drawn = (species, id(bench.depth), low, high, bench.medium)
+        apart = self._elsewhere(bench.session)
+        drawn = (species, id(bench.depth), low, high, bench.medium, apart)
         if drawn == self._drawn:
             return
         ends = from_medium(np.array([low * (1 - MARGIN), high * (1 + MARGIN)]), bench.medium)
-        wave, depth, row = rake_columns(bench.catalogue, bench.depth, species, *ends)
-        self._put(species, RakeData(wave, depth, row, species))
+        columns = rake_columns(bench.catalogue, bench.depth, species, *ends)
+        teeth = rake_teeth(columns, species, apart)
+        self._put(species, RakeData(teeth.wave, teeth.depth, teeth.row, species, own=teeth.own,
+                                    bands=teeth.bands, origins=apart.origins))
         self._drawn = drawn
 
     def _put(self, species, data) -> None:
@@ -97,6 +101,13 @@ class RakeKeeper(QObject):
         looked = [candidate.species] if candidate is not None else []
         looked += [bench.catalogue.species_of(line)] if line is not None else []
         return tuple(dict.fromkeys([*names, *filter(None, looked)]))
+
+    def _elsewhere(self, session) -> Elsewhere:
+        """Looked up again only when claims changed."""
+        known = session.claims, session.velocity
+        if any(a is not b for a, b in zip(self._apart, known)):
+            self._apart = (*known, elsewhere(session))
+        return self._apart[2]
 
     def _most_claimed(self, session, low: float, high: float) -> tuple[str, ...]:
         """Counted again only when claims or view changed, not with every selection."""

@@ -142,6 +142,8 @@ class Refresher:
         self._space.orphans.show_selection(number)
         self._space.changes.show_selection(number)
         self._space.catalogue.follow_selection()
+        candidate = bench.candidate()
+        self._space.roll_call.show_species(candidate.species if candidate is not None else "")
         self._space.evidence.refresh()
 
     def view_changed(self, old, new) -> None:

@@ -5,6 +5,8 @@ from __future__ import annotations
 from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QLabel, QProgressBar, QPushButton, QStatusBar
 
+from .typeset import typeset
+
 
 def description(bench) -> str:
     """file · medium · frame · samples · temperature · saved"""
@@ -32,10 +34,10 @@ def provenance(bench) -> str:
     from ..job.view_temperature import long_text
 
     s = bench.session.spectrum
-    lines = [s.path, f"layout: {s.layout}", f"medium: {s.medium} ({s.medium_from})",
+    lines = [f"layout: {s.layout}", f"medium: {s.medium} ({s.medium_from})",
              f"frame: {s.frame} ({s.frame_from})",
              long_text(bench.session), *bench.session.warnings]
-    return "\n".join(line for line in lines if line)
+    return "\n".join(filter(None, (s.path, *map(typeset, lines))))
 
 
 class StatusLine(QStatusBar):

@@ -22,6 +22,7 @@ def style_of(theme: Theme) -> str:
 #title {{ font-size: 24pt; font-weight: 300; color: {t.ink}; }}
 #heading {{ font-weight: 600; color: {t.ink}; }}
 #quiet, #emptyState {{ color: {t.muted}; }}
+#standsOut {{ color: {t.caution}; }}
 #emptyState {{ padding: 12px; background: {t.base}; }}
 #trouble {{ color: {t.bad}; }}
 #candidates {{ background: transparent; }}

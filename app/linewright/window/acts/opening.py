@@ -14,6 +14,7 @@ from ...spectra.spectrum import Spectrum
 from .. import layout_memory as memory
 from ..notices import Notice
 from ..tasks import Request
+from ..typeset import typeset
 from ..workbench import Desk
 
 MEDIUM = "medium"
@@ -144,10 +145,18 @@ def _show(bench, opened: Opened) -> None:
         bench.notify(Notice(f"The session is shown without its spectrum. {opened.trouble}",
                             "warning", topic="spectrum"))
     elif session.warnings:
-        bench.notify(Notice(f"Assumed in reading: {'; '.join(session.warnings)}.", "note",
-                            seconds=15, topic="reading"))
+        bench.notify(Notice(_said(session, opened.spectrum), "note", seconds=15, topic="reading"))
     ask_medium(bench)
     bench.window.spectrum_view.setFocus()
+
+
+def _said(session, spectrum) -> str:
+    """What the reading assumed and what the solve of a saved session warned of, apart."""
+    read = session.warnings if spectrum is None or not len(session.features) else tuple(
+        w for w in session.warnings if w in spectrum.warnings)
+    solved = [w for w in session.warnings if w not in read]
+    parts = (("Assumed in reading", read), ("Warned of when solved", solved))
+    return typeset(" ".join(f"{name}: {'; '.join(told)}." for name, told in parts if told))
 
 
 def ask_medium(bench, then=lambda: None) -> None:

@@ -6,6 +6,7 @@ from ...errors import LinewrightError
 from ...job.view_keep import keep_acts
 from ..notices import Notice
 from ..tasks import Request
+from ..typeset import typeset
 from . import opening
 
 SOLVE = "job.solve:solve"
@@ -72,7 +73,7 @@ def with_warnings(bench, told: Notice, session, spectrum) -> Notice:
     drifts = any("drifts" in w for w in new)
     buttons = (("Velocity residuals", lambda: bench.run("view.residuals")),) if drifts else ()
     first = next((w for w in new if "drifts" in w), new[0])
-    return Notice(f"{told.text} Note: {first}.{more}", "warning", buttons, topic="solved")
+    return Notice(f"{told.text} Note: {typeset(first)}.{more}", "warning", buttons, topic="solved")
 
 
 def signed(value: float) -> str:

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, Qt
 
+LONG = 40  # letters: longer texts are told in the tip too
 RIGHT = Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter
 LEFT = Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter
 
@@ -91,7 +92,10 @@ class ColumnModel(QAbstractTableModel):
         return self.decoration(self.source_row(index), column, role)
 
     def decoration(self, row: int, column: Column, role: int):
-        """Colour, font or tool tip of a cell; nothing unless a table says so."""
+        """Colour, font or tool tip of a cell; words that may be cut off stand in the tip."""
+        if role == Qt.ItemDataRole.ToolTipRole and not column.numeric:
+            words = column.text(row)
+            return words if len(words) > LONG else None
         return None
 
     def headerData(self, section, orientation, role=Qt.ItemDataRole.DisplayRole):

@@ -27,6 +27,7 @@ from .tall_area import TallArea
 
 SHOWN = 6
 LEAST = 0.001  # below this probability only the two best are listed
+TOLD = 0.005  # from here on a candidate that is not looked at shows its numbers too
 BUTTONS = ("claim.accept", "claim.blend", "claim.aside", "claim.note")
 
 
@@ -128,6 +129,7 @@ class EvidencePanel(QWidget):
         flags = say.flag_words(session, row)
         self.flags.setText(say.remarkable(flags) if flags else "")
         self.flags.setToolTip(words.flags(flags))
+        self._mark_flags(say.stands_out(flags))
         self.flags.setVisible(bool(flags))
         self.note.setText(f"note: {claim.note}")
         self.note.setVisible(bool(claim.note))
@@ -136,6 +138,14 @@ class EvidencePanel(QWidget):
         self.facts.show_claim(claim, candidate.species if candidate is not None else "")
         self.area.fit()
         self.siblings.show_candidate(session, candidate)
+
+    def _mark_flags(self, remarkable: bool) -> None:
+        """What stands out is written as plainly as the heading, the rest quietly."""
+        name = "standsOut" if remarkable else "quiet"
+        if self.flags.objectName() != name:
+            self.flags.setObjectName(name)
+            self.flags.style().unpolish(self.flags)
+            self.flags.style().polish(self.flags)
 
     def _show_candidates(self, session, row: int, claim) -> None:
         chosen = min(self._workbench.view.now.candidate, max(len(claim.candidates) - 1, 0))
@@ -162,6 +172,7 @@ class EvidencePanel(QWidget):
             candidate.probability, theme.colour(candidate.species, candidate.origin), theme.edge)
         widget.number.setText(words.probability(candidate.probability))
         widget.detail.setText(say.candidate_numbers(candidate, depth))
+        widget.detail.setVisible(chosen or candidate.probability >= TOLD)
         widget.why.setVisible(chosen)
         widget.odds.show_terms(terms(candidate) if chosen else (), theme)
         if chosen:

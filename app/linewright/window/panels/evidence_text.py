@@ -71,17 +71,26 @@ def verdict(claim: Claim) -> str:
 
 
 def flag_words(session: Session, row: int) -> str:
-    """The flags of measurement and claim, each once."""
-    both = f"{session.claims[row].flags} {session.features.flags[row]}".split()
-    return " ".join(dict.fromkeys(both))
+    """The flags of measurement and claim, what stands out before the others."""
+    return " ".join(words.in_order(f"{session.claims[row].flags} {session.features.flags[row]}"))
 
 
 def remarkable(flags: str) -> str:
-    """The first flag explained in short, the others named; the tip has it all."""
-    first, *others = flags.split()
-    name, _, meaning = words.flag(first).partition(": ")
-    short = meaning.partition(":")[0]
-    return f"{name}: {short}" + (f"; also {', '.join(others)}" if others else "")
+    """What stands out explained in short, else the first flag; the others named. The tip has
+    it all."""
+    named = flags.split()
+    told = [w for w in named if w in words.STANDS_OUT] or named[:1]
+    others = [w for w in named if w not in told]
+    return "; ".join(map(_short, told)) + (f"; also {', '.join(others)}" if others else "")
+
+
+def stands_out(flags: str) -> bool:
+    return any(w in words.STANDS_OUT for w in flags.split())
+
+
+def _short(flag: str) -> str:
+    name, _, meaning = words.flag(flag).partition(": ")
+    return f"{name}: {meaning.partition(':')[0]}"
 
 
 def candidate_name(candidate: Candidate, medium: str) -> str:
@@ -103,7 +112,7 @@ def candidate_numbers(candidate: Candidate, depth: float) -> str:
 def line_facts(candidate: Candidate) -> str:
     low, gf = words.number(candidate.e_low, 2), words.number(candidate.loggf, 2, True)
     parts = [f"E_low {low} eV" if low else "", f"log gf {gf}" if gf else "",
-             f"source {candidate.source}" if candidate.source else ""]
+             candidate.source]
     return " · ".join(p for p in parts if p)
 
 

@@ -54,8 +54,8 @@ class LedgerPanel(TablePanel):
         self._workbench, self._session = workbench, None
         self.table.setItemDelegate(PlainCells(self.table, decorated=True))
         self.text = self.add_text_filter(
-            "Filter: species, wavelength or note",
-            "Shows rows whose claim, wavelength or note contains this text (Ctrl+F)",
+            "Filter: species, wavelength, flag or note",
+            "Shows rows whose claim, wavelength, flags or note contain this text (Ctrl+F)",
         )
         self.standing = self._choice("any standing", "Only rows of this standing")
         self.standing.addItems([words.standing(s) for s in STANDINGS])
@@ -148,8 +148,8 @@ class LedgerPanel(TablePanel):
         text = self.text.text().strip().lower()
         if text:
             keep &= np.array(
-                [text in f"{s} {w:.3f} {n}".lower() for s, w, n in
-                 zip(a.species, a.wave, a.note, strict=True)], dtype=bool)
+                [text in f"{s} {w:.3f} {a.flags(i)} {n}".lower() for i, (s, w, n) in
+                 enumerate(zip(a.species, a.wave, a.note, strict=True))], dtype=bool)
         return keep
 
     def show_selection(self, number: int | None) -> None:

@@ -44,9 +44,8 @@ class LedgerArrays:
         return rows
 
     def flags(self, i: int) -> str:
-        """Of the measurement and of the claim, each once; a person's hand first."""
-        named = dict.fromkeys(f"{self.features.flags[i]} {self.claims[i].flags}".split())
-        return " ".join(sorted(named, key=lambda word: word != "hand"))
+        """Of the measurement and of the claim, what stands out before the others."""
+        return " ".join(words.in_order(f"{self.features.flags[i]} {self.claims[i].flags}"))
 
     def _take(self, i: int, session: Session) -> None:
         claim = session.claims[i]
@@ -94,7 +93,7 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
                lambda i: a.by[i], lambda: a.by.astype(str), False, 76),
         Column("flags", "What is remarkable about measurement and claim; the tip of a cell says "
                "what each word means", a.flags,
-               lambda: np.array([a.flags(i) for i in range(len(a.wave))], dtype=str), False, 110),
+               lambda: np.array([a.flags(i) for i in range(len(a.wave))], dtype=str), False, 200),
         Column("note", "Your note on this feature",
-               lambda i: a.note[i], lambda: a.note.astype(str), False, 160),
+               lambda i: a.note[i], lambda: a.note.astype(str), False, 96),
     ]

@@ -6,6 +6,7 @@ import numpy as np
 from PySide6.QtWidgets import QLabel
 
 from ...spectra.medium import to_medium
+from ..typeset import typeset
 from . import words
 from .column_model import Column, ColumnModel
 from .table_panel import TablePanel
@@ -49,8 +50,8 @@ class OrphansPanel(TablePanel):
     def refresh(self) -> None:
         columns, wave = self._columns()
         text = self.text.text().strip().lower()
-        keep = [i for i, o in enumerate(self._rows)
-                if text in f"{wave[i]:.3f} {o.nearest} {o.why}".lower()]
+        keep = [i for i, said in enumerate(f"{o.nearest} {o.why}" for o in self._rows)
+                if text in f"{wave[i]:.3f} {said} {typeset(said)}".lower()]
         self.model.show_rows(columns, np.array(keep, dtype=int))
         solved = self._session is not None and len(self._session.roll_call) > 0
         if self._rows:
@@ -79,9 +80,9 @@ class OrphansPanel(TablePanel):
                    lambda i: words.depth(f.depth[at[i]]), lambda: f.depth[at], True, 70),
             Column("unlisted", "Probability that no catalogue line made it",
                    lambda i: words.probability(chance[i]), lambda: chance, True, 80),
-            Column("nearest", "The nearest catalogue line", lambda i: rows[i].nearest,
+            Column("nearest", "The nearest catalogue line", lambda i: typeset(rows[i].nearest),
                    lambda: np.array([o.nearest for o in rows], dtype=str), False, 230),
-            Column("why", "What it is not, and why", lambda i: rows[i].why,
+            Column("why", "What it is not, and why", lambda i: typeset(rows[i].why),
                    lambda: np.array([o.why for o in rows], dtype=str), False, 320),
         ], wave
 

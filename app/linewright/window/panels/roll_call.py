@@ -28,6 +28,7 @@ class RollCallPanel(TablePanel):
     def __init__(self, workbench, parent=None):
         super().__init__("Roll call", ColumnModel(), EMPTY, parent)
         self._workbench, self._rows = workbench, ()
+        self._followed: str | None = None
         self.text = self.add_text_filter(
             "Filter: species or verdict", "Shows species or verdicts containing this text")
         self.words = QLabel(CHOOSE)
@@ -63,11 +64,20 @@ class RollCallPanel(TablePanel):
         if rows is self._rows and self.model.columns:
             return
         first, self._rows = not self._rows, rows
+        self._followed = None
         self._tell(None)
         self.refresh()
         if first and rows:
             for i, column in enumerate(self.model.columns):
                 self.table.setColumnWidth(i, column.width)
+
+    def show_species(self, species: str) -> None:
+        """The row and the verdict of the species that Evidence looks at."""
+        at = next((i for i, r in enumerate(self._rows) if r.species == species), None)
+        if at is not None and species != self._followed:
+            self._followed = species
+            self.follow(at)
+            self._tell(at)
 
     def refresh(self) -> None:
         text = self.text.text().strip().lower()
@@ -127,7 +137,7 @@ def _limit_line(row, medium: str) -> str:
 
 
 def _missing(row, medium: str) -> str:
-    if not np.isfinite(row.missing_wave):
+    if not row.missing or not np.isfinite(row.missing_wave):
         return ""
     depth = words.number(row.missing_depth, 2)
     return f"{float(to_medium(row.missing_wave, medium)):.2f} Å" + (f", {depth}" if depth else "")

@@ -6,6 +6,7 @@ from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from ...job.view_breakdown import siblings_words
+from ...job.view_rake import heads_claimed
 from ...job.view_siblings import OWN_LINES, said_now, sibling_strips, sibling_velocity
 from ..plot import SiblingStrips, Strip
 from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
@@ -84,6 +85,9 @@ class SiblingsBox(QWidget):
         if not ready or bench.spectrum is None:
             self.clear()
             return
+        if candidate.origin == "molecular":
+            self._show_heads(session, candidate.species)
+            return
         velocity = sibling_velocity(session, candidate, bench.view.now.velocity)
         fwhm = float(session.features.fwhm[bench.selected_row()])
         made_of = (session.features, session.continuum, bench.depth, bench.spectrum)
@@ -104,6 +108,15 @@ class SiblingsBox(QWidget):
         roll = next((r for r in session.roll_call if r.species == named), None)
         self._tell(*siblings_words(roll, session.spectrum.medium))
         self._show(candidate)
+
+    def _show_heads(self, session, molecule: str) -> None:
+        """A band's siblings are the other heads: steps, too wide for strips in velocity."""
+        heads = heads_claimed(session, molecule)
+        self.clear()
+        self.title.setText(f"Heads of {molecule}")
+        self._tell(f"{len(heads)} claimed", "")
+        self.strips.hint = "Steps claimed as heads, Å:\n" + "   ".join(f"{w:.2f}" for w in heads)
+        self.strips.update()
 
     def _tell(self, count: str, lines: str) -> None:
         for label, words in ((self.count, count), (self.lines, lines)):

@@ -112,6 +112,14 @@ FLAGS = {
     "gap-edge": "set aside as made by a gap or the end of the spectrum",
 }
 
+STANDS_OUT = ("off-velocity", "off-strength", "off-excitation", "broad", "narrow")
+
+
+def in_order(flags: str) -> list[str]:
+    """Each flag once: a person's hand, what stands out among its like, then the others."""
+    named = dict.fromkeys(flags.split())
+    return sorted(named, key=lambda word: (word != "hand", word not in STANDS_OUT))
+
 
 def grade(letter: str) -> str:
     return f"grade {letter}: strength {GRADES[letter]}" if letter in GRADES else ""

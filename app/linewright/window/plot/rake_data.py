@@ -16,6 +16,10 @@ class RakeData:
     row: index into ``row_names`` of each line, shape (n,)
     row_names: species of each row, top row first; the theme colours a row by its family
     missing: True for a line that ought to be seen and is not, shape (n,), or None
+    own: km/s of a line that does not move with the rake (of the air, a cloud, another star),
+        NaN for the others, shape (n,), or None
+    bands: (row, low, high) of molecular bands, rest vacuum Angstrom
+    origins: (species, origin) of rows that are not the star's: they have that origin's colour
 
     Raises ValueError for arrays of unequal length, unsorted wavelengths or a row index
     outside ``row_names``.
@@ -26,11 +30,14 @@ class RakeData:
     row: np.ndarray
     row_names: tuple[str, ...]
     missing: np.ndarray | None = None
+    own: np.ndarray | None = None
+    bands: tuple[tuple[int, float, float], ...] = ()
+    origins: tuple[tuple[str, str], ...] = ()
 
     def __post_init__(self):
         count = len(self.wave)
-        others = [self.depth, self.row] + ([] if self.missing is None else [self.missing])
-        if any(len(column) != count for column in others):
+        others = (self.depth, self.row, self.missing, self.own)
+        if any(column is not None and len(column) != count for column in others):
             raise ValueError("rake columns differ in length")
         if count and np.any(np.diff(self.wave) < 0):
             raise ValueError("rake wavelengths are not ascending")

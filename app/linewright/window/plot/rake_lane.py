@@ -22,6 +22,7 @@ MOST_ROWS = 12
 _HEAD = 4
 _WIDE_SPACING = 10
 _REACH = 4.0
+_BAND, _BAND_ALPHA = 4, 110
 
 
 class RakeLane(NavigableLane):
@@ -73,7 +74,8 @@ class RakeLane(NavigableLane):
         more = f" {hidden} more species do not fit." if hidden > 0 else ""
         self.setToolTip(
             "Rake: where lines of the chosen species are predicted at this velocity; the "
-            "longer a tooth, the deeper the line should be." + more
+            "longer a tooth, the deeper the line should be. Lines of the air, of clouds and of "
+            "other components stand at their own velocity and do not slide along." + more
         )
 
     def tooth_text(self, x: float, y: float) -> str:
@@ -82,12 +84,15 @@ class RakeLane(NavigableLane):
         if not 0 <= row < self.shown_rows or x < LEFT:
             return ""
         state = self.state
-        rest = float(from_medium(self.wave_at(x), state.medium)) / (1 + state.velocity / C_KM_S)
-        tooth = self.teeth.nearest(row, rest, _REACH * self.scale().per_pixel)
+        observed = float(from_medium(self.wave_at(x), state.medium))
+        reach = _REACH * self.scale().per_pixel
+        tooth = self.teeth.nearest(row, observed, reach, state.velocity)
         if tooth is None:
             return ""
         wave = float(to_medium(tooth[0], state.medium))
-        return f"{self.teeth.names[row]} {wave:.3f} Å, predicted depth {tooth[1]:.2f}"
+        molecule = any(band[0] == row for band in self.teeth.bands)
+        said = "head of a band, step" if molecule else "predicted depth"
+        return f"{self.teeth.names[row]} {wave:.3f} Å, {said} {tooth[1]:.2f}"
 
     def event(self, event: QEvent) -> bool:
         """The tool tip names the tooth under the pointer, elsewhere it explains the Rake."""
@@ -110,6 +115,7 @@ class RakeLane(NavigableLane):
         tall, wide = pixels.shape
         picture = QImage(pixels.data, wide, tall, 4 * wide, QImage.Format.Format_RGB32)
         painter.drawImage(QPointF(scale.first_column(), y), picture)
+        self._draw_bands(painter, scale, (y, ratio))
         self._draw_missing(painter, scale, (y, ratio))
         if self.marked is not None:
             draw_marked(painter, self, scale, (y, ratio))
@@ -134,9 +140,10 @@ class RakeLane(NavigableLane):
         painter.setFont(font)
         for row, name in enumerate(self.teeth.names[: self.shown_rows]):
             top = _HEAD + row * height
-            mark = marker_pixmap(theme.marker(name), theme.colour(name), 1.0, 9, ratio)
+            who = self.teeth.who(row)
+            mark = marker_pixmap(theme.marker(*who), theme.colour(*who), 1.0, 9, ratio)
             painter.drawPixmap(QPointF(5, top + height / 2 - 4), mark)
-            painter.setPen(QColor(theme.text_colour(name)))
+            painter.setPen(QColor(theme.text_colour(*who)))
             box = QRectF(14, top, LEFT - 20, height)
             flags = Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter
             painter.drawText(box, int(flags), name)
@@ -153,9 +160,22 @@ class RakeLane(NavigableLane):
             top = round((_HEAD + row * pitch) * ratio)
             pixels[top] = _rgb(theme.edge)
             band = pixels[top + 1 : top + 1 + int(length.max(initial=0))]
-            colour = np.uint32(_rgb(theme.colour(self.teeth.names[row])))
+            colour = np.uint32(_rgb(theme.colour(*self.teeth.who(row))))
             np.copyto(band, colour, where=steps[: len(band)] < length)
         return pixels
+
+    def _draw_bands(self, painter: QPainter, scale, place) -> None:
+        """A bar along the reach of each molecular band."""
+        offset, ratio = place
+        state, factor = self.state, 1.0 + self.state.velocity / C_KM_S
+        for row, low, high in self.teeth.bands:
+            ends = scale.pixels(to_medium(np.array([low, high]) * factor, state.medium))
+            left, right = np.clip(ends, scale.origin, scale.origin + scale.width).tolist()
+            if row < self.shown_rows and right > left:
+                colour = QColor(state.theme.colour(*self.teeth.who(row)))
+                colour.setAlpha(_BAND_ALPHA)
+                top = offset + (_HEAD + row * self.row_height + 1) * ratio
+                painter.fillRect(QRectF(left, top, right - left, _BAND * ratio), colour)
 
     def _draw_missing(self, painter: QPainter, scale, place) -> None:
         offset, ratio = place
@@ -166,7 +186,7 @@ class RakeLane(NavigableLane):
         y = offset + (_HEAD + rows * pitch + 1) * ratio + _lengths(depth, pitch, ratio)
         for row, at, foot in zip(rows.tolist(), x.tolist(), y.tolist()):
             if row < self.shown_rows:
-                colour = QColor(state.theme.colour(self.teeth.names[row]))
+                colour = QColor(state.theme.colour(*self.teeth.who(row)))
                 painter.setPen(QPen(colour, 1.3 * ratio))
                 painter.drawEllipse(QPointF(at, foot), 3 * ratio, 3 * ratio)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)

@@ -6,7 +6,7 @@ import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen, QPolygonF
 
-from ...spectra.medium import C_KM_S, to_medium
+from ...spectra.medium import to_medium
 
 HALF = 5  # logical pixels on either side of the tooth
 
@@ -19,7 +19,8 @@ def draw_marked(painter: QPainter, lane, scale, place) -> None:
     """
     (rest, species), (offset, ratio) = lane.marked, place
     state = lane.state
-    wave = float(to_medium(rest * (1.0 + state.velocity / C_KM_S), state.medium))
+    row = lane.row_of(species)
+    wave = float(to_medium(lane.teeth.observed(row, rest, state.velocity), state.medium))
     if not scale.low <= wave <= scale.high:
         return
     x = float(np.floor(scale.pixels(wave))) + 0.5
@@ -31,7 +32,6 @@ def draw_marked(painter: QPainter, lane, scale, place) -> None:
     painter.setBrush(accent)
     painter.drawPolygon(QPolygonF([QPointF(x, foot - 5 * ratio), QPointF(x - half, foot),
                                    QPointF(x + half, foot)]))
-    row = lane.row_of(species)
     if row is not None:
         painter.setPen(QPen(accent, 1.5 * ratio))
         painter.setBrush(Qt.BrushStyle.NoBrush)

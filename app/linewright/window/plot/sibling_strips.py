@@ -22,6 +22,7 @@ _COLUMNS = 2
 _PAD = 10
 _PREFERRED_ROW = 104
 _RAW = 40
+_SHALLOW = 0.6  # flux at the foot of a strip that shows shallow lines only
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,6 +51,7 @@ class SiblingStrips(QWidget):
         self.strips: list[Strip] = []
         self.current = -1
         self.hint = NONE_EXPECTED
+        self.bars: dict[int, float] = {}  # y of each bar at a predicted depth, as last painted
         self._parts: list[Extremes] = []
         self._colour = LIGHT.accent
         self._theme: Theme = LIGHT
@@ -157,11 +159,12 @@ class SiblingStrips(QWidget):
         if len(finite) == 0:
             return
         low, high = min(0.0, float(finite.min())), max(1.1, 1.05 * float(finite.max()))
-        if finite.max() < 1.6 and finite.min() > 0.75:
-            low = 0.6
+        if finite.max() < 1.6 and finite.min() > 0.75 and not 1.0 - strip.predicted < _SHALLOW:
+            low = _SHALLOW  # the bar at the predicted depth must lie inside
         frame = Frame(scale, body.top(), body.bottom(), low, high, 1.0)
         if strip.predicted == strip.predicted:
-            x, y = float(scale.pixels(0.0)), float(frame.y(1.0 - strip.predicted))
+            self.bars[index] = float(frame.y(1.0 - strip.predicted))
+            x, y = float(scale.pixels(0.0)), self.bars[index]
             painter.setPen(QPen(QColor(self._colour), 1.6))
             draw_lines(painter, np.array([[x - 6, y, x + 6, y]]))
         painter.setPen(QPen(QColor(self._theme.ink), 0))

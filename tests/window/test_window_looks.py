@@ -1,0 +1,237 @@
+"""What a reader must be able to see: several velocities and bands in the Rake, flags, plain counts."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import plot_scenes as scenes
+import pytest
+import window_builders as build
+
+from linewright.claims.model import RollRow
+from linewright.job.view_breakdown import siblings_words
+from linewright.job.view_rake import Elsewhere, elsewhere, heads_claimed, rake_teeth
+from linewright.lines.bands import load_bands
+from linewright.session.document import Document
+from linewright.spectra.medium import C_KM_S, air_to_vacuum
+from linewright.window.acts import opening
+from linewright.window.plot import RakeData, SpectrumView
+from linewright.window.plot.extremes import PixelScale
+from linewright.window.plot.rake_teeth import RakeTeeth
+from linewright.window.theme import LIGHT
+from linewright.window.typeset import typeset
+from linewright.window.workbench import Desk
+
+AIR = -23.4  # km/s of the air, say
+
+
+@pytest.fixture
+def scene():
+    catalogue = build.catalogue_of()
+    return catalogue, build.session_of(build.spectrum_of(catalogue), catalogue)
+
+
+def moved(session, rows, **fields):
+    """The session with the claimed lines of some rows changed, all of them firm."""
+    claims = list(session.claims)
+    for i in rows:
+        line = replace(claims[i].candidates[0], **fields)
+        claims[i] = replace(claims[i], candidates=(line,), standing="firm",
+                            origin=line.origin, species=line.species)
+    return replace(session, claims=tuple(claims))
+
+
+def test_teeth_of_the_air_stand_while_the_others_slide():
+    rest = float(air_to_vacuum(5050.0))
+    own = np.array([np.nan, AIR])
+    data = RakeData(np.full(2, rest), np.array([0.5, 0.9]), np.array([0, 1]), ("Fe I", "O2"), own=own)
+    teeth, scale = RakeTeeth(data), PixelScale(5040.0, 5060.0, 0.0, 4000.0)
+    for velocity in (0.0, 40.0):
+        found = teeth.columns(2, scale, "vacuum", velocity)
+        places = [int(np.nonzero(np.isfinite(row))[0][0]) for row in found]
+        wanted = rest * (1 + np.array([velocity, AIR]) / C_KM_S)
+        assert places == np.floor(scale.pixels(wanted)).astype(int).tolist()
+    observed = rest * (1 + AIR / C_KM_S)
+    assert teeth.nearest(1, observed, 0.01, 40.0) == (rest, 0.9)
+    assert teeth.nearest(0, observed, 0.01, 40.0) is None
+    assert teeth.observed(1, rest, 40.0) == pytest.approx(observed, abs=1e-9)
+
+
+def test_species_and_lines_of_other_components_stand_at_their_own_velocity(scene):
+    catalogue, session = scene
+    iron = [i for i, c in enumerate(session.claims) if c.species == "Fe I"]
+    nickel = [i for i, c in enumerate(session.claims) if c.species == "Ni I"]
+    assert len(iron) > 5 and len(nickel) > 2
+    session = moved(session, nickel, velocity=AIR, origin="telluric")
+    session = moved(session, iron[1:], velocity=build.VELOCITY)
+    session = moved(session, iron[:1], velocity=80.0)
+    apart = elsewhere(session)
+    assert dict(apart.species) == {"Ni I": AIR}
+    assert [(n, v) for n, _w, v in apart.lines] == [("Fe I", 80.0)]
+    assert apart.origins == (("Ni I", "telluric"),)
+    names = ("Fe I", "Ni I")
+    wave = np.sort(np.concatenate([catalogue.wave[catalogue.species == k] for k in (0, 5)]))
+    row = np.array([int(catalogue.species[np.searchsorted(catalogue.wave, w)] == 5) for w in wave])
+    teeth = rake_teeth((wave, np.full(len(wave), 0.4), row), names, apart)
+    assert np.all(np.diff(teeth.wave) >= 0) and len(teeth.wave) == len(wave) + 1
+    assert np.all(teeth.own[teeth.row == 1] == AIR)
+    assert teeth.own[teeth.row == 0][np.isfinite(teeth.own[teeth.row == 0])].tolist() == [80.0]
+
+
+def test_nothing_stands_apart_in_a_plain_session(scene):
+    _catalogue, session = scene
+    assert elsewhere(session) == Elsewhere()
+
+
+def with_bands(session, count: int = 2):
+    """The session with its first features turned into heads of TiO that the table knows."""
+    bands = [b for b in load_bands() if b.molecule == "TiO" and b.shading == "red"][:count]
+    features = replace(session.features, flags=("band",) * count + session.features.flags[count:])
+    session = replace(session, features=features)
+    for i, band in enumerate(bands):
+        session = moved(session, [i], species="TiO", origin="molecular", wave=band.head)
+    return session, bands
+
+
+def test_bands_hang_in_the_rake_as_heads_with_their_reach(scene, qtbot):
+    _catalogue, session = scene
+    session, bands = with_bands(session)
+    nothing = np.zeros(0)
+    teeth = rake_teeth((nothing, nothing, nothing.astype(int)), ("TiO",), elsewhere(session))
+    assert teeth.wave.tolist() == sorted(b.head for b in bands)
+    assert len(heads_claimed(session, "TiO")) == 2 and heads_claimed(session, "MgH") == []
+    view = SpectrumView()
+    qtbot.addWidget(view)
+    view.resize(900, 500)
+    view.set_spectrum(scenes.spectrum())
+    view.show()
+    low, high = air_to_vacuum(np.array([5040.0, 5060.0]))
+    view.set_view(5030.0, 5070.0)
+
+    def coloured() -> np.ndarray:
+        ground = scenes.rgb(LIGHT.base)
+        return np.any(scenes.pixels(view.rake)[view.rake.head + 3, 70:880] != ground, axis=1)
+
+    view.set_rake(RakeData(nothing, nothing, nothing.astype(int), ("TiO",)))
+    assert not coloured().any()
+    view.set_rake(RakeData(nothing, nothing, nothing.astype(int), ("TiO",),
+                           bands=((0, float(low), float(high)),)))
+    assert 0.45 < coloured().mean() < 0.55  # half of the view lies inside
+
+
+def test_siblings_of_a_band_are_its_other_heads(solved, qtbot):
+    bench = solved.bench
+    session, bands = with_bands(bench.session)
+    desk = Desk(bench.spectrum, Document(session))
+    bench.add_desk(desk)
+    bench.view.select(int(session.features.number[0]))
+    box = solved.space.evidence.siblings
+    qtbot.waitUntil(lambda: box.title.text() == "Heads of TiO", timeout=3000)
+    assert box.count.text() == "2 claimed"
+    assert all(f"{w:.2f}" in box.strips.hint for w in heads_claimed(session, "TiO"))
+
+
+def test_no_line_is_called_missing_where_all_are_seen():
+    seen = RollRow("Ca II", 2, 2, 0, 1e-9, 0.0, 0.1, "present", missing_wave=3934.78)
+    assert siblings_words(seen, "vacuum") == ("2 of 2 seen", "")
+    gone = replace(seen, seen=1, missing=1)
+    assert siblings_words(gone, "vacuum") == ("1 of 2 seen", "missing 3934.78")
+
+
+def flagged(solved):
+    session = solved.bench.session
+    claims = list(session.claims)
+    claims[4] = replace(claims[4], flags="off-velocity off-excitation")
+    flags = list(session.features.flags)
+    flags[4] = "wing blend"
+    features = replace(session.features, flags=tuple(flags))
+    desk = Desk(solved.bench.spectrum, Document(replace(
+        session, features=features, claims=tuple(claims))))
+    solved.bench.add_desk(desk)
+    return int(features.number[4])
+
+
+def test_what_stands_out_is_seen_in_ledger_and_evidence(solved, qtbot):
+    number = flagged(solved)
+    solved.bench.view.select(number)
+    panel, ledger = solved.space.evidence, solved.space.ledger
+    qtbot.waitUntil(lambda: panel.flags.text().startswith("off-velocity: "), timeout=3000)
+    assert "off-excitation: its lower level" in panel.flags.text()
+    assert panel.flags.text().endswith("also wing, blend")
+    assert panel.flags.objectName() == "standsOut"
+    column = next(c for c in ledger.model.columns if c.title == "flags")
+    assert column.text(4) == "off-velocity off-excitation wing blend"
+    room = ledger.table.columnWidth(ledger.model.columns.index(column))
+    assert ledger.table.fontMetrics().horizontalAdvance("off-velocity off-excitation") < room
+    ledger.text.setText("off-velocity")
+    ledger.filter_now()
+    assert ledger.model.shown.tolist() == [4]
+
+
+def test_hopeless_candidates_take_one_line(solved, qtbot):
+    session = solved.bench.session
+    row = next(i for i, c in enumerate(session.claims) if c.candidates[1].probability < 0.004)
+    solved.bench.view.select(int(session.features.number[row]))
+    rows = solved.space.evidence.rows
+    qtbot.waitUntil(lambda: not rows[1].isHidden(), timeout=3000)
+    assert rows[1].detail.isHidden() and not rows[0].detail.isHidden()
+    solved.bench.view.change(candidate=1)
+    qtbot.waitUntil(lambda: not rows[1].detail.isHidden(), timeout=3000)
+
+
+@pytest.mark.parametrize(("written", "printed"), [
+    ("Fe I (stellar) -0.152 A away", "Fe I (stellar) −0.152 Å away"),
+    ("Co I is -0.219 Å off, -7.7 sigma", "Co I is −0.219 Å off, −7.7 σ"),
+    ("voting gives -68.3 +- 4.6 km/s", "voting gives −68.3 ± 4.6 km/s"),
+    ("2.1e-5 of an A star", "2.1e-5 of an A star"),
+])
+def test_sentences_are_shown_in_the_signs_of_print(written, printed):
+    assert typeset(written) == printed
+
+
+def test_a_saved_session_tells_reading_and_solving_apart(scene):
+    _catalogue, session = scene
+    spectrum = replace(build.spectrum_of(_catalogue), warnings=("no errors given",))
+    both = replace(session, warnings=("no errors given", "bands are seen"))
+    assert opening._said(both, spectrum) == (
+        "Assumed in reading: no errors given. Warned of when solved: bands are seen.")
+
+
+def test_the_bar_at_a_predicted_depth_lies_inside_its_strip(qtbot):
+    from linewright.window.plot import SiblingStrips, Strip
+
+    strips = SiblingStrips()
+    qtbot.addWidget(strips)
+    strips.resize(300, 200)
+    velocity = np.linspace(-60, 60, 200)
+    shallow = 1 - 0.1 * np.exp(-0.5 * (velocity / 6) ** 2)
+    strips.set_strips([Strip("5000.00", velocity, shallow, "seen", d) for d in (0.2, 0.7)], "#c00000")
+    strips.show()
+    strips.grab()
+    for index, y in strips.bars.items():
+        assert strips.cell(index).top() < y < strips.cell(index).bottom()
+    assert len(strips.bars) == 2
+
+
+def test_the_roll_call_follows_what_evidence_looks_at(solved, qtbot):
+    bench, panel = solved.bench, solved.space.roll_call
+    for number in (5, 17):
+        bench.view.select(number)
+        name = bench.candidate().species
+        assert panel._rows[panel.model.source_row(panel.table.currentIndex())].species == name
+        assert panel.words.text() != "" and "Choose a species" not in panel.words.text()
+    assert bench.view.now.rake is None, "following puts nothing on the rake"
+
+
+def test_words_that_may_be_cut_off_stand_in_the_tip(solved):
+    from PySide6.QtCore import Qt
+
+    session = solved.bench.session
+    long = replace(session.orphans[0], why="Fe I is +0.043 Å off, +4.2 sigma; " * 3)
+    solved.bench.desk.document.replace(replace(session, orphans=(long,)), "test")
+    model = solved.space.orphans.model
+    at = [c.title for c in model.columns].index("why")
+    tip = model.index(0, at).data(Qt.ItemDataRole.ToolTipRole)
+    assert tip == model.index(0, at).data() and "σ" in tip
+    assert model.index(0, 0).data(Qt.ItemDataRole.ToolTipRole) is None
