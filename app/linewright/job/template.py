@@ -14,6 +14,7 @@ from ..lines.strengths import absorption_strength
 
 WIDTH = 0.63  # of the typical width: features that blend are broader than lines
 DEEPEST = 0.3  # deeper absorption counts as this: strong broad lines must not decide alone
+VAGUE = 2.0  # errors of a declared vote: a template that says less leaves it its word
 BLENDED = 40.0  # km/s: lines broader than this are blends (R below about 7,500)
 
 
@@ -37,7 +38,8 @@ def template_velocity(spectrum, measurement, catalogue, found, options) -> Veloc
         )
         votes.append(template_vote(pieces, near, strength, WIDTH * width, options.velocity_range))
     vote = max(votes, key=lambda v: float(np.max(v.score)))
-    if not vote.declared:
+    vague = found.velocity.declared and vote.error > VAGUE * found.velocity.error
+    if not vote.declared or vague:
         return None
     return VelocityResult(
         vote.velocity, vote.error, vote.margin, True, vote.rivals, vote.grid, vote.score, "template"
@@ -45,10 +47,13 @@ def template_velocity(spectrum, measurement, catalogue, found, options) -> Veloc
 
 
 def _absorption(segment, measured):
-    """(wave, 1 - flux/continuum) with NaN where the sample must not be used; emission and
-    spikes are clipped."""
-    depth = 1.0 - segment.flux / measured.continuum_at(segment.wave)
-    return segment.wave, np.where(segment.mask, np.nan, np.clip(depth, -DEEPEST / 2, DEEPEST))
+    """(wave, 1 - flux/continuum) of the measured range, with NaN where the sample must not be
+    used; emission and spikes are clipped."""
+    ends = measured.node_wave[0], measured.node_wave[-1]
+    kept = slice(*np.searchsorted(segment.wave, [ends[0], np.nextafter(ends[1], np.inf)]))
+    wave, flux, mask = segment.wave[kept], segment.flux[kept], segment.mask[kept]
+    depth = 1.0 - flux / measured.continuum_at(wave)
+    return wave, np.where(mask, np.nan, np.clip(depth, -DEEPEST / 2, DEEPEST))
 
 
 def disagreement(vote: VelocityResult, template: VelocityResult) -> tuple[str, ...]:

@@ -12,6 +12,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from .level import SAMPLES, block_levels
+from .tops import over_tops
 
 ROUNDS = 2
 ROUGH = 1e-3  # run of the continuum inside a block that straight nodes cannot follow
@@ -69,7 +70,10 @@ def fit_continuum(wave, flux, good, sigma, spacing: Spacing):
         blocks = halved
         level = np.interp([wave[b].mean() for b in blocks], *nodes[:2])
         nodes = _nodes((wave, flux, sigma), blocks, level, spacing, settle)
-    return nodes
+    if bright:
+        return nodes
+    run = smooth_run(wave[good], *nodes[:2])
+    return over_tops((wave[good], flux[good], sigma[good]), nodes, run)
 
 
 def in_emission(flux) -> bool:

@@ -14,8 +14,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .continuum import in_emission
 from .matched import curvature_kernel, filtered_correlation, gaussian_kernel, noise_gain
 from .veil import running_mean
+
+FAKED = 4.0  # errors of the continuum, in its noise, beyond which it tells nothing of a feature
+BENT = 0.45  # share of such an error that may bend like a line
 
 
 @dataclass(frozen=True, eq=False)
@@ -57,6 +61,7 @@ def run_filters(y, noise, good, fwhm, correlation, level_err=None) -> Filtered:
     """
     weight = np.where(good, 1.0 / noise, 0.0)
     held = _filled(y, good)
+    bright = in_emission(1.0 - held)
     level, curve, tame = np.empty(len(y)), np.empty(len(y)), np.empty(len(y))
     pieces = []
     for span in _spans(fwhm):
@@ -71,6 +76,8 @@ def run_filters(y, noise, good, fwhm, correlation, level_err=None) -> Filtered:
             fake = _matched(level_err[wide], weight[wide], gauss, gain)
             s = s / np.sqrt(1.0 + fake**2)
         h = same(held[wide], bend) / (noise[wide] * noise_gain(bend, correlation))
+        if level_err is not None and not bright:
+            s = _told_by_curvature(s, h, fake)
         level[span], curve[span] = s[inner], h[inner]
         tame[span] = running_mean(held[wide], 2 * int(0.2 * width) + 1)[inner]
         rho = filtered_correlation(gauss, correlation, 1) / gain**2
@@ -83,6 +90,15 @@ def _matched(y, weight, kernel, gain):
     bottom = same(weight**2, kernel**2)
     white = np.sqrt(np.sum(kernel**2))
     return top / np.sqrt(np.maximum(bottom, 1e-300)) * (white / gain)
+
+
+def _told_by_curvature(level, curve, fake):
+    """``level``, or the curvature of a trough where the continuum's error outweighs the noise:
+    it sees no continuum, and an error of that does not bend as sharply as a line.
+    Troughs only, and none between bright lines: bumps are what a pseudo-continuum leaves
+    between broad lines, troughs what it leaves between bright ones."""
+    told = (fake > FAKED) & (level > 0) & (curve > np.maximum(level, BENT * fake))
+    return np.where(told, curve, level)
 
 
 def _filled(y, good):

@@ -125,7 +125,25 @@ def prepare(segment, options: MeasureOptions, warnings: list, tick=lambda: None)
                     options.continuum == "levels")
 
 
+def _within(segment, ranges):
+    """The segment from the first to the last of the samples asked for: what lies beyond, of
+    another sampling perhaps, must not set blocks and widths here."""
+    if not ranges:
+        return segment
+    low, high = min(r[0] for r in ranges), max(r[1] for r in ranges)
+    first, last = np.searchsorted(segment.wave, [low, high])
+    error = segment.uncertainty
+    kept = slice(first, last)
+    return replace(
+        segment, wave=segment.wave[kept], flux=segment.flux[kept], mask=segment.mask[kept],
+        uncertainty=None if error is None else error[kept],
+    )
+
+
 def _raw(segment, options, tick) -> Raw | None:
+    segment = _within(segment, options.ranges)
+    if len(segment.wave) < 30:
+        return None
     good = _chosen(segment, options.ranges)
     runs = [r for r in stretches(segment.wave, good) if good[r].sum() >= 30]
     if not runs:
