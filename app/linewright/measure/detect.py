@@ -19,6 +19,7 @@ from .matched import curvature_kernel, filtered_correlation, gaussian_kernel, no
 from .veil import running_mean
 
 FAKED = 4.0  # errors of the continuum, in its noise, beyond which it tells nothing of a feature
+PLAIN = 5.0  # sigmas: a trough seen against the continuum as well needs no other witness
 BENT = 0.45  # share of such an error that may bend like a line
 
 
@@ -97,7 +98,7 @@ def _told_by_curvature(level, curve, fake):
     it sees no continuum, and an error of that does not bend as sharply as a line.
     Troughs only, and none between bright lines: bumps are what a pseudo-continuum leaves
     between broad lines, troughs what it leaves between bright ones."""
-    told = (fake > FAKED) & (level > 0) & (curve > np.maximum(level, BENT * fake))
+    told = (fake > FAKED) & (level > 0) & (level < PLAIN) & (curve > np.maximum(PLAIN, BENT * fake))
     return np.where(told, curve, level)
 
 

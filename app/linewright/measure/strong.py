@@ -25,6 +25,7 @@ SPAN = 1.6  # widths at half depth fitted on either side
 MOST_NARROW = 8
 MOST_LINES = 12  # strong lines of a segment
 CLEAR = 10.0  # by which the criterion must prefer the new model
+CRUSHING = 0.1  # of the old criterion: then the old rows were parts of a fit gone wrong
 SURE = 5.0  # errors of depth beyond which an old row must not be lost
 WHOLE = 0.9  # share of the deepest sample that the strong component makes
 
@@ -106,7 +107,8 @@ def _replaced(table, ready, smooth, span) -> FeatureTable:
     if rows is None:
         return table
     broad = rows.fwhm[np.argmax(rows.ew)] > WIDE * view.width
-    if not broad or not _all_there(table.take(inside), rows, view.width):
+    beyond_doubt = best.bic < CRUSHING * old_bic
+    if not broad or not (beyond_doubt or _all_there(table.take(inside), rows, view.width)):
         return table
     return _merged(table.take(~inside), rows)
 
