@@ -211,7 +211,7 @@ def main() -> int:
     window.close()
     app.processEvents()
     left = threading.active_count() - 1
-    children = [e for e in (window.bench.engine, window.bench.export_engine) if e._child]
+    children = [e for e in window.bench.engines if e._child]
     growth = 100 * (last / base - 1)
     print(f"{sum(driver.done.values())} acts {dict(driver.done)}\nmemory {base:.1f} -> {last:.1f} MB "
           f"({growth:+.1f} %), threads left {left}, processes left {len(children)}, "

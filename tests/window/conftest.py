@@ -43,6 +43,7 @@ def window(qtbot, invented, monkeypatch):
     from linewright.window.main_window import MainWindow
 
     monkeypatch.setattr(MainWindow, "_warm_engine", lambda self: None)
+    monkeypatch.setattr(reweighing, "_made_ready", lambda engine, session: None)
     monkeypatch.setattr(reweighing, "_weighed",
                         lambda engine, session, progress: Weighed(session, session, ()))
     window = MainWindow()

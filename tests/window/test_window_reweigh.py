@@ -175,6 +175,88 @@ def test_an_answer_about_an_older_session_is_dropped(weighing, qtbot, monkeypatc
     assert bench.session is session and bench.desk.weighed is None
 
 
+def test_asked_for_while_it_is_looked_up_it_is_taken_over_without_a_second_look(
+        weighing, qtbot, monkeypatch):
+    from linewright.window.acts import reweighing
+
+    gate, calls = threading.Event(), []
+
+    def slow(_engine, session, progress):
+        calls.append(session)
+        gate.wait(5)
+        return answer(session)
+    monkeypatch.setattr(reweighing, "_weighed", slow)
+    bench = weighing.bench
+    bench.view.select(13)
+    bench.run("claim.accept2")
+    qtbot.waitUntil(lambda: len(calls) == 1, timeout=3000)
+    bench.run("claim.reweigh")
+    gate.set()
+    qtbot.waitUntil(lambda: bench.session.history[-1].action == "reweigh", timeout=3000)
+    assert len(calls) == 1
+    assert bench.session.claims[3].species == "Ti II"
+
+
+def test_asked_for_while_an_older_session_is_looked_up_the_present_one_is_weighed(
+        weighing, qtbot, monkeypatch):
+    from linewright.window.acts import reweighing
+
+    gate, calls = threading.Event(), []
+
+    def slow(_engine, session, progress):
+        calls.append(session)
+        gate.wait(5)
+        return answer(session)
+    monkeypatch.setattr(reweighing, "_weighed", slow)
+    bench = weighing.bench
+    bench.view.select(13)
+    bench.run("claim.accept2")
+    qtbot.waitUntil(lambda: len(calls) == 1, timeout=3000)
+    bench.view.select(14)
+    bench.run("claim.aside")
+    present = bench.session
+    bench.run("claim.reweigh")
+    gate.set()
+    qtbot.waitUntil(lambda: bench.session.history[-1].action == "reweigh", timeout=3000)
+    assert len(calls) == 2 and calls[1] is present, "nothing is stopped half way"
+    assert bench.session.claims[13] is present.claims[13]
+
+
+def test_a_solved_session_is_made_ready_while_nobody_waits(solved, qtbot, monkeypatch):
+    from linewright.window.acts import reweighing
+
+    calls = []
+    monkeypatch.setattr(reweighing, "_made_ready", lambda _engine, session: calls.append(session))
+    solved.refresher.ready_soon.setInterval(1)
+    bench = solved.bench
+    bench.desk.ready_for = None
+    bench.view.select(13)
+    bench.run("claim.accept2")
+    qtbot.waitUntil(lambda: len(calls) == 1, timeout=3000)
+    bench.run("claim.accept3")
+    qtbot.wait(50)
+    assert len(calls) == 1, "once for the same features"
+
+
+def test_what_is_sent_for_a_word_is_small_and_tells_the_same(qtbot):
+    """The words alone go to the other process, and the answer is that of the whole session."""
+    import pickle
+
+    import window_builders as build
+
+    from linewright.job.reweigh import told
+    from linewright.job.view_reweigh import spoken, told_of
+
+    few = build.catalogue_of(60, low=5160.0, high=5200.0)
+    session = edits.set_aside(build.session_of(build.spectrum_of(few), few), 1, "artefact")
+    session = edits.lock(edits.accept_candidate(session, 5, 2), 9)
+    brief = spoken(session)
+    assert [c for c in brief.claims if c.candidates] == [session.claims[k] for k in (0, 4, 8)]
+    assert len(pickle.dumps(brief)) < 0.5 * len(pickle.dumps(session))
+    whole, part = told(session), told_of(pickle.loads(pickle.dumps(brief)))
+    assert repr(whole) == repr(part)
+
+
 def test_words_are_what_others_may_heed(solved):
     old = solved.bench.session
     assert new_word(old, edits.accept_candidate(old, 5, 2))
@@ -187,13 +269,14 @@ def test_the_engine_weighs_in_its_own_process(qtbot):
     """The real call with the shipped lines, over the process's pipe."""
     import window_builders as build
 
-    from linewright.window.acts.reweighing import _weighed
+    from linewright.window.acts.reweighing import _made_ready, _weighed
     from linewright.window.engine import Engine
 
     few = build.catalogue_of(60, low=5160.0, high=5200.0)
     session = edits.set_aside(build.session_of(build.spectrum_of(few), few), 1, "artefact")
     engine = Engine()
     try:
+        _made_ready(engine, session)
         weighed = _weighed(engine, session, None)
     finally:
         engine.close()

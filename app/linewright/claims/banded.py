@@ -79,16 +79,26 @@ def capped(claims, features, ranges):
 
     features: FeatureTable. A person's claims are not the machine's to change.
     """
+    hold = holder(claims, features, ranges)
+    return claims if hold is None else tuple(hold(i, c) for i, c in enumerate(claims))
+
+
+def holder(claims, features, ranges):
+    """What ``capped`` does to one claim, (row, claim) -> claim, with the forest as these claims
+    of all features leave it; None without bands."""
     if not len(ranges):
-        return claims
+        return None
     within = inside(features.wave, merged(ranges)) & (features.sign > 0)
     open_ = within & np.array([c.p_unlisted > 0.5 for c in claims], dtype=bool)
     depths = features.depth[open_ & np.isfinite(features.depth)]
     forest = float(np.quantile(depths, FOREST)) if len(depths) >= FEWEST else np.inf
-    return tuple(
-        _held(c, not features.depth[i] > forest) if within[i] and c.candidates else c
-        for i, c in enumerate(claims)
-    )
+
+    def hold(row: int, claim):
+        if not within[row] or not claim.candidates:
+            return claim
+        return _held(claim, not features.depth[row] > forest)
+
+    return hold
 
 
 def _held(claim, shallow: bool):

@@ -80,9 +80,10 @@ def breakdown_of(solution, chosen) -> list[Breakdown]:
 def _columns(solution, chosen):
     """The fields of Breakdown for the chosen pairs, (c,) each."""
     problem, state, groups = solution.problem, solution.state, solution.groups
-    pairs = Pairs(problem)
+    order = np.unique(chosen)
+    pairs = solution.pairs.only(problem, order)
     shown = chance_to_show(pairs, groups, state)[pairs.entry]
-    position, sigma, _ = position_likelihood(problem, pairs, state, groups)
+    position, sigma, _ = position_likelihood(pairs, state, groups)
     density, p0 = state.null.at(pairs.bins)
     density = density if problem.crowd is None else density * problem.crowd
     fits = strength_likelihood(pairs, state, groups, p0) / p0[pairs.feature]
@@ -90,16 +91,17 @@ def _columns(solution, chosen):
     show, place = np.log(shown / absent), np.log(position / density[pairs.feature])
     strength = np.log(fits)
     tiny = 1e-300
-    odds = np.log(np.maximum(solution.probability, tiny))
+    odds = np.log(np.maximum(solution.probability[order], tiny))
     odds = odds - np.log(np.maximum(solution.unlisted[pairs.feature], tiny))
     own = np.sqrt(pairs.base_variance) * state.error_scale[pairs.crowded]
     blend = pairs.wave - groups.centroid[pairs.entry]
-    between = np.zeros(len(odds)) if solution.between is None else solution.between
+    between = np.zeros(len(odds)) if solution.between is None else solution.between[order]
     free = odds - show - place - strength - between
     strengths = _strengths(pairs, state, groups)
     at_own = own_place(pairs, groups)
     made = (show, place, strength, free, sigma, own, blend, *strengths, at_own, between)
-    return tuple(column[chosen] for column in made)
+    back = np.searchsorted(order, chosen)
+    return tuple(column[back] for column in made)
 
 
 def _strengths(pairs: Pairs, state, groups):
@@ -107,15 +109,12 @@ def _strengths(pairs: Pairs, state, groups):
     total = groups.total[pairs.entry]
     out = np.zeros((3, len(total)))
     change = np.zeros((2, len(total)))
-    population = np.zeros(len(groups.total), dtype=int)
     for block in pairs.blocks:
-        population[block.entries] = block.population
         rows, relation = block.graded, state.relation[block.population]
         out[0, rows] = pairs.m[rows] - relation(total[rows])
         out[1, rows] = np.sqrt(relation.scatter**2 + pairs.m_variance[rows])
         out[2, rows] = relation.slope(total[rows])
-    for k in np.unique(population):
-        rows, curve = population[pairs.entry] == k, state.detection[k]
+        rows, curve = block.pairs, state.detection[block.population]
         now = np.log(curve(total[rows]))
         change[0, rows] = np.log(curve(total[rows] + STEP)) - now
         change[1, rows] = np.log(curve(total[rows] - STEP)) - now

@@ -26,8 +26,10 @@ def species_posteriors(solution: Solution, names):
     return np.bincount(inverse, solution.probability, len(unique))[inverse]
 
 
-def build_claims(solution: Solution, catalogue, components) -> tuple[Claim, ...]:
-    """One claim per feature, in feature order."""
+def build_claims(solution: Solution, catalogue, components, rows=None) -> tuple[Claim, ...]:
+    """One claim per feature, in feature order; rows: of these features only, (k,) indices."""
+    if rows is not None:
+        solution = solution.of(rows)
     species_p = species_posteriors(solution, catalogue.species[solution.problem.entries.row])
     order = np.lexsort((-solution.probability, -species_p, solution.feature))
     sure = _certainty(solution, components)
@@ -51,7 +53,7 @@ def build_claims(solution: Solution, catalogue, components) -> tuple[Claim, ...]
         )
         if i in blends
         else Claim(p_unlisted=1.0)
-        for i in range(count)
+        for i in (range(count) if rows is None else rows)
     )
 
 
@@ -71,17 +73,17 @@ def _claim(candidates, probability: float, unlisted: float, blend) -> Claim:
     )
 
 
-def _predicted_depths(solution: Solution):
-    """Central depth the learned relation predicts for each entry's group; NaN where the
-    population's depths are not predicted or no depth was measured."""
-    e = solution.problem.entries
-    depth = np.full(len(e), np.nan)
+def _predicted_depths(solution: Solution, entries):
+    """Central depth the learned relation predicts for the group of each of these entries; NaN
+    where the population's depths are not predicted or no depth was measured."""
+    population, total = solution.problem.entries.population[entries], solution.groups.total[entries]
+    depth = np.full(len(entries), np.nan)
     if not np.any(np.isfinite(solution.problem.features.strength)):
         return depth
     for k, relation in enumerate(solution.state.relation):
         if k not in UNGRADED and SIGNS[k] > 0:
-            here = e.population == k
-            depth[here] = 1.0 / (1.0 + 10.0 ** (-relation(solution.groups.total[here])))
+            here = population == k
+            depth[here] = 1.0 / (1.0 + 10.0 ** (-relation(total[here])))
     return depth
 
 
@@ -139,7 +141,7 @@ def _candidates(solution: Solution, catalogue, components, chosen):
         probability.tolist(),
         solution.groups.share[entry].tolist(),
         solution.offset_sigma[pairs].tolist(),
-        _predicted_depths(solution)[entry].tolist(),
+        _predicted_depths(solution, entry).tolist(),
         [catalogue.source_keys[i] for i in catalogue.source[row].tolist()],
         breakdowns(solution, pairs),
     )

@@ -96,25 +96,44 @@ class Neighbourhood:
 
     def groups(self, strength) -> Groups:
         """Groups at strengths (n,), log10."""
-        share, lead = np.ones(len(self.wave)), np.ones(len(self.wave))
-        total, centroid = strength.copy(), self.wave.copy()
+        ones = np.ones(len(self.wave))
+        out = Groups(ones, ones.copy(), strength.copy(), self.wave.copy())
+        for block in self.blocks:
+            if len(block[1]):
+                self._fill(out, strength, block)
+        return out
+
+    def regrouped(self, before: Groups, strength, moved):
+        """(groups, changed): ``before`` with the groups of entries that moved made anew, and the
+        entries whose group that changed.
+
+        strength: (n,) log10; moved: (n,) bool, where it is no longer what ``before`` was made of
+        """
+        out = Groups(*(np.array(column) for column in vars(before).values()))
+        changed = np.array(moved)
+        out.total[moved] = strength[moved]
         for rows, crowd, first, last, half in self.blocks:
-            if len(crowd) == 0:
-                continue
-            w, here = self.wave[rows], strength[rows]
-            top = float(np.max(here))
-            linear = np.exp(LN10 * (here - top))
-            soft = np.exp((LN10 * SHARE_EXPONENT) * (here - top))
-            soft_sum = _window(soft, first, last)
-            lin_sum = np.maximum(_window(linear, first, last), linear[crowd])
-            moment = _window(linear * (w - w[0]), first, last)
-            chosen, place = rows[crowd], w[crowd]
-            share[chosen] = np.clip(soft[crowd] / np.maximum(soft_sum, soft[crowd]), 0.0, 1.0)
-            total[chosen] = top + np.log10(lin_sum)
-            raised = _largest(linear, first, last)
-            lead[chosen] = raised / (np.maximum(lin_sum - linear[crowd], 0.0) + raised)
-            centroid[chosen] = np.clip(w[0] + moment / lin_sum, place - half, place + half)
-        return Groups(share, lead, total, centroid)
+            near = _window(moved[rows].astype(float), first, last) > 0
+            if np.any(near):
+                self._fill(out, strength, (rows, crowd[near], first[near], last[near], half[near]))
+                changed[rows[crowd[near]]] = True
+        return out, changed
+
+    def _fill(self, out: Groups, strength, block) -> None:
+        rows, crowd, first, last, half = block
+        w, here = self.wave[rows], strength[rows]
+        top = float(np.max(here))
+        linear = np.exp(LN10 * (here - top))
+        soft = np.exp((LN10 * SHARE_EXPONENT) * (here - top))
+        soft_sum = _window(soft, first, last)
+        lin_sum = np.maximum(_window(linear, first, last), linear[crowd])
+        moment = _window(linear * (w - w[0]), first, last)
+        chosen, place = rows[crowd], w[crowd]
+        out.share[chosen] = np.clip(soft[crowd] / np.maximum(soft_sum, soft[crowd]), 0.0, 1.0)
+        out.total[chosen] = top + np.log10(lin_sum)
+        raised = _largest(linear, first, last)
+        out.lead[chosen] = raised / (np.maximum(lin_sum - linear[crowd], 0.0) + raised)
+        out.centroid[chosen] = np.clip(w[0] + moment / lin_sum, place - half, place + half)
 
 
 def _largest(values, first, last):

@@ -53,6 +53,7 @@ class Solution:
     offset_sigma, sigma: (p,) position offset in sigma, and that sigma in Angstrom; groups: shares per entry;
     strength: (n,) predicted strengths with species offsets; between: (p,) ln of what weighing
     star against air did to the odds, None where nothing was weighed
+    pairs: what of the pairs stays fixed; odds, message: (p,) as of ``associate``
     """
 
     problem: Problem
@@ -67,7 +68,21 @@ class Solution:
     strength: np.ndarray
     state: State
     log_likelihood: float
+    pairs: Pairs
+    odds: np.ndarray
+    message: np.ndarray
     between: np.ndarray | None = None
+
+    def of(self, features) -> Solution:
+        """The same with the pairs of these features alone; features: (k,) indices."""
+        wanted = np.zeros(len(self.unlisted), dtype=bool)
+        wanted[features] = True
+        which = np.nonzero(wanted[self.feature])[0]
+        columns = ("feature", "entry", "probability", "offset_sigma", "sigma", "odds", "message",
+                   "between")  # fmt: skip
+        part = {name: getattr(self, name) for name in columns}
+        part = {name: None if c is None else c[which] for name, c in part.items()}
+        return replace(self, pairs=self.pairs.only(self.problem, which), **part)
 
 
 def solve_mixture(
@@ -109,41 +124,64 @@ def _first_state(problem: Problem, pairs: Pairs) -> State:
 
 
 @dataclass(frozen=True, eq=False)
-class _Step:
+class Step:
+    """Marginals of a round and what they were made of."""
+
     groups: Groups
     strength: np.ndarray
     marginals: Marginals
     sigma: np.ndarray
     offset: np.ndarray
+    odds: np.ndarray
     log_likelihood: float
 
 
-def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> _Step:
+@dataclass(frozen=True, eq=False)
+class Odds:
+    """value: (p,) odds as of ``associate``; likelihood: (p,) of the pairs, null: (f,) of an
+    unlisted line, both as densities; shows: (n,); sigma, offset: (p,) as of ``Solution``."""
+
+    value: np.ndarray
+    likelihood: np.ndarray
+    null: np.ndarray
+    shows: np.ndarray
+    sigma: np.ndarray
+    offset: np.ndarray
+
+
+def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> Step:
     """Marginals in the present state; message: of the association before, to go on from."""
     e, f = problem.entries, problem.features
-    strength = e.strength + _offsets(problem, state)
+    strength = offset_strengths(problem, state)
     groups = pairs.near.groups(strength)
+    odds = pair_odds(problem, pairs, state, groups)
+    marginals = associate(pairs.feature, pairs.entry, odds.value, (len(f), len(e)), message)
+    total = np.bincount(pairs.feature, odds.likelihood, len(f)) + odds.null
+    value = float(np.sum(np.log(total))) - float(np.sum(odds.shows * pairs.covered))
+    return Step(groups, strength, marginals, odds.sigma, odds.offset, odds.value, value)
+
+
+def pair_odds(problem: Problem, pairs: Pairs, state: State, groups: Groups) -> Odds:
+    """Odds that each line made the feature against line and feature being unrelated."""
     shows = chance_to_show(pairs, groups, state)
-    position, sigma, offset = position_likelihood(problem, pairs, state, groups)
+    position, sigma, offset = position_likelihood(pairs, state, groups)
     density, p0 = state.null.at(pairs.bins)
     density = density if problem.crowd is None else density * problem.crowd
     shown = shows[pairs.entry]
     likelihood = shown * position * strength_likelihood(pairs, state, groups, p0)
     absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
     density, likelihood = _as_said(problem, pairs, density, likelihood)
-    odds = likelihood / (absent * (density * p0)[pairs.feature])
-    marginals = associate(pairs.feature, pairs.entry, odds, (len(f), len(e)), message)
-    total = np.bincount(pairs.feature, likelihood, len(f)) + density * p0
-    value = float(np.sum(np.log(total))) - float(np.sum(shows * pairs.covered))
-    return _Step(groups, strength, marginals, sigma, offset, value)
+    value = likelihood / (absent * (density * p0)[pairs.feature])
+    return Odds(value, likelihood, density * p0, shows, sigma, offset)
 
 
-def _offsets(problem: Problem, state: State):
-    """Offset of each entry, dex, by what the other lines of its species say."""
-    offset = state.offsets[problem.entries.species]
+def offset_strengths(problem: Problem, state: State):
+    """Predicted strengths (n,) with what the other lines of each species say, dex."""
+    strength = problem.entries.strength + state.offsets[problem.entries.species]
     if state.own is not None:
-        offset[state.own.entries] = state.own.offset
-    return offset
+        rows = state.own.entries
+        strength[rows] = problem.entries.strength[rows] + state.own.offset
+    return strength
 
 
 def _as_said(problem: Problem, pairs: Pairs, density, likelihood):
@@ -166,12 +204,11 @@ def chance_to_show(pairs: Pairs, groups: Groups, state: State):
     return out * groups.share
 
 
-def position_likelihood(problem: Problem, pairs: Pairs, state: State, groups: Groups):
+def position_likelihood(pairs: Pairs, state: State, groups: Groups):
     """Position likelihood per pair: the line's own place, or its blend's centroid."""
-    e = problem.entries
-    list_variance = e.error**2 + state.scatter[e.species] ** 2
     scale = state.error_scale[pairs.crowded]
-    sigma = np.sqrt(pairs.base_variance * scale**2 + list_variance[pairs.entry])
+    listed = pairs.line_variance + state.scatter[pairs.species] ** 2
+    sigma = np.sqrt(pairs.base_variance * scale**2 + listed)
     value, nearer = tailed(pairs.own, sigma), pairs.own.copy()
     weight = own_place(pairs, groups)
     mixed = np.nonzero(weight < 1.0)[0]
@@ -219,7 +256,7 @@ def strength_likelihood(pairs: Pairs, state: State, groups: Groups, p0):
     return value
 
 
-def _learn(problem: Problem, pairs: Pairs, step: _Step, state: State, turn: int) -> State:
+def _learn(problem: Problem, pairs: Pairs, step: Step, state: State, turn: int) -> State:
     p, total = step.marginals.pair, step.groups.total
     seen = np.bincount(pairs.entry, p, len(problem.entries))
     exposure = np.maximum(step.groups.share * pairs.covered, seen)
@@ -240,12 +277,12 @@ def _learn(problem: Problem, pairs: Pairs, step: _Step, state: State, turn: int)
             pairs.bins, step.marginals.unlisted, problem.length(), problem.complete
         ),
         error_scale=np.array(scale),
-        scatter=_species_scatter(problem, pairs, step),
+        scatter=species_scatter(problem, pairs, step),
     )
     return learn_offsets(problem, pairs, step, state) if turn >= 1 else state
 
 
-def _error_scale(step: _Step, which, previous: float) -> float:
+def _error_scale(step: Step, which, previous: float) -> float:
     """Robust scale of likely offsets (clean or crowded features) in their present sigma."""
     sure = (step.marginals.pair > 0.7) & which
     if np.sum(sure) < 15:
@@ -254,7 +291,7 @@ def _error_scale(step: _Step, which, previous: float) -> float:
     return float(np.clip(previous * scale, 0.5, 4.0))
 
 
-def _species_scatter(problem: Problem, pairs: Pairs, step: _Step):
+def species_scatter(problem: Problem, pairs: Pairs, step: Step):
     """Position scatter (Angstrom) of each species' lines beyond that of the features.
 
     Hyperfine structure and poor lists scatter some species more than others.
@@ -263,8 +300,7 @@ def _species_scatter(problem: Problem, pairs: Pairs, step: _Step):
     offset = step.offset[likely] * step.sigma[likely]
     near = np.abs(offset) < SCATTER_REACH
     mine, offset = likely[near], offset[near]
-    feature = pairs.base[pairs.feature[mine]] * 0.8
-    excess = offset**2 - feature**2 - problem.entries.error[pairs.entry[mine]] ** 2
+    excess = offset**2 - 0.64 * pairs.base_variance[mine] - pairs.line_variance[mine]
     species, weight = pairs.species[mine], step.marginals.pair[mine]
     total = np.bincount(species, weight * excess, problem.species)
     count = np.bincount(species, weight, problem.species)
@@ -272,7 +308,7 @@ def _species_scatter(problem: Problem, pairs: Pairs, step: _Step):
     return np.sqrt(np.clip(variance, 0.0005**2, 0.03**2))
 
 
-def _finish(problem, pairs, step: _Step, state: State) -> Solution:
+def _finish(problem, pairs, step: Step, state: State) -> Solution:
     return Solution(
         problem,
         pairs.feature,
@@ -286,4 +322,7 @@ def _finish(problem, pairs, step: _Step, state: State) -> Solution:
         step.strength,
         state,
         step.log_likelihood,
+        pairs,
+        step.odds,
+        step.marginals.message,
     )

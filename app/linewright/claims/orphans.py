@@ -19,15 +19,25 @@ RARE, REFUSED = -3.0, -1.0  # ln odds: hardly ever shows; a factor that speaks a
 
 def rank_orphans(features, claims, solution, catalogue) -> tuple[Orphan, ...]:
     """Features with P(unlisted) above one half, most significant first; spikes are none."""
-    rows = [i for i, c in enumerate(claims) if c.p_unlisted > UNEXPLAINED and c.standing != "set aside"]
-    weight = np.nan_to_num(features.significance)
-    rows.sort(key=lambda i: (-weight[i], int(features.number[i])))
+    told = {i: c for i, c in enumerate(claims)}
+    return in_order(features, orphans_among(told, features, solution, catalogue))
+
+
+def in_order(features, orphans) -> tuple[Orphan, ...]:
+    """Most significant first."""
+    weight = dict(zip(features.number.tolist(), np.nan_to_num(features.significance).tolist()))
+    return tuple(sorted(orphans, key=lambda o: (-weight[o.feature], o.feature)))
+
+
+def orphans_among(claims: dict, features, solution, catalogue) -> list[Orphan]:
+    """The orphans among some claims, by feature index."""
+    rows = [i for i, c in claims.items() if c.p_unlisted > UNEXPLAINED and c.standing != "set aside"]
     near = _nearest(features, solution.problem.entries, catalogue, rows)
     why = _refusals(features, solution, catalogue, rows)
-    return tuple(
+    return [
         Orphan(int(features.number[i]), claims[i].p_unlisted, words, reason)
         for i, words, reason in zip(rows, near, why)
-    )
+    ]
 
 
 def _nearest(features, entries, catalogue, rows) -> list[str]:

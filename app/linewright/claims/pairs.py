@@ -3,6 +3,7 @@ while the engine learns."""
 
 from __future__ import annotations
 
+from copy import copy
 from dataclasses import dataclass
 
 import numpy as np
@@ -37,6 +38,9 @@ class Block:
 class Pairs:
     """Pairs (p,) of a problem with everything that stays fixed over the rounds."""
 
+    _columns = ("feature", "entry", "m", "m_variance", "wave", "own", "crowded",
+                "base_variance", "line_variance", "species", "population")  # fmt: skip
+
     def __init__(self, problem: Problem):
         f, e = problem.features, problem.entries
         self.base = np.sqrt(
@@ -55,17 +59,36 @@ class Pairs:
         self.own = self.wave - e.wave[self.entry]
         self.crowded = f.crowded[self.feature].astype(int)
         self.base_variance = self.base[self.feature] ** 2
-        self.species = e.species[self.entry]
-        self.blocks = tuple(self._block(problem, int(k)) for k in np.unique(e.population))
+        self.line_variance = e.error[self.entry] ** 2
+        self.species, self.population = e.species[self.entry], e.population[self.entry]
+        self.blocks = self._blocks(problem, np.arange(len(e)))
 
-    def _block(self, problem: Problem, population: int) -> Block:
-        e = problem.entries
-        entries = np.nonzero(e.population == population)[0]
-        pairs = np.nonzero(e.population[self.entry] == population)[0]
+    def only(self, problem: Problem, which, entries=None) -> "Pairs":
+        """The pairs of these indices, ascending; entries: rows that their blocks hold,
+        ascending, by default those of the pairs."""
+        part = copy(self)
+        for name in self._columns:
+            setattr(part, name, getattr(self, name)[which])
+        if entries is None:
+            used = np.zeros(len(self.covered), dtype=bool)
+            used[part.entry] = True
+            entries = np.nonzero(used)[0]
+        part.blocks = part._blocks(problem, entries)
+        return part
+
+    def _blocks(self, problem: Problem, entries) -> tuple[Block, ...]:
+        population = problem.entries.population[entries]
+        return tuple(
+            self._block(problem, int(k), entries[population == k]) for k in np.unique(population)
+        )
+
+    def _block(self, problem: Problem, population: int, entries) -> Block:
+        own = problem.entries.species[entries]
+        pairs = np.nonzero(self.population == population)[0]
         graded = pairs[np.isfinite(self.m[pairs])]
         if population in problem.ungraded:
             graded = graded[:0]
-        used = np.bincount(e.species[entries], minlength=problem.species) > 0
-        species, names = np.nonzero(used)[0], (np.cumsum(used) - 1)[e.species[entries]]
+        used = np.bincount(own, minlength=problem.species) > 0
+        species, names = np.nonzero(used)[0], (np.cumsum(used) - 1)[own]
         covered = np.nonzero(self.covered[entries] > 0)[0]
         return Block(population, entries, pairs, graded, covered, names, species)

@@ -20,38 +20,58 @@ EXPECTED = 0.5  # a line is expected where the learned curve gives this, or wher
 PRESENT, POSSIBLE = 0.002, 0.05
 
 
-def call_roll(solution, catalogue, components) -> tuple[RollRow, ...]:
+def call_roll(solution, catalogue, components, heard=None) -> tuple[RollRow, ...]:
     """One row per species with a predicted line in coverage, most claims first.
 
     The chance probability inherits the certainty of the species' component, as claims do:
     lines at a velocity that was only fitted to the features coincide with them anyway.
+    heard: (species indices of the catalogue, rows of an earlier call by species): the rows of
+    all other species stay as they were, unless the number of species on trial changed.
     """
     e = solution.problem.entries
     certainty = np.array([c.certainty for c in components])[e.component]
     names = catalogue.species[e.row]
     seen = np.bincount(solution.entry, solution.probability, len(e))
     shows = _shows(solution)
+    groups = _on_trial(names, shows, seen)
+    kept = {} if heard is None else _kept(groups, catalogue, heard)
     coincidence = _Coincidences(solution, names)
-    groups = {}
-    for name in np.unique(names):
-        rows = np.nonzero(names == name)[0]
-        if np.max(shows[rows], initial=0) > 0.02 or np.sum(seen[rows]) > 0.5:
-            groups[name] = rows
-    tails = {name: coincidence.tail(rows, shows) for name, rows in groups.items()}
-    table = [
-        _row(
-            catalogue.species_names[int(name)],
-            _Count(
-                seen[rows],
-                shows[rows],
-                1.0 - (1.0 - min(1.0, tails[name] * len(groups))) * float(np.max(certainty[rows])),
-            ),
-            solution.state,
-            e.species[rows[0]],
-        )
-        for name, rows in groups.items()
-    ]
-    return tuple(sorted(table, key=lambda r: (-r.seen, r.p_chance, r.species)))
+    table = list(kept.values())
+    for name, rows in groups.items():
+        if name in kept:
+            continue
+        tail = min(1.0, coincidence.tail(rows, shows) * len(groups))
+        chance = 1.0 - (1.0 - tail) * float(np.max(certainty[rows]))
+        count = _Count(seen[rows], shows[rows], chance)
+        species = e.species[rows[0]]
+        table.append(_row(catalogue.species_names[name], count, solution.state, species))
+    return in_order(table)
+
+
+def in_order(rows) -> tuple[RollRow, ...]:
+    """Most claims first."""
+    return tuple(sorted(rows, key=lambda r: (-r.seen, r.p_chance, r.species)))
+
+
+def _on_trial(names, shows, seen) -> dict:
+    """Rows of each species' entries, for the species that may show a line."""
+    order = np.argsort(names.astype(np.uint16), kind="stable")  # a radix sort, in this size
+    start = np.nonzero(np.diff(names[order], prepend=-1))[0]
+    rows = np.split(order, start[1:]) if len(order) else []
+    return {
+        int(names[mine[0]]): mine
+        for mine in rows
+        if np.max(shows[mine]) > 0.02 or np.sum(seen[mine]) > 0.5
+    }
+
+
+def _kept(groups, catalogue, heard) -> dict:
+    """Earlier rows that stand, by species index."""
+    changed, before = heard
+    if len(before) != len(groups):
+        return {}
+    changed, spell = set(np.asarray(changed).tolist()), catalogue.species_names
+    return {n: before[spell[n]] for n in groups if n not in changed and spell[n] in before}
 
 
 def _shows(solution):

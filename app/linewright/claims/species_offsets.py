@@ -62,16 +62,29 @@ def learn_offsets(problem: Problem, pairs: Pairs, step, state):
     lines = np.bincount(problem.entries.species, seen, problem.species)
     rows, alone = [np.zeros(0, dtype=int)], [np.zeros(0)]
     for block in pairs.blocks:
-        evidence = _evidence(problem, pairs, step, state, (block, seen))
-        table = _table(evidence)
-        offset, error[block.species] = best_offsets(table)
+        offset, error[block.species], which, apart = block_offsets(
+            problem, pairs, step, state, (block, seen)
+        )
         zero = shared_offset(offset, lines[block.species])
         mean[block.species] = offset - zero
-        which, apart = without_own(evidence, table, error[block.species], seen[block.entries])
         rows.append(which)
         alone.append(apart - zero)
     own = OwnOffsets(np.concatenate(rows), np.concatenate(alone))
     return replace(state, offsets=mean, offset_errors=error, own=own)
+
+
+def block_offsets(problem: Problem, pairs: Pairs, step, state, which):
+    """(offset, error, entries, own) of a block, the zero point still in them: dex by species;
+    entries that speak for an uncertain species and the offset that the others alone give.
+
+    which: (Block, P(seen) per entry).
+    """
+    block, seen = which
+    evidence = _evidence(problem, pairs, step, state, which)
+    table = _table(evidence)
+    offset, error = best_offsets(table)
+    rows, apart = without_own(evidence, table, error, seen[block.entries])
+    return offset, error, rows, apart
 
 
 def _evidence(problem: Problem, pairs: Pairs, step, state, which) -> Evidence:

@@ -15,7 +15,9 @@ import numpy as np
 from ..claims.artefacts import with_spikes
 from ..claims.band_claims import band_ranges
 from ..claims.banded import weigh_banded
-from ..claims.identify import Setting, Weighing, conclude, weigh, weigh_again
+from ..claims.heard import Ground
+from ..claims.identify import Setting, weigh
+from ..claims.model import Claim, Orphan, RollRow
 from ..claims.options import ClaimOptions
 from ..claims.problem import NOT_SAID, SET_ASIDE
 from ..claims.upper_limits import carried
@@ -36,6 +38,16 @@ class Change:
     after: tuple[str, str]
 
 
+@dataclass(frozen=True, eq=False)
+class Told:
+    """What a person's words make of the rest: claims by row where they differ from those
+    without the words; the Roll call, without what it carries over; the Orphans."""
+
+    claims: tuple[tuple[int, Claim], ...]
+    roll_call: tuple[RollRow, ...]
+    orphans: tuple[Orphan, ...]
+
+
 def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, tuple[Change, ...]]:
     """The session with its machine claims weighed again, and what changed.
 
@@ -44,72 +56,86 @@ def reweigh(session: Session, catalogue=None, progress=None) -> tuple[Session, t
     differs from the same weighing without them: the solve's own may have gone another way, and
     that is no news. Velocity and temperature are kept. Catalogue: the shipped one by default.
     """
-    catalogue = load_catalogue() if catalogue is None else catalogue
-    progress = progress or Progress()
     if len(session.features) == 0:
         return session, ()
-    before, alone = _kept.weighing(session, catalogue, progress.part(0.0, 0.7))
-    after = weigh_again(before, _said(session, catalogue), progress.part(0.7, 0.9))
-    found = conclude(after, progress)
-    claims, changes = _merged(session, found.claims, alone)
+    return with_told(session, told(session, catalogue, progress))
+
+
+def told(session: Session, catalogue=None, progress=None) -> Told:
+    """What the words in a session's claims tell. Of the claims only a person's, locked ones and
+    those on molecular bands count, of the rest features, velocity, temperature and options."""
+    catalogue = load_catalogue() if catalogue is None else catalogue
+    progress = progress or Progress()
+    ground = _kept.ground(session, catalogue, progress.part(0.0, 0.9))
+    progress.report("weighing your claims", 0.9)
+    heard = ground.hearing(_said(session, catalogue))
+    claims = tuple(
+        (row, claim)
+        for row, claim in heard.claims.items()
+        if not _kept_as_is(session.claims[row]) and _differs(claim, ground.claims[row])
+    )
+    return Told(claims, heard.roll_call, heard.orphans)
+
+
+def prepare(session: Session, catalogue=None, progress=None) -> None:
+    """Weighs a session without words and keeps that for the next word on it."""
+    catalogue = load_catalogue() if catalogue is None else catalogue
+    if len(session.features):
+        _kept.ground(session, catalogue, progress or Progress())
+
+
+def with_told(session: Session, told: Told) -> tuple[Session, tuple[Change, ...]]:
+    """The session with what its words tell, and what changed; other claims stay as they are."""
+    claims, changes = list(session.claims), []
+    for row, new in told.claims:
+        old = claims[row]
+        if _kept_as_is(old):
+            continue
+        new = replace(new, note=old.note, flags=old.flags)
+        claims[row] = old if new == old else new
+        before, after = (old.species, old.standing), (new.species, new.standing)
+        if before != after:
+            changes.append(Change(int(session.features.number[row]), before, after))
     entry = HistoryEntry("reweigh", {"changed": len(changes)}, "machine")
     weighed = replace(
         session,
-        claims=claims,
-        roll_call=carried(found.roll_call, session.roll_call),
-        orphans=found.orphans,
+        claims=tuple(claims),
+        roll_call=carried(told.roll_call, session.roll_call),
+        orphans=told.orphans,
         history=(*session.history, entry),
     )
-    return weighed, changes
+    return weighed, tuple(changes)
 
 
-def _merged(session: Session, found, alone):
-    """(claims, changes): new machine claims beside what a person made or locked.
-
-    found, alone: claims with the person's words and without them.
-    """
-    claims, changes = [], []
-    rows = zip(session.features.number, session.claims, found, alone, strict=True)
-    for number, old, new, mute in rows:
-        if old.by == "person" or old.locked or not _told(new, mute):
-            claims.append(old)
-            continue
-        if (new.note, new.flags) != (old.note, old.flags):
-            new = replace(new, note=old.note, flags=old.flags)
-        claims.append(new)
-        before, after = (old.species, old.standing), (new.species, new.standing)
-        if before != after:
-            changes.append(Change(int(number), before, after))
-    return tuple(claims), tuple(changes)
+def _kept_as_is(claim: Claim) -> bool:
+    return claim.by == "person" or claim.locked
 
 
-def _told(new, mute) -> bool:
+def _differs(new: Claim, mute: Claim) -> bool:
     """Whether the person's words made a difference to a claim."""
     same = (new.species, new.standing) == (mute.species, mute.standing)
     return not same or abs(new.probability - mute.probability) >= MOVED
 
 
 class _Kept:
-    """The last session's weighing before a person spoke, and the claims it makes."""
+    """What the last session's spectrum says before a person speaks."""
 
     def __init__(self):
-        self._lock, self._key, self._weighing = Lock(), None, None
+        self._lock, self._key, self._ground = Lock(), None, None
 
-    def weighing(self, session: Session, catalogue, progress) -> tuple[Weighing, tuple]:
+    def ground(self, session: Session, catalogue, progress) -> Ground:
         coverage, complete = _coverage(session)
         bands = band_ranges(session.features, session.claims)
         key = (session.features, catalogue, coverage, _options(session, complete), bands)
         with self._lock:
             if self._key is not None and self._same(key):
-                return self._weighing
+                return self._ground
         setting = Setting(session.features, catalogue, coverage, key[3])
         setting.said = with_spikes(session.features, None)
-        weighing = weigh_banded(weigh(setting, progress), bands)
-        nothing = np.full(len(session.features), NOT_SAID)
-        kept = weighing, conclude(weigh_again(weighing, nothing)).claims
+        ground = Ground(weigh_banded(weigh(setting, progress), bands))
         with self._lock:
-            self._key, self._weighing = key, kept
-        return kept
+            self._key, self._ground = key, ground
+        return ground
 
     def _same(self, key) -> bool:
         """The same tables (not equal ones), ranges and options."""

@@ -6,9 +6,10 @@ from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
+from ..claims.band_claims import is_band
 from ..measure.features import FeatureTable
-from ..session.model import HistoryEntry, Session
-from .reweigh import Change, reweigh
+from ..session.model import Claim, HistoryEntry, Session, VelocityResult
+from .reweigh import Change, Told, prepare, told, with_told
 
 WORDS = ("accept_candidate", "set_species", "set_aside", "set_standing", "restore")
 
@@ -47,12 +48,36 @@ def new_word(old: Session | None, new: Session) -> bool:
             and can_reweigh(new))
 
 
-def weighed_again(session: Session, progress=None) -> Weighed:
-    """The other claims weighed in the light of what the person said; ``before`` is left bare,
-    for the caller has it."""
-    session = replace(session, features=_the_same(session.features))
-    after, changes = reweigh(session, progress=progress)
-    return Weighed(without_samples(session), after, tuple(filter(_claims, changes)))
+_ANY = Claim()  # in the place of a machine claim, which tells nothing
+
+
+def spoken(session: Session) -> Session:
+    """What weighing again needs of a session: little enough to be sent for every word."""
+    bands = is_band(session.features)
+    claims = tuple(
+        c if c.by == "person" or c.locked or c.standing == "set aside" or bands[i] else _ANY
+        for i, c in enumerate(session.claims)
+    )
+    return replace(
+        session, claims=claims, velocity=VelocityResult(session.velocity.velocity), roll_call=(),
+        orphans=(), continuum=(), anchors=(), fits=(), temperatures=(), history=(),
+    )  # fmt: skip
+
+
+def told_of(session: Session, progress=None) -> Told:
+    """What the words of a ``spoken`` session tell."""
+    return told(replace(session, features=_the_same(session.features)), progress=progress)
+
+
+def made_ready(session: Session) -> None:
+    """So that the first word on a ``spoken`` session is answered as fast as the next."""
+    prepare(replace(session, features=_the_same(session.features)))
+
+
+def weighed_with(session: Session, told: Told) -> Weighed:
+    """A session and what its words make of it."""
+    after, changes = with_told(session, told)
+    return Weighed(session, after, tuple(filter(_claims, changes)))
 
 
 def _claims(change: Change) -> bool:
@@ -78,16 +103,11 @@ def _equal(a: FeatureTable, b: FeatureTable) -> bool:
                for f in fields(FeatureTable) if f.name != "flags")
 
 
-def without_samples(session: Session) -> Session:
-    """The claims and numbers of a session only."""
-    return replace(session, claims=(), history=(), continuum=())
-
-
 def carried_over(session: Session, weighed: Weighed) -> Session:
     """``session``, which was weighed, with the new claims: one step, and what did not change
     stays the same object. Claims a person made or locked are the session's own."""
     claims = tuple(
-        old if old.by == "person" or old.locked or old == new else new
+        old if old is new or old.by == "person" or old.locked or old == new else new
         for old, new in zip(session.claims, weighed.after.claims, strict=True))
     entry = HistoryEntry("reweigh", {"changed": len(weighed.changes)}, "machine")
     return replace(session, claims=claims, roll_call=weighed.after.roll_call,

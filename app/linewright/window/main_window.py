@@ -204,8 +204,8 @@ class MainWindow(Questions, Showing, QMainWindow):
         if self.space is not None:
             self.space.remember()
         self.tasks.close()
-        self.bench.engine.close()
-        self.bench.export_engine.close()
+        for engine in self.bench.engines:
+            engine.close()
         if self.residuals is not None:
             self.residuals.close()
         event.accept()

@@ -8,14 +8,15 @@ from PySide6.QtCore import QTimer
 from ..job.view_profile import profile_of
 from .acts import opening
 from .acts.picking import pick
-from .acts.reweighing import heed, propose
+from .acts.reweighing import heed, make_ready, propose
 from .acts.viewing import slide
 from .anchor_keeper import AnchorKeeper
 from .fit_follower import FitFollower
 from .rake import RakeKeeper
 from .steps import Steps
 
-REST_MS = 700  # after the last claim before what it changes is looked up
+REST_MS = 200  # after the last claim before what it changes is looked up
+READY_MS = 1500  # after the last change of features before a first claim is made ready for
 MANY = 1000  # features whose first showing is spread over several frames
 
 
@@ -36,6 +37,10 @@ class Refresher:
         self.reweigh_soon.setSingleShot(True)
         self.reweigh_soon.setInterval(REST_MS)
         self.reweigh_soon.timeout.connect(lambda: propose(bench))
+        self.ready_soon = QTimer(space)
+        self.ready_soon.setSingleShot(True)
+        self.ready_soon.setInterval(READY_MS)
+        self.ready_soon.timeout.connect(lambda: make_ready(bench))
         view = space.spectrum_view
         self.fits, self.anchors = FitFollower(bench, view), AnchorKeeper(bench, view)
         view.featureClicked.connect(lambda number: bench.view.select(number))

@@ -42,6 +42,8 @@ class Desk:
     velocity: float = 0.0
     selected: int | None = None
     weighed: object = None  # what the person's words change elsewhere, once looked up
+    asked: object = None  # while that is being looked up
+    ready_for: object = None  # the features of which that can be looked up at once
     _sticks: tuple = (None, None)
 
     @property
@@ -73,6 +75,8 @@ class Workbench:
 
     def __init__(self, tasks: Tasks):
         self.engine, self.export_engine = Engine(), Engine()  # saving never waits for a solve
+        self.words_engine = Engine()  # nor do a person's words, or what is kept for them
+        self.engines = self.engine, self.export_engine, self.words_engine
         self.tasks, self.view, self.theme = tasks, ViewState(), LIGHT
         self.desks: list[Desk] = []
         self.desk: Desk | None = None

@@ -2,15 +2,23 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from ...errors import LinewrightError
-from ...job.view_reweigh import can_reweigh, carried_over, new_word
+from ...job.view_reweigh import can_reweigh, carried_over, new_word, spoken, weighed_with
 from ..notices import Notice
 from ..tasks import Request
 
-KEY = "reweigh"
-CALL = "job.view_reweigh:weighed_again"
+KEY, READY = "reweigh", "ready to weigh"
+CALL, PREPARE = "job.view_reweigh:told_of", "job.view_reweigh:made_ready"
+
+
+@dataclass(frozen=True, eq=False)
+class Asked:
+    """The session being weighed, and the one in which the person asked for the outcome."""
+
+    session: object
+    wanted: object = None
 
 
 def heed(bench, old, new) -> None:
@@ -21,6 +29,27 @@ def heed(bench, old, new) -> None:
             desk.weighed = None
     if new is not None and new_word(old, new):
         bench.window.refresher.reweigh_soon.start()
+    if new is not None and desk.ready_for is not new.features:
+        bench.window.refresher.ready_soon.start()
+
+
+def make_ready(bench) -> None:
+    """What the spectrum says before the person speaks is weighed while nobody waits."""
+    desk, engine = bench.desk, bench.words_engine
+    if desk is None or not can_reweigh(desk.document.session) or bench.tasks.busy("solve"):
+        return
+    session = desk.document.session
+    if desk.ready_for is session.features or bench.tasks.busy(READY) or bench.tasks.busy(KEY):
+        return
+    desk.ready_for = session.features
+    bench.tasks.start(Request(
+        key=READY, title="", shown=False, work=lambda _progress: _made_ready(engine, session),
+        done=lambda _none: make_ready(bench), failed=lambda error: _failed(bench, error),
+        stop=lambda: engine.stop(PREPARE)))
+
+
+def _made_ready(engine, session) -> None:
+    engine.call(PREPARE, spoken(session))
 
 
 def propose(bench) -> None:
@@ -30,40 +59,49 @@ def propose(bench) -> None:
     if bench.tasks.busy("solve") or bench.tasks.busy(KEY):
         bench.window.refresher.reweigh_soon.start()
         return
-    _weigh(bench, "Looking what your claim changes", _proposed)
+    _weigh(bench, "Looking what your claim changes", take=False)
 
 
 def reweigh(bench) -> None:
     """The other claims change now, as one step of undo."""
-    weighed = bench.desk.weighed
+    desk, weighed = bench.desk, bench.desk.weighed
     if weighed is not None and weighed.before is bench.session:
-        _take(bench, bench.desk, weighed)
+        _take(bench, desk, weighed)
         return
     bench.withdraw(KEY)
-    _weigh(bench, f"Weighing {bench.desk.name} again", _take)
+    if bench.tasks.busy(KEY) and desk.asked is not None:  # what is under way serves as well
+        desk.asked = replace(desk.asked, wanted=bench.session)
+        return
+    _weigh(bench, f"Weighing {desk.name} again", take=True)
 
 
-def _weigh(bench, title: str, then) -> None:
-    desk, session, engine = bench.desk, bench.session, bench.engine
+def _weigh(bench, title: str, take: bool) -> None:
+    desk, session, engine = bench.desk, bench.session, bench.words_engine
+    desk.asked = Asked(session, session if take else None)
     bench.tasks.start(Request(
         key=KEY, title=title,
         work=lambda progress: _weighed(engine, session, progress),
-        done=lambda weighed: _arrived(bench, desk, replace(weighed, before=session), then),
+        done=lambda weighed: _arrived(bench, desk, replace(weighed, before=session)),
         failed=lambda error: _failed(bench, error),
         stop=lambda: engine.stop(CALL)))
 
 
 def _weighed(engine, session, progress):
-    return engine.call(CALL, session, progress=progress)
+    return weighed_with(session, engine.call(CALL, spoken(session), progress=progress))
 
 
-def _arrived(bench, desk, weighed, then) -> None:
+def _arrived(bench, desk, weighed) -> None:
     """Dropped when something was done meanwhile: then it is asked for again."""
-    if desk not in bench.desks or desk.document.session is not weighed.before:
-        if desk is bench.desk:
+    asked, desk.asked = desk.asked, None
+    now = desk.document.session
+    take = asked is not None and asked.wanted is now
+    if desk not in bench.desks or now is not weighed.before:
+        if desk is bench.desk and take:
+            _weigh(bench, f"Weighing {desk.name} again", take=True)
+        elif desk is bench.desk:
             bench.window.refresher.reweigh_soon.start()
         return
-    then(bench, desk, weighed)
+    (_take if take else _proposed)(bench, desk, weighed)
 
 
 def _proposed(bench, desk, weighed) -> None:
