@@ -300,7 +300,8 @@ def species_scatter(problem: Problem, pairs: Pairs, step: Step):
     offset = step.offset[likely] * step.sigma[likely]
     near = np.abs(offset) < SCATTER_REACH
     mine, offset = likely[near], offset[near]
-    excess = offset**2 - 0.64 * pairs.base_variance[mine] - pairs.line_variance[mine]
+    feature = pairs.base[pairs.feature[mine]] * 0.8
+    excess = offset**2 - feature**2 - pairs.line_variance[mine]
     species, weight = pairs.species[mine], step.marginals.pair[mine]
     total = np.bincount(species, weight * excess, problem.species)
     count = np.bincount(species, weight, problem.species)
