@@ -22,9 +22,6 @@ from .velocity import (
 )
 from .voting import DECLARE_MARGIN, Vote
 
-# Share of the lines' width to which blends and the list limit a velocity, however many lines:
-# tuned on the A star of the samples (38 km/s wide, +0.17 km/s off over 6 draws of its noise).
-BLENDING = 0.004
 BROAD_ERROR = 2.0  # km/s: pressure shifts and asymmetric wings of hydrogen and helium
 
 
@@ -170,8 +167,6 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
         shift, error = refine(solution, i)
         given = setting.options.velocity is not None
         fixed = given and component.population in (STELLAR, NEBULAR)
-        if component.population == STELLAR:
-            error = float(np.hypot(error, BLENDING * typical_width(setting.features)))
         if np.isfinite(error) and not fixed:
             component = replace(component, velocity=component.velocity + shift, error=error)
         if component.ions is not None:
@@ -186,7 +181,11 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
             velocity = replace(velocity, velocity=chosen.velocity, error=chosen.error)
     star = next((c for c in components if c.population == STELLAR), None)
     second = [] if star is None else find_second_star(setting, solution, star, temperature)
-    components += second or find_clouds(setting, solution, velocity.velocity)
+    if second:
+        components += second
+    elif velocity.declared or velocity.how == "given":
+        # While the star's velocity is open, resonance lines elsewhere may be its own.
+        components += find_clouds(setting, solution, velocity.velocity)
     if star is not None and not second:
         components = find_emission(setting, solution, components, star)
     return replace(found, components=tuple(components), velocity=velocity)

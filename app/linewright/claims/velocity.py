@@ -26,6 +26,7 @@ TELLURIC_RANGES = np.array(  # vacuum Angstrom; O2 and H2O bands (method: requir
 )
 ORDINARY_SHIFT = 33.0  # km/s: the largest barycentric correction, with the Earth's rotation
 MOSTLY_STELLAR = 0.8  # share of the features in telluric bands that are the star's
+CLEAR = 0.9  # share of its blend from which a line stands alone
 UNUSUAL = 40.0  # log-likelihood an extraordinary shift must make up for
 FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0,
                "barycentric": 33.0}
@@ -122,7 +123,12 @@ def _vote(features, rows, catalogue, strength, velocity_range, **how) -> Vote:
 
 
 def refine(solution, component: int) -> tuple[float, float]:
-    """(shift, error) in km/s of a component from its confident pairs; (0, nan) if too few."""
+    """(shift, error) in km/s of a component from its confident pairs; (0, nan) if too few.
+
+    All of them make the mean, but its error is that of the lines standing clear alone: the
+    places of blends hang on the list's strengths and on which of its lines are taken for
+    them, which the same list gets wrong together.
+    """
     entry_component = solution.problem.entries.component[solution.entry]
     sure = (entry_component == component) & (solution.probability > 0.8)
     sure &= np.abs(solution.offset_sigma) < 3.0
@@ -134,4 +140,12 @@ def refine(solution, component: int) -> tuple[float, float]:
     weight = 1.0 / sigma**2
     mean = float(np.sum(weight * shift) / np.sum(weight))
     scatter = 1.4826 * float(np.median(np.abs(shift - mean) / sigma))
-    return mean, float(max(scatter, 1.0) / np.sqrt(np.sum(weight)))
+    clear = _clear(solution, sure)
+    witnesses = max(float(np.sum(weight[clear])), float(np.max(weight)))
+    return mean, float(max(scatter, 1.0) / np.sqrt(witnesses))
+
+
+def _clear(solution, pairs):
+    """Which of the pairs (p,) have a line all but alone in a feature that no other disturbs."""
+    share = solution.groups.share[solution.entry[pairs]]
+    return (share > CLEAR) & ~solution.problem.features.crowded[solution.feature[pairs]]
