@@ -246,3 +246,20 @@ def test_gaps_and_masked_samples_break_the_trace(made, spectrum):
     drawn, _ = figure.draw_figure(made, replace(spectrum, segments=(holed,)), FigureStyle())
     trace = max(drawn.axes[0].lines, key=lambda line: len(line.get_xdata()))
     assert np.isnan(trace.get_ydata()).sum() >= 101
+
+
+def test_the_continuum_stops_at_gaps(made):
+    from linewright.publish.figure_trace import continuum_traces
+    from linewright.spectra.medium import to_medium
+
+    nodes = made.continuum[0]
+    low, high = float(nodes.wave[0]), float(nodes.wave[-1])
+    third = (high - low) / 3
+    halves = ((low, low + third), (high - third, high))
+    gapped = replace(made, continuum=(nodes,), spectrum=replace(made.spectrum, coverage=halves))
+    drawn = continuum_traces(gapped, 0.0, 1e5)
+    assert len(drawn) == 2
+    for trace, ends in zip(drawn, halves):
+        np.testing.assert_allclose(trace.wave[[0, -1]], to_medium(np.array(ends), made.spectrum.medium))
+    whole = replace(gapped, spectrum=replace(made.spectrum, coverage=()))
+    assert len(continuum_traces(whole, 0.0, 1e5)) == 1

@@ -12,10 +12,13 @@ import window_builders as build
 from linewright.claims.model import RollRow
 from linewright.job.view_breakdown import siblings_words
 from linewright.job.view_rake import Elsewhere, elsewhere, heads_claimed, rake_teeth
+from linewright.job.view_reasons import reasons
 from linewright.lines.bands import load_bands
+from linewright.session import edits
 from linewright.session.document import Document
 from linewright.spectra.medium import C_KM_S, air_to_vacuum
 from linewright.window.acts import opening
+from linewright.window.panels.ledger_columns import shown_probability
 from linewright.window.plot import RakeData, SpectrumView
 from linewright.window.plot.extremes import PixelScale
 from linewright.window.plot.rake_teeth import RakeTeeth
@@ -235,3 +238,25 @@ def test_words_that_may_be_cut_off_stand_in_the_tip(solved):
     tip = model.index(0, at).data(Qt.ItemDataRole.ToolTipRole)
     assert tip == model.index(0, at).data() and "σ" in tip
     assert model.index(0, 0).data(Qt.ItemDataRole.ToolTipRole) is None
+
+
+def test_the_ledger_tells_the_probability_of_what_a_person_claims(scene):
+    _catalogue, session = scene
+    number = next(int(n) for n, c in zip(session.features.number, session.claims)
+                  if c.candidates[0].species != c.candidates[1].species)
+    row = session.index_of(number)
+    machine, second = session.claims[row].probability, session.claims[row].candidates[1]
+    assert shown_probability(session.claims[row]) == machine
+    told = edits.accept_candidate(session, number, 2).claims[row]
+    assert told.species == second.species and shown_probability(told) == second.probability
+    assert shown_probability(edits.accept_candidate(session, number, 1).claims[row]) == machine
+    never = edits.set_species(session, number, "Xe II").claims[row]
+    assert np.isnan(shown_probability(never))
+
+
+def test_a_share_of_nothing_is_less_than_one_per_cent(scene):
+    _catalogue, session = scene
+    claim = session.claims[5]
+    small = replace(claim.candidates[1], share=0.002)
+    said = reasons(small, claim, 0.4)
+    assert any("less than 1% of what is predicted" in words for words in said.against)

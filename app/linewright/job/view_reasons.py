@@ -102,7 +102,8 @@ def _share(c: Candidate, _depth: float, good: list, bad: list) -> None:
     if c.share >= FULL:
         good.append("hardly anything else is predicted here")
     elif c.share <= MINOR:
-        bad.append(f"only {c.share:.0%} of what is predicted here")
+        part = f"{c.share:.0%}" if c.share >= 0.01 else "less than 1%"
+        bad.append(f"only {part} of what is predicted here")
 
 
 def _siblings(roll: RollRow, good: list, bad: list) -> None:

@@ -16,6 +16,7 @@ STUB = 2.0
 ELBOW = 13.0
 REACH = 60.0
 AIR = 0.9
+EDGES = {"bar": 2.0}  # points: a bar is all edge, and drawn as thin as one it cannot be seen
 MARKERS = {
     "diamond": "D", "triangle": "^", "square": "s", "circle": "o", "cross": "P", "bar": "_",
     "star": "*", "vee": "v", "hexagon": "h",
@@ -84,7 +85,7 @@ class LabelDrawing:
         self._line([x, x, place, place], [foot, top, base - STUB, base], **look)
         shape = label.family.marker
         size = FOOT * SIZES.get(shape, 1.0)
-        marker = {"marker": MARKERS[shape], "ms": size, "mew": 0.6, "lw": 0}
+        marker = {"marker": MARKERS[shape], "ms": size, "mew": EDGES.get(shape, 0.6), "lw": 0}
         self._line([x], [foot], color=label.family.light, **marker)
         self._text(label.text, place, base + 1.5)
 

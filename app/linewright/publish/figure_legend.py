@@ -9,7 +9,7 @@ from matplotlib.lines import Line2D
 from ..session.model import Session
 from .families import FAMILIES
 from .figure_labels import Marks
-from .figure_leaders import FOOT, MARKERS, SIZES
+from .figure_leaders import EDGES, FOOT, MARKERS, SIZES
 from .figure_style import CONTINUUM, DASHES, GREY, INK, LEADER_WIDTH, FigureStyle
 
 LEFT, RIGHT = 8.0, 7.0
@@ -30,7 +30,8 @@ def _entries(marks: list[Marks], session: Session) -> list[Entry]:
     used = {label.family.title for label in labels}
     entries = []
     for family in (f for f in FAMILIES if f.title in used):
-        look = {"marker": MARKERS[family.marker], "ms": _size(family), "color": family.light}
+        look = {"marker": MARKERS[family.marker], "ms": _size(family), "color": family.light,
+                "mew": EDGES.get(family.marker, 0.6)}
         entries.append(Entry(family.title, look, False))
     for standing in (s for s in DASHES if any(label.standing == s for label in labels)):
         look = {"color": INK, "lw": LEADER_WIDTH}

@@ -66,16 +66,20 @@ def _thinned(wave, flux, low: float, high: float, columns: float):
 
 
 def continuum_traces(session: Session, low: float, high: float) -> list[Trace]:
-    """The pseudo-continuum of each segment between two own-medium wavelengths."""
+    """The pseudo-continuum of each segment between two own-medium wavelengths, where the
+    spectrum was seen: it is not drawn across gaps."""
+    medium = session.spectrum.medium
+    seen = [to_medium(np.array(r), medium) for r in session.spectrum.coverage] or [(low, high)]
     found = []
     for nodes in session.continuum:
-        own = to_medium(nodes.wave, session.spectrum.medium)
-        if len(own) < 2 or own[-1] <= low or own[0] >= high:
-            continue
-        ends = np.clip([low, high], own[0], own[-1])
-        inside = own[(own > ends[0]) & (own < ends[1])]
-        wave = np.array([ends[0], *inside, ends[1]])
-        found.append(Trace(wave, np.interp(wave, own, nodes.value)))
+        own = to_medium(nodes.wave, medium)
+        for start, stop in seen:
+            ends = np.clip([max(low, start), min(high, stop)], own[0], own[-1])
+            if len(own) < 2 or ends[1] <= ends[0]:
+                continue
+            inside = own[(own > ends[0]) & (own < ends[1])]
+            wave = np.array([ends[0], *inside, ends[1]])
+            found.append(Trace(wave, np.interp(wave, own, nodes.value)))
     return found
 
 

@@ -22,7 +22,7 @@ class LedgerArrays:
         self.lab = to_medium(lab, session.spectrum.medium) if len(lab) else lab
         self.velocity = C_KM_S * (f.wave / lab - 1.0) if len(lab) else lab
         self.species = np.array([shown_species(c) for c in claims], dtype=object)
-        self.probability = np.array([c.probability for c in claims], dtype=float)
+        self.probability = np.array([shown_probability(c) for c in claims], dtype=float)
         self.standing = np.array([STANDINGS.index(c.standing) for c in claims], dtype=int)
         self.by = np.array([c.by for c in claims], dtype=object)
         self.note = np.array([c.note for c in claims], dtype=object)
@@ -52,7 +52,7 @@ class LedgerArrays:
         lab = claim.line.wave if claim.line else np.nan
         self.lab[i] = to_medium(lab, session.spectrum.medium)
         self.velocity[i] = C_KM_S * (self.features.wave[i] / lab - 1.0)
-        self.species[i], self.probability[i] = shown_species(claim), claim.probability
+        self.species[i], self.probability[i] = shown_species(claim), shown_probability(claim)
         self.standing[i] = STANDINGS.index(claim.standing)
         self.by[i], self.note[i] = claim.by, claim.note
 
@@ -65,6 +65,17 @@ def shown_species(claim) -> str:
     if claim.standing == "unclaimed":  # the best guess, not a claim
         return f"({claim.species})"
     return " + ".join([claim.species, *dict.fromkeys(others)])
+
+
+def shown_probability(claim) -> float:
+    """The machine's probability of what is claimed: that of its best candidate's species, or of
+    the species that a person claims instead; NaN where it never weighed that."""
+    if claim.by != "person" or not claim.candidates:
+        return claim.probability
+    if claim.species == claim.candidates[0].species:
+        return claim.probability
+    weighed = [c.probability for c in claim.candidates if c.species == claim.species]
+    return sum(weighed) if weighed else float("nan")
 
 
 def ledger_columns(a: LedgerArrays) -> list[Column]:
@@ -83,7 +94,8 @@ def ledger_columns(a: LedgerArrays) -> list[Column]:
                lambda i: words.depth(f.depth[i]), lambda: f.depth, True, 70),
         Column("EW (mÅ)", "Equivalent width and its error; negative in emission",
                lambda i: words.width(f.ew[i], f.ew_err[i]), lambda: f.ew, True, 132),
-        Column("probability", "That the claimed species is the main contributor",
+        Column("probability", "That the claimed species is the main contributor, as the machine "
+               "weighs it, whoever claims it",
                lambda i: words.probability(a.probability[i]) if a.species[i] else "",
                lambda: a.probability, True, 86),
         Column("standing", "firm from 0.95, likely from 0.80, tentative from 0.50; "
