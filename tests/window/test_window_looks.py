@@ -13,6 +13,7 @@ from linewright.claims.model import RollRow
 from linewright.job.view_breakdown import siblings_words
 from linewright.job.view_rake import Elsewhere, elsewhere, heads_claimed, rake_teeth
 from linewright.job.view_reasons import reasons
+from linewright.job.view_seen_depths import seen_depths
 from linewright.lines.bands import load_bands
 from linewright.session import edits
 from linewright.session.document import Document
@@ -260,3 +261,16 @@ def test_a_share_of_nothing_is_less_than_one_per_cent(scene):
     small = replace(claim.candidates[1], share=0.002)
     said = reasons(small, claim, 0.4)
     assert any("less than 1% of what is predicted" in words for words in said.against)
+
+
+def test_siblings_are_predicted_as_deep_as_this_spectrum_shows_lines(scene):
+    catalogue, session = scene
+    depth = 10.0 ** (catalogue.loggf + 1.0)
+    claims = tuple(
+        replace(c, standing="firm", candidates=(replace(c.candidates[0], depth_predicted=0.2 * d),))
+        for c, d in zip(session.claims, depth, strict=True))
+    shallow = seen_depths(replace(session, claims=claims), catalogue, depth, "stellar")
+    np.testing.assert_allclose(shallow, 0.2 * depth, rtol=0.1)
+    few = replace(session, claims=claims[:10])
+    assert seen_depths(few, catalogue, depth, "stellar") is depth
+    assert seen_depths(replace(session, claims=claims), catalogue, depth, "telluric") is depth

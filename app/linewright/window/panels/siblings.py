@@ -7,6 +7,7 @@ from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWi
 
 from ...job.view_breakdown import siblings_words
 from ...job.view_rake import heads_claimed
+from ...job.view_seen_depths import seen_depths
 from ...job.view_siblings import OWN_LINES, said_now, sibling_strips, sibling_velocity
 from ..plot import SiblingStrips, Strip
 from ..plot.sibling_strips import NO_SPECTRUM, NONE_EXPECTED
@@ -33,6 +34,7 @@ class SiblingsBox(QWidget):
     def __init__(self, workbench, parent=None):
         super().__init__(parent)
         self._workbench, self._found = workbench, []
+        self._seen, self._depths_of = None, (None,) * 3
         self._forget()
         self.title, self.strips = QLabel("Siblings"), SiblingStrips()
         self.count, self.lines = QLabel(), QLabel()
@@ -97,8 +99,9 @@ class SiblingsBox(QWidget):
                 self._soon.start()
                 return
             self._key, self._made_of = key, made_of
+            predicted = bench.catalogue, self._depths(session, candidate.origin)
             self._found = sibling_strips(
-                bench.spectrum, session, (bench.catalogue, bench.depth), candidate, velocity, fwhm)
+                bench.spectrum, session, predicted, candidate, velocity, fwhm)
         elif self._said == (session.claims, bench.theme.name):
             return
         else:
@@ -108,6 +111,15 @@ class SiblingsBox(QWidget):
         roll = next((r for r in session.roll_call if r.species == named), None)
         self._tell(*siblings_words(roll, session.spectrum.medium))
         self._show(candidate)
+
+    def _depths(self, session, origin: str):
+        """Depths as this spectrum shows lines of an origin; read again after another solve."""
+        bench = self._workbench
+        made_of = (session.features, bench.depth, origin)
+        if any(a is not b for a, b in zip(made_of, self._depths_of)):
+            self._seen = seen_depths(session, bench.catalogue, bench.depth, origin)
+            self._depths_of = made_of
+        return self._seen
 
     def _show_heads(self, session, molecule: str) -> None:
         """A band's siblings are the other heads: steps, too wide for strips in velocity."""
