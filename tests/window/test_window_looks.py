@@ -22,6 +22,7 @@ from linewright.window.acts import opening
 from linewright.window.panels.ledger_columns import shown_probability
 from linewright.window.plot import RakeData, SpectrumView
 from linewright.window.plot.extremes import PixelScale
+from linewright.window.plot.flux_axis import flux_title
 from linewright.window.plot.rake_teeth import RakeTeeth
 from linewright.window.theme import LIGHT
 from linewright.window.typeset import typeset
@@ -274,3 +275,40 @@ def test_siblings_are_predicted_as_deep_as_this_spectrum_shows_lines(scene):
     few = replace(session, claims=claims[:10])
     assert seen_depths(few, catalogue, depth, "stellar") is depth
     assert seen_depths(replace(session, claims=claims), catalogue, depth, "telluric") is depth
+
+
+def test_the_spectrum_keeps_its_place_from_claim_to_claim(solved, qtbot):
+    bench, view = solved.bench, solved.spectrum_view
+    seen = set()
+    for low in (5110.0, 5180.0, 5240.0):
+        bench.view.change(span=(low, low + 1.5))
+        solved.rake.refresh()
+        for number in (5, 90, 200):
+            bench.view.select(number)
+            solved.rake.refresh()
+            assert bench.candidate().species in solved.rake.species
+            seen.add((len(solved.rake.species), view.plot.height()))
+    assert len(seen) == 1
+
+
+@pytest.mark.parametrize(("missing", "note"), [(0, "no feature"), (2, "missing")])
+def test_no_strip_is_missing_where_the_roll_call_misses_none(solved, monkeypatch, missing, note):
+    from linewright.window.panels import siblings
+
+    cut = siblings.sibling_strips
+    monkeypatch.setattr(siblings, "sibling_strips", lambda *told: [
+        replace(s, feature=None, said="") for s in cut(*told)])
+    bench, box = solved.bench, solved.space.evidence.siblings
+    rows = tuple(replace(r, missing=missing) for r in bench.session.roll_call)
+    bench.desk.document.replace(replace(bench.session, roll_call=rows), "test")
+    bench.view.select(13)
+    box.cut_now()
+    assert box.strips.strips and {s.note for s in box.strips.strips} == {note}
+
+
+@pytest.mark.parametrize(("unit", "title"), [
+    ("1E-17 erg/cm^2/s/Ang", "flux (10⁻¹⁷ erg/cm²/s/Å)"),
+    ("erg s^-1 cm^-2 Angstrom^-1", "flux (erg s⁻¹ cm⁻² Å⁻¹)"),
+    ("ADU", "flux (ADU)"), ("", "flux")])
+def test_units_are_printed_with_raised_powers(unit, title):
+    assert flux_title(0, unit) == title

@@ -25,7 +25,7 @@ class RakeKeeper(QObject):
         self.species: tuple[str, ...] = ()
         self._drawn: tuple | None = None
         self._known: tuple | None = None
-        self._counted: tuple = (None, 0.0, 0.0, ())
+        self._counted: tuple = (None, None, (), ())
         self._apart: tuple = (None, None, Elsewhere())
         self._later = QTimer(self)
         self._later.setSingleShot(True)
@@ -93,14 +93,14 @@ class RakeKeeper(QObject):
         chosen = bench.view.now.rake
         if chosen is not None:
             return chosen
-        low, high = bench.view.now.span or bench.drawn.own_range()
-        names = self._most_claimed(bench.session, low, high)
+        names = self._most_claimed(bench.session)
         if not names and not len(bench.session.features):
             names = tuple(n for n in UNSOLVED if n in bench.catalogue.species_names)
         candidate, line = bench.candidate(), bench.view.now.line
         looked = [candidate.species] if candidate is not None else []
         looked += [bench.catalogue.species_of(line)] if line is not None else []
-        return tuple(dict.fromkeys([*names, *filter(None, looked)]))
+        more = tuple(n for n in dict.fromkeys(filter(None, looked)) if n not in names)
+        return (*names[: MOST - len(more)], *more)  # as many rows: the spectrum keeps its place
 
     def _elsewhere(self, session) -> Elsewhere:
         """Looked up again only when claims changed."""
@@ -109,12 +109,18 @@ class RakeKeeper(QObject):
             self._apart = (*known, elsewhere(session))
         return self._apart[2]
 
-    def _most_claimed(self, session, low: float, high: float) -> tuple[str, ...]:
-        """Counted again only when claims or view changed, not with every selection."""
-        counted = (session.claims, low, high)
-        if self._counted[0] is not counted[0] or self._counted[1:3] != counted[1:]:
-            self._counted = (*counted, most_claimed(session, low, high, MOST))
-        return self._counted[3]
+    def _most_claimed(self, session) -> tuple[str, ...]:
+        """In view, then anywhere; counted again only when claims or view changed, not with
+        every selection."""
+        whole = self._bench.drawn.own_range()
+        ends = self._bench.view.now.span or whole
+        if self._counted[0] is not session.claims:
+            self._counted = (session.claims, None, (), most_claimed(session, *whole, MOST))
+        claims, known, names, everywhere = self._counted
+        if known != ends:
+            names = most_claimed(session, *ends, MOST)
+            self._counted = (claims, ends, names, everywhere)
+        return tuple(dict.fromkeys([*names, *everywhere]))[:MOST]
 
 
 class _Prediction:

@@ -26,8 +26,7 @@ from .siblings import SiblingsBox
 from .tall_area import TallArea
 
 SHOWN = 6
-LEAST = 0.001  # below this probability only the two best are listed
-TOLD = 0.005  # from here on a candidate that is not looked at shows its numbers too
+LEAST = 0.005  # below this probability only the two best are listed
 BUTTONS = ("claim.accept", "claim.blend", "claim.aside", "claim.note")
 
 
@@ -172,7 +171,7 @@ class EvidencePanel(QWidget):
             candidate.probability, theme.colour(candidate.species, candidate.origin), theme.edge)
         widget.number.setText(words.probability(candidate.probability))
         widget.detail.setText(say.candidate_numbers(candidate, depth))
-        widget.detail.setVisible(chosen or candidate.probability >= TOLD)
+        widget.detail.setVisible(chosen or candidate.probability >= LEAST)
         widget.why.setVisible(chosen)
         widget.odds.show_terms(terms(candidate) if chosen else (), theme)
         if chosen:

@@ -21,7 +21,8 @@ TIP = (
 COUNT_TIP = (
     "Of all expected lines of the species, the strongest missing one and the strongest outside "
     "the coverage. In the strips: 'seen' is claimed for the species, 'in Fe I' is blended into "
-    "a feature of another claim, 'missing' has no feature."
+    "a feature of another claim, 'missing' has no feature; 'no feature' where the Roll call "
+    "misses none: what stands there hides it."
 )
 
 
@@ -110,7 +111,7 @@ class SiblingsBox(QWidget):
         named = "" if candidate.origin in OWN_LINES else candidate.species  # the Roll call's are the star's
         roll = next((r for r in session.roll_call if r.species == named), None)
         self._tell(*siblings_words(roll, session.spectrum.medium))
-        self._show(candidate)
+        self._show(candidate, "missing" if roll is None or roll.missing else "no feature")
 
     def _depths(self, session, origin: str):
         """Depths as this spectrum shows lines of an origin; read again after another solve."""
@@ -136,13 +137,14 @@ class SiblingsBox(QWidget):
             label.setToolTip(COUNT_TIP)
             label.setVisible(bool(words))
 
-    def _show(self, candidate) -> None:
+    def _show(self, candidate, absent: str) -> None:
         theme = self._workbench.theme
         self.title.setText(
             f"Siblings of {candidate.species}" if self._found else
             f"No sibling of {candidate.species} falls inside this spectrum")
         absorbs = candidate.depth_predicted > 0  # emission has no predicted profile
-        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species, absorbs),
+        absent = absent if absorbs else "not seen"  # emission has no depth that would have to show
+        strips = [Strip(f"{s.wave:.2f}", s.velocity, s.flux, _note(s, candidate.species, absent),
                         s.predicted if absorbs else float("nan")) for s in self._found]
         self.strips.set_strips(strips, theme.colour(candidate.species, candidate.origin))
 
@@ -154,9 +156,9 @@ class SiblingsBox(QWidget):
             self._workbench.look_at(strip.wave)
 
 
-def _note(strip, species: str, absorbs: bool) -> str:
-    if strip.feature is None:  # emission has no predicted depth that would have to show
-        return "missing" if absorbs else "not seen"
+def _note(strip, species: str, absent: str) -> str:
+    if strip.feature is None:
+        return absent
     if strip.said == species:
         return "seen"
     return f"in {strip.said}" if strip.said else "unclaimed"

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 import numpy as np
 from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen
@@ -20,10 +22,21 @@ def flux_power(low: float, high: float) -> int:
     return power if power >= 5 or power <= -4 else 0
 
 
+def printed_unit(unit: str) -> str:
+    """A unit as files write it with raised powers and Å: '1E-17 erg/cm^2/s/Ang'."""
+    unit = re.sub(r"\b1[eE]([+-]?\d+)\b", lambda m: "10" + _raised(m[1]), unit)
+    unit = re.sub(r"\^\(?([+-]?\d+)\)?", lambda m: _raised(m[1]), unit)
+    return re.sub(r"\b(Angstroms?|Ang)\b", "Å", unit)
+
+
+def _raised(digits: str) -> str:
+    return str(int(digits)).translate(_SUPERSCRIPT)
+
+
 def flux_title(power: int, unit: str) -> str:
     """'flux', with the power of ten and the unit where there are any."""
     scale = f"10{str(power).translate(_SUPERSCRIPT)}" if power else ""
-    inside = " ".join(part for part in (scale, unit) if part)
+    inside = " ".join(part for part in (scale, printed_unit(unit)) if part)
     return f"flux ({inside})" if inside else "flux"
 
 
