@@ -18,6 +18,7 @@ SHARED = Path(__file__).resolve().parents[1].parent / "shared"
 PUBLISHED, SPECTRA = SHARED / "published", SHARED / "spectra"
 # Hinkle, Wallace, Valenti & Harmer 2000 list nothing over 6069.3-6078.5 A.
 KGIANT_COVERAGE = ((5501.3, 6069.3), (6078.5, 6499.8))
+FORBIDDEN_OXYGEN = (5577.34, 6300.30, 6363.78)  # air; NIST ASD: [O I], printed there as O I
 SUN_GAPS = ((5759.0, 5828.5), (6065.5, 6074.5))
 # Air ranges where telluric lines stand among solar ones in the Sun's spectrum.
 TELLURIC_WINDOWS = ((5880.0, 6000.0), (6275.0, 6320.0))
@@ -41,6 +42,8 @@ def kgiant_lines():
     rows = rows_of(PUBLISHED / "kgiant_ids_5500_6500.csv")
     wave = np.array([float(r[0]) for r in rows])
     species = np.array([r[1] for r in rows])
+    apart = np.min(np.abs(wave[:, None] - np.array(FORBIDDEN_OXYGEN)), axis=1)
+    species = np.where((species == "O I") & (apart < 0.02), "[O I]", species)
     keep = within(wave, KGIANT_COVERAGE)
     return wave[keep], species[keep]
 

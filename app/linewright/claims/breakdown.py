@@ -12,9 +12,13 @@ from typing import NamedTuple
 
 import numpy as np
 
+from .entries import LN10, PROBIT, SHARE_EXPONENT
+from .hidden import absence
 from .mixture import chance_to_show, own_place, position_likelihood, strength_likelihood
 from .pairs import Pairs
+from .populations import STELLAR
 from .problem import NOT_SAID
+from .strength_errors import strength_errors
 
 NEGLIGIBLE = 1e-3  # candidates less probable than this keep no breakdown
 STEP = 0.5  # dex by which the readiness to show is tried
@@ -24,8 +28,8 @@ DIGITS = 4
 class Breakdown(NamedTuple):
     """Natural logarithms of the first four factors, then what they were made of.
 
-    show: P(shows)/P(stays away); place: position likelihood over the density of unlisted
-    features; strength: likelihood of the measured strength over that of unlisted features;
+    show: P(shows)/P(stays away or hides); place: position likelihood over the density of
+    unlisted features; strength: likelihood of the measured strength over that of unlisted features;
     free: of other features that want the line, 0 where none does
     sigma: of the offset, Angstrom; of which ``own``: the feature's part, without the list's
     blend: feature less the centroid of the line's blend, Angstrom
@@ -34,6 +38,8 @@ class Breakdown(NamedTuple):
     stronger, weaker: change of log P(shows) for a line STEP dex stronger or weaker
     at_own: weight of the line's own place against the centroid, 0-1
     between: ln of what weighing the star's part of a blend against the air's did to the odds
+    first: chance to be the main line of its blend, -1 not kept; keen: rise per dex of the
+    logarithm of its odds there
     """
 
     show: float
@@ -50,6 +56,8 @@ class Breakdown(NamedTuple):
     weaker: float
     at_own: float = 1.0
     between: float = 0.0
+    first: float = -1.0
+    keen: float = SHARE_EXPONENT * LN10
 
     @property
     def log_odds(self) -> float:
@@ -87,7 +95,7 @@ def _columns(solution, chosen):
     density, p0 = state.null.at(pairs.bins)
     density = density if problem.crowd is None else density * problem.crowd
     fits = strength_likelihood(pairs, state, groups, p0) / p0[pairs.feature]
-    absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
+    absent = absence(problem, pairs, state, groups, shown)
     show, place = np.log(shown / absent), np.log(position / density[pairs.feature])
     strength = np.log(fits)
     tiny = 1e-300
@@ -100,8 +108,16 @@ def _columns(solution, chosen):
     strengths = _strengths(pairs, state, groups)
     at_own = own_place(pairs, groups)
     made = (show, place, strength, free, sigma, own, blend, *strengths, at_own, between)
+    made += (groups.first[pairs.entry], _keen(problem, pairs, state))
     back = np.searchsorted(order, chosen)
     return tuple(column[back] for column in made)
+
+
+def _keen(problem, pairs: Pairs, state):
+    """Per pair, against a line whose strength is as uncertain."""
+    star = problem.entries.population[pairs.entry] == STELLAR
+    error = strength_errors(problem, state)[pairs.entry]
+    return np.where(star, PROBIT / (np.sqrt(2.0) * error), SHARE_EXPONENT * LN10)
 
 
 def _strengths(pairs: Pairs, state, groups):

@@ -11,6 +11,7 @@ MIN_RESOLUTION = 0.04  # Angstrom; lines closer than this are one feature in any
 RESOLUTION_SHARE = 0.45  # of the FWHM: lines closer than this are one feature
 LN10 = np.log(10.0)
 SHARE_EXPONENT = 1.1  # softens predicted opacities, whose log scatter is 0.2 to 0.3 dex
+PROBIT = 1.702  # the logistic curve of this times x is within 0.01 of the normal integral
 
 
 @dataclass(frozen=True, eq=False)
@@ -55,11 +56,13 @@ class Groups:
     """What stands within one resolution element of each entry (same population).
 
     share: of the softened predicted strength, 0-1
+    first: chance that the entry is the strongest, by the errors of the strengths
     lead: share of the strength if the entry is the main line, at least as strong as any other
     total: log10 of the summed strength; centroid: strength-weighted wavelength, Angstrom
     """
 
     share: np.ndarray
+    first: np.ndarray
     lead: np.ndarray
     total: np.ndarray
     centroid: np.ndarray
@@ -79,13 +82,45 @@ def group(wave, strength, population, half_width) -> Groups:
     return Neighbourhood(wave, population, half_width).groups(np.asarray(strength, dtype=float))
 
 
+class Couples:
+    """Every line of a crowd with every other of its resolution element: which is the main one?
+
+    Of two lines d apart, with an error s of the difference, the first is stronger with the
+    chance Phi(d/s) (elementary, for normal errors). Phi is taken as a logistic curve, whose
+    heavier tails suit log gf gone wrong; of several lines each has a chance in proportion to
+    its odds against the strongest.
+    """
+
+    def __init__(self, rows, crowd, first, last):
+        """rows: (n,) entries; crowd: (c,) rows with neighbours rows[first:last]."""
+        size = last - first
+        self.start = np.cumsum(size) - size
+        self.owner = np.repeat(np.arange(len(crowd)), size)
+        self.near = rows[np.arange(len(self.owner)) - (self.start - first)[self.owner]]
+        self.lines = rows[crowd]
+        self.own = np.nonzero(self.near == self.lines[self.owner])[0]
+
+    def first(self, strength, error):
+        """Chance (c,) of the lines to be the strongest, from strengths and errors (n,), dex."""
+        if len(self.lines) == 0:
+            return np.zeros(0)
+        near, variance = strength[self.near], error[self.near] ** 2
+        behind = np.maximum.reduceat(near, self.start)[self.owner] - near
+        strongest = np.nonzero(behind == 0.0)[0]
+        beside = np.zeros(len(self.lines))
+        beside[self.owner[strongest]] = variance[strongest]
+        odds = np.exp(-PROBIT * behind / np.sqrt(variance + beside[self.owner]))
+        return odds[self.own] / np.add.reduceat(odds, self.start)
+
+
 class Neighbourhood:
     """Which lines stand within one resolution element of each other: found once, used at
-    every change of the strengths. Arguments as of ``group``."""
+    every change of the strengths. Arguments as of ``group``; judged: populations whose
+    strengths have errors of their own, others have the usual one of SHARE_EXPONENT."""
 
-    def __init__(self, wave, population, half_width):
+    def __init__(self, wave, population, half_width, judged=()):
         self.wave = np.asarray(wave, dtype=float)
-        self.blocks = []
+        self.blocks, self.couples = [], []
         for kind in np.unique(population):
             rows = np.nonzero(population == kind)[0]
             w, half = self.wave[rows], half_width[rows]
@@ -93,21 +128,26 @@ class Neighbourhood:
             last = np.searchsorted(w, w + half, side="right")
             crowd = np.nonzero(last - first > 1)[0]
             self.blocks.append((rows, crowd, first[crowd], last[crowd], half[crowd]))
+            if kind in judged:
+                self.couples.append(Couples(rows, crowd, first[crowd], last[crowd]))
 
-    def groups(self, strength) -> Groups:
-        """Groups at strengths (n,), log10."""
-        ones = np.ones(len(self.wave))
-        out = Groups(ones, ones.copy(), strength.copy(), self.wave.copy())
+    def groups(self, strength, error=None) -> Groups:
+        """Groups at strengths (n,), log10; error: (n,) theirs, dex."""
+        ones = [np.ones(len(self.wave)) for _ in range(3)]
+        out = Groups(*ones, strength.copy(), self.wave.copy())
         for block in self.blocks:
             if len(block[1]):
                 self._fill(out, strength, block)
+        for couples in self.couples if error is not None else ():
+            out.first[couples.lines] = couples.first(strength, error)
         return out
 
-    def regrouped(self, before: Groups, strength, moved):
+    def regrouped(self, before: Groups, strength, moved, error):
         """(groups, changed): ``before`` with the groups of entries that moved made anew, and the
         entries whose group that changed.
 
-        strength: (n,) log10; moved: (n,) bool, where it is no longer what ``before`` was made of
+        strength, error: (n,) log10; moved: (n,) bool, where the strength is no longer what
+        ``before`` was made of
         """
         out = Groups(*(np.array(column) for column in vars(before).values()))
         changed = np.array(moved)
@@ -117,6 +157,9 @@ class Neighbourhood:
             if np.any(near):
                 self._fill(out, strength, (rows, crowd[near], first[near], last[near], half[near]))
                 changed[rows[crowd[near]]] = True
+        for couples in self.couples:
+            which = changed[couples.lines]
+            out.first[couples.lines[which]] = couples.first(strength, error)[which]
         return out, changed
 
     def _fill(self, out: Groups, strength, block) -> None:
@@ -130,6 +173,7 @@ class Neighbourhood:
         moment = _window(linear * (w - w[0]), first, last)
         chosen, place = rows[crowd], w[crowd]
         out.share[chosen] = np.clip(soft[crowd] / np.maximum(soft_sum, soft[crowd]), 0.0, 1.0)
+        out.first[chosen] = out.share[chosen]
         out.total[chosen] = top + np.log10(lin_sum)
         raised = _largest(linear, first, last)
         out.lead[chosen] = raised / (np.maximum(lin_sum - linear[crowd], 0.0) + raised)

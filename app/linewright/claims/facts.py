@@ -16,7 +16,6 @@ import numpy as np
 
 from ..spectra.medium import C_KM_S, to_medium
 from .breakdown import STEP, Breakdown
-from .entries import SHARE_EXPONENT
 from .mixture import STRENGTH_RANGE, STRENGTH_TAIL, tailed
 from .model import Claim, RollRow, standing_of
 
@@ -26,7 +25,7 @@ FARTHEST = 4.0  # sigma: displacements beyond are no measurement error
 SHRUNK = (0.7, 0.5, 0.35, 0.25, 0.1)  # shares of the position error that are tried
 MOST_DEX, DEX_STEP = 2.0, 0.1
 ONE_LINE = 0.25  # dex: scatter of one line's predicted strength (oscillator strengths)
-TOGETHER = 1.001  # shares of lines of one blend sum to at most this
+TOGETHER = 1.001  # chances of lines of one blend sum to at most this
 UNLIKELY = 12.0  # cost (-ln of a chance) beyond which a fact is not worth telling
 SIBLING = 2.3  # cost of a missing line being seen after all: one chance in ten
 WANTED = -0.2  # ln: a line is wanted elsewhere where its freedom is below this
@@ -70,6 +69,11 @@ class _Line:
     apart: float
     velocity: float
     weights: Breakdown
+
+    @property
+    def first(self) -> float:
+        """Chance to be the main line of its blend."""
+        return self.weights.first if self.weights.first >= 0 else self.share
 
 
 class Trial:
@@ -238,9 +242,10 @@ def strength_odds(trial: Trial, dex: float):
         owner = line if trial.mine[i] else _partner(trial, line)
         if owner is None:
             continue
-        soft = 1.0 + owner.share * (10.0 ** (SHARE_EXPONENT * dex) - 1.0)
+        raised = np.exp(owner.weights.keen * dex)
+        soft = 1.0 + owner.first * (raised - 1.0)
         rise = np.log10(max(1.0 + owner.share * (10.0**dex - 1.0), 1e-6))
-        gain = (10.0 ** (SHARE_EXPONENT * dex) if trial.mine[i] else 1.0) / max(soft, 1e-6)
+        gain = (raised if trial.mine[i] else 1.0) / max(soft, 1e-6)
         out[i] *= gain * np.exp(_readiness(w, rise)) * _strength_ratio(w, rise)
     return out
 
@@ -249,7 +254,7 @@ def _partner(trial: Trial, line: _Line) -> _Line | None:
     """The species' line in the blend of another species' line."""
     for other, mine in zip(trial.lines, trial.mine):
         near = abs(other.apart - line.apart) <= 2.0 * abs(line.apart - line.weights.blend) + 0.04
-        if mine and near and other.share + line.share <= TOGETHER and line.share < 1.0:
+        if mine and near and other.first + line.first <= TOGETHER and line.first < 1.0:
             return other
     return None
 

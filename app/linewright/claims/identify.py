@@ -31,6 +31,7 @@ from .profiles import shape_warning, shaped
 from .readings import TemperatureReading, nominal, read_temperatures
 from .roll_call import call_roll
 from .siblings import with_siblings
+from .strength_errors import UNKNOWN_ERROR
 from .temperature import electron_pressure, prior_log, profile
 from .upper_limits import with_limits
 
@@ -125,6 +126,7 @@ class Setting:
             UNGRADED,
             self.said,
             strength_err=self._nominal(entries),
+            loggf_err=np.nan_to_num(self.catalogue.loggf_err[entries.row], nan=UNKNOWN_ERROR),
         )
 
     def _nominal(self, entries):

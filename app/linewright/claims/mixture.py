@@ -15,9 +15,12 @@ from .association import Marginals, associate
 from .curves import DetectionCurve, StrengthRelation, learn_detection, learn_relation
 from .curves import first_relation, threshold_form
 from .entries import Groups
+from .hidden import absence, share_above
 from .pairs import TAIL_FACTOR, TAIL_FLOOR, Pairs
 from .problem import NOT_SAID, Problem
+from .populations import STELLAR
 from .species_offsets import OwnOffsets, learn_offsets
+from .strength_errors import FIRST_SPREAD, learn_spread, strength_errors
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
@@ -33,7 +36,11 @@ SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom
 
 @dataclass(frozen=True, eq=False)
 class State:
-    """What has been learned so far."""
+    """What has been learned so far.
+
+    spread: error of the star's predicted strengths beyond that of log gf, dex; above: chance
+    that something unlisted is stronger than its line of a strength, at curves.CENTRES
+    """
 
     detection: tuple[DetectionCurve, ...]
     relation: tuple[StrengthRelation, ...]
@@ -42,6 +49,8 @@ class State:
     offset_errors: np.ndarray
     error_scale: np.ndarray
     scatter: np.ndarray
+    spread: float = FIRST_SPREAD
+    above: np.ndarray | None = None
     own: OwnOffsets | None = None
 
 
@@ -153,7 +162,7 @@ def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> Step:
     """Marginals in the present state; message: of the association before, to go on from."""
     e, f = problem.entries, problem.features
     strength = offset_strengths(problem, state)
-    groups = pairs.near.groups(strength)
+    groups = pairs.near.groups(strength, strength_errors(problem, state))
     odds = pair_odds(problem, pairs, state, groups)
     marginals = associate(pairs.feature, pairs.entry, odds.value, (len(f), len(e)), message)
     total = np.bincount(pairs.feature, odds.likelihood, len(f)) + odds.null
@@ -169,7 +178,7 @@ def pair_odds(problem: Problem, pairs: Pairs, state: State, groups: Groups) -> O
     density = density if problem.crowd is None else density * problem.crowd
     shown = shows[pairs.entry]
     likelihood = shown * position * strength_likelihood(pairs, state, groups, p0)
-    absent = 1.0 - shown * pairs.covered[pairs.entry] if problem.complete else 1.0
+    absent = absence(problem, pairs, state, groups, shown)
     density, likelihood = _as_said(problem, pairs, density, likelihood)
     value = likelihood / (absent * (density * p0)[pairs.feature])
     return Odds(value, likelihood, density * p0, shows, sigma, offset)
@@ -201,7 +210,7 @@ def chance_to_show(pairs: Pairs, groups: Groups, state: State):
     out = np.zeros(len(groups.share))
     for block in pairs.blocks:
         out[block.entries] = state.detection[block.population](groups.total[block.entries])
-    return out * groups.share
+    return out * groups.first
 
 
 def position_likelihood(pairs: Pairs, state: State, groups: Groups):
@@ -259,7 +268,7 @@ def strength_likelihood(pairs: Pairs, state: State, groups: Groups, p0):
 def _learn(problem: Problem, pairs: Pairs, step: Step, state: State, turn: int) -> State:
     p, total = step.marginals.pair, step.groups.total
     seen = np.bincount(pairs.entry, p, len(problem.entries))
-    exposure = np.maximum(step.groups.share * pairs.covered, seen)
+    exposure = np.maximum(step.groups.first * pairs.covered, seen)
     detection, relation = list(state.detection), list(state.relation)
     for block in pairs.blocks:
         k, here, mine = block.population, block.entries[block.covered], block.graded
@@ -268,6 +277,12 @@ def _learn(problem: Problem, pairs: Pairs, step: Step, state: State, turn: int) 
         relation[k] = learn_relation(
             total[pairs.entry[mine]], pairs.m[mine], p[mine], relation[k]
         )
+    spread, above = state.spread, state.above
+    for block in pairs.blocks:
+        if block.population == STELLAR:
+            curves, here = (detection[STELLAR], relation[STELLAR]), block.entries[block.covered]
+            spread = learn_spread(problem, pairs, step, (block, *curves))
+            above = share_above(total[here], seen[here])
     scale = [_error_scale(step, pairs.crowded == k, state.error_scale[k]) for k in (0, 1)]
     state = replace(
         state,
@@ -278,6 +293,8 @@ def _learn(problem: Problem, pairs: Pairs, step: Step, state: State, turn: int) 
         ),
         error_scale=np.array(scale),
         scatter=species_scatter(problem, pairs, step),
+        spread=spread,
+        above=above,
     )
     return learn_offsets(problem, pairs, step, state) if turn >= 1 else state
 

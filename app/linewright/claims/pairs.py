@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from .entries import Neighbourhood
+from .populations import STELLAR
 from .problem import Problem, find_pairs, inside
 from .unlisted import StrengthBins
 
@@ -49,7 +50,7 @@ class Pairs:
         reach = 3.5 * np.maximum(TAIL_FACTOR * 1.5 * self.base, TAIL_FLOOR)
         self.feature, self.entry = find_pairs(f, e, np.minimum(reach, 12 * self.base + 0.25))
         self.covered = inside(e.wave, problem.coverage).astype(float)
-        self.near = Neighbourhood(e.wave, e.population, problem.group_half_width)
+        self.near = Neighbourhood(e.wave, e.population, problem.group_half_width, (STELLAR,))
         self.bins = StrengthBins(f.sign, f.strength)
         self.m = f.strength[self.feature]
         self.m_variance = np.nan_to_num(f.strength_err[self.feature]) ** 2

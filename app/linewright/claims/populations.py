@@ -46,6 +46,7 @@ CLOUD_SLOPE = 0.3  # of log gf: columns of clouds differ by more than oscillator
 DIFFUSE = -2.0  # strength of diffuse bands, which are shallow and have no log gf
 SHINING = 1.5  # dex above the weakest detectable line that these are taken to be
 BROAD_SPECIES = ("H I", "He I", "He II")
+SAME_LINE = 0.003  # Angstrom
 DEEPEST = 3.2  # dex below the weakest detectable line: beyond it a line cannot matter
 
 
@@ -80,7 +81,9 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     if population in (STELLAR, HYDROGEN):
         broad = np.isin(catalogue.species, broad_species(catalogue))
         wanted = broad == (population == HYDROGEN)
-        return np.where((origin == ORIGINS.index("stellar")) & wanted, absorption, nothing)
+        absorption = np.where((origin == ORIGINS.index("stellar")) & wanted, absorption, nothing)
+        absorption[listed_twice(catalogue)] = np.nan
+        return absorption
     if population == TELLURIC:
         return np.where(
             origin == ORIGINS.index("telluric"), np.log10(catalogue.depth_ref) + 2.0, nothing
@@ -96,6 +99,22 @@ def strengths(catalogue: LineCatalogue, population: int, absorption):
     here = origin == ORIGINS.index("interstellar")
     strength = CLOUD_SLOPE * catalogue.loggf - 0.5
     return np.where(here, np.where(np.isfinite(strength), strength, DIFFUSE), nothing)
+
+
+def listed_twice(catalogue):
+    """Stellar rows (k,) of an ion whose line stands beside them as a forbidden one, '[O I]'
+    over 'O I': one line from two sources, which would be its own rival."""
+    found = [np.zeros(0, dtype=int)]
+    for code, name in enumerate(catalogue.species_names):
+        if not name.startswith("[") or name.strip("[]") not in catalogue.species_names:
+            continue
+        ion = catalogue.species_names.index(name.strip("[]"))
+        stellar = catalogue.origin == ORIGINS.index("stellar")
+        places = catalogue.wave[stellar & (catalogue.species == code)]
+        rows = np.nonzero(stellar & (catalogue.species == ion))[0] if len(places) else []
+        for wave in places:
+            found.append(rows[np.abs(catalogue.wave[rows] - wave) < SAME_LINE])
+    return np.concatenate(found)
 
 
 def emitted_rows(catalogue):

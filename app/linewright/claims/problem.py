@@ -49,6 +49,7 @@ class Problem:
     said: per feature the species name index a person gave, NOT_SAID, or SET_ASIDE
     crowd: per feature the local density of unlisted features over the mean one; None: even
     strength_err: per entry the error of its predicted strength beyond the usual scatter, dex
+    loggf_err: per entry the error of log gf, dex
     """
 
     features: FeatureData
@@ -62,6 +63,7 @@ class Problem:
     said: np.ndarray | None = None
     crowd: np.ndarray | None = None
     strength_err: np.ndarray | None = None
+    loggf_err: np.ndarray | None = None
 
     def length(self) -> float:
         return float(np.sum(self.coverage[:, 1] - self.coverage[:, 0]))

@@ -92,7 +92,7 @@ def _evidence(problem: Problem, pairs: Pairs, step, state, which) -> Evidence:
     block, seen = which
     e, here = problem.entries, block.entries
     share, seen = step.groups.share[here], seen[here]
-    exposure = share * pairs.covered[here] if problem.complete else seen
+    exposure = step.groups.first[here] * pairs.covered[here] if problem.complete else seen
     mine = block.graded[step.marginals.pair[block.graded] > 0.05]
     entry, relation = pairs.entry[mine], state.relation[block.population]
     measured = (

@@ -21,6 +21,7 @@ from .mixture import species_scatter
 from .offsets import SCALE
 from .problem import NOT_SAID, Problem
 from .species_offsets import OwnOffsets, block_offsets
+from .strength_errors import strength_errors
 
 TURNS = 10
 STILL = 1e-4  # of probability: below it, summed over a species' lines, no offset is learned anew
@@ -188,7 +189,10 @@ class _Local:
         felt = wider[self.pairs.species]
         if np.any(moved):
             self.strength[moved] = strength[moved]
-            self.groups, changed = self.pairs.near.regrouped(self.groups, self.strength, moved)
+            error = strength_errors(self.problem, self.state)
+            self.groups, changed = self.pairs.near.regrouped(
+                self.groups, self.strength, moved, error
+            )
             felt = felt | changed[self.pairs.entry]
         return felt
 
