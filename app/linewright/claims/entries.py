@@ -146,7 +146,7 @@ class Neighbourhood:
         """(groups, changed): ``before`` with the groups of entries that moved made anew, and the
         entries whose group that changed.
 
-        strength, error: (n,) log10; moved: (n,) bool, where the strength is no longer what
+        strength, error: (n,) log10, dex; moved: (n,) bool, where one is no longer what
         ``before`` was made of
         """
         out = Groups(*(np.array(column) for column in vars(before).values()))

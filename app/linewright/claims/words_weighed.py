@@ -116,6 +116,7 @@ class _Local:
         self.settled, self.problem, self.pairs = settled, problem, s.pairs
         self.state, self.groups = s.state, s.groups
         self.strength, self.scatter = np.array(s.strength), np.array(s.state.scatter)
+        self.error = strength_errors(problem, s.state)
         self.odds, self.probability = np.array(s.odds), np.array(s.probability)
         self.sigma, self.offset_sigma = np.array(s.sigma), np.array(s.offset_sigma)
         self.message, self.unlisted = np.array(s.message), np.array(s.unlisted)
@@ -183,15 +184,16 @@ class _Local:
 
     def _felt(self, concerned):
         strength = offset_strengths(self.problem, self.state)
+        error = strength_errors(self.problem, self.state)
         moved = np.abs(strength - self.strength) > LEAST_DEX
+        moved |= np.abs(error - self.error) > LEAST_DEX
         wider = self.state.scatter != self.scatter
         self.scatter = self.state.scatter
         felt = wider[self.pairs.species]
         if np.any(moved):
-            self.strength[moved] = strength[moved]
-            error = strength_errors(self.problem, self.state)
+            self.strength[moved], self.error[moved] = strength[moved], error[moved]
             self.groups, changed = self.pairs.near.regrouped(
-                self.groups, self.strength, moved, error
+                self.groups, self.strength, moved, self.error
             )
             felt = felt | changed[self.pairs.entry]
         return felt
