@@ -97,8 +97,8 @@ class Ground:
 
 
 def _changed(before: Solution, after: Solution):
-    """Indices of features of which a probability changed, ascending."""
+    """Indices of features of which a probability changed, a species' lines together; ascending."""
     out = np.abs(after.unlisted - before.unlisted) > CHANGED
-    pairs = np.abs(after.probability - before.probability) > CHANGED
-    out[after.feature[pairs]] = True
+    moved = np.abs(after.probability - before.probability)
+    out |= np.bincount(after.feature, moved, len(out)) > CHANGED
     return np.nonzero(out)[0]

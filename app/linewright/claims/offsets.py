@@ -6,6 +6,8 @@ lines that should show and do not push the offset down.
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 
 from .curves import BIN, CENTRES, bin_of
@@ -14,6 +16,7 @@ SCALE, FREEDOM = 0.4, 3.0  # dex and degrees of freedom of the prior
 LEAST_ERROR = 0.05  # dex: the strengths of one species share errors of their own
 LINES_FOR_ZERO = 20.0  # seen lines of a population that fix its zero of strength
 GRID = np.arange(-15, 16) * BIN
+FINE = np.arange(-75, 76) * (BIN / 5)  # fine enough for LEAST_ERROR
 
 
 def prior_log(scale: float = SCALE):
@@ -58,15 +61,21 @@ def strength_log_likelihood(residual, slope, scatter, weight, species, count):
 
 def best_offsets(log_likelihood, scale: float = SCALE):
     """Posterior mean and sigma per species, dex, from (count, len(GRID)) likelihoods."""
-    log_posterior = log_likelihood + prior_log(scale)
+    log_posterior = (log_likelihood + prior_log(scale)) @ _refined()
     posterior = np.exp(log_posterior - log_posterior.max(axis=1, keepdims=True))
     posterior /= posterior.sum(axis=1, keepdims=True)
-    mean = posterior @ GRID
-    sigma = np.sqrt(np.maximum(posterior @ GRID**2 - mean**2, 0.0))
-    peak, width = _parabola(log_posterior)
-    sharp = width < BIN  # the grid is too coarse for moments; the parabola is not
-    mean, sigma = np.where(sharp, peak, mean), np.where(sharp, width, sigma)
+    mean = posterior @ FINE
+    sigma = np.sqrt(np.maximum(posterior @ FINE**2 - mean**2, 0.0))
     return mean, np.maximum(sigma, LEAST_ERROR)
+
+
+@lru_cache(maxsize=1)
+def _refined():
+    """(len(GRID), len(FINE)): cubic spline through values at GRID, taken at FINE; offsets read
+    off the grid alone would jump as the best point changes."""
+    from scipy.interpolate import CubicSpline
+
+    return CubicSpline(GRID, np.eye(len(GRID)), bc_type="natural")(FINE).T
 
 
 def shared_offset(offset, lines) -> float:
@@ -86,13 +95,3 @@ def shared_offset(offset, lines) -> float:
         near = weight / (1.0 + ((offset - centre) / SCALE) ** 2 / FREEDOM)
         centre = float(np.sum(near * offset) / np.sum(near))
     return centre
-
-
-def _parabola(log_posterior):
-    """(place, sigma) of the parabola through the best grid point and its neighbours."""
-    best = np.clip(np.argmax(log_posterior, axis=1), 1, len(GRID) - 2)
-    rows = np.arange(len(best))
-    left, mid, right = (log_posterior[rows, best + k] for k in (-1, 0, 1))
-    curvature = np.maximum(2 * mid - left - right, 1e-9)
-    shift = np.clip(0.5 * (right - left) / curvature, -1.0, 1.0)
-    return GRID[best] + BIN * shift, BIN / np.sqrt(curvature)
