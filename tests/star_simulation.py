@@ -49,9 +49,15 @@ class Star:
 
 def simulate(star: Star, catalogue):
     """(Spectrum, catalogue for the engine) of one star."""
+    return observe(star, catalogue)[:2]
+
+
+def observe(star: Star, catalogue):
+    """(Spectrum, catalogue for the engine, truth) of one star; truth: vacuum wavelength at
+    rest, depth alone before broadening, species, (n,) each, and [X/H] by element."""
     rng = np.random.default_rng([star.seed, int(star.temperature)])
     lines = catalogue.between(star.low - 5, star.high + 5)
-    opacity, wave = _lines(star, lines, rng)
+    opacity, wave, rows, solar = _lines(star, lines, rng)
     log = np.arange(np.log(star.low), np.log(star.high), GRID / C_KM_S)
     depth = _absorption(log, wave, opacity)
     depth = depth * np.minimum(contrast(np.exp(log), star.temperature), 1.0 / DEEPEST)
@@ -64,12 +70,14 @@ def simulate(star: Star, catalogue):
         seen * (1 + star.velocity / C_KM_S), flux, np.full(len(seen), 1 / star.snr), mask
     )
     kept = catalogue.take(rng.random(len(catalogue)) > MISSING)
-    return Spectrum((segment,), medium="vacuum", frame="rest", name="simulated"), kept
+    spectrum = Spectrum((segment,), medium="vacuum", frame="rest", name="simulated")
+    names = np.array(lines.species_names)[lines.species[rows]]
+    return spectrum, kept, (wave, DEEPEST * opacity / (1.0 + opacity), names, solar)
 
 
 def _lines(star: Star, lines, rng):
-    """Opacity over the continuum's at line centre, and true vacuum wavelength, of the lines
-    that matter."""
+    """Opacity over the continuum's at line centre, true vacuum wavelength and row of the lines
+    that matter, and the elements' [X/H]."""
     solar = {symbol: float(rng.normal(0, 0.1)) for symbol in ELEMENTS}
     pe = electron_pressure(star.temperature) + star.pressure
     strength = absorption_strength(lines, star.temperature, pe, star.metallicity, solar)
@@ -80,7 +88,7 @@ def _lines(star: Star, lines, rng):
     hydrogen = lines.species_names.index("H I") if "H I" in lines.species_names else -1
     atomic = (lines.origin == ORIGINS.index("stellar")) & (lines.species != hydrogen)
     keep = atomic & np.isfinite(strength) & (strength > -3.0)
-    return 2.0 * 10.0 ** strength[keep], wave[keep]
+    return 2.0 * 10.0 ** strength[keep], wave[keep], np.nonzero(keep)[0], solar
 
 
 def _absorption(log, wave, opacity):

@@ -116,11 +116,11 @@ def test_vote_finds_the_velocity_and_refuses_chance():
     weight = line_weights(-np.arange(400.0), 60)
     chosen = lines[rng.choice(60, 25, replace=False)]
     wave = chosen * (1 + 123.4 / C_KM_S) + rng.normal(0, 0.01, 25)
-    found = vote(wave, np.full(25, 0.01), lines, weight, (-500, 500))
+    found = vote((wave, np.full(25, 0.01)), (lines, weight), (-500, 500))
     assert found.declared
     assert found.velocity == pytest.approx(123.4, abs=0.4)
     noise = vote(
-        np.sort(rng.uniform(5000, 6000, 300)), np.full(300, 0.01), lines, weight, (-500, 500)
+        (np.sort(rng.uniform(5000, 6000, 300)), np.full(300, 0.01)), (lines, weight), (-500, 500)
     )
     assert not noise.declared
 

@@ -12,6 +12,7 @@ from linewright.claims.upper_limits import carried
 from linewright.job.options import SolveOptions
 from linewright.job.solve import solve, solve_features
 from linewright.job.view_roll import verdict_words
+from linewright.measure.features_from import features_from_columns
 from linewright.publish.ledger import rollcall_table
 from linewright.resources import samples_dir
 from linewright.spectra.medium import from_medium
@@ -94,10 +95,44 @@ def test_the_table_has_the_limits_after_the_contracts_columns(session):
 def test_orphans_say_which_lines_were_refused(session):
     assert session.orphans
     words = ("sigma", "in place", "fits", "no predicted line")
+    places = ("in the wing of", "from the edge", "where the air absorbs", "molecular band")
     for orphan in session.orphans:
         parts = orphan.why.split("; ")
-        assert 1 <= len(parts) <= 3
-        assert all(any(w in part for w in words) for part in parts)
+        lines = [part for part in parts if not any(w in part for w in places)]
+        assert 1 <= len(lines) <= 3
+        assert all(any(w in part for w in words) for part in lines)
+
+
+def test_orphans_that_may_be_a_part_of_something_come_last(session):
+    """A shallow feature put beside the deepest one, and one at the edge; what is said is checked
+    against the features themselves."""
+    f = session.features
+    deep = int(np.argmax(f.depth))
+    low, high = session.spectrum.coverage[0]
+    wave = np.concatenate([f.wave, [f.wave[deep] + 1.1 * f.fwhm[deep], low + 0.2]])
+    depth = np.concatenate([f.depth, [0.15 * f.depth[deep], 0.3]])
+    width = np.concatenate([f.fwhm, [0.1, 0.1]])
+    order = np.argsort(wave)
+    table = features_from_columns(
+        wave[order], wave_err=0.003, depth=depth[order], depth_err=0.003, fwhm=width[order]
+    )
+    found = solve_features(
+        table, options=SolveOptions(coverage=((low, high),), velocity=session.velocity.velocity),
+        medium="vacuum",
+    )  # fmt: skip
+    t, row = found.features, {int(n): i for i, n in enumerate(found.features.number)}
+    doubted = ["in the wing of" in o.why or "from the edge" in o.why for o in found.orphans]
+    assert doubted == sorted(doubted) and sum(doubted) >= 2 and not all(doubted)
+    for orphan in found.orphans:
+        i = row[orphan.feature]
+        near = np.abs(t.wave - t.wave[i]) < t.fwhm + t.fwhm[i]
+        deeper = bool(np.any(near & (t.depth >= 3 * t.depth[i])))
+        assert deeper == ("in the wing of" in orphan.why)
+        edge = float(np.min(np.abs(np.array([low, high]) - t.wave[i])))
+        assert (edge < 5 * t.fwhm[i]) == (f"{edge:.2f} Å from the edge" in orphan.why)
+    weight = np.fmin(t.significance, t.depth / t.depth_err)
+    plain = [weight[row[o.feature]] for o, d in zip(found.orphans, doubted) if not d]
+    assert plain == sorted(plain, reverse=True)
 
 
 def test_odd_excitations_stand_outside_the_fence(session):

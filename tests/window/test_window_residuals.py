@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import subprocess
 import sys
 from dataclasses import replace
@@ -10,7 +11,7 @@ import numpy as np
 import pytest
 from window_builders import VELOCITY
 
-from linewright.job.view_residuals import residuals, trend
+from linewright.job.view_residuals import residuals, steps, steps_words, trend
 from linewright.spectra.medium import C_KM_S
 
 
@@ -40,6 +41,24 @@ def test_a_stretched_scale_is_found_as_a_slope():
     assert np.isnan(trend(x[:3], offset[:3])).all()
 
 
+def test_an_order_off_the_rest_is_found_as_a_step():
+    """0.5 km/s put into 5200-5300 of 4800-5800 Angstrom."""
+    rng = np.random.default_rng(6)
+    x = np.sort(rng.uniform(4800.0, 5800.0, 400))
+    offset = rng.normal(0, 0.15, len(x)) - 0.5 * ((x > 5200) & (x < 5300))
+    edges, middle, error = steps(x, offset)
+    assert len(edges) == len(middle) + 1 and edges[0] == x[0] and edges[-1] == x[-1]
+    worst = int(np.argmin(middle))
+    assert 5150 < edges[worst] < 5300 and middle[worst] == pytest.approx(-0.5, abs=0.12)
+    # error of a median: 1.2533 sigma / sqrt n (normal distribution)
+    assert np.median(error) == pytest.approx(1.2533 * 0.15 / np.sqrt(25), rel=0.3)
+    said = steps_words(edges, middle, error)
+    low, high, size = re.search(r"(\d+)–(\d+) Å .* by (−[\d.]+) ±", said).groups()
+    assert 5150 < int(low) < int(high) < 5350
+    assert float(size.replace("−", "-")) == pytest.approx(-0.5, abs=0.12)
+    assert steps_words(*steps(x[:20], offset[:20])) == ""
+
+
 def test_points_and_features_select_one_another(solved, qtbot):
     bench = solved.bench
     bench.run("view.residuals")
@@ -47,6 +66,8 @@ def test_points_and_features_select_one_another(solved, qtbot):
     qtbot.waitExposed(window)
     found = window.found
     assert len(found) > 50 and f"{len(found):,} firm and likely" in window.words.text()
+    assert "stands off most" in window.words.text()
+    assert len(window.steps.getData()[0]) >= 4
     bench.view.select(int(found.number[7]))
     x, y = window.marks[0].getData()
     assert x[0] == pytest.approx(window.columns()[0][7]) and y[0] == pytest.approx(found.offset[7])

@@ -16,12 +16,14 @@ from .velocity import (
     ORDINARY_SHIFT,
     emission_vote,
     refine,
+    scattered_vote,
     stellar_vote,
     telluric_vote,
     typical_width,
 )
 from .voting import DECLARE_MARGIN, Vote
 
+GIANT = -1.0  # dex of log Pe by which giants lie below dwarfs of their temperature, about
 BROAD_ERROR = 2.0  # km/s: pressure shifts and asymmetric wings of hydrogen and helium
 
 
@@ -72,13 +74,21 @@ def _star(setting, progress) -> tuple[Vote, float]:
     best, best_t = None, tried[0]
     for i, t in enumerate(tried):
         progress.report("voting on the velocity", i / len(tried))
-        result = stellar_vote(
-            setting.features, setting.catalogue, setting.absorption(t), o.velocity_range,
-            0 if o.complete else setting.counts[0],
-        )
+        result = _vote_at(setting, t)
         if best is None or result.score.max() > best.score.max() + 3.0:
             best, best_t = result, t
     return best, float(best_t)
+
+
+def _vote_at(setting, temperature: float) -> Vote:
+    """The star's vote at a temperature in K."""
+    f, o, absorption = setting.features, setting.options, setting.absorption(temperature)
+    if o.complete:
+        return stellar_vote(f, setting.catalogue, absorption, o.velocity_range)
+    strengths = [absorption]
+    if o.log_pe is None:
+        strengths.append(setting.absorption(temperature, GIANT))
+    return scattered_vote(f, setting.catalogue, strengths, o.velocity_range, setting.counts[0])
 
 
 def _main(setting, star: Vote, nebula: Vote):

@@ -14,9 +14,9 @@ import numpy as np
 
 from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
+from .coincidence import poisson_binomial_tail
 from .features_in import position_error
 from .populations import EMITTED, INTERSTELLAR, NEBULAR, OUTFLOW, Component, emitted_rows
-from .roll_call import poisson_binomial_tail
 
 MOST = 3  # components of a kind
 CHANCE = 0.003  # expected chance coincidences that two lines or more must beat

@@ -17,7 +17,8 @@ from .between import shared_between
 from .build import build_claims
 from .components import Found, find_components, refined, settled
 from .artefacts import spikes_aside, with_spikes
-from .consistency import drift_warning, flagged
+from .consistency import flagged
+from .drift import drift_warning
 from .entries import group_half_width
 from .features_in import feature_data
 from .mixture import Solution, solve_mixture
@@ -100,10 +101,12 @@ class Setting:
             count[0] = max(count[0], int(LIKELY_DENSITY * length))
         self.counts = tuple(count)
 
-    def absorption(self, temperature: float):
-        """Absorption strengths of the catalogue rows at a temperature in K."""
+    def absorption(self, temperature: float, pressure: float = 0.0):
+        """Absorption strengths of the catalogue rows at a temperature in K; pressure: dex off
+        the usual or given log Pe."""
         o = self.options
         pe = electron_pressure(temperature) if o.log_pe is None else o.log_pe
+        pe = pe + pressure
         return absorption_strength(
             self.catalogue, temperature, pe, o.metallicity, dict(o.abundances)
         )

@@ -1,9 +1,7 @@
 """Roll call: which species are there, by chance-coincidence statistics.
 
-Hartoog, Cowley & Cowley 1973, ApJ 182, 847: count a species' strongest predicted lines
-that coincide with features no other species explains; compare with the count expected
-when the list is shifted. The tail is exact (Poisson-binomial), corrected for the number
-of species called.
+A species' strongest predicted lines are held against features no other species explains
+(coincidence.py); the tail is corrected for the number of species called (Bonferroni).
 """
 
 from __future__ import annotations
@@ -12,12 +10,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .coincidence import Coincidences
 from .model import RollRow
 
-LISTED = 60  # strongest predicted lines of a species that are called
-SHIFTS = 40  # displaced lists per side that measure the chance rate
 EXPECTED = 0.5  # a line is expected where the learned curve gives this, or where it is seen
-PRESENT, POSSIBLE = 0.002, 0.05
+PRESENT, POSSIBLE = 0.01, 0.05  # of the chance to call any one species of the list by mistake
 
 
 def call_roll(solution, catalogue, components, heard=None) -> tuple[RollRow, ...]:
@@ -35,7 +32,7 @@ def call_roll(solution, catalogue, components, heard=None) -> tuple[RollRow, ...
     shows = _shows(solution)
     groups = _on_trial(names, shows, seen)
     kept = {} if heard is None else _kept(groups, catalogue, heard)
-    coincidence = _Coincidences(solution, names)
+    coincidence = Coincidences(solution)
     table = list(kept.values())
     for name, rows in groups.items():
         if name in kept:
@@ -114,71 +111,3 @@ def _verdict(expected: int, number: int, p_chance: float, hoped: float) -> str:
     if number >= 1 or p_chance < POSSIBLE:
         return "possible"
     return "absent" if expected >= 3 or hoped >= 3.0 else "not testable"
-
-
-class _Coincidences:
-    """Hits of a species' lines on features that other species leave open."""
-
-    def __init__(self, solution, names):
-        self.s, self.names = solution, names
-        f = solution.problem.features
-        self.order = np.argsort(f.wave, kind="stable")
-        self.wave, self.sign = f.wave[self.order], f.sign[self.order]
-        self.sigma = np.hypot(f.error, 0.03 * np.nan_to_num(f.fwhm))[self.order]
-        total = np.bincount(solution.feature, solution.probability, len(f))
-        self.total = total
-
-    def tail(self, rows, shows) -> float:
-        """P(at least so many hits by chance) for the species of these entries."""
-        e = self.s.problem.entries
-        ranked = rows[np.argsort(-shows[rows], kind="stable")][:LISTED]
-        ranked = ranked[shows[ranked] > 0.01]
-        if len(ranked) == 0:
-            return 1.0
-        openness = self._open(rows)
-        hits = self._hits(e.wave[ranked], e.sign[ranked], e.error[ranked], openness)
-        rates = self._rates(ranked, openness)
-        observed = float(np.sum(hits))
-        return poisson_binomial_tail(np.clip(rates, 1e-4, 1.0), observed)
-
-    def _open(self, rows):
-        """P(no other species made the feature), in wavelength order."""
-        chosen = np.zeros(len(self.names), dtype=bool)
-        chosen[rows] = True
-        mine = chosen[self.s.entry]
-        own = np.bincount(self.s.feature[mine], self.s.probability[mine], len(self.total))
-        return np.clip(1.0 - (self.total - own), 0.0, 1.0)[self.order]
-
-    def _hits(self, wave, sign, error, openness):
-        index = np.searchsorted(self.wave, wave)
-        best = np.zeros(wave.shape)
-        for i in (np.maximum(index - 1, 0), np.minimum(index, len(self.wave) - 1)):
-            spread = 2.5 * np.sqrt(self.sigma[i] ** 2 + error**2)
-            near = (np.abs(self.wave[i] - wave) <= spread) & (self.sign[i] == sign)
-            best = np.maximum(best, near * openness[i])
-        return best
-
-    def _rates(self, ranked, openness):
-        """Chance rate per line, from copies displaced by 0.3 to a few Angstrom."""
-        e = self.s.problem.entries
-        width = np.maximum(0.3, 8 * np.median(self.sigma))
-        shifts = width * (1.0 + 0.37 * np.arange(SHIFTS))
-        shifts = np.concatenate((-shifts, shifts))[:, None]
-        hits = self._hits(e.wave[ranked] + shifts, e.sign[ranked], e.error[ranked], openness)
-        rate = np.sum(hits, axis=0)
-        pooled = np.mean(rate) / (2 * SHIFTS)
-        return 0.5 * rate / (2 * SHIFTS) + 0.5 * pooled
-
-
-def poisson_binomial_tail(rates, observed: float) -> float:
-    """P(sum of independent Bernoulli(rates) >= observed), exact by convolution."""
-    need = int(np.ceil(observed - 1e-9))
-    if need <= 0:
-        return 1.0
-    distribution = np.zeros(len(rates) + 1)
-    distribution[0] = 1.0
-    for p in rates:
-        distribution[1:] = distribution[1:] * (1 - p) + distribution[:-1] * p
-        distribution[0] *= 1 - p
-    return float(np.clip(np.sum(distribution[need:]), 0.0, 1.0))
-

@@ -6,6 +6,7 @@ import numpy as np
 
 from ..lines.catalogue import ORIGINS
 from ..spectra.medium import C_KM_S
+from .entries import group
 from .features_in import position_error
 from .problem import inside
 from .voting import OUTLIER_SHARE, Vote, line_weights, summarise, vote
@@ -28,6 +29,15 @@ ORDINARY_SHIFT = 33.0  # km/s: the largest barycentric correction, with the Eart
 MOSTLY_STELLAR = 0.8  # share of the features in telluric bands that are the star's
 CLEAR = 0.9  # share of its blend from which a line stands alone
 UNUSUAL = 40.0  # log-likelihood an extraordinary shift must make up for
+# A table that is no selection by strength: which of a thousand lines it holds is told by
+# their strengths only, so its few features vote with all that is known. Tuned on the K giant's
+# list with seeds that are not those scored.
+SCATTERED_OUTLIERS = 0.05  # such features are listed, or measured one by one
+DOUBTED = 0.2  # the same in telluric bands
+SCATTERED_TAIL, SCATTERED_ERROR = 0.1, 0.003  # share of tail; list error beside it, Angstrom
+LINES_BEHIND = 2.0  # times the features that must at least stand behind it
+NO_WEIGHT = 0.01  # of the largest: such lines do not matter
+MERGING, MERGED = 0.08, 0.5  # Angstrom; power of a line's share of what lies so near
 FRAME_SHIFT = {"topocentric": 1.5, "geocentric": 1.5, "heliocentric": 33.0,
                "barycentric": 33.0}
 
@@ -55,23 +65,57 @@ def strongest(features, sign: int, count: int = VOTERS, where=None):
     return np.sort(rows[np.argsort(-weight, kind="stable")[:count]])
 
 
-def vote_sigma(features, rows):
-    """Errors for voting: centroid, a share of the width, and a list error of 5 mA."""
+def vote_sigma(features, rows, list_error: float = 0.005):
+    """Errors for voting: centroid, a share of the width, and a list error (Angstrom)."""
     width = np.nan_to_num(features.fwhm[rows])
-    return np.sqrt(position_error(features)[rows] ** 2 + (0.03 * width) ** 2 + 0.005**2)
+    return np.sqrt(position_error(features)[rows] ** 2 + (0.03 * width) ** 2 + list_error**2)
 
 
-def stellar_vote(features, catalogue, strength, velocity_range, behind: int = 0) -> Vote:
+def stellar_vote(features, catalogue, strength, velocity_range) -> Vote:
     """Vote of the strongest absorption features outside telluric bands.
 
-    strength: (n,) absorption strength per catalogue row (NaN elsewhere); behind: lines that
-    stand behind the table, where the features are no selection by strength.
+    strength: (n,) absorption strength per catalogue row (NaN elsewhere).
     """
     outside = ~inside(features.wave, TELLURIC_RANGES)
     rows = strongest(features, 1, where=outside)
     if len(rows) < 3:
         rows = strongest(features, 1)
-    return _vote(features, rows, catalogue, strength, velocity_range, behind=behind)
+    return _vote(features, rows, catalogue, strength, velocity_range)
+
+
+def scattered_vote(features, catalogue, strengths, velocity_range, behind: int) -> Vote:
+    """Vote of the features of a table that is no selection by strength.
+
+    strengths: of ``stellar_vote``, one or more, equally likely (a dwarf's pressure, a
+    giant's); behind: lines that at least stand behind the table.
+    """
+    rows = strongest(features, 1)
+    lines = _lines(features, rows, catalogue, strengths[0], velocity_range)
+    if len(rows) == 0 or len(lines) == 0:
+        return _no_vote(velocity_range)
+    wave, power = catalogue.wave[lines], [strength[lines] for strength in strengths]
+    weight = np.mean([_scattered_weights(wave, s, LINES_BEHIND * behind) for s in power], axis=0)
+    keep = weight > NO_WEIGHT * np.max(weight)
+    place = features.wave[rows]
+    return vote(
+        (place, vote_sigma(features, rows, SCATTERED_ERROR)),
+        (wave[keep], weight[keep]),
+        velocity_range,
+        np.where(inside(place, TELLURIC_RANGES), DOUBTED, SCATTERED_OUTLIERS),
+        SCATTERED_TAIL,
+    )
+
+
+def _scattered_weights(wave, strength, expected: float):
+    """Prior that a line is in the table: it shows, and leads what lies near it."""
+    out = np.zeros(len(wave))
+    weight = line_weights(np.where(np.isfinite(strength), strength, -np.inf), expected)
+    some = np.nonzero((weight > NO_WEIGHT * np.max(weight)) & np.isfinite(strength))[0]
+    if len(some):
+        kind, half = np.zeros(len(some), dtype=int), np.full(len(some), MERGING)
+        near = group(wave[some], strength[some], kind, half)
+        out[some] = weight[some] * near.share**MERGED
+    return out
 
 
 def emission_vote(features, catalogue, velocity_range) -> Vote:
@@ -102,24 +146,33 @@ def _near_observer(result: Vote, limit: float | None) -> Vote:
     return summarise(result.grid, result.score - penalty, result.width)
 
 
-def _vote(features, rows, catalogue, strength, velocity_range, **how) -> Vote:
-    usable = np.nonzero(np.isfinite(strength))[0]
-    if len(rows) == 0 or len(usable) == 0:
-        nothing = np.array([velocity_range[0], velocity_range[1]], dtype=float)
-        return Vote(float("nan"), float("nan"), 0.0, (), nothing, np.zeros(2))
-    low = features.wave[rows].min() / (1 + velocity_range[1] / C_KM_S) - 1.0
-    high = features.wave[rows].max() / (1 + velocity_range[0] / C_KM_S) + 1.0
-    usable = usable[(catalogue.wave[usable] >= low) & (catalogue.wave[usable] <= high)]
-    weight = line_weights(strength[usable], max(1.5 * len(rows), how.get("behind", 0)))
+def _vote(features, rows, catalogue, strength, velocity_range, outliers=OUTLIER_SHARE) -> Vote:
+    lines = _lines(features, rows, catalogue, strength, velocity_range)
+    if len(rows) == 0 or len(lines) == 0:
+        return _no_vote(velocity_range)
+    weight = line_weights(strength[lines], 1.5 * len(rows))
     keep = weight > 0.01
     return vote(
-        features.wave[rows],
-        vote_sigma(features, rows),
-        catalogue.wave[usable][keep],
-        weight[keep],
+        (features.wave[rows], vote_sigma(features, rows)),
+        (catalogue.wave[lines][keep], weight[keep]),
         velocity_range,
-        how.get("outliers", OUTLIER_SHARE),
+        outliers,
     )
+
+
+def _no_vote(velocity_range) -> Vote:
+    nothing = np.array([velocity_range[0], velocity_range[1]], dtype=float)
+    return Vote(float("nan"), float("nan"), 0.0, (), nothing, np.zeros(2))
+
+
+def _lines(features, rows, catalogue, strength, velocity_range):
+    """Catalogue rows of known strength that the features of ``rows`` could be."""
+    usable = np.nonzero(np.isfinite(strength))[0]
+    if len(rows) == 0:
+        return usable[:0]
+    low = features.wave[rows].min() / (1 + velocity_range[1] / C_KM_S) - 1.0
+    high = features.wave[rows].max() / (1 + velocity_range[0] / C_KM_S) + 1.0
+    return usable[(catalogue.wave[usable] >= low) & (catalogue.wave[usable] <= high)]
 
 
 def refine(solution, component: int) -> tuple[float, float]:

@@ -11,6 +11,7 @@ from ..spectra.medium import C_KM_S
 DECLARE_MARGIN = 8.0  # log-likelihood over the best elsewhere; measured, see the study
 CELLS = 50_000  # features x velocities scored at once: what a processor's cache holds
 OUTLIER_SHARE = 0.25  # prior share of features the list does not explain
+TAIL_WIDTH, REACH = 3.0, 4.0  # sigma: of the position errors' tail; cut of a kernel
 
 
 @dataclass(frozen=True, eq=False)
@@ -48,54 +49,67 @@ def line_weights(strength, expected: float):
     return 0.9 / (1.0 + (rank / max(expected, 1.0)) ** 2.0)
 
 
-def vote(wave, sigma, line_wave, weight, velocity_range, outliers=OUTLIER_SHARE) -> Vote:
+def vote(features, lines, velocity_range, outliers=OUTLIER_SHARE, tail=0.0) -> Vote:
     """Score every velocity in ``velocity_range`` (km/s).
 
-    wave, sigma: feature vacuum wavelengths and errors, Angstrom, (f,);
-    line_wave: catalogue vacuum wavelengths, ascending, (n,); weight: (n,) prior of showing;
-    outliers: prior share of features the list does not explain.
+    features: (vacuum wavelengths, errors), Angstrom, (f,) each; lines: (vacuum wavelengths,
+    ascending, Angstrom; prior of showing), (n,) each; outliers: prior share of features the
+    list does not explain, one for all or (f,); tail: share of positions with errors
+    ``TAIL_WIDTH`` times as large.
     """
+    wave, sigma = features
     low, high = velocity_range
     width = np.maximum(C_KM_S * np.asarray(sigma) / np.asarray(wave), 0.05)
     step = float(np.clip(np.percentile(width, 20) / 2.0, 0.05, 20.0))
     grid = np.arange(low, high + step, step)
     score = np.zeros(len(grid))
+    share = np.broadcast_to(np.asarray(outliers, dtype=float), width.shape)
     rows = max(1, CELLS // len(grid))
     for start in range(0, len(width), rows):
         some = slice(start, start + rows)
-        features = (np.asarray(wave, dtype=float)[some], width[some])
-        score += _summed(features, line_wave, weight, (grid, outliers))
+        voters = (np.asarray(wave, dtype=float)[some], width[some], share[some])
+        score += _summed(voters, *lines, (grid, tail))
     return summarise(grid, score, float(np.median(width)))
 
 
 def _summed(features, line_wave, weight, setting):
-    """Summed log-likelihood of some features (wave, width) over the grid.
+    """Summed log-likelihood of some features (wave, width, outliers) over the grid.
 
-    setting: (grid, prior share of outliers). A feature's density of line explanations counts
+    setting: (grid, share of the tail). A feature's density of line explanations counts
     relative to chance; a feature no line can reach says nothing.
     """
-    (x, width), (grid, outliers) = features, setting
+    (x, width, outliers), (grid, tail) = features, setting
     first = np.searchsorted(line_wave, x / (1 + grid[-1] / C_KM_S))
     last = np.searchsorted(line_wave, x / (1 + grid[0] / C_KM_S))
     heaped = np.concatenate(([0.0], np.cumsum(weight)))
     mean = (heaped[last] - heaped[first]) / (grid[-1] - grid[0])
     used = mean > 0
-    count = np.where(used, last - first, 0)
-    owner, line = _runs(first, count)
-    amount = weight[line] / (mean * width * np.sqrt(2 * np.pi) + (mean <= 0))[owner]
+    owner, line = _runs(first, np.where(used, last - first, 0))
     velocity = C_KM_S * (x[owner] / line_wave[line] - 1.0)
+    amount = weight[line] / (mean + (mean <= 0))[owner]
+    density = _kernels((owner, velocity, (1 - tail) * amount), width, grid)
+    if tail > 0:
+        density += _kernels((owner, velocity, tail * amount), TAIL_WIDTH * width, grid)
+    hit = np.nonzero(density)[0]
+    odds = ((1 - outliers) / outliers)[hit // len(grid)]
+    gain = np.bincount(hit % len(grid), np.log1p(odds * density[hit]), len(grid))
+    return gain + np.sum(np.log(outliers[used]))
+
+
+def _kernels(pairs, width, grid):
+    """Gaussians of unit area times an amount about each pair's velocity, summed per feature
+    over the grid, flat; pairs: (owner, velocity, amount)."""
+    owner, velocity, amount = pairs
     step = grid[1] - grid[0]
-    reach = np.ceil(4 * width / step).astype(int)[owner]
+    height = amount / (width * np.sqrt(2 * np.pi))[owner]
+    reach = np.ceil(REACH * width / step).astype(int)[owner]
     centre = np.rint((velocity - grid[0]) / step).astype(int)
     pair, index = _runs(centre - reach, 2 * reach + 1)
     inside = (index >= 0) & (index < len(grid))
     pair, index = pair[inside], index[inside]
     z = (grid[0] + index * step - velocity[pair]) / width[owner[pair]]
-    kernel = amount[pair] * np.exp(-0.5 * z * z)
-    density = np.bincount(owner[pair] * len(grid) + index, kernel, len(x) * len(grid))
-    hit = np.nonzero(density)[0]
-    gain = np.log1p((1 - outliers) / outliers * density[hit])
-    return np.bincount(hit % len(grid), gain, len(grid)) + np.sum(used) * np.log(outliers)
+    kernel = height[pair] * np.exp(-0.5 * z * z)
+    return np.bincount(owner[pair] * len(grid) + index, kernel, len(width) * len(grid))
 
 
 def _runs(first, count):

@@ -91,7 +91,7 @@ def _telluric_vote(features, catalogue) -> Vote:
     near = listed.between(wave.min() / reach, wave.max() * reach)
     weight = line_weights(np.log10(near.depth_ref), 1.5 * len(rows))
     keep = weight > 0.01
-    return vote(wave, vote_sigma(features, rows), near.wave[keep], weight[keep], SPAN)
+    return vote((wave, vote_sigma(features, rows)), (near.wave[keep], weight[keep]), SPAN)
 
 
 def _sky_vote(features, catalogue) -> Vote:
@@ -100,7 +100,7 @@ def _sky_vote(features, catalogue) -> Vote:
     if len(rows) < 5 or len(lines) < 5 or typical_width(features) > BROADEST:
         return Vote(float("nan"), float("nan"), 0.0, (), np.zeros(2), np.zeros(2))
     weight = np.full(len(lines), 0.5)
-    return vote(features.wave[rows], vote_sigma(features, rows), lines, weight, SPAN)
+    return vote((features.wave[rows], vote_sigma(features, rows)), (lines, weight), SPAN)
 
 
 def observer_lines(features, catalogue) -> ZeroPoint | None:

@@ -13,6 +13,8 @@ CONFIDENT = ("firm", "likely")
 ORIGINS = ("stellar", "nebular")
 CLIP = 4.0  # scatters
 MAD_TO_SIGMA = 1.4826  # of a normal distribution
+MEDIAN_TO_MEAN = 1.2533  # error of a median over that of a mean, normal distribution
+STRETCH, MOST_STRETCHES = 12, 16  # rows; number
 
 
 @dataclass(frozen=True, eq=False)
@@ -81,3 +83,35 @@ def trend(x: np.ndarray, offset: np.ndarray) -> tuple[float, float, float]:
     rest = offset[good] - start - slope * x[good]
     error = np.sqrt(np.sum(rest**2) / (len(rest) - 2) / np.sum(about**2))
     return start, slope, float(error)
+
+
+def steps(x: np.ndarray, offset: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """(edges, median, error) of the offsets in stretches of equal number of rows, (k + 1,) and
+    (k,): where a part of the wavelength scale stands off the rest.
+
+    A stretch has STRETCH rows or more, of which there are at most MOST_STRETCHES; the error is
+    that of a median of normal offsets with the scatter of the stretch. Nothing below two.
+    """
+    good = np.isfinite(x) & np.isfinite(offset)
+    order = np.argsort(x[good], kind="stable")
+    x, offset = x[good][order], offset[good][order]
+    count = min(len(x) // STRETCH, MOST_STRETCHES)
+    if count < 2:
+        return np.zeros(0), np.zeros(0), np.zeros(0)
+    parts, places = np.array_split(offset, count), np.array_split(x, count)
+    middle = np.array([np.median(p) for p in parts])
+    scatter = [MAD_TO_SIGMA * np.median(np.abs(p - m)) for p, m in zip(parts, middle)]
+    error = MEDIAN_TO_MEAN * np.array(scatter) / np.sqrt([len(p) for p in parts])
+    between = [0.5 * (a[-1] + b[0]) for a, b in zip(places, places[1:])]
+    return np.array([x[0], *between, x[-1]]), middle, error
+
+
+def steps_words(edges, middle, error) -> str:
+    """The stretch that stands out most from the median of all, in words; empty without any."""
+    if not len(middle):
+        return ""
+    away = middle - np.median(middle)
+    k = int(np.argmax(np.abs(away) / np.maximum(error, 1e-9)))
+    size = f"{away[k]:+.3f}".replace("-", "−")
+    return (f"the stretch {edges[k]:.0f}–{edges[k + 1]:.0f} Å stands off most, by "
+            f"{size} ± {error[k]:.3f} km/s")

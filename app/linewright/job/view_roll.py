@@ -25,7 +25,8 @@ def _verdict(row: RollRow) -> str:
     chance = "below 1e-10" if row.p_chance < 1e-10 else f"{row.p_chance:.1g}"
     return (
         f"{row.species} is {row.verdict}: {row.seen} of {row.expected} expected lines seen; "
-        f"so many by chance, after trying every species: probability {chance}"
+        "features that nothing else explains would by chance fit its lines so well with "
+        f"probability {chance}, every species tried counted"
     )
 
 

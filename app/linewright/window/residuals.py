@@ -1,6 +1,7 @@
 """The velocity residuals: claims against wavelength and against lower-level energy.
 
-A wavelength scale gone wrong shows as a slope on the left, wrong names as points far from
+A wavelength scale gone wrong shows as a slope on the left, or as a step of the medians drawn
+there stretch by stretch; wrong names as points far from
 the band, a chromospheric or layered gas as a slope on the right. The plotting library loads
 when this is first opened.
 """
@@ -11,7 +12,7 @@ import numpy as np
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
-from ..job.view_residuals import residuals, trend
+from ..job.view_residuals import residuals, steps, steps_words, trend
 from ..spectra.medium import to_medium
 
 SYMBOLS = {"diamond": "d", "triangle": "t1", "square": "s", "circle": "o", "cross": "+",
@@ -58,6 +59,8 @@ class ResidualsWindow(QWidget):
             self.points.append(points)
             self.marks.append(mark)
             self.lines.append(line)
+        self.steps = pyqtgraph.PlotCurveItem()
+        self.plots[0].addItem(self.steps)
         return self.area
 
     def open(self) -> None:
@@ -89,6 +92,7 @@ class ResidualsWindow(QWidget):
             self.words.setText(EMPTY)
             for item in (*self.points, *self.marks):
                 item.setData([], [])
+            self.steps.setData([], [])
             return
         self._draw(found, theme)
         self._mark()
@@ -115,10 +119,18 @@ class ResidualsWindow(QWidget):
             line.setData(ends, start + slope * ends)
             said.append(_signed(slope, error, *unit))
         self.words.setText(
-            f"{len(found):,} firm and likely claims: median {found.middle:+.3f} km/s, scatter "
-            f"{found.scatter:.3f} km/s; slopes {said[0]} and {said[1]}.".replace("-", "−"))
+            f"{len(found):,} firm and likely claims: median {_minus(found.middle)} km/s, scatter "
+            f"{found.scatter:.3f} km/s; slopes {said[0]} and {said[1]}{self._stepped(theme)}.")
         reach = max(8.0 * found.scatter, 0.1)
         self.plots[0].setYRange(found.middle - reach, found.middle + reach)
+
+    def _stepped(self, theme) -> str:
+        """Draws the medians of the stretches; what stands off most, in words."""
+        edges, middle, error = steps(self.columns()[0], self.found.offset)
+        self.steps.setPen(theme.ink, width=2)
+        self.steps.setData(np.repeat(edges, 2)[1:-1], np.repeat(middle, 2))
+        words = steps_words(edges, middle, error)
+        return f"; {words}" if words else ""
 
     def _mark(self) -> None:
         """A ring about the selected feature."""
@@ -143,4 +155,8 @@ class ResidualsWindow(QWidget):
 def _signed(slope: float, error: float, unit: str, size: float) -> str:
     if not np.isfinite(slope):
         return "unknown"
-    return f"{slope * size:+.3f} ± {error * size:.3f} km/s per {unit}"
+    return f"{_minus(slope * size)} ± {error * size:.3f} km/s per {unit}"
+
+
+def _minus(value: float) -> str:
+    return f"{value:+.3f}".replace("-", "−")
