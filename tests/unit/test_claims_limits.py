@@ -84,6 +84,30 @@ def test_the_verdict_in_words_names_limit_and_caveat(session):
     assert "would show above" in " ".join(verdict_words(unseen, session))
 
 
+def test_each_verdict_is_said_in_its_own_words(session):
+    iron = next(r for r in session.roll_call if r.species == "Fe I")
+    said = {
+        verdict: verdict_words(replace(iron, verdict=verdict, expected=n, seen=k, p_chance=p), session)[0]
+        for verdict, n, k, p in (
+            ("present", 20, 18, 1e-12), ("possible", 4, 1, 0.8), ("absent", 5, 0, 1.0),
+            ("not testable", 0, 0, 1.0),
+        )
+    }  # fmt: skip
+    assert "18 of 20" in said["present"] and "below 1e-10" in said["present"]
+    assert "not more or better placed than chance" in said["possible"]
+    assert said["absent"].endswith("none of 5 expected lines is seen")
+    assert "probability" not in said["not testable"] + said["absent"]
+
+
+def test_emission_is_not_compared_with_solar_abundances(session):
+    iron = next(r for r in session.roll_call if r.species == "Fe I")
+    glowing = replace(
+        session, claims=tuple(replace(c, origin="nebular") for c in session.claims)
+    )
+    assert "solar abundances" in " ".join(verdict_words(iron, session))
+    assert "solar" not in " ".join(verdict_words(iron, glowing))
+
+
 def test_the_table_has_the_limits_after_the_contracts_columns(session):
     table = rollcall_table(session)
     assert table.colnames[:8] == [

@@ -16,6 +16,7 @@ from ..spectra.medium import C_KM_S
 
 SURE, NEAR = 0.9, 8.0  # P of the pairs that count; sigma
 CLIP, ROUNDS = 3.0, 4  # scatters about the line; times it is fitted
+LEAST_SCATTER = 0.3  # of the stated errors, which hold what the lists may be off
 FAR = 6.0  # scatters from the median: of no account in a jump
 DRIFT_SIGMA, DRIFT_LEAST = 5.0, 0.25  # significance, and km/s over the coverage
 MIN_FOR_DRIFT = 40
@@ -80,7 +81,7 @@ def drift(found: Offsets) -> tuple[float, float]:
         power = np.sum(weight * (x - middle) ** 2)
         slope = float(np.sum(weight * (x - middle) * velocity) / power)
         residual = np.abs(velocity - level - slope * (x - middle)) / sigma
-        scatter = max(1.4826 * float(np.median(residual)), 1.0)
+        scatter = max(1.4826 * float(np.median(residual)), LEAST_SCATTER)
         good = residual < CLIP * scatter
     return slope, float(scatter / np.sqrt(power))
 
@@ -90,7 +91,7 @@ def jump(found: Offsets) -> Jump:
     if len(found) < MIN_FOR_DRIFT:
         return NO_JUMP
     away = np.abs(found.velocity - np.median(found.velocity)) / found.sigma
-    scatter = max(1.4826 * float(np.median(away)), 1.0)
+    scatter = max(1.4826 * float(np.median(away)), LEAST_SCATTER)
     weight = (away < FAR * scatter) / found.sigma**2
     heap = np.concatenate(([0.0], np.cumsum(weight)))
     moment = np.concatenate(([0.0], np.cumsum(weight * found.velocity)))

@@ -13,6 +13,7 @@ from .problem import inside
 
 EXPECTED, SEEN = 0.3, 0.2  # P(shows) of a line that should be seen; P(seen) of one that is not
 OWNED = 0.5  # least share of its blend
+HIDES = 0.9  # of its FWHM: so far a feature has a tenth of its depth, and hides a line
 
 
 def with_siblings(rows, solution, catalogue):
@@ -27,7 +28,7 @@ def with_siblings(rows, solution, catalogue):
 def _under_features(entries, features):
     """True where a line stands inside a feature of its sign, which may hide it; (n,)."""
     out = np.zeros(len(entries), dtype=bool)
-    width = np.fmax(0.6 * np.nan_to_num(features.fwhm), 0.03)
+    width = np.fmax(HIDES * np.nan_to_num(features.fwhm), 0.03)
     for sign in (1, -1):
         mine = features.sign == sign
         low = np.searchsorted(entries.wave, features.wave[mine] - width[mine])
