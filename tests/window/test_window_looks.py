@@ -17,12 +17,13 @@ from linewright.job.view_seen_depths import seen_depths
 from linewright.lines.bands import load_bands
 from linewright.session import edits
 from linewright.session.document import Document
-from linewright.spectra.medium import C_KM_S, air_to_vacuum
+from linewright.spectra.medium import C_KM_S, air_to_vacuum, to_medium
 from linewright.window.acts import opening
 from linewright.window.panels.ledger_columns import shown_probability
 from linewright.window.plot import RakeData, SpectrumView
 from linewright.window.plot.extremes import PixelScale
 from linewright.window.plot.flux_axis import flux_title
+from linewright.window.plot.off_scale import places_above
 from linewright.window.plot.rake_teeth import RakeTeeth
 from linewright.window.theme import LIGHT
 from linewright.window.typeset import typeset
@@ -312,3 +313,29 @@ def test_no_strip_is_missing_where_the_roll_call_misses_none(solved, monkeypatch
     ("ADU", "flux (ADU)"), ("", "flux")])
 def test_units_are_printed_with_raised_powers(unit, title):
     assert flux_title(0, unit) == title
+
+
+def test_a_peak_that_leaves_the_scale_has_a_wedge(qtbot):
+    plain = build.spectrum_of(build.catalogue_of())
+    whole = plain.segments[0]
+    at = whole.wave[[5000, 15000]]
+    flux = 1.0 + 50.0 * np.exp(-0.5 * ((whole.wave[:, None] - at) / 0.1) ** 2).sum(axis=1)
+    view = SpectrumView()
+    qtbot.addWidget(view)
+    view.resize(900, 500)
+    view.set_spectrum(replace(plain, segments=(replace(whole, flux=flux),)))
+    view.show()
+
+    def wedges() -> int:
+        picture = scenes.pixels(view.plot)
+        row = picture[int(view.plot.labels.height) + 4]
+        return int(np.all(row == scenes.rgb(LIGHT.caution), axis=1).sum())
+
+    view.set_flux_range(0.0, 60.0)
+    assert wedges() == 0
+    view.set_flux_range(0.0, 20.0)
+    assert 2 * 5 <= wedges() <= 2 * 9  # two, each some pixels wide
+    scale, reduced = view.plot.scale(), view.plot.reduced()
+    places = places_above(reduced, 20.0, 10.0)
+    own = to_medium(at, plain.medium)
+    np.testing.assert_allclose(places, scale.pixels(own), atol=1.5)

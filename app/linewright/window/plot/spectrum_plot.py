@@ -12,6 +12,7 @@ from .flux_axis import draw_flux_axis
 from .geometry import LEFT, RIGHT, Frame, to_device
 from .handled_lane import HandledLane
 from .label_layer import LabelLayer
+from .off_scale import draw_off_scale
 from .primitives import draw_lines, draw_polyline
 from .spectrum_item import Reduced, SpectrumItem
 
@@ -95,6 +96,7 @@ class SpectrumPlot(HandledLane):
             self.item.paint_uncertainty(painter, frame, QColor(theme.faint))
         self._draw_continuum(painter, frame)
         self.item.paint(painter, frame, reduced, theme.ink)
+        draw_off_scale(painter, frame, reduced, theme.caution)
         if self.profile is not None:
             painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
             painter.setPen(QPen(QColor(theme.profile), 2 * frame.ratio))
