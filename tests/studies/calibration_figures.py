@@ -81,7 +81,7 @@ def resolution(plt, data) -> None:
         axis.set_title({"agreement": "agreement when confident"}.get(key, key), fontsize=9)
         axis.set_ylim(0.4, 1.02)
         axis.grid(axis="y", color="0.9")
-    axes[1].legend(fontsize=7.5, loc="lower left")
+    axes[0].legend(fontsize=7.5, loc="lower left")
     save(figure, "resolution.svg")
 
 
