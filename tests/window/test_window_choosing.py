@@ -229,7 +229,7 @@ def test_flags_are_shown_and_explained(solved, qtbot):
     model = solved.ledger.model
     titles = [c.title for c in model.columns]
     index = model.index(4, titles.index("flags"))
-    assert index.data() == "wing broad"
+    assert index.data() == "broad wing", "what stands out first"
     assert "wing of a stronger line" in index.data(Qt.ItemDataRole.ToolTipRole)
 
 
