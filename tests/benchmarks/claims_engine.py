@@ -20,6 +20,7 @@ sys.path[:0] = [str(HERE), str(HERE.parent.parent / "app")]
 
 from rounds import Act, measure, steady  # noqa: E402
 
+from linewright.claims.heard import Ground  # noqa: E402
 from linewright.claims.identify import Setting, conclude, identify, weigh, weigh_again  # noqa: E402
 from linewright.claims.mixture import solve_mixture  # noqa: E402
 from linewright.claims.options import ClaimOptions  # noqa: E402
@@ -36,7 +37,7 @@ FEATURES, INVENTED, SORTED = 8000, 400, 1_000_000
 LOW, HIGH, TEMPERATURE, VELOCITY = 3800.0, 9200.0, 5200.0, 50.0
 APART, ERROR = 0.06, 0.01  # Angstrom
 ROUNDS = 7
-NAMED = 4000  # the feature a person names
+NAMED, SAID = 4000, "Ti I"  # the feature a person names
 
 
 def star(catalogue, rng):
@@ -70,7 +71,8 @@ def acts(catalogue) -> list[Act]:
     weighing = weigh(setting, Progress())
     strength = setting.absorption(TEMPERATURE)
     said = np.full(len(features), NOT_SAID)
-    said[NAMED] = setting.catalogue.species_names.index("Ti I")
+    said[NAMED] = setting.catalogue.species_names.index(SAID)
+    ground = Ground(weighing)
     numbers = np.random.default_rng(1).random(SORTED)
     where = weighing.found.components, weighing.temperature
 
@@ -84,8 +86,10 @@ def acts(catalogue) -> list[Act]:
         "vote": lambda: stellar_vote(
             features, setting.catalogue, strength, options.velocity_range
         ),
-        "again": lambda: conclude(weigh_again(weighing, said)),
-        "marginals again": lambda: weigh_again(weighing, said),
+        "again": lambda: ground.hearing(said),
+        "marginals again": lambda: ground._settled.heeding(said),
+        "whole again": lambda: conclude(weigh_again(weighing, said)),
+        "ground": lambda: Ground(weighing),
         "identify": lambda: identify(features, coverage, catalogue, options),
     }
     return [Act(name, run) for name, run in tried.items()]
@@ -96,6 +100,8 @@ WORDS = {
     "vote": "one velocity vote, +-500 km/s",
     "marginals again": "marginals after a person's claim",
     "again": "the same with claims, Roll call and Orphans",
+    "whole again": "the same with every pair weighed and every claim made anew",
+    "ground": "what is kept for the first claim, once for a spectrum",
     "identify": "all of identify: votes, temperatures, claims",
 }
 
