@@ -6,6 +6,7 @@ They are no lines that the mixture weighs: what they are was decided where they 
 from __future__ import annotations
 
 from dataclasses import fields
+from functools import lru_cache
 
 import numpy as np
 
@@ -32,4 +33,9 @@ def with_rows(features: FeatureTable, claims, rows: FeatureTable, new):
 
 def flagged_as(features: FeatureTable, words):
     """True where a feature carries one of the flags; (f,)."""
-    return np.array([not set(words).isdisjoint(f.split()) for f in features.flags], dtype=bool)
+    return _carrying(features.flags, tuple(words)).copy()
+
+
+@lru_cache(maxsize=8)  # tables are frozen, and asked again after every act of a person
+def _carrying(flags: tuple[str, ...], words: tuple[str, ...]):
+    return np.array([not set(words).isdisjoint(f.split()) for f in flags], dtype=bool)

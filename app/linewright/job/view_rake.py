@@ -6,7 +6,8 @@ or of a star's own emission stand elsewhere; claims say where.
 
 from __future__ import annotations
 
-from collections import Counter
+import math
+from collections import Counter, defaultdict
 from dataclasses import dataclass
 
 import numpy as np
@@ -71,13 +72,14 @@ def most_claimed(session: Session, low: float, high: float, count: int = 5) -> t
 
 def elsewhere(session: Session) -> Elsewhere:
     """Of claims from tentative up; a species' own velocity is the one most of them have."""
-    told: dict[str, dict[float, list[float]]] = {}
-    origins: dict[str, Counter] = {}
+    told: dict[str, dict[float, list[float]]] = defaultdict(lambda: defaultdict(list))
+    origins: dict[str, Counter] = defaultdict(Counter)
     for claim in session.claims:
-        line = claim.line
-        if claim.standing in CLAIMED and line is not None and np.isfinite(line.velocity):
-            told.setdefault(claim.species, {}).setdefault(line.velocity, []).append(line.wave)
-            origins.setdefault(claim.species, Counter())[claim.origin] += 1
+        if claim.standing in CLAIMED:
+            line = claim.line
+            if line is not None and math.isfinite(line.velocity):
+                told[claim.species][line.velocity].append(line.wave)
+                origins[claim.species][claim.origin] += 1
     first = {name: counts.most_common(1)[0][0] for name, counts in sorted(origins.items())}
     bands = tuple(named_bands(session.features, session.claims)) if len(session.features) else ()
     return Elsewhere(*_moving_apart(told, session.velocity.velocity), bands,

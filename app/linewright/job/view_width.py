@@ -7,6 +7,7 @@ from functools import lru_cache
 
 import numpy as np
 
+from ..claims.added_rows import flagged_as
 from ..measure.intrinsic import intrinsic_width, lorentzian_width
 from ..measure.options import Measurement
 from ..session.model import Session
@@ -19,9 +20,9 @@ NODES = 17  # of a segment's width: straight lines between are right to 0.1 per 
 FEWEST = 8  # telluric features that tell a width
 GOOD = 0.1  # relative error of the width of such a feature at most
 SHARP = 0.25  # quantile of their widths: blends and strong lines are broader
-UNFIT = {"spike", "fallback", "edge", "blend", "saturated", "integrated"}  # to tell it
-SHAPED = {"voigt", "rotational", "core-wings", "integrated"}  # widths that no Gaussian gave
-NO_WIDTH = {"spike", "fallback"}
+UNFIT = ("spike", "fallback", "edge", "blend", "saturated", "integrated")  # to tell it
+SHAPED = ("voigt", "rotational", "core-wings", "integrated")  # widths that no Gaussian gave
+NO_WIDTH = ("spike", "fallback")
 
 
 @dataclass(frozen=True, eq=False)
@@ -48,11 +49,10 @@ def widths_of(session: Session) -> Widths:
     """
     f = session.features
     source, instrument, error = _instrument(session)
-    flags = [set(words.split()) for words in f.flags]
     width, width_err = intrinsic_width(f.fwhm, f.fwhm_err, instrument, error)
-    shaped = np.array([bool(w & SHAPED) for w in flags], dtype=bool)
+    shaped = flagged_as(f, SHAPED)
     apart = np.where(shaped, width - lorentzian_width(f.fwhm, instrument), 0.0)
-    void = np.array([bool(w & NO_WIDTH) for w in flags], dtype=bool) | ~np.isfinite(width_err)
+    void = flagged_as(f, NO_WIDTH) | ~np.isfinite(width_err)
     return Widths(source, instrument, np.where(void, np.nan, width),
                   np.where(void, np.nan, np.hypot(width_err, apart)))
 
@@ -106,8 +106,7 @@ def _telluric(session: Session) -> tuple[float, float]:
     f = session.features
     origin = np.array([c.origin == "telluric" and c.standing in ("firm", "likely")
                        for c in session.claims], dtype=bool)
-    fit = np.array([not set(words.split()) & UNFIT for words in f.flags], dtype=bool)
-    ratio = (f.fwhm / f.wave)[origin & fit & (f.fwhm_err < GOOD * f.fwhm)]
+    ratio = (f.fwhm / f.wave)[origin & ~flagged_as(f, UNFIT) & (f.fwhm_err < GOOD * f.fwhm)]
     if len(ratio) < FEWEST:
         return float("nan"), float("nan")
     scatter = 1.4826 * np.median(np.abs(ratio - np.median(ratio)))

@@ -117,7 +117,6 @@ def _proposed(bench, desk, weighed) -> None:
 
 
 def _take(bench, desk, weighed) -> None:
-    bench.withdraw(KEY)
     bench.window.refresher.reweigh_soon.stop()  # nothing is left to look up
     desk.weighed = weighed if weighed.changes else None
     desk.document.replace(carried_over(weighed.before, weighed), "re-weigh")

@@ -51,7 +51,7 @@ class OrphansPanel(TablePanel):
         columns, wave = self._columns()
         text = self.text.text().strip().lower()
         keep = [i for i, said in enumerate(f"{o.nearest} {o.why}" for o in self._rows)
-                if text in f"{wave[i]:.3f} {said} {typeset(said)}".lower()]
+                if not text or text in f"{wave[i]:.3f} {said} {typeset(said)}".lower()]
         self.model.show_rows(columns, np.array(keep, dtype=int))
         solved = self._session is not None and len(self._session.roll_call) > 0
         if self._rows:
