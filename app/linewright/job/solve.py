@@ -38,6 +38,7 @@ from .view_width import kept_widths
 
 NINETY_FIVE = 1.645  # sigma, one-sided, of a normal distribution
 DEFAULT_WAVE_ERR = 0.01  # Angstrom, for tables that state no error (said in a warning)
+MEASURED = 0.7  # of a solve's time, as its progress has it (the Sun: 5.7 of 7.7 s)
 
 
 def solve(
@@ -52,11 +53,11 @@ def solve(
     progress = progress or Progress()
     catalogue = load_catalogue() if catalogue is None else catalogue
     measurement = measure_spectrum(
-        spectrum, _measure_options(spectrum, options), progress.part(0.0, 0.5)
+        spectrum, _measure_options(spectrum, options), progress.part(0.0, MEASURED)
     )
     if spectrum.medium == "unknown":
         raise _medium_unknown(spectrum, measurement, catalogue, options)
-    found = _identified(spectrum, measurement, catalogue, options, progress.part(0.5, 1.0))
+    found = _identified(spectrum, measurement, catalogue, options, progress.part(MEASURED, 1.0))
     bands = _bands(spectrum, measurement, found)
     if bands:
         found = _banded(found, bands)

@@ -51,10 +51,10 @@ def flux_density(unit: str) -> str:
 
 
 def _by_dimension(text: str) -> str:
-    from astropy import units as u
-
     if not text.strip():
         return ""
+    from astropy import units as u  # half a second to load, and most spectra state no unit
+
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
