@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from subprocess import Popen
 
 _PACKAGE_PARENT = str(Path(__file__).resolve().parents[2])
-_START = "from linewright.window.engine_child import serve; serve()"
+_START = "from linewright.window.engine_child import serve; serve({})"
 
 
 class EngineLost(LinewrightError):
@@ -25,7 +25,9 @@ class EngineLost(LinewrightError):
 class Engine:
     """One child process, started when first needed and again after a stop."""
 
-    def __init__(self):
+    def __init__(self, behind: bool = True):
+        """behind: the window's frames come first; else somebody waits for a quick answer."""
+        self._start = _START.format(behind)
         self._child: Popen | None = None
         self._turn = threading.Lock()  # one call at a time
         self._stopped, self._target = False, ""
@@ -38,7 +40,7 @@ class Engine:
 
             paths = [_PACKAGE_PARENT, *filter(None, [os.environ.get("PYTHONPATH", "")])]
             self._child = subprocess.Popen(
-                [sys.executable, "-c", _START],
+                [sys.executable, "-c", self._start],
                 stdin=subprocess.PIPE, stdout=subprocess.PIPE, stderr=subprocess.DEVNULL,
                 env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},
             )

@@ -17,10 +17,10 @@ from ..progress import Progress
 from .parcels import packed, unpacked
 
 
-def serve() -> None:
-    """Answers calls until the window closes the pipe."""
-    if hasattr(os, "nice"):
-        os.nice(5)  # the window's frames come first
+def serve(behind: bool = True) -> None:
+    """Answers calls until the window closes the pipe; behind: its frames come first."""
+    if behind and hasattr(os, "nice"):
+        os.nice(5)
     source = sys.stdin.buffer
     sink = os.fdopen(os.dup(sys.stdout.fileno()), "wb")
     os.dup2(sys.stderr.fileno(), sys.stdout.fileno())  # a stray print must not break a pickle

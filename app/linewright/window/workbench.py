@@ -75,7 +75,7 @@ class Workbench:
 
     def __init__(self, tasks: Tasks):
         self.engine, self.export_engine = Engine(), Engine()  # saving never waits for a solve
-        self.words_engine = Engine()  # nor do a person's words, or what is kept for them
+        self.words_engine = Engine(behind=False)  # nor do a person's words, who waits for these
         self.engines = self.engine, self.export_engine, self.words_engine
         self.tasks, self.view, self.theme = tasks, ViewState(), LIGHT
         self.desks: list[Desk] = []
