@@ -2,12 +2,17 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from linewright.claims.between import Seen, Side, _as_before, _shares, alone, depth_of, logit
+from linewright.claims.breakdown import Breakdown
 from linewright.claims.curves import CENTRES, StrengthRelation, threshold_form
+from linewright.claims.model import Candidate
 from linewright.claims.unlisted import STRENGTH_BINS
+from linewright.job.view_breakdown import terms
 
 N, POSITION, STRENGTH, RATE = 6000, 0.006, 0.06, 0.05  # Angstrom, dex, unlisted per Angstrom
 FLAT = np.where(np.abs(STRENGTH_BINS[:-1] + 1.0) < 0.9, 0.5, 1e-6)  # per dex, -1.9 to -0.1
@@ -91,3 +96,14 @@ def test_what_the_air_does_not_touch_stays_as_it_was():
     Solution.entry = np.array([0, 1])
     shares = _as_before(Solution, np.array([0]), np.array([[0.1, 0.0, 0.9]]))
     assert shares[0] == pytest.approx([0.1, 0.54, 0.36])
+
+
+def test_what_it_did_to_the_odds_is_told_apart():
+    """A fifth term beside the four, all of them multiplying to the odds."""
+    weights = Breakdown(0.6, 5.2, 1.1, -0.7, 0.006, 0.004, 0.0, 0.1, 0.15, 0.8, 0.1, -0.5, 1.0, -1.5)
+    line = Candidate("H2O", "telluric", 7000.0, 0.001, 0.1, np.nan, 0.0, 0.4, 1.0, 0.2, 0.1, "x",
+                     tuple(weights))  # fmt: skip
+    told = terms(line)
+    assert [t.name for t in told][-1] == "star and air" and "4.5 times against" in told[-1].words
+    assert sum(t.log for t in told) == pytest.approx(weights.log_odds)
+    assert len(terms(replace(line, weights=tuple(weights._replace(between=0.0))))) == 4
