@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
 
 from linewright.claims.between import Seen, Side, _as_before, _shares, alone, depth_of, logit
+from linewright.claims.between import shared_between
 from linewright.claims.breakdown import Breakdown
 from linewright.claims.curves import CENTRES, StrengthRelation, threshold_form
 from linewright.claims.model import Candidate
@@ -107,3 +109,13 @@ def test_what_it_did_to_the_odds_is_told_apart():
     assert [t.name for t in told][-1] == "star and air" and "4.5 times against" in told[-1].words
     assert sum(t.log for t in told) == pytest.approx(weights.log_odds)
     assert len(terms(replace(line, weights=tuple(weights._replace(between=0.0))))) == 4
+
+
+def test_nothing_is_weighed_where_the_airs_depths_are_not_known():
+    """Two of the air's lines in an emission spectrum tell nothing of how deep its others are."""
+    entries = SimpleNamespace(population=np.array([1, 1, 0]))
+    problem = SimpleNamespace(entries=entries, features=None)
+    solution = SimpleNamespace(
+        problem=problem, entry=np.arange(3), probability=np.array([0.9, 0.4, 0.1])
+    )
+    assert shared_between(solution) is solution

@@ -26,6 +26,7 @@ ADDING = 0.05  # dex: scatter of the measured depth of a blend about the sum of 
 NODES, AIR_NODES, SIGMAS = 21, 11, 3.5  # depths tried about the predicted one, and how far
 SMALLEST = 0.002  # depth of an unlisted line
 SLIGHT = 0.02  # or unless it already has that much of the claim
+LEARNED = 12  # of the air's lines: so many make its relation of strength and depth (curves)
 FEW = 15  # sure lines that tell a population's width
 LEAST = 0.1  # share of the measured depth below which the air does not matter
 COMPLETE = 0.5  # of the most often seen: weaker lines are seen where noise or others lift them
@@ -61,11 +62,12 @@ class Side:
 def shared_between(solution: Solution) -> Solution:
     """The marginals of features in which the air matters, weighed again for two sources.
 
-    Those of other populations than star and air keep theirs. A person's words stand.
+    Those of other populations than star and air keep theirs. A person's words stand. Nothing
+    changes where too few of the air's lines are seen to know how deep they are.
     """
     e, f = solution.problem.entries, solution.problem.features
     kind = e.population[solution.entry]
-    if not np.any(kind == TELLURIC):
+    if float(np.sum(solution.probability[kind == TELLURIC])) < LEARNED:
         return solution
     air, star = _side(solution, TELLURIC), _side(solution, STELLAR)
     rows = np.isfinite(f.strength) & (f.sign > 0) & (air.there > 0)
