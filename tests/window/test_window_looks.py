@@ -339,3 +339,14 @@ def test_a_peak_that_leaves_the_scale_has_a_wedge(qtbot):
     places = places_above(reduced, 20.0, 10.0)
     own = to_medium(at, plain.medium)
     np.testing.assert_allclose(places, scale.pixels(own), atol=1.5)
+
+
+def test_a_closed_window_begins_no_work(qtbot):
+    from linewright.window.tasks import Request, Tasks
+
+    tasks, begun = Tasks(), []
+    assert tasks.close()
+    tasks.start(Request(key="late", title="", work=begun.append, done=begun.append,
+                        failed=begun.append))
+    qtbot.wait(50)
+    assert begun == [] and not tasks.busy("late")

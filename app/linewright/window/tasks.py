@@ -63,10 +63,13 @@ class Tasks(QObject):
         self._pool.setMaxThreadCount(3)
         self._current: dict[str, _Run] = {}
         self._alive: set[_Run] = set()
-        self._serial = 0
+        self._serial, self._closed = 0, False
         self.finished.connect(self._receive)  # queued: it is emitted in the pool's threads
 
     def start(self, request: Request) -> None:
+        """Begins a request; nothing begins any more once the window closes."""
+        if self._closed:
+            return
         self.cancel(request.key)
         self._serial += 1
         run = _Run(self, self._serial, request)
@@ -100,7 +103,8 @@ class Tasks(QObject):
         return key in self._current
 
     def close(self, milliseconds: int = 5000) -> bool:
-        """Cancels everything and waits; False when a job would not stop in time."""
+        """Cancels everything for good and waits; False when a job would not stop in time."""
+        self._closed = True
         self.cancel_all()
         return self._pool.waitForDone(milliseconds)
 
