@@ -5,7 +5,8 @@
 Without one, the solar-type sample, solved first. Times of the window's thread, each until the
 whole window is painted again, as ratios to one painting of the whole window (A) in the same round,
 and their medians in milliseconds; 'waited' is the clock from the act to the outcome painted, the
-answer of the engine's process included (other programs count). A control outside 0.9 to 1.1
+answer of the engine's process included, as a ratio to the clock of the same painting and in
+milliseconds (in both other programs count). A control outside 0.9 to 1.1
 makes the run noisy. Words: the second candidate of features that are not firm, taken in turn,
 each taken back before the next.
 """
@@ -93,11 +94,12 @@ class Rounds:
         assert self.bench.session.history[-1].action == "reweigh"
 
     def report(self) -> None:
-        base = [a for a, _ in self.times["A"]]
+        base, clock = zip(*self.times["A"])
         for name, words in WORDS.items():
             ratio = statistics.median(t / a for (t, _), a in zip(self.times[name], base))
+            waits = statistics.median(w / a for (_, w), a in zip(self.times[name], clock))
             thread, waited = (1e3 * statistics.median(c) for c in zip(*self.times[name]))
-            print(f"{words:56} {ratio:6.2f} A {thread:7.1f} ms  waited {waited:7.1f} ms")
+            print(f"{words:56} {ratio:6.2f} A {thread:7.1f} ms  waited {waits:6.2f} A {waited:7.1f} ms")
             if name == "A'":
                 print(f"A: {1e3 * statistics.median(base):.1f} ms, "
                       f"{'steady' if steady(ratio) else 'noisy'}")
