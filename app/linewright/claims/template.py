@@ -26,7 +26,7 @@ SATURATED_LINES = 0.25  # lines per Angstrom that are about saturated: sets tau 
 EVIDENCE = 0.5  # independent samples are counted so: the template's misfit is shared
 MASKED_SHARE = 0.5
 STRETCHES = 10  # about as many pieces of equal length, in ln(wavelength), make the error
-SHARED_MISFIT = 0.02  # of the width: bias at R 1,000-7,000 and v sin i 50-200 (lowres study)
+SHARED_MISFIT = 0.01  # of the width: what all stretches share; pulls in the template study
 H_WINGS = 1500.0  # km/s left out about hydrogen lines
 PASCHEN, FAINT_H = 12.2, -1.8  # eV and log gf: Balmer and Paschen lines that show wings
 

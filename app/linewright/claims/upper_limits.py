@@ -2,7 +2,8 @@
 
 A line hides below the equivalent width that the noise allows (measure/limits.py) or inside
 the feature that stands in its place. The offset at which it would come out follows from the
-strength relation the spectrum has taught; of the species' best lines the strictest counts.
+strength relation the spectrum has taught, moved up by what a single line may be off it: 95 in a
+hundred are off by less. Of the species' best lines the strictest counts.
 """
 
 from __future__ import annotations
@@ -22,6 +23,8 @@ RISES = np.arange(-5.0, 5.01, 0.05)  # dex
 FAINTEST = 0.05  # quantile of the features' depths: the limit where no noise was measured
 DEEPEST = 0.95  # of a limit: beyond it a line says nothing
 REACH = 5.0  # Angstrom on either side in which features may cover a line
+NINETY_FIVE = 1.645  # sigma, one-sided, of a normal distribution
+WIDEST = 0.5  # dex: the slope far from the lines seen is not known
 LN2 = np.log(2.0)
 MA = 1e3
 
@@ -68,7 +71,7 @@ class _Limits:
         e = self.s.problem.entries
         best = lines[np.argsort(-e.strength[lines], kind="stable")[:TRIED]]
         depth = self._hidden(e.wave[best])
-        dex = np.array([self._offset(e.strength[i], d, int(e.population[i]))
+        dex = np.array([self._offset(e.strength[i], d, int(e.population[i])) + self._spread(i)
                         for i, d in zip(best, depth)])
         if not np.any(np.isfinite(dex)):
             return row
@@ -92,6 +95,15 @@ class _Limits:
         near = slice(int(low), int(high))
         away = (self.wave[near] - wave) / self.fwhm[near]
         return float(np.max(self.depth[near] * np.exp(-4 * LN2 * away**2), initial=0.0))
+
+    def _spread(self, entry: int) -> float:
+        """dex by which 95 lines in a hundred are at most stronger than predicted: the scatter of
+        measured about predicted strengths, or the line's own error of log gf if that is larger."""
+        e = self.s.problem.entries
+        relation = self.s.state.relation[int(e.population[entry])]
+        learned = relation.scatter / float(relation.slope(e.strength[entry]))
+        own = float(np.nan_to_num(self.catalogue.loggf_err[e.row[entry]]))
+        return NINETY_FIVE * min(max(learned, own), WIDEST)
 
     def _offset(self, strength: float, depth: float, population: int) -> float:
         """dex that lines must be off the prediction for one of this strength to reach ``depth``.
