@@ -41,7 +41,8 @@ def drawn(seed: int, apart: float):
     m = logit(np.clip(total, 1e-4, 0.99)) + STRENGTH * rng.standard_normal(N)
     x = np.sum(depth * places, axis=0) / np.maximum(depth.sum(axis=0), 1e-9)
     x = x + POSITION * rng.standard_normal(N)
-    seen = Seen(m, np.full(N, STRENGTH), x, np.full(N, 0.1), np.full(N, RATE), FLAT)
+    seen = Seen(m, np.full(N, STRENGTH), x, np.full(N, 0.1), np.full(N, RATE), FLAT,
+                np.ones(N))  # fmt: skip
     return seen, air, star, np.argmax(depth, axis=0), kept
 
 
@@ -56,12 +57,12 @@ def test_probabilities_of_the_main_contributor_come_true(seed, apart):
     assert np.mean((p > 0.5) == right) > 0.85
 
 
-def one(m, there=1.0, air=-1.0, star=-1.0):
+def one(m, there=1.0, air=-1.0, star=-1.0, shows=1.0):
     """Shares of a feature of strength m at the common place of an air's and a star's line."""
     side = [Side(np.array([s]), w, np.zeros(1), np.full(1, POSITION), np.array([t]), np.ones(1))
             for s, w, t in ((air, 0.08, 0.95), (star, 0.25, 0.95 * there))]  # fmt: skip
     seen = Seen(np.array([m]), np.array([STRENGTH]), np.zeros(1), np.array([0.1]),
-                np.array([RATE]), FLAT)  # fmt: skip
+                np.array([RATE]), FLAT, np.array([shows]))  # fmt: skip
     return _shares(seen, *side)[0]
 
 
@@ -71,6 +72,12 @@ def test_the_depth_beside_the_air_decides():
     assert one(logit(0.3), star=-0.6)[1] > 0.95
     assert one(logit(0.3), there=0.0)[2] > 0.9
     assert 0.35 < one(logit(1.0 - (1.0 - depth_of(-1.0)) ** 2))[0] < 0.65
+
+
+def test_what_is_hardly_ever_seen_is_the_less_likely_the_airs():
+    """Unlisted features are counted as seen; the air's line must show first."""
+    plain, faint = one(-1.0, there=0.0)[2], one(-1.0, there=0.0, shows=0.05)[2]
+    assert faint / (1.0 - faint) == pytest.approx(20.0 * plain / (1.0 - plain), rel=0.35)
 
 
 def test_weak_lines_grow_in_proportion():

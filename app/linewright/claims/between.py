@@ -159,7 +159,8 @@ def _spread(solution: Solution, pairs) -> float:
 @dataclass(frozen=True, eq=False)
 class Seen:
     """Measured strength m with its error, place, half width (Angstrom) of n features, and the
-    density of unlisted ones there: per Angstrom, and per dex over STRENGTH_BINS."""
+    density of unlisted ones there: per Angstrom, and per dex over STRENGTH_BINS; shows: chance
+    that what is so strong is seen at all, which the density of unlisted ones has in it."""
 
     m: np.ndarray
     error: np.ndarray
@@ -167,6 +168,7 @@ class Seen:
     half: np.ndarray
     density: np.ndarray
     strengths: np.ndarray
+    shows: np.ndarray
 
     def unlisted(self, m):
         """Density per Angstrom and dex of unlisted features of strengths m (n, ...)."""
@@ -186,7 +188,14 @@ def _seen(solution: Solution, rows) -> Seen:
         WITHIN * np.nan_to_num(f.fwhm[rows]) + 1e-3,
         density,
         null.strengths[0],
+        _chance_to_show(solution, f.strength[rows]),
     )
+
+
+def _chance_to_show(solution: Solution, m):
+    """P(a feature of strength m is seen), from how often the air's lines so strong are."""
+    curve, relation = solution.state.detection[TELLURIC], solution.state.relation[TELLURIC]
+    return np.interp(m, relation.value, curve.value / curve.value[-1])
 
 
 def _shares(seen: Seen, air: Side, star: Side):
@@ -198,8 +207,8 @@ def _shares(seen: Seen, air: Side, star: Side):
     star_only = (1.0 - air.there) * star.there
     both, neither = air.there * star.there, (1.0 - air.there) * (1.0 - star.there)
     out = np.column_stack((
-        both * both_air + air_only * (_alone(seen, air, AIR_TAIL) + more_air),
-        both * both_star + star_only * _alone(seen, star, STRENGTH_TAIL),
+        seen.shows * (both * both_air + air_only * _alone(seen, air, AIR_TAIL)) + air_only * more_air,
+        seen.shows * (both * both_star + star_only * _alone(seen, star, STRENGTH_TAIL)),
         air_only * more_other + neither * seen.unlisted(seen.m),
     ))
     return out / np.maximum(out.sum(axis=1, keepdims=True), TINY)

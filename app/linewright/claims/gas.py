@@ -17,6 +17,7 @@ from ..spectra.medium import C_KM_S
 from .coincidence import poisson_binomial_tail
 from .features_in import position_error
 from .populations import EMITTED, INTERSTELLAR, NEBULAR, OUTFLOW, Component, emitted_rows
+from .problem import inside
 
 MOST = 3  # components of a kind
 CHANCE = 0.003  # expected chance coincidences that two lines or more must beat
@@ -117,9 +118,10 @@ def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
     marks = _marks(setting, unexplained, rows, 0.0, CLOUD_SPAN, 0.0)
     clouds, used = [], []
     for mean, error, members in _clusters(marks):
-        chance = _coincidence(setting, unexplained, marks, members, CLOUD_SPAN)
-        if not _in_the_open(f, marks, members):
+        members = _backed(setting, marks, members, (rows, mean))
+        if len(members) == 0 or not _in_the_open(f, marks, members):
             continue
+        chance = _coincidence(setting, unexplained, marks, members, CLOUD_SPAN)
         if chance < CHANCE and abs(mean - stellar_velocity) >= SAME and len(clouds) < MOST:
             clouds.append(Component(INTERSTELLAR, mean, error))
             used += marks.feature[members].tolist()
@@ -128,10 +130,23 @@ def find_clouds(setting, solution, stellar_velocity: float) -> list[Component]:
     return clouds
 
 
+def _backed(setting, marks: _Marks, members, where):
+    """The members whose species' stronger lines, where these were searched, are members too: a
+    cloud that shows Na I D1 shows D2. where: (interstellar rows, km/s)."""
+    cat, (rows, mean) = setting.catalogue, where
+    place = cat.wave[rows] * (1.0 + mean / C_KM_S)
+    missing = rows[inside(place, setting.coverage) & ~np.isin(rows, marks.row[members])]
+    strong = cat.loggf[marks.row[members]]
+    stronger = cat.loggf[missing][None, :] > strong[:, None]
+    alike = cat.species[missing][None, :] == cat.species[marks.row[members]][:, None]
+    return members[~np.any(stronger & alike, axis=1)]
+
+
 def _in_the_open(f, marks: _Marks, members) -> bool:
-    """Whether two lines at least stand outside the wings of stronger ones: inside them the
-    same bump of two strong lines of one species looks like a cloud."""
-    open_ = [m for m in members if "wing" not in f.flags[marks.feature[m]].split()]
+    """Whether two lines at least stand outside the wings of stronger ones, with fits that
+    settled: inside wings the same bump of two strong lines of one species looks like a cloud."""
+    words = [set(f.flags[marks.feature[m]].split()) for m in members]
+    open_ = [m for m, w in zip(members, words) if not w & {"wing", "fallback"}]
     return len(np.unique(marks.row[open_])) >= 2
 
 
