@@ -25,7 +25,9 @@ from linewright.spectra.spectrum import Segment, Spectrum
 GRID = 0.5  # km/s, of the synthesis
 DOPPLER, DAMPING = 2.0, 0.03  # km/s (thermal and small-scale motion); Voigt parameter
 DEEPEST = 0.85
-HBETA = (4836.0, 4887.0)  # vacuum Angstrom, masked
+# Balmer lines, vacuum Angstrom (n from 3 to 9, from memory), and the half width masked.
+BALMER = (6564.6, 4862.7, 4341.7, 4102.9, 3971.2, 3890.2, 3836.5)
+HYDROGEN = 25.5  # Angstrom
 NO_ERROR = 0.15  # dex, where a line states none
 MISSING = 0.05
 
@@ -65,7 +67,7 @@ def observe(star: Star, catalogue):
     every = max(round(C_KM_S / star.resolution / 3.0 / GRID), 1)
     flux, seen = flux[::every], np.exp(log[::every])
     flux = flux + rng.normal(0, 1 / star.snr, len(flux))
-    mask = (seen > HBETA[0]) & (seen < HBETA[1])
+    mask = np.min(np.abs(seen[:, None] - np.array(BALMER)), axis=1) < HYDROGEN
     segment = Segment(
         seen * (1 + star.velocity / C_KM_S), flux, np.full(len(seen), 1 / star.snr), mask
     )

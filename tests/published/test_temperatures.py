@@ -10,11 +10,11 @@ from star_simulation import Star, simulate
 from truths import SPECTRA
 
 from linewright.claims.colour import planck_colour, wien_colour
-from linewright.claims.ionisation import pressure_from_balance
 from linewright.claims.readings import BALANCE, GROWTH, PLANCK, PROFILE, WIEN
 from linewright.job.options import SolveOptions
 from linewright.job.solve import solve
 from linewright.job.temperatures import colour_readings
+from linewright.lines.levels import saha_ratio_log
 from linewright.lines.loading import load_catalogue
 from linewright.measure.core import measure_spectrum
 from linewright.resources import samples_dir
@@ -59,19 +59,17 @@ def test_no_black_body_rises_faster_than_the_rayleigh_jeans_law():
     assert planck_colour(WAVE[:5], WAVE[:5]) is None
 
 
-def test_the_suns_calcium_gives_its_electron_pressure_back():
+def test_saha_of_the_suns_calcium():
     """Carroll & Ostlie, An Introduction to Modern Astrophysics, 2nd ed., example 8.1.5: at
     5777 K and 1.5 N m-2 Ca II/Ca I = 918 with U = 2.30/1.32 and 6.11 eV."""
-    difference = np.log10(918.0) - np.log10(2.30 / 1.32)
-    found = pressure_from_balance(difference, 6.11, 5777.0)
-    assert found == pytest.approx(np.log10(15.0), abs=0.002)  # dyn cm-2
+    found = saha_ratio_log(np.log10(2.30 / 1.32), 6.11, 5777.0, np.log10(15.0))
+    assert found == pytest.approx(np.log10(918.0), abs=0.002)
 
 
-def test_the_suns_hydrogen_gives_its_electron_pressure_back():
+def test_saha_of_the_suns_hydrogen():
     """The same, H II/H I = 7.7e-5 with U = 1/2 and 13.6 eV."""
-    difference = np.log10(7.7e-5) - np.log10(1 / 2)
-    found = pressure_from_balance(difference, 13.6, 5777.0)
-    assert found == pytest.approx(np.log10(15.0), abs=0.005)
+    found = saha_ratio_log(np.log10(1 / 2), 13.6, 5777.0, np.log10(15.0))
+    assert found == pytest.approx(np.log10(7.7e-5), abs=0.005)
 
 
 @pytest.mark.parametrize(
@@ -107,12 +105,49 @@ def test_a_survey_star_shows_both_colours_apart_from_the_lines():
     assert read[WIEN].value < read[PLANCK].value
 
 
-@pytest.mark.skipif(not SPECTRA.exists(), reason="the shared spectra are absent")
-def test_the_suns_excitation_temperature():
+# Layers of the quiet Sun's model C, temperature (K) and electron density (cm-3): Fontenla,
+# Avrett & Loeser 1993, ApJ 406, 319, as carried by lightweaver 0.17.0.
+SUN_T = (4880.0, 4990.0, 5060.0, 5150.0, 5270.0, 5410.0, 5580.0, 5790.0)
+SUN_NE = (2.557e12, 3.881e12, 4.803e12, 5.985e12, 7.585e12, 9.816e12, 1.329e13, 1.951e13)
+
+
+def suns_log_pe(temperature):
+    """log10 electron pressure (dyn cm-2) of the model's layer at a temperature in K."""
+    pressure = np.log10(np.array(SUN_NE) * 1.380649e-16 * np.array(SUN_T))
+    return np.interp(temperature, SUN_T, pressure)
+
+
+@pytest.fixture(scope="module")
+def solved_sun():
+    if not SPECTRA.exists():
+        pytest.skip("the shared spectra are absent")
+    sun = read_spectrum(SPECTRA / "sun_r47000.txt", medium="air")
+    return {ranges: solve(sun, options=SolveOptions(ranges=ranges)) for ranges in (
+        (), ((5100.0, 5250.0), (6100.0, 6250.0)))}  # fmt: skip
+
+
+def test_the_suns_electron_pressure_is_that_of_the_layer_its_lines_form_in(solved_sun):
+    """One layer at the excitation temperature, hence less than the 1.18 of 5,777 K (Carroll &
+    Ostlie, example 8.1.5), which the model has there too."""
+    assert suns_log_pe(5777.0) == pytest.approx(1.18, abs=0.02)
+    for session in solved_sun.values():
+        read = {r.label: r for r in session.temperatures}
+        truth = suns_log_pe(read["adopted"].value)
+        assert abs(read[BALANCE].value - truth) < 2 * read[BALANCE].error
+        assert read[BALANCE].error < 0.3
+
+
+def test_a_short_stretch_of_the_sun_agrees_with_all_of_it_within_its_error(solved_sun):
+    """Two windows of 150 A against 1,900 A: they agree, and the shorter is the less sure."""
+    whole, short = (session.temperatures[0] for session in solved_sun.values())
+    assert abs(short.value - whole.value) < 2 * short.error
+    assert short.error > whole.error
+
+
+def test_the_suns_excitation_temperature(solved_sun):
     """5,201 +- 36 K by a regression of the same form on this spectrum (prototype, other line
     selection); curves of growth give 5,040-5,200 K (theta 0.97-1.00: from memory)."""
-    sun = read_spectrum(SPECTRA / "sun_r47000.txt", medium="air")
-    session = solve(sun)  # all of it, as there: windows of 150 A differ by more than their errors
+    session = solved_sun[()]
     adopted = session.temperatures[0]
     assert session.temperature_k == pytest.approx(adopted.value, abs=0.5)
     assert abs(adopted.value - 5201.0) < 2 * np.hypot(adopted.error, 36.0)

@@ -10,18 +10,22 @@ import pytest
 from linewright.claims.clean_lines import main_share
 from linewright.claims.entries import Entries
 from linewright.claims.growth import CleanLines, fit_growth
-from linewright.claims.ionisation import ionisation_balance
+from linewright.claims.ionisation import Gas, fit_balance
 from linewright.claims.readings import (
     ADOPTED,
     GIVEN,
     GROWTH,
     PROFILE,
+    STAGES,
     _doubt,
     _weighed,
     with_error,
 )
+from linewright.claims.stretches import STRETCHES, by_stretch
 from linewright.claims.temperature import COOLEST, HOTTEST, Profile, peak_of, profile
 from linewright.job.temperatures import flux_density
+from linewright.lines.levels import ion_fractions, partition_function, solar_abundance
+from linewright.lines.strengths import abundance_vector
 
 
 def hill(true, sharpness=2000.0):
@@ -51,6 +55,30 @@ def test_few_features_give_a_profile_a_larger_error():
         5000.0 * np.hypot(1 / np.sqrt(4000.0), 0.05), rel=0.01
     )
     assert peak_of(tried, flat(tried))[1] > 0.12 * 5000.0
+
+
+def test_stretches_add_up_and_hold_what_lies_in_them():
+    wave = np.linspace(5000.0, 5100.0, 120)
+    seen = np.random.default_rng(0).normal(size=120)
+    parts = by_stretch(wave, np.array([4990.0, 5099.0]), seen, np.array([0.5, 0.25]))
+    assert parts.shape == (STRETCHES,)
+    assert parts.sum() == pytest.approx(seen.sum() - 0.75)
+    assert parts[0] == pytest.approx(seen[:10].sum() - 0.5)
+    assert by_stretch(wave[:0], wave[:0], seen[:0], seen[:0]).sum() == 0.0
+
+
+def test_a_profile_whose_stretches_disagree_is_less_sure():
+    """Half of twelve stretches peak at 5,200, half at 6,500 K: drawn again, the share of each
+    kind scatters by 0.5/sqrt(12), and the peak by that share of ln(6500/5200)."""
+    low, high = hill(5200.0, 5000.0), hill(6500.0, 5000.0)
+    alike = profile(lambda t: np.full(12, hill(5800.0, 5000.0)(t) / 12), 5800.0)
+    apart = profile(lambda t: np.array([low(t), high(t)] * 6) / 12, 5800.0)
+    assert alike.temperature == pytest.approx(5800.0, rel=0.01)
+    assert alike.error == pytest.approx(5800.0 * np.hypot(1 / np.sqrt(5000.0), 0.05), rel=0.03)
+    moved = np.log(6500.0 / 5200.0) * 0.5 / np.sqrt(12)
+    assert apart.error == pytest.approx(apart.temperature * np.hypot(moved, 0.05), rel=0.15)
+    assert apart.error > 1.1 * alike.error
+    assert abs(np.log(apart.temperature**2 / (5200.0 * 6500.0))) < 0.02
 
 
 def lines(theta, rng, count=400, noise=(0.1, 0.05), offsets=(0.0, 0.8, -0.5)):
@@ -121,25 +149,36 @@ def profile_at(temperature, error):
     return Profile(temperature, error, np.array([temperature]), np.array([0.0]))
 
 
-def test_curve_of_growth_counts_only_where_it_agrees():
+def test_clean_lines_count_only_where_they_agree():
     fit = with_error(fit_at(5500.0), 5300.0)
     near, far = profile_at(5300.0, 260.0), profile_at(7500.0, 370.0)
-    value, error, read = _weighed(near, fit)
-    assert 5300.0 < value < fit.temperature + 1e-6 and error < 130.0
-    assert [r.label for r in read] == [ADOPTED, PROFILE, GROWTH]
-    assert all(r.used for r in read)
-    value, error, read = _weighed(far, fit)
-    assert (value, error) == (7500.0, 370.0)
-    assert not read[2].used and "disagrees" in read[2].note
+    found = _weighed(near, fit)
+    assert 5300.0 < found.temperature < fit.temperature + 1e-6 and found.error < 130.0
+    assert [r.label for r in found.readings] == [ADOPTED, PROFILE, GROWTH]
+    assert all(r.used for r in found.readings)
+    found = _weighed(far, fit)
+    assert (found.temperature, found.error) == (7500.0, 370.0)
+    assert not found.readings[2].used and "disagrees" in found.readings[2].note
     assert _doubt(replace(near, error=float("nan")), fit) != ""
     assert _doubt(near, None) != ""
 
 
+def test_excitation_and_ionisation_take_the_place_of_the_curve_of_growth():
+    growth, balance = with_error(fit_at(5500.0), 5300.0), balance_of(*LAYERS[0], 4)
+    found = _weighed(profile_at(5800.0, 290.0), growth, balance)
+    read = {r.label: r for r in found.readings}
+    assert read[STAGES].used and not read[GROWTH].used
+    assert found.error < min(balance.error, 290.0)
+    found = _weighed(profile_at(5500.0, 275.0), growth, replace(balance, temperature=9000.0))
+    read = {r.label: r for r in found.readings}
+    assert read[GROWTH].used and not read[STAGES].used and "disagrees" in read[STAGES].note
+
+
 def test_without_clean_lines_the_profile_stands_alone():
-    value, error, read = _weighed(profile_at(6000.0, 300.0), None)
-    assert (value, error) == (6000.0, 300.0)
-    assert [r.label for r in read] == [ADOPTED, PROFILE]
-    assert GIVEN not in {r.label for r in read}
+    found = _weighed(profile_at(6000.0, 300.0), None)
+    assert (found.temperature, found.error) == (6000.0, 300.0)
+    assert [r.label for r in found.readings] == [ADOPTED, PROFILE]
+    assert GIVEN not in {r.label for r in found.readings}
 
 
 def test_claims_made_far_off_make_a_curve_of_growth_less_sure():
@@ -150,14 +189,75 @@ def test_claims_made_far_off_make_a_curve_of_growth_less_sure():
     assert near.error > fit.error
 
 
-def test_balance_needs_two_stages_of_one_element():
-    fit = fit_at(5500.0)
-    assert ionisation_balance(fit, ("Fe I", "Ti I", "Cr II"), 5500.0, 100.0) is None
-    hint = ionisation_balance(fit, ("Fe I", "Fe II", "Cr II"), 5500.0, 100.0)
-    assert hint.pairs == ("Fe I/II",)
-    assert hint.error >= 0.15  # never better than the element's own scatter
-    worse = ionisation_balance(fit, ("Fe I", "Fe II", "Cr II"), 5500.0, 300.0)
-    assert worse.error > hint.error
+LAYERS = ((5800.0, 1.2), (5800.0, -0.5), (10_000.0, 2.4), (15_000.0, 3.3))  # K, log Pe
+NAMES = ("Mg I", "Mg II", "Si II", "Si III", "Ti I", "Ti II", "Fe I", "Fe II", "Fe III", "S II")
+LOW = (2.7, 9.0, 9.0, 19.0, 0.8, 1.2, 2.2, 2.9, 8.2, 13.5)  # eV, of the lowest lines taken
+
+
+def layer_lines(temperature, log_pe, rng, count=25):
+    """Lines of ten species of one layer, levels by the tables' own fractions, elements 0.1 dex
+    off, log gf 0.1 dex, m 0.04 dex; only what is strong enough to be seen."""
+    theta, every = 5039.778 / temperature, []
+    odd = {element: rng.normal(0, 0.1) for element in ("Mg", "Si", "Ti", "Fe", "S")}
+    for k, (name, low) in enumerate(zip(NAMES, LOW)):
+        element, stage = name.split()
+        share = ion_fractions(element, temperature, log_pe)[{"I": 0, "II": 1, "III": 2}[stage]]
+        level = np.log10(share / partition_function(name, temperature))
+        chi = low + rng.uniform(0, 3, count)
+        loggf = rng.uniform(-4, 0, count)
+        opacity = loggf - theta * chi + level + solar_abundance(element) + odd[element]
+        every.append(np.column_stack([np.full(count, k), loggf, chi, opacity]))
+    species, loggf, chi, opacity = np.concatenate(every).T
+    opacity = opacity - np.sort(opacity)[-120]
+    seen = (opacity > -1.0) & (opacity < 2.0)
+    species, loggf, chi, opacity = (x[seen] for x in (species, loggf, chi, opacity))
+    n = len(chi)
+    return CleanLines(
+        species.astype(int), loggf + rng.normal(0, 0.1, n), np.full(n, 0.1), chi,
+        rng.uniform(4500, 6500, n),
+        np.where(opacity < 0, 0.8, 0.5) * opacity + rng.normal(0, 0.04, n), np.zeros(n),
+    )  # fmt: skip
+
+
+def balance_of(temperature, log_pe, seed, start=1.0):
+    made = layer_lines(temperature, log_pe, np.random.default_rng(seed))
+    return fit_balance(made, NAMES, Gas(start * temperature, None, abundance_vector()))
+
+
+@pytest.mark.parametrize(("temperature", "log_pe"), LAYERS)
+def test_temperature_and_pressure_of_a_layer_come_back_with_true_errors(temperature, log_pe):
+    """Five draws: within 3 % rms, pulls of both no wider than they should be."""
+    found = [balance_of(temperature, log_pe, seed) for seed in range(5)]
+    off = np.array([b.temperature - temperature for b in found])
+    pulls = np.array([[o / b.error, (b.log_pe - log_pe) / b.log_pe_err]
+                      for o, b in zip(off, found)])  # fmt: skip
+    assert np.sqrt(np.mean(off**2)) < 0.03 * temperature
+    assert np.all(np.sqrt(np.mean(pulls**2, axis=0)) < 1.6)
+    assert all("Fe I/II" in b.pairs or "Si II/III" in b.pairs for b in found)
+
+
+@pytest.mark.parametrize("start", [0.75, 1.35])
+def test_a_layer_is_found_from_far_off(start):
+    """The start moves a result by less than a fifth of its error."""
+    for layer in LAYERS[1:]:
+        near, far = balance_of(*layer, 3), balance_of(*layer, 3, start)
+        assert abs(near.temperature - far.temperature) < 0.2 * near.error
+
+
+def test_a_pressure_that_is_known_stays_and_sharpens_the_temperature():
+    made = layer_lines(10_000.0, 2.4, np.random.default_rng(5))
+    free = fit_balance(made, NAMES, Gas(10_000.0, None, abundance_vector()))
+    held = fit_balance(made, NAMES, Gas(10_000.0, 2.4, abundance_vector(), True))
+    assert held.log_pe == pytest.approx(2.4, abs=0.05)
+    assert held.error < free.error
+    value, error = free.pressure_at(free.temperature + free.error, 0.0)
+    assert value == pytest.approx(free.log_pe + free.slope * free.error / 10_000.0, abs=0.02)
+    assert 0 < error < free.log_pe_err
+
+
+def test_too_few_lines_make_no_balance():
+    made = layer_lines(5800.0, 1.2, np.random.default_rng(6)).take(np.arange(20))
+    assert fit_balance(made, NAMES, Gas(5800.0, None, abundance_vector())) is None
 
 
 @pytest.mark.parametrize(

@@ -118,31 +118,20 @@ class _Answer:
     scatter: float
 
 
-class _Model:
-    """Design: chi, one intercept a species, powers of m, lambda."""
+class Regression:
+    """target = design @ parameters, both sides with errors: those of log gf, and of m times the
+    slope of the curve of growth."""
 
-    def __init__(self, lines: CleanLines):
-        self.lines = lines
-        self.species, which = np.unique(lines.species, return_inverse=True)
-        own = (which[:, None] == np.arange(len(self.species))).astype(float)
-        m = lines.strength - np.median(lines.strength)
-        order = np.arange(1, DEGREE + 1)
-        self.slope_of = order * m[:, None] ** (order - 1)
-        place = (lines.wave - np.mean(lines.wave)) / 1000.0
-        self.design = np.column_stack([lines.e_low, own, m[:, None] ** order, place])
-        first = 1 + len(self.species)
+    def __init__(self, lines: CleanLines, target, design, first: int):
+        """first: column of the first power of m; DEGREE of them follow one another."""
+        self.lines, self.target, self.design = lines, target, design
         self.curve = slice(first, first + DEGREE)
-
-    def first(self) -> np.ndarray:
-        weight = 1.0 / self.lines.loggf_err
-        return np.linalg.lstsq(
-            self.design * weight[:, None], self.lines.loggf * weight, rcond=None
-        )[0]
+        self.slope_of = np.arange(1, DEGREE + 1) * powers(lines)[:, :DEGREE]
 
     def residual(self, parameters):
         """(residual, slope of the curve of growth) of each line."""
         slope = np.clip(self.slope_of @ parameters[self.curve], *SLOPES)
-        return self.lines.loggf - self.design @ parameters, slope
+        return self.target - self.design @ parameters, slope
 
     def variance(self, slope, scatter: float):
         noise = scatter**2 + self.lines.strength_err**2
@@ -158,6 +147,33 @@ class _Model:
         return residual / root, by
 
 
+def powers(lines: CleanLines):
+    """Powers 0 to DEGREE of m about its median, (n, 1 + DEGREE)."""
+    m = lines.strength - np.median(lines.strength)
+    return m[:, None] ** np.arange(DEGREE + 1)
+
+
+def place(lines: CleanLines):
+    """Wavelengths about their mean, in 1000 Angstrom."""
+    return (lines.wave - np.mean(lines.wave)) / 1000.0
+
+
+class _Model(Regression):
+    """Design: chi, one intercept a species, powers of m, lambda."""
+
+    def __init__(self, lines: CleanLines):
+        self.species, which = np.unique(lines.species, return_inverse=True)
+        own = (which[:, None] == np.arange(len(self.species))).astype(float)
+        columns = [lines.e_low, own, powers(lines)[:, 1:], place(lines)]
+        super().__init__(lines, lines.loggf, np.column_stack(columns), 1 + len(self.species))
+
+    def first(self) -> np.ndarray:
+        weight = 1.0 / self.lines.loggf_err
+        return np.linalg.lstsq(
+            self.design * weight[:, None], self.lines.loggf * weight, rcond=None
+        )[0]
+
+
 def _solved(model: _Model) -> tuple[_Answer, np.ndarray]:
     """Robust effective-variance solution and the biweights."""
     parameters, scatter = model.first(), 0.06
@@ -171,11 +187,11 @@ def _solved(model: _Model) -> tuple[_Answer, np.ndarray]:
         step = np.linalg.lstsq(kept.T @ by, -(pull @ kept), rcond=None)[0]
         parameters = parameters + STEP * step
         if turn % RESCALE == RESCALE - 1:
-            scatter = _left_over(model, residual, slope)
+            scatter = left_over(model, residual, slope)
     return _Answer(parameters, scatter), keep
 
 
-def _left_over(model: _Model, residual, slope) -> float:
+def left_over(model: Regression, residual, slope) -> float:
     """Scatter of m at which the pulls have unit width (by bisection)."""
     low, high = 0.0, LARGEST
     for _ in range(20):

@@ -9,7 +9,7 @@ from functools import partial
 import numpy as np
 
 from ..lines.catalogue import NOMINAL
-from ..lines.strengths import absorption_strength
+from ..lines.strengths import abundance_vector, absorption_strength
 from ..progress import Progress
 from ..spectra.medium import C_KM_S
 from .banded import capped
@@ -29,11 +29,11 @@ from .populations import EMITTED, OUTFLOW
 from .populations import HYDROGEN, POPULATIONS, STELLAR, UNGRADED, Component, assemble
 from .problem import Problem
 from .profiles import shape_warning, shaped
-from .readings import TemperatureReading, nominal, read_temperatures
+from .readings import Claimed, TemperatureReading, nominal, read_temperatures
 from .roll_call import call_roll
 from .siblings import with_siblings
 from .strength_errors import UNKNOWN_ERROR
-from .temperature import electron_pressure, prior_log, profile
+from .temperature import Profile, electron_pressure, prior_log, profile
 from .upper_limits import with_limits
 
 LIKELY_DENSITY = 0.5  # features per Angstrom assumed behind a table that is not complete
@@ -111,10 +111,16 @@ class Setting:
             self.catalogue, temperature, pe, o.metallicity, dict(o.abundances)
         )
 
-    def problem(self, components, temperature: float) -> Problem:
+    def claimed(self, solution, temperature: float) -> Claimed:
+        """A solution at a temperature (K), for the readings."""
+        o = self.options
+        level = abundance_vector(o.metallicity, dict(o.abundances))
+        return Claimed(solution, self.catalogue, self.features, temperature, o.log_pe, level)
+
+    def problem(self, components, temperature: float, pressure: float = 0.0) -> Problem:
         entries = assemble(
             self.catalogue,
-            self.absorption(temperature),
+            self.absorption(temperature, pressure),
             components,
             (self.coverage, self.counts, self.segments),
         )
@@ -278,7 +284,7 @@ def _temperature(setting: Setting, found: Found, progress):
     """(temperature in K for the strengths, what gives all readings when asked, or None).
 
     The given or nominal temperature, or what the profile around the vote's best and the
-    curve of growth of its best mixture say together, in whole kelvin.
+    clean lines of its best mixture say together, in whole kelvin.
     """
     if setting.options.temperature is not None and found.has_star:
         return float(setting.options.temperature), None
@@ -286,10 +292,8 @@ def _temperature(setting: Setting, found: Found, progress):
         temperature = float(setting.options.temperature or found.temperature)
         return temperature, lambda: (nominal(temperature),)
     looks = _Looks(setting, found, progress)
-    seen = profile(looks.value_at, found.temperature)
-    adopted = read_temperatures(
-        seen, looks.solution, setting.catalogue, setting.features, looks.temperature
-    )
+    seen = looks.profiled(found.temperature)
+    adopted = read_temperatures(seen, setting.claimed(looks.solution, looks.temperature), looks)
     return float(round(adopted.temperature)), lambda: adopted.readings
 
 
@@ -301,19 +305,28 @@ class _Looks:
         self._tried, self._best = 0, -np.inf
         self.solution, self.temperature = None, float("nan")
 
-    def value_at(self, temperature: float) -> float:
+    def profiled(self, start: float, excess: float = 0.0) -> Profile:
+        """The profile about ``start`` (K), with log Pe ``excess`` dex off the usual or given."""
+        return profile(partial(self._value_at, excess=excess), start)
+
+    def solved(self, temperature: float, excess: float) -> Solution:
+        problem = self._setting.problem(self._found.components, temperature, excess)
+        return solve_mixture(problem, PROFILE_ROUNDS)
+
+    def _value_at(self, temperature: float, excess: float):
+        """Log-likelihood by stretches of the spectrum."""
         self._progress.report("excitation temperature", min(self._tried / USUAL_LOOKS, 1.0))
         self._tried += 1
-        problem = self._setting.problem(self._found.components, temperature)
-        solution = solve_mixture(problem, PROFILE_ROUNDS)
-        value = solution.log_likelihood + prior_log(temperature, len(self._setting.features))
-        if value > self._best:
-            self._best, self.solution, self.temperature = value, solution, temperature
-        return value
+        solution = self.solved(temperature, excess)
+        prior = prior_log(temperature, len(self._setting.features))
+        if solution.log_likelihood + prior > self._best:
+            self._best = solution.log_likelihood + prior
+            self.solution, self.temperature = solution, temperature
+        return solution.stretches + prior / len(solution.stretches)
 
 
 def _unasked(setting: Setting, solution):
     """Reads the temperatures of claims made at a given one, should someone ask."""
     given = float(setting.options.temperature)
-    read = partial(read_temperatures, given, solution, setting.catalogue, setting.features, given)
+    read = partial(read_temperatures, given, setting.claimed(solution, given))
     return lambda: read().readings

@@ -21,6 +21,7 @@ from .problem import NOT_SAID, Problem
 from .populations import STELLAR
 from .species_offsets import OwnOffsets, learn_offsets
 from .strength_errors import FIRST_SPREAD, learn_spread, strength_errors
+from .stretches import by_stretch
 from .unlisted import Null, learn_null
 
 ROUNDS = 12
@@ -63,6 +64,7 @@ class Solution:
     strength: (n,) predicted strengths with species offsets; between: (p,) ln of what weighing
     star against air did to the odds, None where nothing was weighed
     pairs: what of the pairs stays fixed; odds, message: (p,) as of ``associate``
+    stretches: parts of ``log_likelihood`` by wavelength, as of ``by_stretch``
     """
 
     problem: Problem
@@ -81,6 +83,7 @@ class Solution:
     odds: np.ndarray
     message: np.ndarray
     between: np.ndarray | None = None
+    stretches: np.ndarray | None = None
 
     def of(self, features) -> Solution:
         """The same with the pairs of these features alone; features: (k,) indices."""
@@ -142,7 +145,7 @@ class Step:
     sigma: np.ndarray
     offset: np.ndarray
     odds: np.ndarray
-    log_likelihood: float
+    stretches: np.ndarray
 
 
 @dataclass(frozen=True, eq=False)
@@ -166,7 +169,7 @@ def _expect(problem: Problem, pairs: Pairs, state: State, message=None) -> Step:
     odds = pair_odds(problem, pairs, state, groups)
     marginals = associate(pairs.feature, pairs.entry, odds.value, (len(f), len(e)), message)
     total = np.bincount(pairs.feature, odds.likelihood, len(f)) + odds.null
-    value = float(np.sum(np.log(total))) - float(np.sum(odds.shows * pairs.covered))
+    value = by_stretch(f.wave, e.wave, np.log(total), odds.shows * pairs.covered)
     return Step(groups, strength, marginals, odds.sigma, odds.offset, odds.value, value)
 
 
@@ -339,8 +342,9 @@ def _finish(problem, pairs, step: Step, state: State) -> Solution:
         step.groups,
         step.strength,
         state,
-        step.log_likelihood,
+        float(np.sum(step.stretches)),
         pairs,
         step.odds,
         step.marginals.message,
+        stretches=step.stretches,
     )

@@ -25,18 +25,22 @@ LEAST_CURVATURE = 25.0  # per unit of (ln T)^2: one sigma of 20 %
 # Share of T by which the profile is off beyond its curvature: its worth on simulated stars
 # of 4,000 to 15,000 K (tests/studies/temperature_study.py, seeds 1 and 2).
 SYSTEMATIC = 0.05
+DRAWS = 200  # of stretches with replacement, for how far the peak moves
+SEED = 1
 
 
 @dataclass(frozen=True, eq=False)
 class Profile:
     """temperature, error: K (NaN error where the profile has no peak of its own)
     tried: (n,) K ascending; log_likelihood: (n,)
+    sharpness: error in K by the curvature alone, whatever the stretches say
     """
 
     temperature: float
     error: float
     tried: np.ndarray
     log_likelihood: np.ndarray
+    sharpness: float = float("nan")
 
 
 def electron_pressure(temperature: float) -> float:
@@ -62,18 +66,21 @@ def round_kelvin(temperature) -> np.ndarray:
 
 
 def profile(value_at, start: float) -> Profile:
-    """Profile of ``value_at`` (log-likelihood at a temperature in K) about ``start``.
+    """Profile of ``value_at`` about ``start``: the log-likelihood at a temperature in K, or its
+    parts by stretches of the spectrum, (k,).
 
     While the best stands at an edge the search climbs on beyond it, so that a start wrong by
     thousands of kelvin ends at the same peak; it never leaves COOLEST to HOTTEST.
     """
     start = float(np.clip(start, COOLEST, HOTTEST))
     values: dict[float, float] = {}
+    parts: dict[float, np.ndarray] = {}
 
     def look(temperatures) -> None:
         for t in temperatures:
-            if t not in values:
-                values[t] = float(value_at(t))
+            if t not in parts:
+                parts[t] = np.atleast_1d(np.asarray(value_at(t), dtype=float))
+                values[t] = float(np.sum(parts[t]))
 
     look((start, *neighbours(start)))
     if _climbed(values, look) or len(values) <= len(STEPS):
@@ -83,8 +90,8 @@ def profile(value_at, start: float) -> Profile:
             _climbed(values, look)
     tried = np.array(sorted(values))
     found = np.array([values[t] for t in tried])
-    temperature, error = peak_of(tried, found)
-    return Profile(temperature, error, tried, found)
+    temperature, error = peak_of(tried, found, np.array([parts[t] for t in tried]))
+    return Profile(temperature, error, tried, found, peak_of(tried, found)[1])
 
 
 def _climbed(values: dict[float, float], look) -> bool:
@@ -101,14 +108,39 @@ def _climbed(values: dict[float, float], look) -> bool:
     return True
 
 
-def peak_of(tried, log_likelihood) -> tuple[float, float]:
-    """(T, error) in K of a profile: a parabola in ln T through the values near the largest.
+def peak_of(tried, log_likelihood, parts=None) -> tuple[float, float]:
+    """(T, error) in K of a profile: its peak's, widened by SYSTEMATIC and by how far the peak
+    moves when the stretches of the spectrum are drawn again with replacement (Efron 1979,
+    Annals of Statistics 7, 1).
+
+    parts: (tried, k) of the log-likelihood by stretches. Where two peaks are nearly alike, and
+    noise chooses one, the draws reach the other. NaN error where the largest value stands at an
+    end of those tried.
+    """
+    best, error = _peak(np.asarray(tried, dtype=float), np.asarray(log_likelihood, dtype=float))
+    if not np.isfinite(error):
+        return best, error
+    moved = 0.0
+    if parts is not None and parts.shape[1] > 1:
+        drawn = np.log(_drawn_peaks(np.asarray(tried, dtype=float), parts) / best)
+        moved = float(np.sqrt(np.mean(drawn**2)))
+    return best, best * float(np.hypot(max(error, moved), SYSTEMATIC))
+
+
+def _drawn_peaks(tried, parts):
+    """Peaks (DRAWS,) in K of profiles made of as many stretches, drawn with replacement."""
+    count = parts.shape[1]
+    weight = np.random.default_rng(SEED).multinomial(count, np.full(count, 1 / count), DRAWS)
+    return np.array([_peak(tried, values)[0] for values in weight @ parts.T])
+
+
+def _peak(tried, y) -> tuple[float, float]:
+    """(T in K, its relative error by the curvature): a parabola in ln T through the values
+    near the largest.
 
     The values scatter by a few units, since each comes from an engine of its own, so all
-    within WIDEST (and five at least) share in the parabola. The error is its curvature's,
-    widened by SYSTEMATIC; NaN where the largest value stands at an end.
+    within WIDEST (and five at least) share in the parabola.
     """
-    tried, y = np.asarray(tried, dtype=float), np.asarray(log_likelihood, dtype=float)
     t = np.log(tried)
     k = int(np.argmax(y))
     if k in (0, len(y) - 1):
@@ -118,6 +150,6 @@ def peak_of(tried, log_likelihood) -> tuple[float, float]:
     low, high = t[max(k - 2, 0)], t[min(k + 2, len(y) - 1)]
     a, b, _ = np.polyfit(t[near] - t[k], y[near], 2)
     if a >= -0.5 * LEAST_CURVATURE:
-        return float(np.exp(t[k])), float(np.exp(t[k]) / np.sqrt(LEAST_CURVATURE))
+        return float(np.exp(t[k])), 1 / np.sqrt(LEAST_CURVATURE)
     best = float(np.exp(np.clip(t[k] - b / (2 * a), low, high)))
-    return best, best * float(np.hypot(1.0 / np.sqrt(-2 * a), SYSTEMATIC))
+    return best, 1.0 / np.sqrt(-2 * a)
