@@ -9,8 +9,9 @@ import numpy as np
 from ..errors import InputRefused
 from ..spectra.spectrum import Segment
 from .detect import run_filters
+from .drawn import absorbed, level_of
 from .finding import Found
-from .gauss import FWHM_PER_SIGMA, GAUSSIAN_AREA
+from .gauss import FWHM_PER_SIGMA
 from .groups import Trace, component_sum, fit_features
 from .guess import first_guess
 from .stretches import usable
@@ -19,7 +20,6 @@ from .veil import running_mean, veil
 
 AROUND = 60.0  # line widths of spectrum looked at on either side of a pick
 SNAP = 2.0  # line widths within which a pick goes to the nearest extremum
-WINGED = {"voigt", "core-wings"}  # profiles, as the flags name them, that are wider than a Gaussian
 SIGNS = {"absorption": 1, "emission": -1}
 
 
@@ -69,26 +69,7 @@ def fit_profile(features, row: int, points: int = 121, neighbours: bool = False)
         )
         # an integrated line has no profile; what it takes is in the continuum of its lines
         near = near[[i == row or "integrated" not in features.flags[i].split() for i in near]]
-    winged = np.array([bool(WINGED & set(features.flags[i].split())) for i in near], dtype=bool)
-    level = features.continuum[near].max() if winged.any() else features.continuum[row]
-    return wave, level * (1.0 - _absorbed(features, near, winged, wave))
-
-
-def _absorbed(features, rows, winged, wave):
-    """Sum of the rows' profiles at ``wave``: Gaussians, and for lines with wings the mixture
-    of Gaussian and Lorentzian that has their depth, width and equivalent width. Beside such a
-    line depths, which are relative to its wing, are turned into depths below the continuum."""
-    sigma = features.fwhm[rows] / FWHM_PER_SIGMA
-    level = features.continuum[rows] / features.continuum[rows].max() if winged.any() else 1.0
-    params = np.c_[features.depth[rows] * level, features.wave[rows], np.log(sigma)]
-    total = component_sum(wave, params[~winged])
-    for i in rows[winged]:
-        depth, fwhm = features.depth[i], features.fwhm[i]
-        area = 1e-3 * features.ew[i] / (depth * fwhm)
-        part = float(np.clip((area - GAUSSIAN_AREA) / (0.5 * np.pi - GAUSSIAN_AREA), 0.0, 1.0))
-        u = (wave - features.wave[i]) / (0.5 * fwhm)
-        total += depth * (part / (1.0 + u * u) + (1.0 - part) * np.exp(-np.log(2.0) * u * u))
-    return total
+    return wave, level_of(features, near, row) * (1.0 - absorbed(features, near, wave))
 
 
 def segment_at(spectrum, measurement, wave: float) -> int:

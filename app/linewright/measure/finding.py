@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from .complexes import with_compounds
 from .detect import find_extrema, run_filters
 from .gauss import FWHM_PER_SIGMA
 from .groups import BROAD, Fitted, backgrounds, fit_features, group_features
@@ -92,7 +93,7 @@ def segment_features(ready, filtered, threshold: float, segment: int, tick=lambd
         fitted = _fit(ready, found)
     keep = _trusted(ready.trace, found, fitted)
     table = fitted_table(ready.trace, ready.nodes, found.take(keep), fitted.take(keep), segment)
-    return with_strong_lines(table, ready, tick), ready
+    return with_compounds(with_strong_lines(table, ready, tick), ready, tick), ready
 
 
 def _collect(ready, outputs, threshold):

@@ -110,7 +110,7 @@ def _replaced(table, ready, smooth, span) -> FeatureTable:
     beyond_doubt = best.bic < CRUSHING * old_bic
     if not broad or not (beyond_doubt or _all_there(table.take(inside), rows, view.width)):
         return table
-    return _merged(table.take(~inside), rows)
+    return merged(table.take(~inside), rows)
 
 
 def _all_there(old: FeatureTable, new: FeatureTable, width: float) -> bool:
@@ -243,7 +243,8 @@ def _table(rows, ready, old: FeatureTable) -> FeatureTable:
     )
 
 
-def _merged(one: FeatureTable, other: FeatureTable) -> FeatureTable:
+def merged(one: FeatureTable, other: FeatureTable) -> FeatureTable:
+    """Rows of both by wavelength, numbered from 1."""
     names = [n for n in FeatureTable.__dataclass_fields__ if n != "flags"]
     both = FeatureTable(
         **{n: np.concatenate([getattr(one, n), getattr(other, n)]) for n in names},

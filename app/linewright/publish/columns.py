@@ -108,6 +108,12 @@ LEDGER = (
        "other profiles with the difference to a Lorentzian's width", A, ".4f"),
     _c("fwhm_instrument", "float", "instrument's full width at half depth there, from what the "
        "metadata's instrument_width_from says", A, ".4f"),
+    _c("peak_separation", "float", "distance of the two emission peaks of the line the row is part "
+       "of", KMS, ".2f"),
+    _c("peak_separation_err", "float", "one-sigma error of peak_separation", KMS, ".2f"),
+    _c("peak_ratio", "float", "V/R: height over the continuum of the blue peak over that of the red",
+       "", ".3f"),
+    _c("peak_ratio_err", "float", "one-sigma error of peak_ratio", "", ".3f"),
 )
 
 ROLL_CALL = (

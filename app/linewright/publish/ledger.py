@@ -10,6 +10,7 @@ import math
 
 import numpy as np
 
+from ..claims.profiles import peaks_seen, separation
 from ..errors import InputRefused
 from ..job.view_width import widths_of
 from ..session.model import Claim, Session
@@ -48,6 +49,7 @@ def ledger_table(session: Session):
     widths = widths_of(session)
     columns["fwhm_intrinsic"], columns["fwhm_intrinsic_err"] = widths.intrinsic, widths.intrinsic_err
     columns["fwhm_instrument"] = widths.instrument
+    columns |= _peaks(session)
     meta = metadata(session) | {"instrument_width_from": widths.source}
     return table_of(LEDGER, columns, meta)
 
@@ -60,6 +62,16 @@ _CLAIMED = (
     "species", "probability", "p_line", "p_unlisted", "standing", "by", "origin",
     "runner_up", "note",
 )  # fmt: skip
+
+
+def _peaks(session: Session) -> dict:
+    """Distance and height ratio of double peaks, NaN elsewhere."""
+    seen = peaks_seen(session.features, session.claims)
+    numbers = np.full((len(session.features), 4), math.nan)
+    for row, peaks in seen.items():
+        numbers[row] = *separation(peaks), peaks.ratio, peaks.ratio_err
+    names = ("peak_separation", "peak_separation_err", "peak_ratio", "peak_ratio_err")
+    return dict(zip(names, numbers.T))
 
 
 def words_once(text: str) -> str:

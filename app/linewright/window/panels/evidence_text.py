@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+from ...claims.profiles import peak_words, peaks_seen
 from ...job.view_reasons import Reasons
 from ...job.view_width import widths_of
 from ...session.model import Candidate, Claim, Session
@@ -73,6 +74,12 @@ def verdict(claim: Claim) -> str:
 def flag_words(session: Session, row: int) -> str:
     """The flags of measurement and claim, what stands out before the others."""
     return " ".join(words.in_order(f"{session.claims[row].flags} {session.features.flags[row]}"))
+
+
+def peaks_line(session: Session, row: int) -> str:
+    """Distance and height ratio of the two peaks the row is part of; empty where there are none."""
+    peaks = peaks_seen(session.features, session.claims).get(row)
+    return "" if peaks is None else peak_words(peaks)
 
 
 def remarkable(flags: str) -> str:

@@ -92,6 +92,7 @@ FLAGS = {
     "rotational": "fitted with a profile broadened by rotation",
     "core-wings": "fitted with a core and wide wings",
     "double-peaked": "one of two components fitted together as a double-peaked line",
+    "compound": "one of the peaks and troughs of one broad profile, fitted together",
     # of a claim
     "off-velocity": "stands off the velocity of its like by more than 3.5 sigma",
     "off-strength": "stronger or weaker than the species' other lines say, by more than 3.5 sigma",
