@@ -225,7 +225,25 @@ def plain(count: int) -> None:
                   f"{', '.join(sorted(set(wrong)))} |", flush=True)
 
 
+REAL = (("sun_r47000.txt", {"medium": "air"}), ("ttauri_r40000_blue.fits", {}),
+        ("mdwarf_r115000_s1d.fits", {}), ("f5star_r1800.fits.gz", {}),
+        ("fstar_hband_r22500.fits", {}), ("gdwarf_r2000_18hdu.fits", {}),
+        *(("nebula/full-spectrum-by-area.tab", {"medium": "air", "columns": {"wave": 11, "flux": k}})
+          for k in range(1, 11)))
+
+
+def real(_count: int) -> None:
+    """Lines of several parts in the spectra beside the project."""
+    from linewright.spectra.reading import read_spectrum
+    from truths import SPECTRA
+
+    for name, how in REAL:
+        f = measure_spectrum(read_spectrum(SPECTRA / name, **how)).features
+        found = [(round(float(f.wave[g[0]]), 2), shape_of(f, g)) for g in compound_groups(f)]
+        print(f"{name} {how.get('columns', {}).get('flux', '')}: {len(f)} features, {found}", flush=True)
+
+
 if __name__ == "__main__":
     kind = sys.argv[1] if len(sys.argv) > 1 else "shapes"
     number = int(sys.argv[2]) if len(sys.argv) > 2 else 40
-    {"shapes": shapes, "plain": plain}[kind](number)
+    {"shapes": shapes, "plain": plain, "real": real}[kind](number)

@@ -71,7 +71,7 @@ def _joined(claim, best, wave: float):
     line = best.candidates[0]
     p = best.probability * (1.0 - min(max(claim.probability, 0.0), 1.0))
     own = replace(line, velocity=C_KM_S * (wave / line.wave - 1.0), probability=p,
-                  offset_sigma=0.0, depth_predicted=float("nan"), weights=())
+                  offset_sigma=float("nan"), depth_predicted=float("nan"), weights=())
     others = tuple(c for c in claim.candidates if (c.species, c.wave) != (line.species, line.wave))
     rival = next((c.species for c in others if c.species != line.species), "")
     return replace(claim, species=line.species, probability=p, p_line=p, p_unlisted=1.0 - p,
