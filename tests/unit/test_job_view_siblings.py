@@ -14,9 +14,10 @@ from linewright.resources import samples_dir
 from linewright.spectra.reading import read_spectrum
 
 
-def session_at(velocity):
-    found = SimpleNamespace(velocity=velocity)
-    return SimpleNamespace(velocity=found, features=_Empty(), continuum=(), claims=())
+def session_at(velocity, coverage=()):
+    found, searched = SimpleNamespace(velocity=velocity), SimpleNamespace(coverage=coverage)
+    return SimpleNamespace(
+        velocity=found, features=_Empty(), continuum=(), claims=(), spectrum=searched)  # fmt: skip
 
 
 @pytest.mark.parametrize(("origin", "expected"), [
@@ -42,6 +43,22 @@ def test_siblings_of_an_interstellar_line_rise_from_the_ground_state():
     depth = np.full(len(catalogue), 0.5)
     strips = sibling_strips(star, session_at(41.3), (catalogue, depth), candidate, 9.6)
     assert [round(s.wave, 1) for s in strips] == [5890.0]  # air, NIST ASD 5889.951
+
+
+@pytest.mark.parametrize(("coverage", "searched"), [
+    ((), True), (((5880.0, 5900.0),), True), (((5895.0, 5900.0),), False),
+])  # fmt: skip
+def test_a_line_outside_the_ranges_asked_for_was_not_searched(coverage, searched):
+    """Na D2 (NIST ASD 5889.951 A in air, 5891.583 in vacuum) beside a search about D1."""
+    star = read_spectrum(samples_dir() / "a_star.txt.gz")
+    catalogue = load_catalogue()
+    candidate = SimpleNamespace(
+        species="Na I", origin="interstellar", wave=5897.558, velocity=9.6,
+        depth_predicted=float("nan"))  # fmt: skip
+    depth = np.full(len(catalogue), 0.5)
+    session = session_at(41.3, coverage)
+    (strip,) = sibling_strips(star, session, (catalogue, depth), candidate, 9.6)
+    assert strip.searched == searched
 
 
 class _Empty:

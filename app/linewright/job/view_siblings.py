@@ -23,7 +23,7 @@ class SiblingStrip:
     """wave: rest wavelength in the spectrum's own medium, Angstrom
     velocity: km/s about the expected place, shape (n,); flux over continuum, shape (n,)
     feature: number of the feature there, or None; said: the species it is claimed for
-    predicted: depth 0-1
+    predicted: depth 0-1; searched: whether features were looked for there
     """
 
     wave: float
@@ -32,6 +32,7 @@ class SiblingStrip:
     feature: int | None
     said: str
     predicted: float
+    searched: bool = True
 
 
 def sibling_velocity(session: Session, candidate: Candidate, rake: float) -> float:
@@ -149,8 +150,15 @@ def _level(session: Session, k: int, x: np.ndarray, segment) -> np.ndarray:
 def _finished(spectrum, session, strip, velocity, species) -> SiblingStrip:
     wave, v, flux, predicted = strip
     own = float(to_medium(wave, spectrum.medium))
-    number, said = _feature_there(session, wave * (1.0 + velocity / C_KM_S), species)
-    return SiblingStrip(own, v, flux, number, said, predicted)
+    expected = wave * (1.0 + velocity / C_KM_S)
+    number, said = _feature_there(session, expected, species)
+    return SiblingStrip(own, v, flux, number, said, predicted, _searched(session, expected))
+
+
+def _searched(session: Session, expected: float) -> bool:
+    """Whether the coverage holds this vacuum wavelength; True where it is not known."""
+    ranges = session.spectrum.coverage
+    return not ranges or any(low <= expected <= high for low, high in ranges)
 
 
 def said_now(

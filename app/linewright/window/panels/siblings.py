@@ -21,7 +21,8 @@ TIP = (
 COUNT_TIP = (
     "Of all expected lines of the species, the strongest missing one and the strongest outside "
     "the coverage. In the strips: 'seen' is claimed for the species, 'in Fe I' is blended into "
-    "a feature of another claim, 'missing' has no feature; 'no feature' where the Roll call "
+    "a feature of another claim, 'not searched' lies outside the ranges asked for, 'missing' "
+    "has no feature; 'no feature' where the Roll call "
     "misses none: what stands there hides it."
 )
 
@@ -158,7 +159,7 @@ class SiblingsBox(QWidget):
 
 def _note(strip, species: str, absent: str) -> str:
     if strip.feature is None:
-        return absent
+        return absent if strip.searched else "not searched"
     if strip.said == species:
         return "seen"
     return f"in {strip.said}" if strip.said else "unclaimed"
