@@ -173,9 +173,9 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
     """Velocities corrected by confident claims; a second star and interstellar clouds
     looked for among what is left unexplained."""
     components, velocity = [], found.velocity
+    given = setting.options.velocity is not None
     for i, component in enumerate(found.components):
         shift, error = refine(solution, i)
-        given = setting.options.velocity is not None
         fixed = given and component.population in (STELLAR, NEBULAR)
         if np.isfinite(error) and not fixed:
             component = replace(component, velocity=component.velocity + shift, error=error)
@@ -183,7 +183,7 @@ def refined(setting, found: Found, solution, temperature: float) -> Found:
             ions = ion_velocities.learned(setting.catalogue, solution, i, component.velocity)
             component = replace(component, ions=ions)
         components.append(component)
-    components = _tie_hydrogen(components)
+    components = _tie_hydrogen(components if given else _with_hydrogen(components))
     main = _spokesman(found, solution)
     if main is not None and found.velocity.how != "given":
         chosen = components[main]
@@ -209,6 +209,19 @@ def _spokesman(found: Found, solution) -> int | None:
     usable = [i for i, c in enumerate(found.components) if c.population in (STELLAR, NEBULAR)]
     best = max(usable, key=lambda i: counts[i], default=None)
     return best if best is not None and counts[best] > 0 else None
+
+
+def _with_hydrogen(components: list[Component]) -> list[Component]:
+    """The star's velocity with what its broad lines say: where metal lines are few or blended,
+    as in an A star at low resolution, those are the better witnesses."""
+    broad = next((c for c in components if c.population == HYDROGEN), None)
+    star = next((c for c in components if c.population == STELLAR), None)
+    if broad is None or star is None or not (broad.error > 0 and star.error > 0):
+        return components
+    weights = star.error**-2, 1.0 / (broad.error**2 + BROAD_ERROR**2)
+    velocity = float(np.average((star.velocity, broad.velocity), weights=weights))
+    joined = replace(star, velocity=velocity, error=float(np.sum(weights) ** -0.5))
+    return [joined if c is star else c for c in components]
 
 
 def _tie_hydrogen(components: list[Component]) -> list[Component]:

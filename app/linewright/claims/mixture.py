@@ -32,6 +32,7 @@ STRENGTH_TAIL, STRENGTH_RANGE = 0.03, 8.0  # share and width (dex) of strengths 
 DOUBT_A_PERSON = 1e-6  # factor on the null of a feature that a person has named
 OWN_PLACE = 0.1  # least weight of a line's own place against its blend's centroid in a crowd
 LIST_SCATTER = 0.002  # Angstrom: position scatter of a species' lines before it is learned
+UNLIKELY, LIKELY = 0.4, 0.6  # pairs between them count in part: none jumps in or out
 SCATTER_WEIGHT, SCATTER_REACH = 6.0, 0.06  # lines that prior is worth; Angstrom
 
 
@@ -316,13 +317,15 @@ def species_scatter(problem: Problem, pairs: Pairs, step: Step):
 
     Hyperfine structure and poor lists scatter some species more than others.
     """
-    likely = np.nonzero(step.marginals.pair > 0.5)[0]
+    p = step.marginals.pair
+    likely = np.nonzero(p > UNLIKELY)[0]
     offset = step.offset[likely] * step.sigma[likely]
     near = np.abs(offset) < SCATTER_REACH
     mine, offset = likely[near], offset[near]
     feature = pairs.base[pairs.feature[mine]] * 0.8
     excess = offset**2 - feature**2 - pairs.line_variance[mine]
-    species, weight = pairs.species[mine], step.marginals.pair[mine]
+    counts = np.clip((p[mine] - UNLIKELY) / (LIKELY - UNLIKELY), 0.0, 1.0)
+    species, weight = pairs.species[mine], p[mine] * counts
     total = np.bincount(species, weight * excess, problem.species)
     count = np.bincount(species, weight, problem.species)
     variance = (SCATTER_WEIGHT * LIST_SCATTER**2 + total) / (SCATTER_WEIGHT + count)

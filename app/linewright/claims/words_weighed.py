@@ -25,7 +25,7 @@ from .strength_errors import strength_errors
 
 TURNS = 10
 STILL = 1e-4  # of probability: below it, summed over a species' lines, no offset is learned anew
-LEAST_DEX, LEAST_SCATTER = 1e-3, 0.01  # dex; share of the scatter: smaller changes tell nothing
+LEAST_DEX, LEAST_SCATTER = 1e-3, 1e-3  # dex; share of the scatter: smaller changes tell nothing
 MUCH = 0.005  # of the features: more probability moved, and the whole mixture goes on
 ROUNDS = 6  # then, at most
 
