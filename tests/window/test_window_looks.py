@@ -350,3 +350,21 @@ def test_a_closed_window_begins_no_work(qtbot):
                         failed=begun.append))
     qtbot.wait(50)
     assert begun == [] and not tasks.busy("late")
+
+
+@pytest.mark.parametrize("part", [0.2, 0.8])
+def test_of_a_spectrum_searched_in_a_small_part_that_part_is_shown(solved, part):
+    """A long spectrum solved in one window opens on the window, one solved mostly opens whole."""
+    bench = solved.bench
+    session, wave = bench.session, bench.spectrum.segments[0].wave
+    low = float(wave[0]) + 5.0
+    high = low + part * float(wave[-1] - wave[0])
+    fresh = replace(bench.spectrum)
+    reference = replace(session.spectrum, coverage=((low, high),))
+    bench.add_desk(Desk(fresh, Document(replace(session, spectrum=reference))))
+    span = solved.space.spectrum_view.view()
+    asked = [float(to_medium(w, fresh.medium)) for w in (low, high)]
+    whole = [float(to_medium(w, fresh.medium)) for w in (wave[0], wave[-1])]
+    wanted = asked if part < 0.5 else whole
+    assert span[0] <= wanted[0] and span[1] >= wanted[1]
+    assert span[1] - span[0] < 1.2 * (wanted[1] - wanted[0])

@@ -10,6 +10,7 @@ from ..lines.catalogue import ORIGINS, LineCatalogue
 from ..session.model import Candidate, Session
 from ..spectra.medium import C_KM_S, from_medium, to_medium
 from ..spectra.spectrum import Spectrum
+from .view_searched import searched
 
 COUNT = 6
 OWN_LINES = ("telluric", "interstellar")  # origins whose lines are not the star's
@@ -152,13 +153,7 @@ def _finished(spectrum, session, strip, velocity, species) -> SiblingStrip:
     own = float(to_medium(wave, spectrum.medium))
     expected = wave * (1.0 + velocity / C_KM_S)
     number, said = _feature_there(session, expected, species)
-    return SiblingStrip(own, v, flux, number, said, predicted, _searched(session, expected))
-
-
-def _searched(session: Session, expected: float) -> bool:
-    """Whether the coverage holds this vacuum wavelength; True where it is not known."""
-    ranges = session.spectrum.coverage
-    return not ranges or any(low <= expected <= high for low, high in ranges)
+    return SiblingStrip(own, v, flux, number, said, predicted, searched(session, expected))
 
 
 def said_now(

@@ -6,6 +6,7 @@ import numpy as np
 from PySide6.QtCore import QTimer
 
 from ..job.view_profile import profile_of
+from ..job.view_searched import searched_range
 from .acts import opening
 from .acts.picking import pick
 from .acts.reweighing import heed, make_ready, propose
@@ -17,6 +18,7 @@ from .steps import Steps
 
 REST_MS = 200  # after the last claim before what it changes is looked up
 READY_MS = 1500  # after the last change of features before a first claim is made ready for
+SMALL_PART = 0.5  # of the spectrum: less was searched, and only that is shown at first
 MANY = 1000  # features whose first showing is spread over several frames
 
 
@@ -106,8 +108,18 @@ class Refresher:
             return
         if self._bench.spectrum is None and before is self._bench.desk:
             view.set_view(*span)  # sticks of an edited table: the view stays
+        else:
+            self._show_searched()
         self._bench.view.change(span=tuple(view.view()))
         self._space.catalogue.show_catalogue()
+
+    def _show_searched(self) -> None:
+        """Of a spectrum of which a small part was searched, that part with its surroundings."""
+        view, part = self._space.spectrum_view, searched_range(self._bench.session)
+        low, high = view.view()
+        if part is not None and part[1] - part[0] < SMALL_PART * (high - low):
+            beside = 0.05 * (part[1] - part[0])
+            view.set_view(part[0] - beside, part[1] + beside)
 
     def _show_track(self, session) -> None:
         shown = (session.velocity, self._bench.view.now.velocity, self._bench.spectrum,

@@ -48,4 +48,4 @@ class WavelengthAxis(NavigableLane):
         half = 0.5 * self.fontMetrics().horizontalAdvance(f"{self.state.high:.{decimals}f}") + 2
         for value, at in zip(values.tolist(), x.tolist()):
             at = min(max(at, half), self.width() - half)
-            texts.draw(f"{value:.{decimals}f}", at, 8, 0.5)
+            texts.draw(f"{value + 0.0:.{decimals}f}".replace("-", "−"), at, 8, 0.5)
