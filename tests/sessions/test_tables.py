@@ -57,9 +57,11 @@ def test_intrinsic_widths_follow_the_contract_columns(made):
     """With a resolving power given: fwhm^2 = intrinsic^2 + (wave/R)^2 (Gaussians)."""
     given = replace(made, options=made.options | {"resolution": 50_000.0})
     table = ledger.ledger_table(given)
-    assert table.colnames[len(CONTRACT):] == [
-        "fwhm_intrinsic", "fwhm_intrinsic_err", "fwhm_instrument"]
-    assert {str(table[n].unit) for n in table.colnames[len(CONTRACT):]} == {"Angstrom"}
+    widths = ["fwhm_intrinsic", "fwhm_intrinsic_err", "fwhm_instrument"]
+    peaks = ["peak_separation", "peak_separation_err", "peak_ratio", "peak_ratio_err"]
+    assert table.colnames[len(CONTRACT):] == widths + peaks
+    assert {str(table[n].unit) for n in widths} == {"Angstrom"}
+    assert [str(table[n].unit) for n in peaks] == ["km / s", "km / s", "None", "None"]
     assert table.meta["instrument_width_from"] == "resolving power given"
     instrument = made.features.wave / 50_000.0
     np.testing.assert_allclose(table["fwhm_instrument"], instrument)

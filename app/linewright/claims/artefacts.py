@@ -36,7 +36,15 @@ def spikes_aside(features, claims):
     """Claims on spikes stand as set aside, origin artefact."""
     spikes = is_spike(features)
     return tuple(
-        replace(claim, standing="set aside", origin="artefact", flags=SPIKE)
+        replace(
+            claim,
+            standing="set aside",
+            origin="artefact",
+            flags=SPIKE,
+            species="",
+            candidates=(),
+            blend=(),
+        )
         if spike
         else claim
         for claim, spike in zip(claims, spikes)
