@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import time
 
 import numpy as np
 import pytest
@@ -84,16 +83,6 @@ def test_grade_keeps_the_better_ones(catalogue):
 def test_unknown_wishes_are_refused(catalogue, query):
     with pytest.raises(InputRefused):
         search(catalogue, query)
-
-
-def test_queries_are_quick(catalogue):
-    search(catalogue, LineQuery(text="Fe I"))
-    start = time.process_time()
-    search(catalogue, LineQuery((6000.0, 6100.0), species=("Fe I",), loggf_above=-3.0))
-    assert time.process_time() - start < 0.05
-    start = time.process_time()
-    search(catalogue, LineQuery(text="FeI z 7D* NIST"))
-    assert time.process_time() - start < 0.25
 
 
 def test_page_of_a_line_shows_data_siblings_and_source(catalogue):
