@@ -134,6 +134,8 @@ def spread_noise(windows: Windows, fit: Fit, correlation, level_err=None) -> np.
     return covariance
 
 
+# A fit that failed has a covariance without bounds: its errors say so, no warning need.
+@np.errstate(over="ignore", invalid="ignore", divide="ignore")
 def lone_sensitivity(covariance, params, j: int):
     """(a, c, FWHM, area) errors of component j: shape (g, 4), from covariance (g, 3n, 3n)."""
     k = 3 * j
@@ -148,6 +150,7 @@ def lone_sensitivity(covariance, params, j: int):
                      fwhm * np.sqrt(np.abs(var_l)), area], axis=1)
 
 
+@np.errstate(over="ignore", invalid="ignore", divide="ignore")
 def first_order_bias(windows: Windows, fit: Fit) -> np.ndarray:
     """Bias of least squares in (a, FWHM, area) of each component, (g, n, 3).
 
