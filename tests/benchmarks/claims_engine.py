@@ -18,7 +18,7 @@ import numpy as np
 HERE = Path(__file__).resolve().parent
 sys.path[:0] = [str(HERE), str(HERE.parent.parent / "app")]
 
-from rounds import Act, measure, steady  # noqa: E402
+from rounds import Act, measure, show  # noqa: E402
 
 from linewright.claims.heard import Ground  # noqa: E402
 from linewright.claims.identify import Setting, conclude, identify, weigh, weigh_again  # noqa: E402
@@ -109,11 +109,7 @@ WORDS = {
 def main() -> int:
     rounds = int(sys.argv[1]) if len(sys.argv) > 1 else ROUNDS
     timing = measure(acts(load_catalogue()), rounds, lambda: None)
-    control = timing.ratio("A'", "A")
-    print(f"control A'/A {control:.2f}, {'steady' if steady(control) else 'noisy'}; "
-          f"A (sort of {SORTED:,} numbers) {timing.milliseconds('A'):.0f} ms; {rounds} rounds")
-    for name, words in WORDS.items():
-        print(f"{words:58} {timing.ratio(name, 'A'):7.2f} A {timing.milliseconds(name):7.0f} ms")
+    show(timing, WORDS, f"sort of {SORTED:,} numbers")
     return 0
 
 

@@ -19,7 +19,7 @@ HERE = Path(__file__).resolve().parent
 sys.path[:0] = [str(HERE), str(HERE.parent.parent / "app"), str(HERE.parent / "sessions")]
 
 import builders  # noqa: E402
-from rounds import Act, measure, steady  # noqa: E402
+from rounds import Act, measure, show  # noqa: E402
 
 from linewright.lines.loading import load_catalogue  # noqa: E402
 from linewright.lines.search import LineQuery, search  # noqa: E402
@@ -57,11 +57,7 @@ def main() -> int:
     rounds = int(sys.argv[1]) if len(sys.argv) > 1 else ROUNDS
     with tempfile.TemporaryDirectory() as folder:
         timing = measure(acts(load_catalogue(), Path(folder)), rounds, lambda: None)
-    control = timing.ratio("A'", "A")
-    print(f"control A'/A {control:.2f}, {'steady' if steady(control) else 'noisy'}; "
-          f"A (sort of {SORTED:,} numbers) {timing.milliseconds('A'):.0f} ms; {rounds} rounds")
-    for name, words in WORDS.items():
-        print(f"{words:54} {timing.ratio(name, 'A'):7.2f} A {timing.milliseconds(name):7.1f} ms")
+    show(timing, WORDS, f"sort of {SORTED:,} numbers")
     return 0
 
 

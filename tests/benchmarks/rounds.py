@@ -68,3 +68,15 @@ def _timed(act: Act, drain: Callable[[], None]) -> float:
 def steady(control: float) -> bool:
     """Whether the A'/A control says that the ratios of this run mean something."""
     return CONTROL_LOW <= control <= CONTROL_HIGH
+
+
+def show(timing: Timing, words: dict[str, str], base: str) -> None:
+    """Prints the control A'/A, and each act of ``words`` as a ratio to A with its time.
+
+    base: what A is, in words
+    """
+    control = timing.ratio("A'", "A")
+    print(f"control A'/A {control:.2f}, {'steady' if steady(control) else 'noisy'}; "
+          f"A ({base}) {timing.milliseconds('A'):.0f} ms; {len(timing.seconds['A'])} rounds")
+    for name, said in words.items():
+        print(f"{said:58} {timing.ratio(name, 'A'):7.2f} A {timing.milliseconds(name):8.1f} ms")

@@ -33,15 +33,20 @@ def test_without_a_velocity_the_rake_decides():
     assert sibling_velocity(session_at(float("nan")), candidate, 12.0) == 12.0
 
 
-def test_siblings_of_an_interstellar_line_rise_from_the_ground_state():
-    """Na I lines of 2.1 eV, such as 5682 A, never arise in interstellar gas: both D lines only."""
+def sodium_siblings(session):
+    """Strips of interstellar Na I with D1 on trial."""
     star = read_spectrum(samples_dir() / "a_star.txt.gz")
     catalogue = load_catalogue()
     candidate = SimpleNamespace(
         species="Na I", origin="interstellar", wave=5897.558, velocity=9.6,
         depth_predicted=float("nan"))  # fmt: skip
     depth = np.full(len(catalogue), 0.5)
-    strips = sibling_strips(star, session_at(41.3), (catalogue, depth), candidate, 9.6)
+    return sibling_strips(star, session, (catalogue, depth), candidate, 9.6)
+
+
+def test_siblings_of_an_interstellar_line_rise_from_the_ground_state():
+    """Na I lines of 2.1 eV, such as 5682 A, never arise in interstellar gas: both D lines only."""
+    strips = sodium_siblings(session_at(41.3))
     assert [round(s.wave, 1) for s in strips] == [5890.0]  # air, NIST ASD 5889.951
 
 
@@ -50,14 +55,7 @@ def test_siblings_of_an_interstellar_line_rise_from_the_ground_state():
 ])  # fmt: skip
 def test_a_line_outside_the_ranges_asked_for_was_not_searched(coverage, searched):
     """Na D2 (NIST ASD 5889.951 A in air, 5891.583 in vacuum) beside a search about D1."""
-    star = read_spectrum(samples_dir() / "a_star.txt.gz")
-    catalogue = load_catalogue()
-    candidate = SimpleNamespace(
-        species="Na I", origin="interstellar", wave=5897.558, velocity=9.6,
-        depth_predicted=float("nan"))  # fmt: skip
-    depth = np.full(len(catalogue), 0.5)
-    session = session_at(41.3, coverage)
-    (strip,) = sibling_strips(star, session, (catalogue, depth), candidate, 9.6)
+    (strip,) = sodium_siblings(session_at(41.3, coverage))
     assert strip.searched == searched
 
 
